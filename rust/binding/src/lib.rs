@@ -1,0 +1,1 @@
+//! The border to Python.
