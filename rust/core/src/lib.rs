@@ -5,7 +5,11 @@
 //!
 //! The pipeline, each module knowing only those before it:
 //!
-//! - [`error`]: what can go wrong.
+//! - [`error`]: what can go wrong;
+//! - [`numerics`]: Chebyshev nodes, quadrature, block matrices, linear equations in one variable;
+//! - [`grid`]: where x lives.
 #![deny(missing_docs)]
 
 pub mod error;
+pub mod grid;
+pub mod numerics;

@@ -1,0 +1,12 @@
+//! Layer 3: a formula and a grid make a matrix.
+//!
+//! With `F(x) = x f(x)`, `x (P * f)(x) = int_x^1 dz P(z) F(x/z)`; in nodes `K[i][j] = int dz P(z) L_j(x_i/z)`.
+
+mod below;
+mod matrices;
+mod points;
+mod store;
+
+pub use matrices::Convolved;
+pub use points::quadrature_z;
+pub use store::{KernelSet, kernels_on};

@@ -1,0 +1,142 @@
+//! Dense row-major matrices: products of sub-blocks and solves. The only file that calls a matrix library.
+//!
+//! Every call runs on the calling thread alone, so that bits do not depend on the number of threads; who has
+//! independent pieces of work shares those out.
+
+use faer::linalg::solvers::{PartialPivLu, Solve};
+use faer::{Accum, MatMut, MatRef, Par};
+use std::ops::Range;
+
+/// A row-major matrix.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Matrix {
+    rows: usize,
+    cols: usize,
+    data: Vec<f64>,
+}
+
+impl Matrix {
+    /// All zeros.
+    pub fn zeros(rows: usize, cols: usize) -> Self {
+        Self { rows, cols, data: vec![0.0; rows * cols] }
+    }
+
+    /// The unit matrix.
+    pub fn identity(n: usize) -> Self {
+        let mut unit = Self::zeros(n, n);
+        unit.data.iter_mut().step_by(n + 1).for_each(|value| *value = 1.0);
+        unit
+    }
+
+    /// From `rows * cols` values in row-major order.
+    pub fn from_values(rows: usize, cols: usize, data: Vec<f64>) -> Self {
+        debug_assert_eq!(data.len(), rows * cols);
+        Self { rows, cols, data }
+    }
+
+    /// Number of rows.
+    pub fn rows(&self) -> usize {
+        self.rows
+    }
+
+    /// Number of columns.
+    pub fn cols(&self) -> usize {
+        self.cols
+    }
+
+    /// All values in row-major order.
+    pub fn values(&self) -> &[f64] {
+        &self.data
+    }
+
+    /// All values in row-major order.
+    pub fn values_mut(&mut self) -> &mut [f64] {
+        &mut self.data
+    }
+
+    /// One row.
+    pub fn row(&self, i: usize) -> &[f64] {
+        &self.data[i * self.cols..(i + 1) * self.cols]
+    }
+
+    /// One row.
+    pub fn row_mut(&mut self, i: usize) -> &mut [f64] {
+        &mut self.data[i * self.cols..(i + 1) * self.cols]
+    }
+
+    /// Adds `factor * other`, of the same shape.
+    pub fn add_scaled(&mut self, factor: f64, other: &Self) {
+        debug_assert_eq!((self.rows, self.cols), (other.rows, other.cols));
+        for (value, add) in self.data.iter_mut().zip(&other.data) {
+            *value += factor * add;
+        }
+    }
+
+    /// A rectangular part, for reading.
+    pub fn part(&self, rows: Range<usize>, cols: Range<usize>) -> MatRef<'_, f64> {
+        MatRef::from_row_major_slice(&self.data, self.rows, self.cols).submatrix(
+            rows.start,
+            cols.start,
+            rows.len(),
+            cols.len(),
+        )
+    }
+
+    /// A rectangular part, for writing.
+    pub fn part_mut(&mut self, rows: Range<usize>, cols: Range<usize>) -> MatMut<'_, f64> {
+        MatMut::from_row_major_slice_mut(&mut self.data, self.rows, self.cols).submatrix_mut(
+            rows.start,
+            cols.start,
+            rows.len(),
+            cols.len(),
+        )
+    }
+}
+
+/// `target += factor * left * right`, on this thread.
+pub fn multiply_add(target: MatMut<'_, f64>, factor: f64, left: MatRef<'_, f64>, right: MatRef<'_, f64>) {
+    if left.ncols() > 0 && right.ncols() > 0 {
+        faer::linalg::matmul::matmul(target, Accum::Add, left, right, factor, Par::Seq);
+    }
+}
+
+/// `target += factor * lower * right` where `lower` is block lower triangular with blocks between `offsets`, and
+/// row block `p` of `right` reaches to column `width[p]`.
+pub fn lower_multiply_add(
+    target: &mut Matrix,
+    factor: f64,
+    lower: &Matrix,
+    right: &Matrix,
+    offsets: &[usize],
+    width: &[usize],
+) {
+    for p in 0..offsets.len() - 1 {
+        let rows = offsets[p]..offsets[p + 1];
+        for q in 0..=p {
+            let inner = offsets[q]..offsets[q + 1];
+            multiply_add(
+                target.part_mut(rows.clone(), 0..width[q]),
+                factor,
+                lower.part(rows.clone(), inner.clone()),
+                right.part(inner, 0..width[q]),
+            );
+        }
+    }
+}
+
+/// A factored square matrix (LU with partial pivoting).
+pub struct Factors {
+    lu: PartialPivLu<f64>,
+}
+
+impl Factors {
+    /// Factors a square matrix.
+    pub fn of(matrix: &Matrix) -> Self {
+        Self { lu: matrix.part(0..matrix.rows, 0..matrix.cols).partial_piv_lu() }
+    }
+
+    /// Replaces the right-hand sides by the solutions.
+    pub fn solve(&self, right: MatMut<'_, f64>) {
+        self.lu.solve_in_place(right);
+    }
+}

@@ -1,0 +1,5 @@
+//! Layer 0: numerical mathematics without a word of physics.
+
+pub mod blocks;
+pub mod chebyshev;
+pub mod gauss_legendre;
