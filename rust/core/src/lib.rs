@@ -6,6 +6,12 @@
 //! The pipeline, each module knowing only those before it:
 //!
 //! - [`error`]: what can go wrong.
+//! - [`numerics`]: numerical tools without physics: polylogarithms, points near the ends of [0, 1].
+//! - [`colour`]: colour factors.
+//! - [`kernels`]: splitting functions and matching across heavy-quark thresholds, as functions of z.
 #![deny(missing_docs)]
 
+pub mod colour;
 pub mod error;
+pub mod kernels;
+pub mod numerics;

@@ -1,0 +1,4 @@
+//! Numerical tools without any physics in them.
+
+pub mod endpoint;
+pub mod polylog;
