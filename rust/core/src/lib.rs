@@ -5,11 +5,23 @@
 //!
 //! The pipeline, each module knowing only those before it:
 //!
-//! - [`error`]: what can go wrong;
-//! - [`numerics`]: Chebyshev nodes, quadrature, block matrices, linear equations in one variable;
-//! - [`grid`]: where x lives.
+//! - [`error`], [`watch`], [`threads`]: what can go wrong, who may stop long work, who does it;
+//! - [`numerics`]: Chebyshev nodes, quadrature, polylogarithms, block matrices, linear equations in one variable;
+//! - [`colour`]: the colour factors of SU(3);
+//! - [`grid`]: where x lives;
+//! - [`coupling`]: where the scale lives: running, decoupling, masses;
+//! - [`theory`]: what a build is told;
+//! - [`kernels`]: the formulas, pure functions of z;
+//! - [`convolution`]: a formula and a grid make a matrix.
 #![deny(missing_docs)]
 
+pub mod colour;
+pub mod convolution;
+pub mod coupling;
 pub mod error;
 pub mod grid;
+pub mod kernels;
 pub mod numerics;
+pub mod theory;
+pub mod threads;
+pub mod watch;

@@ -2,4 +2,6 @@
 
 pub mod blocks;
 pub mod chebyshev;
+pub mod endpoint;
 pub mod gauss_legendre;
+pub mod polylog;

@@ -1,0 +1,1 @@
+//! Matching of densities across a heavy-quark threshold.

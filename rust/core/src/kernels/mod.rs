@@ -1,0 +1,5 @@
+//! The formulas: pure functions of z; no grid, no coupling, no nodes.
+
+pub mod kernel;
+pub mod matching;
+pub mod splitting;
