@@ -5,7 +5,13 @@
 //!
 //! The pipeline, each module knowing only those before it:
 //!
-//! - [`error`]: what can go wrong.
+//! - [`error`]: what can go wrong;
+//! - [`numerics`]: numerical methods without any physics;
+//! - [`coupling`]: the strong coupling over all scales and numbers of flavours;
+//! - [`theory`]: what a build is told.
 #![deny(missing_docs)]
 
+pub mod coupling;
 pub mod error;
+pub mod numerics;
+pub mod theory;

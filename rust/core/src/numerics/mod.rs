@@ -1,0 +1,3 @@
+//! Numerical methods without any physics.
+
+pub mod gauss_legendre;
