@@ -48,7 +48,7 @@ pub enum Error {
         from_q2: f64,
         /// Where it was to end, GeV^2.
         to_q2: f64,
-        /// Largest alpha_s that the solution is followed to.
+        /// Largest `alpha_s` that the solution is followed to.
         limit: f64,
     },
     /// The evolution did not reach its tolerance within the number of steps allowed.

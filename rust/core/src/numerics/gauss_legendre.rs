@@ -1,56 +1,70 @@
-//! Gauss-Legendre nodes and weights.
+//! Gauss-Legendre quadrature: nodes and weights on [-1, 1].
+//!
+//! An n-point rule integrates polynomials of degree 2n - 1 exactly. The nodes are the zeros of the Legendre
+//! polynomial `P_n`, found by Newton's method; accurate to a few units of rounding for n up to some hundreds.
 
 use std::f64::consts::PI;
 
-/// Nodes and weights on `[-1, 1]`.
+/// A quadrature rule on [-1, 1].
 #[derive(Debug, Clone, PartialEq)]
 pub struct Rule {
-    /// Nodes in growing order.
+    /// Nodes, ascending.
     pub nodes: Vec<f64>,
-    /// Weights, of sum 2.
+    /// Weights; they add up to 2.
     pub weights: Vec<f64>,
 }
 
-/// The rule of `n` points, exact for polynomials of degree `2n - 1`: Newton's method on `P_n`.
+impl Rule {
+    /// Integral of `f` from `from` to `to`.
+    pub fn integrate(&self, from: f64, to: f64, f: impl Fn(f64) -> f64) -> f64 {
+        let (middle, half) = (0.5 * (to + from), 0.5 * (to - from));
+        let sum: f64 = self
+            .nodes
+            .iter()
+            .zip(&self.weights)
+            .map(|(x, w)| w * f(middle + half * x))
+            .sum();
+        half * sum
+    }
+}
+
+/// The n-point Gauss-Legendre rule; `n = 0` gives an empty rule.
+///
+/// Start values `cos(pi (k + 3/4) / (n + 1/2))`, then Newton's method on `P_n`; weights
+/// `2 / ((1 - x^2) P_n'(x)^2)` (M. Abramowitz, I. Stegun, Handbook of Mathematical Functions, eq. 25.4.29 and
+/// 22.16.6).
 pub fn gauss_legendre(n: usize) -> Rule {
     let mut nodes = vec![0.0; n];
     let mut weights = vec![0.0; n];
-    for i in 0..n {
-        let mut x = -(PI * (i as f64 + 0.75) / (n as f64 + 0.5)).cos();
-        let mut slope = 1.0;
-        for _ in 0..6 {
-            let (value, derivative) = legendre(n, x);
-            x -= value / derivative;
-            slope = legendre(n, x).1;
+    for k in 0..n.div_ceil(2) {
+        let mut x = (PI * (k as f64 + 0.75) / (n as f64 + 0.5)).cos();
+        if 2 * k + 1 == n {
+            x = 0.0;
         }
-        nodes[i] = x;
-        weights[i] = 2.0 / ((1.0 - x * x) * slope * slope);
+        // Convergence is quadratic from a start good to 1e-2 of the spacing: four steps reach rounding.
+        for _ in 0..6 {
+            let (value, slope) = legendre(n, x);
+            x -= value / slope;
+        }
+        let (_, slope) = legendre(n, x);
+        let weight = 2.0 / ((1.0 - x * x) * slope * slope);
+        (nodes[n - 1 - k], nodes[k]) = (x, -x);
+        (weights[n - 1 - k], weights[k]) = (weight, weight);
+    }
+    if n % 2 == 1 {
+        nodes[n / 2] = 0.0;
     }
     Rule { nodes, weights }
 }
 
-/// `P_n(x)` and its derivative by the three-term recurrence.
+/// `P_n(x)` and its derivative by the three-term recurrence, for |x| < 1.
 fn legendre(n: usize, x: f64) -> (f64, f64) {
-    let (mut before, mut value) = (1.0, x);
-    for k in 2..=n {
-        let k = k as f64;
-        (before, value) = (value, ((2.0 * k - 1.0) * x * value - (k - 1.0) * before) / k);
+    let (mut before, mut value) = (0.0, 1.0);
+    for j in 0..n {
+        let j = j as f64;
+        let next = ((2.0 * j + 1.0) * x * value - j * before) / (j + 1.0);
+        before = value;
+        value = next;
     }
-    (value, n as f64 * (x * value - before) / (x * x - 1.0))
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn integrates_polynomials_to_their_degree() {
-        for n in [2, 5, 16, 24] {
-            let rule = gauss_legendre(n);
-            let power = 2 * n - 2;
-            let sum: f64 =
-                rule.nodes.iter().zip(&rule.weights).map(|(x, w)| w * x.powi(power as i32)).sum();
-            assert!((sum - 2.0 / (power as f64 + 1.0)).abs() < 4e-15); // n roundings of order 1e-16
-        }
-    }
+    (value, n as f64 * (before - x * value) / (1.0 - x * x))
 }
