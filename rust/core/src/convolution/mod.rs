@@ -9,4 +9,4 @@ mod store;
 
 pub use matrices::Convolved;
 pub use points::quadrature_z;
-pub use store::{KernelSet, kernels_on};
+pub use store::{KernelSet, convolve_values, kernels_on};

@@ -35,7 +35,7 @@ pub(super) struct NodePoints {
     pub t: Vec<f64>,
     /// Weights for an integral over dz.
     pub weights: Vec<f64>,
-    /// By panel, the node's own first.
+    /// By panel, the node's own first; points after them lie below every panel.
     pub stretches: Vec<Stretch>,
 }
 
@@ -58,22 +58,43 @@ impl NodePoints {
             let cardinals = cardinal_values(grid, i, panel, &quadrature.t[points.clone()]);
             quadrature.stretches.push(Stretch { panel, points, cardinals });
         }
+        for (t, weight) in points_beyond(grid, i) {
+            let point = Point::at(t);
+            quadrature.t.push(t);
+            quadrature.weights.push(weight * point.z);
+            quadrature.points.push(point);
+        }
         quadrature
     }
 }
 
 /// `z` at every quadrature point of a grid, node after node: where a user's own kernel is to be given.
 pub fn quadrature_z(grid: &Grid) -> Vec<f64> {
-    let mut all = Vec::new();
-    for (i, &u) in grid.u().iter().enumerate() {
-        let own = grid.panel_of(i);
-        for panel in (0..=own).rev() {
-            let from = if panel == own { 0.0 } else { (u - grid.edges()[panel + 1]).max(0.0) };
-            let points = stretch_points(from, u - grid.edges()[panel], grid.degrees()[panel]);
-            all.extend(points.iter().map(|(t, _)| (-t).exp()));
-        }
+    (0..grid.nodes()).flat_map(|i| NodePoints::of(grid, i).points).map(|point| point.z).collect()
+}
+
+/// Number of quadrature points of node `i`.
+pub(super) fn count(grid: &Grid, i: usize) -> usize {
+    NodePoints::of(grid, i).points.len()
+}
+
+/// Points of `t > u_max`, for the last node alone: they matter only to what flows below x_min.
+fn points_beyond(grid: &Grid, i: usize) -> Vec<(f64, f64)> {
+    const PIECES: usize = 8;
+    const LENGTH: f64 = 5.0; // e^-40 = 4e-18 of the momentum is left out
+    if i + 1 < grid.nodes() {
+        return vec![];
     }
-    all
+    (0..PIECES)
+        .flat_map(|piece| {
+            let from = grid.u_max() + LENGTH * piece as f64;
+            let rule = rule(20);
+            rule.nodes
+                .iter()
+                .zip(&rule.weights)
+                .map(move |(x, w)| (from + 0.5 * LENGTH * (1.0 + x), 0.5 * LENGTH * w))
+        })
+        .collect()
 }
 
 /// Points and weights in t, graded towards zero, for functions with logarithms at t = 0 times a polynomial.
