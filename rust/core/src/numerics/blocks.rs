@@ -64,6 +64,11 @@ impl Matrix {
         &mut self.data[i * self.cols..(i + 1) * self.cols]
     }
 
+    /// The same values in another shape.
+    pub fn reshaped(self, rows: usize, cols: usize) -> Self {
+        Self::from_values(rows, cols, self.data)
+    }
+
     /// Adds `factor * other`, of the same shape.
     pub fn add_scaled(&mut self, factor: f64, other: &Self) {
         debug_assert_eq!((self.rows, self.cols), (other.rows, other.cols));
@@ -97,30 +102,6 @@ impl Matrix {
 pub fn multiply_add(target: MatMut<'_, f64>, factor: f64, left: MatRef<'_, f64>, right: MatRef<'_, f64>) {
     if left.ncols() > 0 && right.ncols() > 0 {
         faer::linalg::matmul::matmul(target, Accum::Add, left, right, factor, Par::Seq);
-    }
-}
-
-/// `target += factor * lower * right` where `lower` is block lower triangular with blocks between `offsets`, and
-/// row block `p` of `right` reaches to column `width[p]`.
-pub fn lower_multiply_add(
-    target: &mut Matrix,
-    factor: f64,
-    lower: &Matrix,
-    right: &Matrix,
-    offsets: &[usize],
-    width: &[usize],
-) {
-    for p in 0..offsets.len() - 1 {
-        let rows = offsets[p]..offsets[p + 1];
-        for q in 0..=p {
-            let inner = offsets[q]..offsets[q + 1];
-            multiply_add(
-                target.part_mut(rows.clone(), 0..width[q]),
-                factor,
-                lower.part(rows.clone(), inner.clone()),
-                right.part(inner, 0..width[q]),
-            );
-        }
     }
 }
 

@@ -4,4 +4,5 @@ pub mod blocks;
 pub mod chebyshev;
 pub mod endpoint;
 pub mod gauss_legendre;
+pub mod matrix_ode;
 pub mod polylog;

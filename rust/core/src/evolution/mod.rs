@@ -1,0 +1,7 @@
+//! Layer 4: evolution at a fixed number of flavours.
+
+mod fixed_flavour;
+mod stretch;
+
+pub use fixed_flavour::{FixedFlavour, FurtherKernel, Sector};
+pub use stretch::{Stretch, StretchSolution};
