@@ -62,7 +62,8 @@ impl Running {
     /// # Errors
     /// [`Error::LandauPole`] if `alpha_s` is, or would grow, beyond [`ALPHA_S_LIMIT`].
     pub fn run(&self, a: f64, from_q2: f64, to_q2: f64) -> Result<f64> {
-        let log = (to_q2 / from_q2).ln();
+        // Not the logarithm of the quotient, which may overflow.
+        let log = to_q2.ln() - from_q2.ln();
         let a_limit = ALPHA_S_LIMIT / (4.0 * PI);
         // Written so that a NaN is refused too.
         let reachable = a > 0.0 && a <= a_limit * (1.0 + 1e-12);
