@@ -57,7 +57,7 @@ impl Running {
 
     /// Coupling at `to_q2` GeV^2, being `a` at `from_q2` GeV^2.
     ///
-    /// Relative error below 5e-15, measured against the closed forms of one and two loops on 40000 cases with
+    /// Relative error below 5e-15, measured against the closed forms of one and two loops: 39600 tried (some refused), with
     /// `alpha_s` below 1 and scales apart by factors up to 5e12.
     ///
     /// # Errors
