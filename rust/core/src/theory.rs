@@ -148,7 +148,7 @@ impl Theory {
     /// [`Error::Argument`] for a scale or nf that is not allowed, or a coupling too large for the step at a
     /// threshold; [`Error::LandauPole`] on the way from the reference.
     pub fn a(&self, mu_r2: f64, nf: usize) -> Result<f64> {
-        positive("q2", mu_r2)?;
+        positive("q2", mu_r2, "GeV^2")?;
         flavours("nf", nf)?;
         self.coupling.a(mu_r2, nf)
     }
@@ -219,13 +219,13 @@ fn check_numbers(given: &Assumptions) -> Result<()> {
 }
 
 fn check_scales(given: &Assumptions) -> Result<()> {
-    positive("q2 of the coupling", given.alpha_s_q2)?;
+    positive("q2 of the coupling", given.alpha_s_q2, "GeV^2")?;
     let masses = given.masses.values();
     for (name, mass) in ["charm mass", "bottom mass", "top mass"]
         .into_iter()
         .zip(masses)
     {
-        positive(name, mass)?;
+        positive(name, mass, "GeV")?;
     }
     require(
         "masses",
@@ -238,7 +238,7 @@ fn check_scales(given: &Assumptions) -> Result<()> {
         .into_iter()
         .zip(thresholds)
     {
-        positive(name, q2)?;
+        positive(name, q2, "GeV^2")?;
     }
     // The order matters only for the thresholds that densities cross.
     let crossed = &thresholds[given.fewest - FEWEST..given.most - FEWEST];
@@ -261,13 +261,13 @@ fn require(name: &'static str, value: &dyn Display, holds: bool, allowed: &str) 
     })
 }
 
-fn positive(name: &'static str, value: f64) -> Result<()> {
+fn positive(name: &'static str, value: f64, unit: &str) -> Result<()> {
     let holds = value.is_finite() && value > 0.0;
     require(
         name,
         &value,
         holds,
-        "it must be finite and above 0 (GeV^2 for scales, GeV for masses)",
+        &format!("it must be finite and above 0 {unit}"),
     )
 }
 
@@ -286,6 +286,9 @@ fn coupling_value(name: &'static str, value: f64, most: f64) -> Result<()> {
         name,
         &value,
         holds,
-        &format!("it must be above 0 and at most {most}"),
+        &format!(
+            "it must be above 0 and at most {}",
+            (1e4 * most).floor() / 1e4
+        ),
     )
 }

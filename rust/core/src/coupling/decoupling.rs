@@ -32,6 +32,11 @@ impl Decoupling {
         Self { series }
     }
 
+    /// `p_0 = 1, p_1, ...` at the logarithm in use, as many as the number of loops.
+    pub fn series(&self) -> &[f64] {
+        &self.series
+    }
+
     /// `a^(nl+1)` from `a = a^(nl)`.
     ///
     /// # Errors
@@ -160,7 +165,7 @@ fn constants(nl: usize, kind: MassKind) -> [f64; HIGHEST + 1] {
     ]
 }
 
-/// MS-bar mass at its own scale. Second and third order: K. Chetyrkin, B. Kniehl, M. Steinhauser, hep-ph/9706430,
+/// MS-bar mass at its own scale: `c2, c3, c4`. Second and third order: K. Chetyrkin, B. Kniehl, M. Steinhauser, hep-ph/9706430,
 /// eq. (22); fourth: Y. Schroeder, M. Steinhauser, hep-ph/0512058, and K. Chetyrkin, J. Kuehn, C. Sturm,
 /// hep-ph/0512060, in their printed digits.
 fn msbar_constants(n: f64) -> (f64, f64, f64) {
@@ -171,8 +176,9 @@ fn msbar_constants(n: f64) -> (f64, f64, f64) {
     )
 }
 
-/// Pole mass. Second and third order: K. Chetyrkin, B. Kniehl, M. Steinhauser, hep-ph/9706430, eq. (25); fourth: the
-/// papers of [`msbar_constants`], in their printed digits.
+/// Pole mass: `c2, c3, c4`. Second and third order: K. Chetyrkin, B. Kniehl, M. Steinhauser, hep-ph/9706430, eq. (25); fourth: the
+/// papers of [`msbar_constants`], in their printed digits. For nl = 3 to 5, `c4` agrees to 5e-4 absolute with what the
+/// MS-bar constants and the three-loop relation between the two masses give (`tests/rust/coupling.rs`).
 fn pole_constants(n: f64) -> (f64, f64, f64) {
     let zeta2 = PI * PI / 6.0;
     (

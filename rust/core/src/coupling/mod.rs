@@ -10,8 +10,6 @@ pub mod decoupling;
 pub mod masses;
 pub mod running;
 
-use std::f64::consts::PI;
-
 use crate::coupling::decoupling::Decoupling;
 use crate::coupling::masses::MassKind;
 use crate::coupling::running::Running;
@@ -120,9 +118,4 @@ fn carry(
         q2,
         nf: FEWEST + next,
     })
-}
-
-/// `alpha_s` from `a`.
-pub fn alpha_s(a: f64) -> f64 {
-    4.0 * PI * a
 }

@@ -68,3 +68,35 @@ fn legendre(n: usize, x: f64) -> (f64, f64) {
     }
     (value, n as f64 * (before - x * value) / (1.0 - x * x))
 }
+
+#[cfg(test)]
+mod tests {
+    use super::gauss_legendre;
+
+    /// Five-point nodes in closed form (M. Abramowitz, I. Stegun, table 25.4): to a few units of rounding.
+    #[test]
+    fn five_nodes_are_the_closed_form() {
+        let outer = (5.0 + 2.0 * (10.0f64 / 7.0).sqrt()).sqrt() / 3.0;
+        let rule = gauss_legendre(5);
+        assert!((rule.nodes[4] - outer).abs() < 4e-16 && (rule.nodes[0] + outer).abs() < 4e-16);
+        assert!((rule.weights[4] - (322.0 - 13.0 * 70f64.sqrt()) / 900.0).abs() < 1e-15);
+    }
+
+    /// Exact for x^k up to k = 2n - 1; rounding grows slowly with n.
+    #[test]
+    fn powers_are_integrated_exactly() {
+        for n in [1, 2, 3, 16, 33, 64, 200] {
+            let rule = gauss_legendre(n);
+            for k in 0..2 * n {
+                let power = i32::try_from(k).unwrap();
+                let given = rule.integrate(-1.0, 1.0, |x| x.powi(power));
+                let exact = if k % 2 == 0 {
+                    2.0 / (k as f64 + 1.0)
+                } else {
+                    0.0
+                };
+                assert!((given - exact).abs() < 1e-14, "n = {n}, k = {k}: {given}");
+            }
+        }
+    }
+}
