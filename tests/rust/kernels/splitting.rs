@@ -19,7 +19,7 @@ fn quark_number_is_conserved() {
             assert_near(
                 splitting_moment(order, Channel::NsMinus, p, 1.0),
                 0.0,
-                ROUNDING * 100.0,
+                ROUNDING,
             );
         }
     }
@@ -48,8 +48,8 @@ fn gluon_momentum(order: usize, p: usize) -> f64 {
 fn momentum_is_conserved() {
     for order in 0..2 {
         for p in 0..=order {
-            assert_near(quark_momentum(order, p), 0.0, ROUNDING * 100.0);
-            assert_near(gluon_momentum(order, p), 0.0, ROUNDING * 100.0);
+            assert_near(quark_momentum(order, p), 0.0, ROUNDING);
+            assert_near(gluon_momentum(order, p), 0.0, ROUNDING);
         }
     }
     // What the NNLO parametrisations allow.
