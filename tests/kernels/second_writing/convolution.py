@@ -9,7 +9,6 @@ from __future__ import annotations
 from collections import defaultdict
 
 import numpy as np
-
 from kernels.second_writing.parts import Array, log_one_minus_z, log_z
 
 Powers = dict[int, float]

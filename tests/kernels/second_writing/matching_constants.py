@@ -8,7 +8,6 @@ eq. (3.5). Recalled from memory.
 from __future__ import annotations
 
 import numpy as np
-
 from kernels.second_writing.parts import (
     CA,
     CF,

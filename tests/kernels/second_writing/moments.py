@@ -7,7 +7,6 @@ panels of fixed width: powers of ln z and ln(1-z) become polynomials times expon
 from __future__ import annotations
 
 import numpy as np
-
 from kernels.second_writing.parts import Array, Parts
 
 _RANGE = 90.0

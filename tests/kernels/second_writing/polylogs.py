@@ -8,7 +8,6 @@ elsewhere. Compared with mpmath in the tests.
 from __future__ import annotations
 
 import numpy as np
-
 from kernels.second_writing.parts import ZETA2, ZETA3, Array, log_one_minus_z, log_z
 
 TERMS = 60

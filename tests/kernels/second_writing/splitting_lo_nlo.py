@@ -11,7 +11,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-
 from kernels.second_writing.parts import (
     CA,
     CF,

@@ -8,7 +8,6 @@ Regular functions for z < 1 only, without delta terms: a pointwise check of the 
 from __future__ import annotations
 
 import numpy as np
-
 from kernels.second_writing.parts import CA, CF, TR, Array
 from kernels.second_writing.polylogs import li2_negative
 

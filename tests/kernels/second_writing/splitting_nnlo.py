@@ -10,7 +10,6 @@ one table for each power of nf.
 from __future__ import annotations
 
 import numpy as np
-
 from kernels.second_writing import splitting_lo_nlo
 from kernels.second_writing.parts import ZERO, Array, Parts, log_one_minus_z, log_z
 
