@@ -1,1 +1,24 @@
-//! The border to Python.
+//! The border between the core and Python: arrays, handles, errors and nothing else.
+
+mod arrays;
+mod detached;
+mod errors;
+mod grid;
+mod kernels;
+mod operators;
+mod theory;
+
+use pyo3::prelude::*;
+
+/// The compiled core.
+#[pymodule(gil_used = false)]
+mod _core {
+    #[pymodule_export]
+    use crate::grid::Grid;
+    #[pymodule_export]
+    use crate::kernels::{matching_element, splitting_function};
+    #[pymodule_export]
+    use crate::operators::{Evolution, apply, build, compose, evolve};
+    #[pymodule_export]
+    use crate::theory::Theory;
+}

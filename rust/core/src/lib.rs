@@ -12,16 +12,22 @@
 //! - [`coupling`]: where the scale lives: running, decoupling, masses;
 //! - [`theory`]: what a build is told;
 //! - [`kernels`]: the formulas, pure functions of z;
-//! - [`convolution`]: a formula and a grid make a matrix.
+//! - [`convolution`]: a formula and a grid make a matrix;
+//! - [`evolution`]: from scale to scale at fixed nf;
+//! - [`thresholds`]: from one nf to the next, and the finished set of operators;
+//! - [`apply`]: operators applied to densities, and to other operators.
 #![deny(missing_docs)]
 
+pub mod apply;
 pub mod colour;
 pub mod convolution;
 pub mod coupling;
 pub mod error;
+pub mod evolution;
 pub mod grid;
 pub mod kernels;
 pub mod numerics;
 pub mod theory;
 pub mod threads;
+pub mod thresholds;
 pub mod watch;

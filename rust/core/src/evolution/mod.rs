@@ -3,5 +3,5 @@
 mod fixed_flavour;
 mod stretch;
 
-pub use fixed_flavour::{FixedFlavour, FurtherKernel, Sector};
-pub use stretch::{Stretch, StretchSolution};
+pub use fixed_flavour::{FixedFlavour, FurtherKernel, Sector, place};
+pub use stretch::{Plan, Stretch, StretchSolution};

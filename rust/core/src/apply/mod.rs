@@ -1,0 +1,9 @@
+//! Layer 6: operators applied to densities, and to other operators.
+
+mod batch;
+mod compose;
+mod recombine;
+
+pub use batch::{Batch, apply};
+pub use compose::compose;
+pub use recombine::{Blocks, check_flavour};

@@ -1,0 +1,232 @@
+//! Some columns of the operators (or some densities): what became of them at one scale, flavour by flavour.
+//!
+//! Flavours 1 to `light` act alike along the whole route and are held as one sum; differences among them evolve in
+//! families of their own. Each matrix has one row a node and a last row: what has flowed below x_min (all of the
+//! momentum in that of the gluon, each flavour's own number elsewhere).
+
+use crate::evolution::{Sector, Stretch, StretchSolution, place};
+use crate::numerics::blocks::Matrix;
+
+/// First heavy flavour number.
+const CHARM: usize = 4;
+/// Gluon, light sum, charm, bottom, top.
+const CHANNELS: usize = 5;
+const GLUON: usize = 0;
+const LIGHT: usize = 1;
+
+/// What kind of combination the columns belong to.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
+pub enum Family {
+    /// Gluon and sums `q + qbar`.
+    Plus,
+    /// Sums over flavours of `q - qbar`.
+    Minus,
+    /// Differences among the light `q + qbar`.
+    NsPlus,
+    /// Differences among the light `q - qbar`.
+    NsMinus,
+}
+
+/// Values of some columns at one scale.
+#[derive(Debug, Clone)]
+pub struct Columns {
+    /// Their family.
+    pub family: Family,
+    light: usize,
+    channels: [Option<Matrix>; CHANNELS],
+}
+
+impl Columns {
+    /// Columns with nothing in them: `rows` with the last one for what flows below x_min.
+    pub fn new(family: Family, light: usize, rows: usize, cols: usize) -> Self {
+        let mut channels = [const { None }; CHANNELS];
+        channels[LIGHT] = Some(Matrix::zeros(rows, cols));
+        if family == Family::Plus {
+            channels[GLUON] = Some(Matrix::zeros(rows, cols));
+        }
+        Self { family, light, channels }
+    }
+
+    /// The gluon. Only the plus family has one.
+    pub fn gluon(&self) -> &Matrix {
+        self.channels[GLUON].as_ref().unwrap_or(self.light_sum())
+    }
+
+    /// The gluon. Only the plus family has one.
+    pub fn gluon_mut(&mut self) -> &mut Matrix {
+        let place = if self.family == Family::Plus { GLUON } else { LIGHT };
+        self.channel_mut(place)
+    }
+
+    /// The sum of the light flavours; for a non-singlet family the only content.
+    pub fn light_sum(&self) -> &Matrix {
+        // Set by the constructor and never removed.
+        self.channels[LIGHT].as_ref().expect("every family holds the light channel")
+    }
+
+    /// The sum of the light flavours.
+    pub fn light_mut(&mut self) -> &mut Matrix {
+        self.channel_mut(LIGHT)
+    }
+
+    /// The content of a non-singlet family.
+    pub fn single_mut(&mut self) -> &mut Matrix {
+        self.channel_mut(LIGHT)
+    }
+
+    /// A flavour that is heavier than the light ones.
+    pub fn heavy(&self, flavour: usize) -> Option<&Matrix> {
+        self.channels[flavour - CHARM + 2].as_ref()
+    }
+
+    /// A flavour that is heavier than the light ones.
+    pub fn heavy_mut(&mut self, flavour: usize) -> Option<&mut Matrix> {
+        self.channels[flavour - CHARM + 2].as_mut()
+    }
+
+    /// Puts a heavy flavour in its place.
+    pub fn set_heavy(&mut self, flavour: usize, values: Matrix) {
+        self.channels[flavour - CHARM + 2] = Some(values);
+    }
+
+    /// The lightest flavour that is held by itself.
+    pub fn lightest_heavy(&self) -> usize {
+        self.light + 1
+    }
+
+    /// Zeros of the same shape.
+    pub fn empty(&self) -> Matrix {
+        Matrix::zeros(self.light_sum().rows(), self.light_sum().cols())
+    }
+
+    /// The sum of the first nf flavours.
+    pub fn singlet(&self, nf: usize) -> Matrix {
+        let mut sum = self.light_sum().clone();
+        for flavour in self.lightest_heavy()..=nf {
+            if let Some(heavy) = self.heavy(flavour) {
+                sum.add_scaled(1.0, heavy);
+            }
+        }
+        sum
+    }
+
+    /// Moves all momentum below x_min to the gluon's last row.
+    pub fn gather_momentum(&mut self) {
+        let mut total = vec![0.0; self.light_sum().cols()];
+        for matrix in self.channels.iter_mut().flatten() {
+            let last = matrix.rows() - 1;
+            for (sum, value) in total.iter_mut().zip(matrix.row_mut(last)) {
+                *sum += std::mem::take(value);
+            }
+        }
+        let gluon = self.gluon_mut();
+        let last = gluon.rows() - 1;
+        gluon.row_mut(last).copy_from_slice(&total);
+    }
+
+    fn channel_mut(&mut self, channel: usize) -> &mut Matrix {
+        self.channels[channel].as_mut().expect("every family holds the light channel, plus the gluon")
+    }
+}
+
+/// Columns along one leg, at any scale of it.
+pub struct LegColumns {
+    start: Columns,
+    nf: usize,
+    offsets: Vec<usize>,
+    /// The part that holds all flavours: singlet pair, valence, or the only content.
+    sum: StretchSolution,
+    /// Each heavy flavour less its share of the light sum.
+    differences: Vec<(usize, StretchSolution)>,
+}
+
+impl LegColumns {
+    /// Carries columns along a stretch of nf flavours. Rows of panels before `first` are zero.
+    pub fn new(start: Columns, stretch: &Stretch, nf: usize, offsets: &[usize], first: usize) -> Self {
+        let (sum, difference) = match start.family {
+            Family::Plus => (Sector::Singlet, Sector::NsPlus),
+            Family::Minus => (Sector::Valence, Sector::NsMinus),
+            Family::NsPlus => (Sector::NsPlus, Sector::NsPlus),
+            Family::NsMinus => (Sector::NsMinus, Sector::NsMinus),
+        };
+        let whole = match start.family {
+            Family::Plus => pack(start.gluon(), &start.singlet(nf), offsets),
+            Family::Minus => start.singlet(nf),
+            Family::NsPlus | Family::NsMinus => start.light_sum().clone(),
+        };
+        let share = -1.0 / start.light as f64;
+        let differences = (start.lightest_heavy()..=nf)
+            .filter(|_| matches!(start.family, Family::Plus | Family::Minus))
+            .map(|flavour| {
+                let mut deviation = start.heavy(flavour).cloned().unwrap_or_else(|| start.empty());
+                deviation.add_scaled(share, start.light_sum());
+                (flavour, stretch.solve(difference, deviation, first))
+            })
+            .collect();
+        let sum = stretch.solve(sum, whole, first);
+        Self { start, nf, offsets: offsets.to_vec(), sum, differences }
+    }
+
+    /// The columns at `s = ln a`.
+    pub fn at(&self, s: f64) -> Columns {
+        let mut columns = self.start.clone();
+        let mut singlet = self.sum.at(s);
+        if columns.family == Family::Plus {
+            let (gluon, quarks) = unpack(&singlet, &self.offsets);
+            *columns.gluon_mut() = gluon;
+            singlet = quarks;
+        }
+        // With d_h = h - L/light and Sigma = L + sum_h h: L = (light/nf) (Sigma - sum_h d_h).
+        let deviations: Vec<(usize, Matrix)> =
+            self.differences.iter().map(|(flavour, solution)| (*flavour, solution.at(s))).collect();
+        let mut average = singlet;
+        if matches!(columns.family, Family::Plus | Family::Minus) {
+            deviations.iter().for_each(|(_, deviation)| average.add_scaled(-1.0, deviation));
+            average.values_mut().iter_mut().for_each(|value| *value /= self.nf as f64);
+        }
+        for (flavour, mut heavy) in deviations {
+            heavy.add_scaled(1.0, &average);
+            columns.set_heavy(flavour, heavy);
+        }
+        if matches!(columns.family, Family::Plus | Family::Minus) {
+            let light = columns.light as f64;
+            average.values_mut().iter_mut().for_each(|value| *value *= light);
+        }
+        *columns.light_mut() = average;
+        if columns.family == Family::Plus {
+            columns.gather_momentum();
+        }
+        columns
+    }
+
+    /// Estimated error, relative to the largest value.
+    pub fn error(&self) -> f64 {
+        self.differences.iter().map(|(_, solution)| solution.error()).fold(self.sum.error(), f64::max)
+    }
+}
+
+/// Gluon and singlet as the singlet pair is ordered; the last row is the momentum below x_min.
+fn pack(gluon: &Matrix, singlet: &Matrix, offsets: &[usize]) -> Matrix {
+    let n = offsets[offsets.len() - 1];
+    let mut pair = Matrix::zeros(2 * n + 1, gluon.cols());
+    for (component, source) in [gluon, singlet].iter().enumerate() {
+        for i in 0..n {
+            pair.row_mut(place(offsets, component, i)).copy_from_slice(source.row(i));
+        }
+    }
+    pair.row_mut(2 * n).copy_from_slice(gluon.row(n));
+    pair
+}
+
+fn unpack(pair: &Matrix, offsets: &[usize]) -> (Matrix, Matrix) {
+    let n = offsets[offsets.len() - 1];
+    let mut parts = [Matrix::zeros(n + 1, pair.cols()), Matrix::zeros(n + 1, pair.cols())];
+    for (component, part) in parts.iter_mut().enumerate() {
+        for i in 0..n {
+            part.row_mut(i).copy_from_slice(pair.row(place(offsets, component, i)));
+        }
+    }
+    parts[0].row_mut(n).copy_from_slice(pair.row(2 * n));
+    let [gluon, singlet] = parts;
+    (gluon, singlet)
+}

@@ -1,0 +1,208 @@
+//! Matching of densities at a threshold, nf -> nf + 1, and its exact inverse.
+//!
+//! Upwards (M. Buza et al., hep-ph/9612398, eqs 2.37-2.41), with `a = a^(nf+1)(mu_thr^2)`:
+//! every light quark `q+- -> (1 + A_qq) q+-`; `g -> (1 + A_gg) g + A_gq Sigma + A_gh h+`;
+//! `h+ -> (1 + A_hh) h+ + A_hg g + A_hq Sigma`; `h- -> (1 + A_hh) h-`; Sigma sums the nf light flavours.
+//! Downwards solves these equations.
+
+use super::columns::{Columns, Family};
+use crate::convolution::{Convolved, KernelSet};
+use crate::error::Result;
+use crate::kernels::matching::{Element, HeavyGluonForm};
+use crate::numerics::blocks::{Factors, Matrix, multiply_add};
+use crate::theory::Theory;
+
+/// The matching at one threshold.
+pub struct Crossing {
+    /// Flavours below.
+    nf: usize,
+    offsets: Vec<usize>,
+    /// `A` of each element, without unity, and its last row: what goes below x_min.
+    quark: Both,
+    gluon_gluon: Matrix,
+    gluon_quark: Matrix,
+    gluon_heavy: Matrix,
+    heavy_gluon: Matrix,
+    heavy_quark: Matrix,
+    heavy_heavy: Both,
+}
+
+/// An element that acts on sums (momentum is counted below x_min) and on differences (number is).
+struct Both {
+    momentum: Matrix,
+    number: Matrix,
+}
+
+impl Crossing {
+    /// The matching between nf and nf + 1 flavours.
+    ///
+    /// # Errors
+    /// Those of the running coupling.
+    pub fn new(theory: &Theory, kernels: &KernelSet, nf: usize, offsets: &[usize]) -> Result<Self> {
+        let q2 = theory.threshold_q2(nf + 1);
+        let a = theory.a(q2, nf + 1)?;
+        let log = (q2 / theory.mass2(nf + 1)).ln();
+        let form = if theory.compact_heavy_gluon() { HeavyGluonForm::Compact } else { HeavyGluonForm::Exact };
+        let element = |element: Element| {
+            let mut sum = Convolved::zeros(offsets[offsets.len() - 1]);
+            for order in 1..=theory.order() {
+                let part = kernels.matching(order, element, theory.mass_kind(), form, log, nf as f64);
+                sum.add_scaled(a.powi(order as i32), &part);
+            }
+            sum
+        };
+        let momentum = |name: Element| with_row(&element(name), |kernel| &kernel.momentum_below);
+        let both = |name: Element| Both {
+            momentum: momentum(name),
+            number: with_row(&element(name), |kernel| &kernel.number_below),
+        };
+        Ok(Self {
+            nf,
+            offsets: offsets.to_vec(),
+            quark: both(Element::LightQuark),
+            gluon_gluon: momentum(Element::GluonGluon),
+            gluon_quark: momentum(Element::GluonQuark),
+            gluon_heavy: momentum(Element::GluonHeavy),
+            heavy_gluon: momentum(Element::HeavyGluon),
+            heavy_quark: momentum(Element::HeavyQuark),
+            heavy_heavy: both(Element::HeavyHeavy),
+        })
+    }
+
+    /// From nf to nf + 1.
+    pub fn up(&self, columns: &mut Columns) {
+        let heavy = self.nf + 1;
+        match columns.family {
+            Family::Plus => {
+                let singlet = columns.singlet(self.nf);
+                let (gluon, intrinsic) = (columns.gluon().clone(), columns.heavy(heavy).cloned());
+                let mut target = gluon.clone();
+                self.add(&mut target, &self.gluon_gluon, &gluon);
+                self.add(&mut target, &self.gluon_quark, &singlet);
+                let mut made = Matrix::zeros(gluon.rows(), gluon.cols());
+                self.add(&mut made, &self.heavy_gluon, &gluon);
+                self.add(&mut made, &self.heavy_quark, &singlet);
+                if let Some(intrinsic) = &intrinsic {
+                    self.add(&mut target, &self.gluon_heavy, intrinsic);
+                    self.add(&mut made, &self.heavy_heavy.momentum, intrinsic);
+                    made.add_scaled(1.0, intrinsic);
+                }
+                *columns.gluon_mut() = target;
+                columns.set_heavy(heavy, made);
+                self.quarks(columns, |matrix| self.grow(matrix, &self.quark.momentum));
+                columns.gather_momentum();
+            }
+            Family::Minus => {
+                let mut made = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
+                self.grow(&mut made, &self.heavy_heavy.number);
+                columns.set_heavy(heavy, made);
+                self.quarks(columns, |matrix| self.grow(matrix, &self.quark.number));
+            }
+            Family::NsPlus | Family::NsMinus => self.grow(columns.single_mut(), &self.quark.number),
+        }
+    }
+
+    /// From nf + 1 to nf; what is left in the heavy density stays there, constant in scale.
+    pub fn down(&self, columns: &mut Columns) {
+        let heavy = self.nf + 1;
+        match columns.family {
+            Family::Plus => {
+                self.quarks(columns, |matrix| self.shrink(matrix, &self.quark.momentum));
+                let singlet = columns.singlet(self.nf);
+                let mut gluon = columns.gluon().clone();
+                self.subtract(&mut gluon, &self.gluon_quark, &singlet);
+                let mut left = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
+                self.subtract(&mut left, &self.heavy_quark, &singlet);
+                self.solve_pair(&mut gluon, &mut left);
+                *columns.gluon_mut() = gluon;
+                columns.set_heavy(heavy, left);
+                columns.gather_momentum();
+            }
+            Family::Minus => {
+                let mut left = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
+                self.shrink(&mut left, &self.heavy_heavy.number);
+                columns.set_heavy(heavy, left);
+                self.quarks(columns, |matrix| self.shrink(matrix, &self.quark.number));
+            }
+            Family::NsPlus | Family::NsMinus => self.shrink(columns.single_mut(), &self.quark.number),
+        }
+    }
+
+    /// Acts on the light sum and on the heavy flavours that are active below.
+    fn quarks(&self, columns: &mut Columns, act: impl Fn(&mut Matrix)) {
+        act(columns.light_mut());
+        for active in columns.lightest_heavy()..=self.nf {
+            if let Some(matrix) = columns.heavy_mut(active) {
+                act(matrix);
+            }
+        }
+    }
+
+    /// `target += element source`.
+    fn add(&self, target: &mut Matrix, element: &Matrix, source: &Matrix) {
+        let (rows, cols) = (target.rows(), target.cols());
+        multiply_add(target.part_mut(0..rows, 0..cols), 1.0, element.part(0..rows, 0..rows), source.part(0..rows, 0..cols));
+    }
+
+    fn subtract(&self, target: &mut Matrix, element: &Matrix, source: &Matrix) {
+        let (rows, cols) = (target.rows(), target.cols());
+        multiply_add(
+            target.part_mut(0..rows, 0..cols),
+            -1.0,
+            element.part(0..rows, 0..rows),
+            source.part(0..rows, 0..cols),
+        );
+    }
+
+    /// `target <- (1 + element) target`.
+    fn grow(&self, target: &mut Matrix, element: &Matrix) {
+        let before = target.clone();
+        self.add(target, element, &before);
+    }
+
+    /// `target <- (1 + element)^-1 target`.
+    fn shrink(&self, target: &mut Matrix, element: &Matrix) {
+        let mut sum = Matrix::identity(element.rows());
+        sum.add_scaled(1.0, element);
+        let (rows, cols) = (target.rows(), target.cols());
+        Factors::of(&sum).solve(target.part_mut(0..rows, 0..cols));
+    }
+
+    /// Solves `g' = (1 + A_gg) g + A_gh h`, `h' = A_hg g + (1 + A_hh) h` for g and h.
+    fn solve_pair(&self, gluon: &mut Matrix, heavy: &mut Matrix) {
+        let n = gluon.rows();
+        let cols = gluon.cols();
+        let mut system = Matrix::identity(2 * n);
+        for (row, sources) in
+            [[&self.gluon_gluon, &self.gluon_heavy], [&self.heavy_gluon, &self.heavy_heavy.momentum]].iter().enumerate()
+        {
+            for (column, element) in sources.iter().enumerate() {
+                for i in 0..n {
+                    let target = &mut system.row_mut(row * n + i)[column * n..(column + 1) * n];
+                    target.iter_mut().zip(element.row(i)).for_each(|(value, add)| *value += add);
+                }
+            }
+        }
+        let stacked = [gluon.values(), heavy.values()].concat();
+        let mut stacked = Matrix::from_values(2 * n, cols, stacked);
+        Factors::of(&system).solve(stacked.part_mut(0..2 * n, 0..cols));
+        gluon.values_mut().copy_from_slice(&stacked.values()[..n * cols]);
+        heavy.values_mut().copy_from_slice(&stacked.values()[n * cols..]);
+    }
+
+    /// Panels of the grid.
+    pub fn offsets(&self) -> &[usize] {
+        &self.offsets
+    }
+}
+
+/// A kernel with one more row and column: what it sends below x_min, and nothing back.
+fn with_row(kernel: &Convolved, row: impl Fn(&Convolved) -> &Vec<f64>) -> Matrix {
+    let n = kernel.matrix.rows();
+    let mut all = Matrix::zeros(n + 1, n + 1);
+    for i in 0..n {
+        all.row_mut(i)[..n].copy_from_slice(kernel.matrix.row(i));
+    }
+    all.row_mut(n)[..n].copy_from_slice(row(kernel));
+    all
+}
