@@ -21,14 +21,8 @@ fn alpha_s_agrees_with_the_published_benchmark() {
     let fixed = [0.117574, 0.110902, 0.110141];
     let variable = [0.122306, 0.116032, 0.115605];
     for order in 0..3 {
-        let a = Theory::new(benchmark(order, 4, 4, 4))
-            .unwrap()
-            .alpha_s(1e4, 4)
-            .unwrap();
-        let b = Theory::new(benchmark(order, 3, 5, 3))
-            .unwrap()
-            .alpha_s(1e4, 5)
-            .unwrap();
+        let a = Theory::new(benchmark(order, 4, 4, 4)).unwrap().alpha_s(1e4, 4).unwrap();
+        let b = Theory::new(benchmark(order, 3, 5, 3)).unwrap().alpha_s(1e4, 5).unwrap();
         assert!((a - fixed[order]).abs() < 5e-7, "order {order}: {a}");
         assert!((b - variable[order]).abs() < 5e-7, "order {order}: {b}");
     }
@@ -39,27 +33,12 @@ fn alpha_s_agrees_with_the_published_benchmark() {
 /// numbers too); got back from the values at nf = 0 to 4. Tolerance: half a unit of the last digit, far above rounding.
 #[test]
 fn beta_function_has_the_published_digits() {
-    let four = [
-        (114.23, 5e-3),
-        (-27.1339, 5e-5),
-        (1.58238, 5e-6),
-        (0.0058567, 5e-8),
-        (0.0, 1e-10),
-    ];
-    let five = [
-        (524.56, 5e-3),
-        (-181.8, 0.05),
-        (17.16, 5e-3),
-        (-0.22586, 5e-6),
-        (-0.0017993, 5e-8),
-    ];
+    let four = [(114.23, 5e-3), (-27.1339, 5e-5), (1.58238, 5e-6), (0.0058567, 5e-8), (0.0, 1e-10)];
+    let five = [(524.56, 5e-3), (-181.8, 0.05), (17.16, 5e-3), (-0.22586, 5e-6), (-0.0017993, 5e-8)];
     for (k, scale, published) in [(3, 256.0, four), (4, 1024.0, five)] {
         let values: Vec<f64> = (0..5).map(|nf| beta(nf, 5)[k] / scale).collect();
         for (given, (expected, digit)) in coefficients(&values).iter().zip(published) {
-            assert!(
-                (given - expected).abs() <= digit,
-                "beta_{k}: {given} instead of {expected}"
-            );
+            assert!((given - expected).abs() <= digit, "beta_{k}: {given} instead of {expected}");
         }
     }
 }
@@ -88,13 +67,7 @@ fn coefficients(values: &[f64]) -> Vec<f64> {
 #[test]
 fn one_and_two_loops_are_the_closed_forms() {
     for nf in 3..=6 {
-        for (alpha_s, q2) in [
-            (0.118, 2.0),
-            (0.118, 1e-1),
-            (0.118, 1e12),
-            (0.35, 1e5),
-            (1.5, 4e4),
-        ] {
+        for (alpha_s, q2) in [(0.118, 2.0), (0.118, 1e-1), (0.118, 1e12), (0.35, 1e5), (1.5, 4e4)] {
             let (a0, log) = (alpha_s / (4.0 * PI), f64::ln(q2 / 4e3));
             if let Ok(a) = Running::new(nf, 1).run(a0, 4e3, q2) {
                 close(a, a0 / (1.0 + a0 * beta(nf, 1)[0] * log), 1e-14);
@@ -107,10 +80,7 @@ fn one_and_two_loops_are_the_closed_forms() {
             let residual = implicit(a) - implicit(a0) - b0 * log;
             // d implicit / d ln a = -1/(a (1 + b a)); the terms subtracted are themselves rounded.
             let rounding = 4.0 * f64::EPSILON * (1.0 / a + 1.0 / a0) * a * (1.0 + b * a);
-            assert!(
-                (residual * a * (1.0 + b * a)).abs() < 1e-14 + rounding,
-                "nf = {nf}, {q2} GeV^2: {residual}"
-            );
+            assert!((residual * a * (1.0 + b * a)).abs() < 1e-14 + rounding, "nf = {nf}, {q2} GeV^2: {residual}");
         }
     }
 }
@@ -122,26 +92,13 @@ fn all_loops_solve_the_defining_integral() {
     let rule = gauss_legendre(20);
     for (nf, loops) in (3..=6).flat_map(|nf| (1..=5).map(move |loops| (nf, loops))) {
         let (running, b) = (Running::new(nf, loops), beta(nf, loops));
-        for (from, to) in [
-            (0.118, 0.35),
-            (0.118, ALPHA_S_LIMIT),
-            (2.0, 0.05),
-            (0.3, 0.299),
-        ] {
+        for (from, to) in [(0.118, 0.35), (0.118, ALPHA_S_LIMIT), (2.0, 0.05), (0.3, 0.299)] {
             let (y0, y1) = (4.0 * PI / from, 4.0 * PI / to);
             let slope = |y: f64| 1.0 / b.iter().rev().fold(0.0, |sum, c| sum / y + c);
-            let edges: Vec<f64> = (0..=200)
-                .map(|k| y0 * (y1 / y0).powf(f64::from(k) / 200.0))
-                .collect();
-            let exact: f64 = edges
-                .windows(2)
-                .map(|e| rule.integrate(e[0], e[1], slope))
-                .sum();
+            let edges: Vec<f64> = (0..=200).map(|k| y0 * (y1 / y0).powf(f64::from(k) / 200.0)).collect();
+            let exact: f64 = edges.windows(2).map(|e| rule.integrate(e[0], e[1], slope)).sum();
             let given = running.log_scale(1.0 / y0, 1.0 / y1);
-            assert!(
-                (given - exact).abs() < 1e-13,
-                "nf = {nf}, {loops} loops: {given} for {exact}"
-            );
+            assert!((given - exact).abs() < 1e-13, "nf = {nf}, {loops} loops: {given} for {exact}");
             let back = running.run(1.0 / y0, 1.0, given.exp()).map(|a| a * y1);
             // At the limit itself the last digit decides whether the pole is met.
             if to < ALPHA_S_LIMIT {
@@ -153,17 +110,8 @@ fn all_loops_solve_the_defining_integral() {
 
 /// Coefficients of the power-series inverse of the upward relation in `alpha_s/pi`, to third order: what the papers print.
 fn downward(step: &Decoupling) -> [f64; 3] {
-    let e: Vec<f64> = step
-        .series()
-        .iter()
-        .enumerate()
-        .map(|(n, p)| p * 0.25f64.powf(n as f64))
-        .collect();
-    [
-        -e[1],
-        2.0 * e[1] * e[1] - e[2],
-        -5.0 * e[1].powi(3) + 5.0 * e[1] * e[2] - e[3],
-    ]
+    let e: Vec<f64> = step.series().iter().enumerate().map(|(n, p)| p * 0.25f64.powf(n as f64)).collect();
+    [-e[1], 2.0 * e[1] * e[1] - e[2], -5.0 * e[1].powi(3) + 5.0 * e[1] * e[2] - e[3]]
 }
 
 /// K. Chetyrkin, B. Kniehl, M. Steinhauser, hep-ph/9706430: the downward relation with all its logarithms for m(m)
@@ -181,10 +129,7 @@ fn logarithms_are_those_of_the_literature() {
             - 80507.0 / 27648.0 * ZETA3
             - 8521.0 / 1728.0 * l
             + n * (2479.0 / 31104.0 + zeta2 / 9.0 + 409.0 / 1728.0 * l);
-        for (kind, c2, c3) in [
-            (MassKind::Msbar, 11.0 / 72.0, msbar),
-            (MassKind::Pole, -7.0 / 24.0, pole),
-        ] {
+        for (kind, c2, c3) in [(MassKind::Msbar, 11.0 / 72.0, msbar), (MassKind::Pole, -7.0 / 24.0, pole)] {
             let [d1, d2, d3] = downward(&Decoupling::new(nl, 4, kind, l));
             close(d1, -l / 6.0, 1e-12);
             close(d2, c2 - 19.0 / 24.0 * l + l * l / 36.0, 1e-12);
@@ -212,10 +157,7 @@ fn limit(mut values: Vec<f64>) -> f64 {
     let count = values.len();
     for k in 1..count {
         let factor = 2f64.powf(k as f64);
-        values = values
-            .windows(2)
-            .map(|v| (factor * v[1] - v[0]) / (factor - 1.0))
-            .collect();
+        values = values.windows(2).map(|v| (factor * v[1] - v[0]) / (factor - 1.0)).collect();
     }
     values[0]
 }
@@ -233,36 +175,23 @@ fn pole_and_msbar_masses_agree_one_order_higher() {
         let difference = |alpha_s: f64| {
             let (below, above) = (Running::new(nl, loops), Running::new(nl + 1, loops));
             let a = alpha_s / (4.0 * PI);
-            let msbar = Decoupling::new(nl, loops, MassKind::Msbar, 0.0)
-                .down(a)
-                .unwrap();
+            let msbar = Decoupling::new(nl, loops, MassKind::Msbar, 0.0).down(a).unwrap();
             let (x, n, zeta2) = (alpha_s / PI, nl as f64, PI * PI / 6.0);
             let relation = [
                 4.0 / 3.0,
-                307.0 / 32.0 + zeta2 * (2.0 + 2.0 / 3.0 * LN_2 - n / 3.0)
-                    - ZETA3 / 6.0
-                    - 71.0 / 144.0 * n,
+                307.0 / 32.0 + zeta2 * (2.0 + 2.0 / 3.0 * LN_2 - n / 3.0) - ZETA3 / 6.0 - 71.0 / 144.0 * n,
                 190.595 - 26.655 * n + 0.6527 * n * n,
             ];
-            let ratio = relation[..loops - 2]
-                .iter()
-                .rev()
-                .fold(0.0, |sum, c| (sum + c) * x)
-                + 1.0;
+            let ratio = relation[..loops - 2].iter().rev().fold(0.0, |sum, c| (sum + c) * x) + 1.0;
             let at_pole = above.run(a, 1.0, ratio * ratio).unwrap();
-            let low = Decoupling::new(nl, loops, MassKind::Pole, 0.0)
-                .down(at_pole)
-                .unwrap();
+            let low = Decoupling::new(nl, loops, MassKind::Pole, 0.0).down(at_pole).unwrap();
             below.run(low, ratio * ratio, 1.0).unwrap() / msbar - 1.0
         };
         // Two couplings a factor 2 apart, small enough for the next order to lead.
         let (large, small) = (difference(0.02), difference(0.01));
         let power = (large / small).log2();
         // Relative difference: a^loops; 0.1 for the orders beyond the first left out.
-        assert!(
-            (power - loops as f64).abs() < 0.1,
-            "nf = {nl}, {loops} loops: power {power}"
-        );
+        assert!((power - loops as f64).abs() < 0.1, "nf = {nl}, {loops} loops: power {power}");
         // What is left of the last order kept, in units of x^(loops-1), as the coupling goes to zero.
         let left = |k: i32| {
             let alpha_s = 0.08 * 0.5f64.powi(k);
@@ -279,10 +208,7 @@ fn pole_and_msbar_masses_agree_one_order_higher() {
 /// absolute, that is `a^loops` relative.
 #[test]
 fn threshold_scale_matters_one_order_higher() {
-    for (kind, loops) in KINDS
-        .into_iter()
-        .flat_map(|kind| (1..=5).map(move |loops| (kind, loops)))
-    {
+    for (kind, loops) in KINDS.into_iter().flat_map(|kind| (1..=5).map(move |loops| (kind, loops))) {
         let change = |alpha_s: f64| {
             let value = |shift: f64| {
                 let mut given = at_the_z(loops, kind);
@@ -297,10 +223,7 @@ fn threshold_scale_matters_one_order_higher() {
         let (large, small) = (change(0.02), change(0.01));
         let power = (large / small).log2();
         // 0.1 for the orders beyond the first left out.
-        assert!(
-            (power - loops as f64).abs() < 0.1,
-            "{kind:?}, {loops} loops: power {power}"
-        );
+        assert!((power - loops as f64).abs() < 0.1, "{kind:?}, {loops} loops: power {power}");
     }
 }
 
@@ -329,16 +252,9 @@ proptest! {
 #[test]
 fn alpha_s_of_the_tau_is_that_of_the_z() {
     for (tau, z) in [(0.332, 0.1202), (0.325, 0.1192), (0.312, 0.1178)] {
-        let given = Assumptions {
-            alpha_s: tau,
-            alpha_s_q2: 1.77686 * 1.77686,
-            alpha_s_nf: 3,
-            ..at_the_z(4, MassKind::Msbar)
-        };
-        let value = Theory::new(given)
-            .unwrap()
-            .alpha_s(91.1876 * 91.1876, 5)
-            .unwrap();
+        let given =
+            Assumptions { alpha_s: tau, alpha_s_q2: 1.77686 * 1.77686, alpha_s_nf: 3, ..at_the_z(4, MassKind::Msbar) };
+        let value = Theory::new(given).unwrap().alpha_s(91.1876 * 91.1876, 5).unwrap();
         assert!((value - z).abs() < 2.2e-4, "{tau}: {value} instead of {z}");
     }
 }

@@ -9,20 +9,12 @@ pub const KINDS: [MassKind; 2] = [MassKind::Pole, MassKind::Msbar];
 /// Asserts a relative difference of at most `relative`.
 pub fn close(given: f64, expected: f64, relative: f64) {
     let difference = (given / expected - 1.0).abs();
-    assert!(
-        difference <= relative,
-        "{given} instead of {expected}: {difference:.1e}"
-    );
+    assert!(difference <= relative, "{given} instead of {expected}: {difference:.1e}");
 }
 
 /// The setting of the published benchmark of parton evolution (W. Giele et al., hep-ph/0204316, section 1.3).
 pub fn benchmark(order: usize, fewest: usize, most: usize, nf: usize) -> Assumptions {
-    let masses = Masses {
-        charm: 2f64.sqrt(),
-        bottom: 4.5,
-        top: 175.0,
-        kind: MassKind::Pole,
-    };
+    let masses = Masses { charm: 2f64.sqrt(), bottom: 4.5, top: 175.0, kind: MassKind::Pole };
     Assumptions {
         order,
         alpha_s: 0.35,
@@ -40,12 +32,7 @@ pub fn benchmark(order: usize, fewest: usize, most: usize, nf: usize) -> Assumpt
 
 /// Masses near those of the PDG review, coupling given at the Z with five flavours.
 pub fn at_the_z(loops: usize, kind: MassKind) -> Assumptions {
-    let masses = Masses {
-        charm: 1.3,
-        bottom: 4.2,
-        top: 163.0,
-        kind,
-    };
+    let masses = Masses { charm: 1.3, bottom: 4.2, top: 163.0, kind };
     Assumptions {
         alpha_s: 0.118,
         alpha_s_q2: 91.1876 * 91.1876,

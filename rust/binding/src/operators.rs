@@ -6,9 +6,7 @@ use crate::errors::input;
 use crate::grid::Grid;
 use crate::kernels::channel;
 use crate::theory::Theory;
-use numpy::{
-    PyArrayDyn, PyReadonlyArray1, PyReadonlyArrayDyn, PyReadwriteArrayDyn, PyUntypedArrayMethods,
-};
+use numpy::{PyArrayDyn, PyReadonlyArray1, PyReadonlyArrayDyn, PyReadwriteArrayDyn, PyUntypedArrayMethods};
 use pyo3::prelude::*;
 use scalewright_core::apply as core_apply;
 use scalewright_core::convolution::convolve_values;
@@ -47,8 +45,7 @@ pub fn build(
 ) -> PyResult<Evolution> {
     let asked = scales(py, &q2, &nf)?;
     let intrinsic = intrinsic.into_iter().map(|flavour| count(py, "intrinsic", flavour)).collect::<PyResult<_>>()?;
-    let own: Vec<OwnedKernel> =
-        further.iter().map(|kernel| taken_over(py, kernel)).collect::<PyResult<_>>()?;
+    let own: Vec<OwnedKernel> = further.iter().map(|kernel| taken_over(py, kernel)).collect::<PyResult<_>>()?;
     let (theory, grid) = (&theory.get().core, &grid.get().core);
     let start_nf = count(py, "start_nf", start_nf)?;
     let core = run(py, count(py, "threads", threads)?, progress.as_ref(), move |watch| {

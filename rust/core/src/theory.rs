@@ -65,11 +65,7 @@ impl Theory {
             mass2: masses[i] * masses[i],
             kind: given.masses.kind,
         };
-        let reference = Reference {
-            a: given.alpha_s / (4.0 * PI),
-            q2: given.alpha_s_q2,
-            nf: given.alpha_s_nf,
-        };
+        let reference = Reference { a: given.alpha_s / (4.0 * PI), q2: given.alpha_s_q2, nf: given.alpha_s_nf };
         let steps = [step(0), step(1), step(2)];
         let coupling = RunningCoupling::new(reference, steps, given.running_loops);
         Ok(Self { given, coupling })
@@ -186,19 +182,9 @@ fn heavy(nf: usize) -> usize {
 }
 
 fn check_numbers(given: &Assumptions) -> Result<()> {
-    require(
-        "order",
-        &given.order,
-        given.order <= 2,
-        "it must be 0 (LO), 1 (NLO) or 2 (NNLO)",
-    )?;
+    require("order", &given.order, given.order <= 2, "it must be 0 (LO), 1 (NLO) or 2 (NNLO)")?;
     let loops = given.running_loops;
-    require(
-        "running_loops",
-        &loops,
-        (1..=MOST_LOOPS).contains(&loops),
-        "it must be 1 to 5",
-    )?;
+    require("running_loops", &loops, (1..=MOST_LOOPS).contains(&loops), "it must be 1 to 5")?;
     flavours("fewest flavours", given.fewest)?;
     flavours("most flavours", given.most)?;
     require(
@@ -210,21 +196,13 @@ fn check_numbers(given: &Assumptions) -> Result<()> {
     flavours("nf of the coupling", given.alpha_s_nf)?;
     coupling_value("alpha_s", given.alpha_s, ALPHA_S_LIMIT)?;
     let ratio = given.evolution_mu2_ratio;
-    require(
-        "evolution_mu2_ratio",
-        &ratio,
-        (0.25..=4.0).contains(&ratio),
-        "mu_r^2/mu_f^2 must lie in [0.25, 4]",
-    )
+    require("evolution_mu2_ratio", &ratio, (0.25..=4.0).contains(&ratio), "mu_r^2/mu_f^2 must lie in [0.25, 4]")
 }
 
 fn check_scales(given: &Assumptions) -> Result<()> {
     positive("q2 of the coupling", given.alpha_s_q2, "GeV^2")?;
     let masses = given.masses.values();
-    for (name, mass) in ["charm mass", "bottom mass", "top mass"]
-        .into_iter()
-        .zip(masses)
-    {
+    for (name, mass) in ["charm mass", "bottom mass", "top mass"].into_iter().zip(masses) {
         positive(name, mass, "GeV")?;
     }
     require(
@@ -234,10 +212,7 @@ fn check_scales(given: &Assumptions) -> Result<()> {
         "charm, bottom and top must increase in this order",
     )?;
     let thresholds = given.thresholds_q2;
-    for (name, q2) in ["charm threshold", "bottom threshold", "top threshold"]
-        .into_iter()
-        .zip(thresholds)
-    {
+    for (name, q2) in ["charm threshold", "bottom threshold", "top threshold"].into_iter().zip(thresholds) {
         positive(name, q2, "GeV^2")?;
     }
     // The order matters only for the thresholds that densities cross.
@@ -254,41 +229,19 @@ fn require(name: &'static str, value: &dyn Display, holds: bool, allowed: &str) 
     if holds {
         return Ok(());
     }
-    Err(Error::Argument {
-        name,
-        value: value.to_string(),
-        allowed: allowed.to_owned(),
-    })
+    Err(Error::Argument { name, value: value.to_string(), allowed: allowed.to_owned() })
 }
 
 fn positive(name: &'static str, value: f64, unit: &str) -> Result<()> {
     let holds = value.is_finite() && value > 0.0;
-    require(
-        name,
-        &value,
-        holds,
-        &format!("it must be finite and above 0 {unit}"),
-    )
+    require(name, &value, holds, &format!("it must be finite and above 0 {unit}"))
 }
 
 fn flavours(name: &'static str, nf: usize) -> Result<()> {
-    require(
-        name,
-        &nf,
-        (FEWEST..=MOST).contains(&nf),
-        "it must be 3, 4, 5 or 6",
-    )
+    require(name, &nf, (FEWEST..=MOST).contains(&nf), "it must be 3, 4, 5 or 6")
 }
 
 fn coupling_value(name: &'static str, value: f64, most: f64) -> Result<()> {
     let holds = value > 0.0 && value <= most;
-    require(
-        name,
-        &value,
-        holds,
-        &format!(
-            "it must be above 0 and at most {}",
-            (1e4 * most).floor() / 1e4
-        ),
-    )
+    require(name, &value, holds, &format!("it must be above 0 and at most {}", (1e4 * most).floor() / 1e4))
 }

@@ -22,28 +22,16 @@ fn splitting_moment(order: usize, channel: Channel, p: usize, n: f64) -> f64 {
 #[test]
 fn light_quark_number_is_conserved() {
     for power in 0..3 {
-        assert_near(
-            matching_moment(2, Element::LightQuark, power, 1.0),
-            0.0,
-            ROUNDING,
-        );
+        assert_near(matching_moment(2, Element::LightQuark, power, 1.0), 0.0, ROUNDING);
     }
     for power in 0..2 {
-        assert_near(
-            matching_moment(1, Element::HeavyHeavy, power, 1.0),
-            0.0,
-            ROUNDING,
-        );
+        assert_near(matching_moment(1, Element::HeavyHeavy, power, 1.0), 0.0, ROUNDING);
     }
 }
 
 #[test]
 fn momentum_of_every_source_is_conserved() {
-    let from_quark = [
-        Element::LightQuark,
-        Element::GluonQuark,
-        Element::HeavyQuark,
-    ];
+    let from_quark = [Element::LightQuark, Element::GluonQuark, Element::HeavyQuark];
     let from_gluon = [Element::GluonGluon, Element::HeavyGluon];
     let from_heavy = [Element::HeavyHeavy, Element::GluonHeavy];
     for order in 1..=2 {
@@ -73,11 +61,7 @@ fn compact_form_follows_the_exact_one() {
         assert_near(b, a, 4e-3 * a.abs() + 2e-3);
     }
     // The momentum sum, tuned with the local term to its three decimals.
-    assert_near(
-        moment(&compact[0], 2.0, 0.0),
-        moment(&exact[0], 2.0, 0.0),
-        5e-4,
-    );
+    assert_near(moment(&compact[0], 2.0, 0.0), moment(&exact[0], 2.0, 0.0), 5e-4);
     for power in 1..3 {
         let [a, b] = [&exact, &compact].map(|parts| moment(&parts[power], 3.0, 0.0));
         assert_near(a, b, 0.0);
@@ -97,16 +81,8 @@ fn msbar_mass_shifts_the_logarithm_of_order_a() {
                 moment(&parts[0], n, 0.0)
             };
             let light_source = !matches!(element, Element::HeavyHeavy | Element::GluonHeavy);
-            let shift = if light_source {
-                -32.0 / 3.0 * matching_moment(1, element, 1, n)
-            } else {
-                0.0
-            };
-            assert_near(
-                constant(MassKind::Msbar) - constant(MassKind::Pole),
-                shift,
-                ROUNDING,
-            );
+            let shift = if light_source { -32.0 / 3.0 * matching_moment(1, element, 1, n) } else { 0.0 };
+            assert_near(constant(MassKind::Msbar) - constant(MassKind::Pole), shift, ROUNDING);
         }
     }
 }
@@ -144,26 +120,14 @@ fn logarithms_at_order_a2_follow_from_nlo() {
             let [below, above] = [nl, nl + 1.0].map(|nf| lo(Channel::GluonGluon, nf));
             for (element, linear, square) in [
                 (Element::LightQuark, step(Channel::NsPlus), 2.0 / 3.0 * qq),
-                (
-                    Element::HeavyQuark,
-                    step(Channel::PureSinglet),
-                    -heavy_gluon * gq,
-                ),
-                (
-                    Element::GluonQuark,
-                    step(Channel::GluonQuark),
-                    (2.0 / 3.0 - gluon) * gq,
-                ),
+                (Element::HeavyQuark, step(Channel::PureSinglet), -heavy_gluon * gq),
+                (Element::GluonQuark, step(Channel::GluonQuark), (2.0 / 3.0 - gluon) * gq),
                 (
                     Element::GluonGluon,
                     step(Channel::GluonGluon),
                     (b0 + above - below) * gluon + gq * heavy_gluon + 2.0 / 3.0 * below,
                 ),
-                (
-                    Element::HeavyGluon,
-                    step(Channel::QuarkGluon),
-                    (b0 + qq + gluon - below) * heavy_gluon,
-                ),
+                (Element::HeavyGluon, step(Channel::QuarkGluon), (b0 + qq + gluon - below) * heavy_gluon),
             ] {
                 assert_near(matching_moment(2, element, 1, n), linear, ROUNDING);
                 assert_near(matching_moment(2, element, 2, n), 0.5 * square, ROUNDING);

@@ -16,10 +16,7 @@ fn gauss_legendre(n: usize) -> Vec<(f64, f64)> {
             let (mut previous, mut value) = (1.0, x);
             for k in 2..=n {
                 let k = k as f64;
-                (previous, value) = (
-                    value,
-                    ((2.0 * k - 1.0) * x * value - (k - 1.0) * previous) / k,
-                );
+                (previous, value) = (value, ((2.0 * k - 1.0) * x * value - (k - 1.0) * previous) / k);
             }
             slope = n as f64 * (x * value - previous) / (x * x - 1.0);
             x -= value / slope;
@@ -37,9 +34,7 @@ pub fn integrate(function: impl Fn(f64) -> f64) -> f64 {
     edges.extend((2..=100).map(f64::from));
     let panel = |ends: &[f64]| {
         let width = ends[1] - ends[0];
-        rule.iter()
-            .map(|&(x, weight)| weight * width * function(ends[0] + x * width))
-            .sum::<f64>()
+        rule.iter().map(|&(x, weight)| weight * width * function(ends[0] + x * width)).sum::<f64>()
     };
     edges.windows(2).map(panel).sum()
 }
@@ -49,8 +44,7 @@ pub fn moment(kernel: &Kernel, n: f64, nf: f64) -> f64 {
     let plus = kernel.plus(nf);
     let integral = integrate(|t| {
         let point = Point::at(t);
-        let distributions =
-            plus.iter().rev().fold(0.0, |sum, c| sum * point.ln_1mz + c) / point.one_minus_z;
+        let distributions = plus.iter().rev().fold(0.0, |sum, c| sum * point.ln_1mz + c) / point.one_minus_z;
         let weight = (-(n - 1.0) * t).exp();
         let subtracted = (-(n - 1.0) * t).exp_m1();
         point.z * (weight * kernel.regular(&point, nf) + subtracted * distributions)
@@ -60,17 +54,10 @@ pub fn moment(kernel: &Kernel, n: f64, nf: f64) -> f64 {
 
 /// The coefficient of one power of nf as a kernel of its own.
 pub fn power(kernel: &Kernel, p: usize) -> Kernel {
-    kernel
-        .terms
-        .get(p)
-        .cloned()
-        .map_or_else(Kernel::default, |term| vec![term].into())
+    kernel.terms.get(p).cloned().map_or_else(Kernel::default, |term| vec![term].into())
 }
 
 #[track_caller]
 pub fn assert_near(value: f64, expected: f64, tolerance: f64) {
-    assert!(
-        (value - expected).abs() <= tolerance,
-        "{value:.15e} is not {expected:.15e} within {tolerance:e}"
-    );
+    assert!((value - expected).abs() <= tolerance, "{value:.15e} is not {expected:.15e} within {tolerance:e}");
 }

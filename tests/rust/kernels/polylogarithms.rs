@@ -15,11 +15,7 @@ fn polylogarithms_have_their_known_values() {
     assert_near(li2(0.5), 0.5 * (ZETA2 - l * l), few);
     assert_near(li3(1.0), ZETA3, few);
     assert_near(li3(-1.0), -0.75 * ZETA3, few);
-    assert_near(
-        li3(0.5),
-        0.875 * ZETA3 - 0.5 * ZETA2 * l + l * l * l / 6.0,
-        few,
-    );
+    assert_near(li3(0.5), 0.875 * ZETA3 - 0.5 * ZETA2 * l + l * l * l / 6.0, few);
     assert_near(s12(1.0), ZETA3, few);
     assert_near(s12(-1.0), 0.125 * ZETA3, few);
     assert_near(s12(0.5), 0.125 * ZETA3 - l * l * l / 6.0, few);

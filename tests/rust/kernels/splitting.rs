@@ -16,11 +16,7 @@ fn splitting_moment(order: usize, channel: Channel, p: usize, n: f64) -> f64 {
 fn quark_number_is_conserved() {
     for order in 0..2 {
         for p in 0..=order {
-            assert_near(
-                splitting_moment(order, Channel::NsMinus, p, 1.0),
-                0.0,
-                ROUNDING,
-            );
+            assert_near(splitting_moment(order, Channel::NsMinus, p, 1.0), 0.0, ROUNDING);
         }
     }
     // What the NNLO parametrisations miss it by (4e-4, 2e-4, 3e-4 in one digit), P2 being of the order of 1e3.
@@ -38,10 +34,7 @@ fn quark_momentum(order: usize, p: usize) -> f64 {
 }
 
 fn gluon_momentum(order: usize, p: usize) -> f64 {
-    [Channel::QuarkGluon, Channel::GluonGluon]
-        .map(|channel| splitting_moment(order, channel, p, 2.0))
-        .iter()
-        .sum()
+    [Channel::QuarkGluon, Channel::GluonGluon].map(|channel| splitting_moment(order, channel, p, 2.0)).iter().sum()
 }
 
 #[test]
@@ -53,10 +46,7 @@ fn momentum_is_conserved() {
         }
     }
     // What the NNLO parametrisations allow.
-    for (p, (quark, gluon)) in [(6e-3, 1e-3), (3e-3, 7e-4), (1e-6, 6e-5)]
-        .into_iter()
-        .enumerate()
-    {
+    for (p, (quark, gluon)) in [(6e-3, 1e-3), (3e-3, 7e-4), (1e-6, 6e-5)].into_iter().enumerate() {
         assert_near(quark_momentum(2, p), 0.0, quark);
         assert_near(gluon_momentum(2, p), 0.0, gluon);
     }
@@ -65,11 +55,7 @@ fn momentum_is_conserved() {
 /// S. Moch, J. Vermaseren, A. Vogt, hep-ph/0403192 eq. (4.11): the coefficients of `1/(1-z)_+`.
 #[test]
 fn cusp_is_as_published() {
-    let published: [&[f64]; 3] = [
-        &[4.0 * CF],
-        &[66.47322097, -5.92592593],
-        &[1174.89827, -183.18743, -64.0 / 81.0],
-    ];
+    let published: [&[f64]; 3] = [&[4.0 * CF], &[66.47322097, -5.92592593], &[1174.89827, -183.18743, -64.0 / 81.0]];
     // Printed digits of the values, of the quark and of the gluon parametrisation.
     let tolerance = [(1e-14, 1e-13), (1e-8, 2e-8), (5e-4, 5e-4)];
     for order in 0..splitting::ORDERS {
@@ -143,16 +129,8 @@ fn two_loop_second_moments_are_as_published() {
 fn three_loop_second_moment_is_as_published() {
     // The parametrisation misses the exact moment by 3.5e-3 and 3.0e-3 (4e-6 of the whole); nf^2 is exact, and
     // five decimals are given.
-    for (p, published, tolerance) in [
-        (0, -859.44784, 3.6e-3),
-        (1, 133.43814, 3.1e-3),
-        (2, 1.22908, 6e-6),
-    ] {
-        assert_near(
-            splitting_moment(2, Channel::NsPlus, p, 2.0),
-            published,
-            tolerance,
-        );
+    for (p, published, tolerance) in [(0, -859.44784, 3.6e-3), (1, 133.43814, 3.1e-3), (2, 1.22908, 6e-6)] {
+        assert_near(splitting_moment(2, Channel::NsPlus, p, 2.0), published, tolerance);
     }
 }
 
@@ -190,9 +168,7 @@ fn a_kernel_is_a_polynomial_in_nf() {
     for order in 0..splitting::ORDERS {
         let kernel = splitting::kernel(order, Channel::GluonGluon);
         let sum = |value: &dyn Fn(usize) -> f64| {
-            (0..kernel.terms.len())
-                .map(|p| value(p) * 5f64.powi(i32::try_from(p).unwrap()))
-                .sum::<f64>()
+            (0..kernel.terms.len()).map(|p| value(p) * 5f64.powi(i32::try_from(p).unwrap())).sum::<f64>()
         };
         let point = Point::from_z(0.3);
         let regular = sum(&|p| power(&kernel, p).regular(&point, 0.0));

@@ -22,7 +22,11 @@ pub struct Set {
 /// [`Error::Argument`] where `second` needs an input that `first` does not give.
 pub fn compose(first: &Set, second: &[Set]) -> Result<(Vec<String>, usize, Vec<f64>)> {
     let _ = (first, second);
-    Err(Error::Argument { name: "operators", value: "two sets".into(), allowed: "composition is not written yet".into() })
+    Err(Error::Argument {
+        name: "operators",
+        value: "two sets".into(),
+        allowed: "composition is not written yet".into(),
+    })
 }
 
 #[allow(dead_code)]

@@ -120,18 +120,13 @@ impl Blocks {
         } else {
             [Channel::LightMinus].into_iter().chain(heavy.map(Channel::HeavyMinus)).collect()
         };
-        candidates
-            .into_iter()
-            .filter_map(|input| self.between(output, input).map(|block| (input, block)))
-            .collect()
+        candidates.into_iter().filter_map(|input| self.between(output, input).map(|block| (input, block))).collect()
     }
 
     /// Whether an input flavour can be carried.
     pub fn accepts(&self, flavour: i64) -> bool {
         let quark = flavour.unsigned_abs() as usize;
-        flavour == GLUON
-            || quark <= self.light
-            || !self.inputs_named(Channel::HeavyPlus(quark)).is_empty()
+        flavour == GLUON || quark <= self.light || !self.inputs_named(Channel::HeavyPlus(quark)).is_empty()
     }
 
     fn inputs_named(&self, input: Channel) -> Vec<&String> {

@@ -27,11 +27,7 @@ pub struct Convolved {
 impl Convolved {
     /// Nothing at all.
     pub fn zeros(nodes: usize) -> Self {
-        Self {
-            matrix: Matrix::zeros(nodes, nodes),
-            momentum_below: vec![0.0; nodes],
-            number_below: vec![0.0; nodes],
-        }
+        Self { matrix: Matrix::zeros(nodes, nodes), momentum_below: vec![0.0; nodes], number_below: vec![0.0; nodes] }
     }
 
     /// `delta(1-z)`.
@@ -42,10 +38,9 @@ impl Convolved {
     /// Adds `factor` times another kernel.
     pub fn add_scaled(&mut self, factor: f64, other: &Self) {
         self.matrix.add_scaled(factor, &other.matrix);
-        for (to, from) in [
-            (&mut self.momentum_below, &other.momentum_below),
-            (&mut self.number_below, &other.number_below),
-        ] {
+        for (to, from) in
+            [(&mut self.momentum_below, &other.momentum_below), (&mut self.number_below, &other.number_below)]
+        {
             to.iter_mut().zip(from).for_each(|(value, add)| *value += factor * add);
         }
     }
@@ -69,12 +64,7 @@ impl Functions<'_> {
 }
 
 /// The matrices of all functions, then of `[ln^k(1-z)/(1-z)]_+` for `k < plus`, rows in parallel.
-pub(super) fn integrate(
-    grid: &Grid,
-    functions: &Functions,
-    plus: usize,
-    watch: &dyn Watch,
-) -> Result<Vec<Convolved>> {
+pub(super) fn integrate(grid: &Grid, functions: &Functions, plus: usize, watch: &dyn Watch) -> Result<Vec<Convolved>> {
     let nodes = grid.nodes();
     let starts = first_points(grid, functions);
     let below = BelowRule::of(grid);

@@ -89,10 +89,7 @@ fn points_beyond(grid: &Grid, i: usize) -> Vec<(f64, f64)> {
         .flat_map(|piece| {
             let from = grid.u_max() + LENGTH * piece as f64;
             let rule = rule(20);
-            rule.nodes
-                .iter()
-                .zip(&rule.weights)
-                .map(move |(x, w)| (from + 0.5 * LENGTH * (1.0 + x), 0.5 * LENGTH * w))
+            rule.nodes.iter().zip(&rule.weights).map(move |(x, w)| (from + 0.5 * LENGTH * (1.0 + x), 0.5 * LENGTH * w))
         })
         .collect()
 }

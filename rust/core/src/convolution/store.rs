@@ -86,13 +86,7 @@ pub fn kernels_on(grid: &Grid, watch: &dyn Watch) -> Result<Arc<KernelSet>> {
 ///
 /// # Errors
 /// [`crate::error::Error::Interrupted`] where the watch says stop.
-pub fn convolve_values(
-    grid: &Grid,
-    regular: &[f64],
-    plus: &[f64],
-    local: f64,
-    watch: &dyn Watch,
-) -> Result<Convolved> {
+pub fn convolve_values(grid: &Grid, regular: &[f64], plus: &[f64], local: f64, watch: &dyn Watch) -> Result<Convolved> {
     let mut parts = integrate(grid, &Functions::Values(&[regular]), plus.len(), watch)?;
     let mut kernel = parts.remove(0);
     for (coefficient, part) in plus.iter().zip(&parts) {

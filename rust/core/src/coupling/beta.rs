@@ -18,11 +18,7 @@ pub const MOST_LOOPS: usize = 5;
 /// P. Baikov, K. Chetyrkin, J. Kuehn, 1606.08659, eq. (3), whose `beta_4` for `alpha_s/pi` is ours over 4^5.
 pub fn beta(nf: usize, loops: usize) -> Vec<f64> {
     let n = nf as f64;
-    COEFFICIENTS
-        .iter()
-        .take(loops)
-        .map(|powers| powers.iter().rev().fold(0.0, |sum, c| sum * n + c))
-        .collect()
+    COEFFICIENTS.iter().take(loops).map(|powers| powers.iter().rev().fold(0.0, |sum, c| sum * n + c)).collect()
 }
 
 /// Row k: `beta_k` by rising power of nf.
@@ -39,12 +35,8 @@ const COEFFICIENTS: [[f64; 5]; MOST_LOOPS] = [
     ],
     [
         8157455.0 / 16.0 + 621885.0 / 2.0 * ZETA3 - 88209.0 / 2.0 * ZETA4 - 288090.0 * ZETA5,
-        -336460813.0 / 1944.0 - 4811164.0 / 81.0 * ZETA3
-            + 33935.0 / 6.0 * ZETA4
-            + 1358995.0 / 27.0 * ZETA5,
-        25960913.0 / 1944.0 + 698531.0 / 81.0 * ZETA3
-            - 10526.0 / 9.0 * ZETA4
-            - 381760.0 / 81.0 * ZETA5,
+        -336460813.0 / 1944.0 - 4811164.0 / 81.0 * ZETA3 + 33935.0 / 6.0 * ZETA4 + 1358995.0 / 27.0 * ZETA5,
+        25960913.0 / 1944.0 + 698531.0 / 81.0 * ZETA3 - 10526.0 / 9.0 * ZETA4 - 381760.0 / 81.0 * ZETA5,
         -630559.0 / 5832.0 - 48722.0 / 243.0 * ZETA3 + 1618.0 / 27.0 * ZETA4 + 460.0 / 9.0 * ZETA5,
         1205.0 / 2916.0 - 152.0 / 81.0 * ZETA3,
     ],

@@ -128,9 +128,7 @@ fn power_coefficient(p: &[Vec<f64>], power: usize, m: usize) -> Vec<f64> {
     for j in 0..=m {
         let rest = power_coefficient(p, power - 1, m - j);
         for (i, c) in p[j].iter().enumerate() {
-            let shifted: Vec<f64> = std::iter::repeat_n(0.0, i)
-                .chain(rest.iter().copied())
-                .collect();
+            let shifted: Vec<f64> = std::iter::repeat_n(0.0, i).chain(rest.iter().copied()).collect();
             add(&mut sum, *c, &shifted);
         }
     }
@@ -156,13 +154,7 @@ fn constants(nl: usize, kind: MassKind) -> [f64; HIGHEST + 1] {
         MassKind::Msbar => msbar_constants(n),
         MassKind::Pole => pole_constants(n),
     };
-    [
-        1.0,
-        0.0,
-        -16.0 * c2,
-        -64.0 * c3,
-        256.0 * (3.0 * c2 * c2 - c4),
-    ]
+    [1.0, 0.0, -16.0 * c2, -64.0 * c3, 256.0 * (3.0 * c2 * c2 - c4)]
 }
 
 /// MS-bar mass at its own scale: `c2, c3, c4`. Second and third order: K. Chetyrkin, B. Kniehl, M. Steinhauser, hep-ph/9706430,

@@ -72,9 +72,7 @@ impl RunningCoupling {
             let (q2, step) = step_at(i);
             known[i] = carry(&known[i + 1], &running[i + 1], q2, i, |a| step.down(a));
         }
-        Self {
-            stretches: running.into_iter().zip(known).collect(),
-        }
+        Self { stretches: running.into_iter().zip(known).collect() }
     }
 
     /// `a^(nf)(mu_r^2)`; `nf` outside of 3 to 6 is taken as the nearest of them.
@@ -113,9 +111,5 @@ fn carry(
 ) -> Result<Reference> {
     let known = known.clone()?;
     let a = step(running.run(known.a, known.q2, q2)?)?;
-    Ok(Reference {
-        a,
-        q2,
-        nf: FEWEST + next,
-    })
+    Ok(Reference { a, q2, nf: FEWEST + next })
 }

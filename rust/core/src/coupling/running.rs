@@ -29,10 +29,7 @@ pub struct Running {
 impl Running {
     /// For `nf` flavours with the beta function cut after `loops` terms (at least one).
     pub fn new(nf: usize, loops: usize) -> Self {
-        Self {
-            nf,
-            beta: beta(nf, loops.max(1)),
-        }
+        Self { nf, beta: beta(nf, loops.max(1)) }
     }
 
     /// Number of flavours.
@@ -69,12 +66,7 @@ impl Running {
         // Written so that a NaN is refused too.
         let reachable = a > 0.0 && a <= a_limit * (1.0 + 1e-12);
         if !reachable || log < self.log_scale(a, a_limit.max(a)) {
-            return Err(Error::LandauPole {
-                nf: self.nf,
-                from_q2,
-                to_q2,
-                limit: ALPHA_S_LIMIT,
-            });
+            return Err(Error::LandauPole { nf: self.nf, from_q2, to_q2, limit: ALPHA_S_LIMIT });
         }
         Ok(self.solve(a, log, a_limit.max(a)))
     }
@@ -123,9 +115,7 @@ impl Running {
         #[allow(clippy::cast_possible_truncation, clippy::cast_sign_loss)]
         let panels = (ln_ratio.abs() / PANEL).ceil().clamp(1.0, 2000.0) as usize;
         let width = ln_ratio / panels as f64;
-        (0..panels)
-            .map(|k| rule().integrate(k as f64 * width, (k + 1) as f64 * width, integrand))
-            .sum()
+        (0..panels).map(|k| rule().integrate(k as f64 * width, (k + 1) as f64 * width, integrand)).sum()
     }
 }
 

@@ -75,7 +75,8 @@ impl FixedFlavour {
                 || further.iter().any(|own| channels.contains(&own.channel))
         };
         let (quark, valence) = (sum(&plus, &pure), sum(&minus, &sea));
-        let one = |terms: &[Convolved]| terms.iter().map(|term| with_number(&term.matrix, &term.number_below)).collect();
+        let one =
+            |terms: &[Convolved]| terms.iter().map(|term| with_number(&term.matrix, &term.number_below)).collect();
         Self {
             singlet: (0..orders).map(|k| pair(&gg[k], &gq[k], &qg[k], &quark[k], offsets)).collect(),
             ns_plus: one(&plus),

@@ -36,13 +36,7 @@ impl Stretch {
     ///
     /// # Errors
     /// [`crate::error::Error::Interrupted`] where the watch says stop.
-    pub fn new(
-        equations: &FixedFlavour,
-        from: f64,
-        to: f64,
-        plan: &Plan,
-        watch: &dyn Watch,
-    ) -> Result<Self> {
+    pub fn new(equations: &FixedFlavour, from: f64, to: f64, plan: &Plan, watch: &dyn Watch) -> Result<Self> {
         let sectors = [Sector::Singlet, Sector::NsPlus, Sector::NsMinus, Sector::Valence];
         let representative: HashMap<_, _> =
             sectors.iter().map(|&sector| (sector, equations.representative(sector))).collect();
@@ -53,7 +47,9 @@ impl Stretch {
             .par_iter()
             .map(|&(sector, i)| {
                 watch.check()?;
-                let at = |i: usize| if i == count { to } else { from + (to - from) * i as f64 / count as f64 };
+                let at = |i: usize| {
+                    if i == count { to } else { from + (to - from) * i as f64 / count as f64 }
+                };
                 let panels = equations.panels(sector);
                 let degree = plan.degree((to - from) / count as f64);
                 Ok(Step::new(at(i), at(i + 1), degree, &panels, |s| equations.generator(sector, s)))

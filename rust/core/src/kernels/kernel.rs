@@ -18,29 +18,17 @@ pub struct Term {
 impl Term {
     /// A term that is nothing but an ordinary function.
     pub const fn smooth(function: fn(&Point) -> f64) -> Self {
-        Self {
-            regular: Some(function),
-            plus: &[],
-            local: 0.0,
-        }
+        Self { regular: Some(function), plus: &[], local: 0.0 }
     }
 
     /// A term with all three parts.
     pub const fn full(function: fn(&Point) -> f64, plus: &'static [f64], local: f64) -> Self {
-        Self {
-            regular: Some(function),
-            plus,
-            local,
-        }
+        Self { regular: Some(function), plus, local }
     }
 
     /// A multiple of `delta(1-z)`.
     pub const fn delta(local: f64) -> Self {
-        Self {
-            regular: None,
-            plus: &[],
-            local,
-        }
+        Self { regular: None, plus: &[], local }
     }
 
     /// The zero, to keep the place of a power of nf.
@@ -60,17 +48,13 @@ impl Kernel {
     /// Whether the kernel vanishes for every nf.
     pub fn is_zero(&self) -> bool {
         self.terms.iter().all(|term| {
-            term.regular.is_none()
-                && term.local == 0.0
-                && term.plus.iter().all(|&coefficient| coefficient == 0.0)
+            term.regular.is_none() && term.local == 0.0 && term.plus.iter().all(|&coefficient| coefficient == 0.0)
         })
     }
 
     /// Value of the regular part at `point`.
     pub fn regular(&self, point: &Point, nf: f64) -> f64 {
-        self.terms.iter().rev().fold(0.0, |sum, term| {
-            sum * nf + term.regular.map_or(0.0, |function| function(point))
-        })
+        self.terms.iter().rev().fold(0.0, |sum, term| sum * nf + term.regular.map_or(0.0, |function| function(point)))
     }
 
     /// Coefficients of `[ln^k(1-z)/(1-z)]_+` by rising k.
@@ -87,10 +71,7 @@ impl Kernel {
 
     /// Coefficient of `delta(1-z)`.
     pub fn local(&self, nf: f64) -> f64 {
-        self.terms
-            .iter()
-            .rev()
-            .fold(0.0, |sum, term| sum * nf + term.local)
+        self.terms.iter().rev().fold(0.0, |sum, term| sum * nf + term.local)
     }
 }
 

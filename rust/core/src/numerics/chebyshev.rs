@@ -109,11 +109,7 @@ pub fn integration_matrix(degree: usize) -> Vec<Vec<f64>> {
         unit[k] = 1.0;
         let series = coefficients(&unit);
         for (row, &x) in matrix.iter_mut().zip(&nodes) {
-            row[k] = series
-                .iter()
-                .enumerate()
-                .map(|(n, c)| c * (primitive(n, x) - primitive(n, -1.0)))
-                .sum();
+            row[k] = series.iter().enumerate().map(|(n, c)| c * (primitive(n, x) - primitive(n, -1.0))).sum();
         }
     }
     matrix

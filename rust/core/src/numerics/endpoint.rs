@@ -50,20 +50,12 @@ impl Point {
     pub fn from_z(z: f64) -> Self {
         // 1 - z is exact in floating point for z >= 1/2, so nothing is lost where it matters.
         let one_minus_z = 1.0 - z;
-        let ln_z = if z > 0.5 {
-            (-one_minus_z).ln_1p()
-        } else {
-            z.ln()
-        };
+        let ln_z = if z > 0.5 { (-one_minus_z).ln_1p() } else { z.ln() };
         Self::new(z, one_minus_z, ln_z)
     }
 
     fn new(z: f64, one_minus_z: f64, ln_z: f64) -> Self {
-        let ln_1mz = if z < 0.5 {
-            (-z).ln_1p()
-        } else {
-            one_minus_z.ln()
-        };
+        let ln_1mz = if z < 0.5 { (-z).ln_1p() } else { one_minus_z.ln() };
         Self {
             z,
             one_minus_z,

@@ -18,12 +18,7 @@ impl Rule {
     /// Integral of `f` from `from` to `to`.
     pub fn integrate(&self, from: f64, to: f64, f: impl Fn(f64) -> f64) -> f64 {
         let (middle, half) = (0.5 * (to + from), 0.5 * (to - from));
-        let sum: f64 = self
-            .nodes
-            .iter()
-            .zip(&self.weights)
-            .map(|(x, w)| w * f(middle + half * x))
-            .sum();
+        let sum: f64 = self.nodes.iter().zip(&self.weights).map(|(x, w)| w * f(middle + half * x)).sum();
         half * sum
     }
 }
@@ -90,11 +85,7 @@ mod tests {
             for k in 0..2 * n {
                 let power = i32::try_from(k).unwrap();
                 let given = rule.integrate(-1.0, 1.0, |x| x.powi(power));
-                let exact = if k % 2 == 0 {
-                    2.0 / (k as f64 + 1.0)
-                } else {
-                    0.0
-                };
+                let exact = if k % 2 == 0 { 2.0 / (k as f64 + 1.0) } else { 0.0 };
                 assert!((given - exact).abs() < 1e-14, "n = {n}, k = {k}: {given}");
             }
         }

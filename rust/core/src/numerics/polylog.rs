@@ -82,11 +82,7 @@ fn horner(coefficients: &[f64], x: f64) -> f64 {
 
 /// `ln x`, where `complement = 1 - x` is the better known of the two near 1.
 fn ln_of(x: f64, complement: f64) -> f64 {
-    if x > 0.5 {
-        (-complement).ln_1p()
-    } else {
-        x.ln()
-    }
+    if x > 0.5 { (-complement).ln_1p() } else { x.ln() }
 }
 
 /// The dilogarithm `Li2(x)`, the integral of `-ln(1-y)/y` from 0 to x, for x in [-1, 1].

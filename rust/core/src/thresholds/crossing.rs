@@ -141,7 +141,12 @@ impl Crossing {
     /// `target += element source`.
     fn add(&self, target: &mut Matrix, element: &Matrix, source: &Matrix) {
         let (rows, cols) = (target.rows(), target.cols());
-        multiply_add(target.part_mut(0..rows, 0..cols), 1.0, element.part(0..rows, 0..rows), source.part(0..rows, 0..cols));
+        multiply_add(
+            target.part_mut(0..rows, 0..cols),
+            1.0,
+            element.part(0..rows, 0..rows),
+            source.part(0..rows, 0..cols),
+        );
     }
 
     fn subtract(&self, target: &mut Matrix, element: &Matrix, source: &Matrix) {

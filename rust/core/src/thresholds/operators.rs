@@ -109,7 +109,11 @@ impl Prepared {
                 (Entry::Crossing { from_leg }, Some(crossing)) => {
                     let from_nf = self.route.legs[from_leg].nf;
                     let mut columns = legs[from_leg].at(scale(theory, leg.from_q2, from_nf)?);
-                    if leg.nf > from_nf { crossing.up(&mut columns) } else { crossing.down(&mut columns) }
+                    if leg.nf > from_nf {
+                        crossing.up(&mut columns)
+                    } else {
+                        crossing.down(&mut columns)
+                    }
                     columns
                 }
                 _ => start.clone(),
@@ -343,14 +347,12 @@ impl Evolution {
         let (block, flow) = (self.names.len() * n * n, self.flow_names.len() * n);
         let mut blocks = vec![0.0; asked.len() * block];
         let mut flows = vec![0.0; asked.len() * flow];
-        blocks
-            .par_chunks_mut(block.max(1))
-            .zip(flows.par_chunks_mut(flow.max(1)))
-            .zip(asked)
-            .try_for_each(|((blocks, flows), &(q2, nf))| {
+        blocks.par_chunks_mut(block.max(1)).zip(flows.par_chunks_mut(flow.max(1))).zip(asked).try_for_each(
+            |((blocks, flows), &(q2, nf))| {
                 watch.check()?;
                 self.write(q2, nf, blocks, flows)
-            })?;
+            },
+        )?;
         Ok((blocks, flows))
     }
 

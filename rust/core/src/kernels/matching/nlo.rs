@@ -11,26 +11,16 @@ use crate::numerics::endpoint::Point;
 
 pub(super) fn kernel(element: Element) -> [Kernel; 3] {
     match element {
-        Element::HeavyGluon => {
-            by_logarithm([Term::zero(), Term::smooth(heavy_gluon_log), Term::zero()])
-        }
-        Element::GluonGluon => {
-            by_logarithm([Term::zero(), Term::delta(-4.0 / 3.0 * TR), Term::zero()])
-        }
+        Element::HeavyGluon => by_logarithm([Term::zero(), Term::smooth(heavy_gluon_log), Term::zero()]),
+        Element::GluonGluon => by_logarithm([Term::zero(), Term::delta(-4.0 / 3.0 * TR), Term::zero()]),
         Element::HeavyHeavy => by_logarithm([
             // 2 CF [(1+z^2)/(1-z) (-2 ln(1-z) - 1)]_+ taken apart.
             Term::full(heavy_heavy, &[-4.0 * CF, -8.0 * CF], 4.0 * CF),
             Term::full(heavy_heavy_log, &[4.0 * CF], 3.0 * CF),
             Term::zero(),
         ]),
-        Element::GluonHeavy => by_logarithm([
-            Term::smooth(gluon_heavy),
-            Term::smooth(gluon_heavy_log),
-            Term::zero(),
-        ]),
-        Element::HeavyQuark | Element::GluonQuark | Element::LightQuark => {
-            std::array::from_fn(|_| Kernel::default())
-        }
+        Element::GluonHeavy => by_logarithm([Term::smooth(gluon_heavy), Term::smooth(gluon_heavy_log), Term::zero()]),
+        Element::HeavyQuark | Element::GluonQuark | Element::LightQuark => std::array::from_fn(|_| Kernel::default()),
     }
 }
 

@@ -17,11 +17,7 @@ const MSBAR_SHIFT: f64 = 32.0 / 3.0;
 const COMPACT_LOCAL: f64 = -0.006;
 
 pub(super) fn from_quark() -> [Kernel; 3] {
-    by_logarithm([
-        Term::smooth(quark),
-        Term::smooth(quark_log),
-        Term::smooth(quark_log2),
-    ])
+    by_logarithm([Term::smooth(quark), Term::smooth(quark_log), Term::smooth(quark_log2)])
 }
 
 pub(super) fn from_gluon(mass: MassKind, form: HeavyGluonForm) -> [Kernel; 3] {
@@ -35,11 +31,7 @@ pub(super) fn from_gluon(mass: MassKind, form: HeavyGluonForm) -> [Kernel; 3] {
         HeavyGluonForm::Exact => 0.0,
         HeavyGluonForm::Compact => COMPACT_LOCAL,
     };
-    by_logarithm([
-        Term::full(constant, &[], local),
-        Term::smooth(gluon_log),
-        Term::smooth(gluon_log2),
-    ])
+    by_logarithm([Term::full(constant, &[], local), Term::smooth(gluon_log), Term::smooth(gluon_log2)])
 }
 
 fn quark(point: &Point) -> f64 {
@@ -48,9 +40,7 @@ fn quark(point: &Point) -> f64 {
     CF_TR
         * ((1.0 + z) * (32.0 * point.s12_1mz + l * (16.0 * dilogarithm - 4.0 / 3.0 * l * l))
             + (32.0 / (3.0 * z) + 8.0 - z * (8.0 + 32.0 / 3.0 * z)) * dilogarithm
-            + l * ((2.0 + z * (10.0 + 16.0 / 3.0 * z)) * l
-                - 56.0 / 3.0
-                - z * (88.0 / 3.0 + 448.0 / 9.0 * z))
+            + l * ((2.0 + z * (10.0 + 16.0 / 3.0 * z)) * l - 56.0 / 3.0 - z * (88.0 / 3.0 + 448.0 / 9.0 * z))
             - 448.0 / (27.0 * z)
             - 4.0 / 3.0
             + z * (-124.0 / 3.0 + 1600.0 / 27.0 * z))
@@ -77,8 +67,7 @@ fn gluon_abelian(point: &Point) -> f64 {
     let (z, l, l1) = (point.z, point.ln_z, point.ln_1mz);
     let (li2, li3, s12) = (point.li2_1mz, point.li3_1mz, point.s12_1mz);
     (1.0 - 2.0 * z + 2.0 * z * z)
-        * (8.0 * ZETA3 + 4.0 / 3.0 * l1 * l1 * l1 - 8.0 * l1 * li2 + 8.0 * ZETA2 * l
-            - 4.0 * l * l1 * l1
+        * (8.0 * ZETA3 + 4.0 / 3.0 * l1 * l1 * l1 - 8.0 * l1 * li2 + 8.0 * ZETA2 * l - 4.0 * l * l1 * l1
             + 2.0 / 3.0 * l * l * l
             - 8.0 * l * li2
             + 8.0 * li3
@@ -160,7 +149,6 @@ fn gluon_log2(point: &Point) -> f64 {
     let (z, y, l, l1) = (point.z, point.one_minus_z, point.ln_z, point.ln_1mz);
     let pqg = z * z + y * y;
     let abelian = 8.0 * pqg * l1 - (4.0 - 8.0 * z + 16.0 * z * z) * l - 2.0 + 8.0 * z;
-    let rest = -8.0 * pqg * l1 - (8.0 + 32.0 * z) * l - 16.0 / (3.0 * z) - 4.0
-        + z * (-32.0 + 124.0 / 3.0 * z);
+    let rest = -8.0 * pqg * l1 - (8.0 + 32.0 * z) * l - 16.0 / (3.0 * z) - 4.0 + z * (-32.0 + 124.0 / 3.0 * z);
     CF_TR * abelian + CA_TR * rest - TR * TR * 16.0 / 3.0 * pqg
 }

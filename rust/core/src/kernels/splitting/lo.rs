@@ -10,17 +10,13 @@ use crate::numerics::endpoint::Point;
 
 pub(super) fn kernel(channel: Channel) -> Kernel {
     match channel {
-        Channel::NsPlus | Channel::NsMinus => {
-            vec![Term::full(quark_quark, &[4.0 * CF], 3.0 * CF)].into()
-        }
+        Channel::NsPlus | Channel::NsMinus => vec![Term::full(quark_quark, &[4.0 * CF], 3.0 * CF)].into(),
         Channel::NsSea | Channel::PureSinglet => Kernel::default(),
         Channel::QuarkGluon => vec![Term::zero(), Term::smooth(quark_gluon)].into(),
         Channel::GluonQuark => vec![Term::smooth(gluon_quark)].into(),
-        Channel::GluonGluon => vec![
-            Term::full(gluon_gluon, &[4.0 * CA], 11.0 / 3.0 * CA),
-            Term::delta(-4.0 / 3.0 * TR),
-        ]
-        .into(),
+        Channel::GluonGluon => {
+            vec![Term::full(gluon_gluon, &[4.0 * CA], 11.0 / 3.0 * CA), Term::delta(-4.0 / 3.0 * TR)].into()
+        }
     }
 }
 

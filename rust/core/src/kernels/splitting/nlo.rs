@@ -17,8 +17,8 @@ const NORM: f64 = 4.0;
 const CUSP: f64 = CA * (67.0 / 18.0 - ZETA2);
 const CUSP_NF: f64 = -TR * 10.0 / 9.0;
 
-const QUARK_LOCAL: f64 = CF * CF * (3.0 / 8.0 - 3.0 * ZETA2 + 6.0 * ZETA3)
-    + CF * CA * (17.0 / 24.0 + 11.0 / 3.0 * ZETA2 - 3.0 * ZETA3);
+const QUARK_LOCAL: f64 =
+    CF * CF * (3.0 / 8.0 - 3.0 * ZETA2 + 6.0 * ZETA3) + CF * CA * (17.0 / 24.0 + 11.0 / 3.0 * ZETA2 - 3.0 * ZETA3);
 const QUARK_LOCAL_NF: f64 = -CF * TR * (1.0 / 6.0 + 4.0 / 3.0 * ZETA2);
 const GLUON_LOCAL: f64 = CA * CA * (8.0 / 3.0 + 3.0 * ZETA3);
 const GLUON_LOCAL_NF: f64 = -CF * TR - 4.0 / 3.0 * CA * TR;
@@ -33,11 +33,7 @@ pub(super) fn kernel(channel: Channel) -> Kernel {
         Channel::GluonQuark => vec![Term::smooth(gluon_quark), Term::smooth(gluon_quark_nf)].into(),
         Channel::GluonGluon => vec![
             Term::full(gluon_gluon, &[NORM * 2.0 * CA * CUSP], NORM * GLUON_LOCAL),
-            Term::full(
-                gluon_gluon_nf,
-                &[NORM * 2.0 * CA * CUSP_NF],
-                NORM * GLUON_LOCAL_NF,
-            ),
+            Term::full(gluon_gluon_nf, &[NORM * 2.0 * CA * CUSP_NF], NORM * GLUON_LOCAL_NF),
         ]
         .into(),
     }
@@ -46,11 +42,7 @@ pub(super) fn kernel(channel: Channel) -> Kernel {
 fn nonsinglet(regular: fn(&Point) -> f64) -> Kernel {
     vec![
         Term::full(regular, &[NORM * 2.0 * CF * CUSP], NORM * QUARK_LOCAL),
-        Term::full(
-            quark_quark_nf,
-            &[NORM * 2.0 * CF * CUSP_NF],
-            NORM * QUARK_LOCAL_NF,
-        ),
+        Term::full(quark_quark_nf, &[NORM * 2.0 * CF * CUSP_NF], NORM * QUARK_LOCAL_NF),
     ]
     .into()
 }
@@ -73,8 +65,7 @@ fn minus(point: &Point) -> f64 {
 fn quark_quark(point: &Point) -> f64 {
     let (z, y, l, l1) = (point.z, point.one_minus_z, point.ln_z, point.ln_1mz);
     let pqq = 2.0 / y - 1.0 - z;
-    CF * CF
-        * (-l * (2.0 * l1 + 1.5) * pqq - (1.5 + 3.5 * z) * l - 0.5 * (1.0 + z) * l * l - 5.0 * y)
+    CF * CF * (-l * (2.0 * l1 + 1.5) * pqq - (1.5 + 3.5 * z) * l - 0.5 * (1.0 + z) * l * l - 5.0 * y)
         + CF * CA * (l * (0.5 * l + 11.0 / 6.0) * pqq + (1.0 + z) * l + 20.0 / 3.0 * y)
         - CF * CUSP * (1.0 + z)
 }
@@ -97,9 +88,7 @@ fn pure_singlet(point: &Point) -> f64 {
     NORM * 2.0
         * CF
         * TR
-        * (20.0 / (9.0 * z) - 2.0
-            + z * (6.0 - 56.0 / 9.0 * z)
-            + l * (1.0 + z * (5.0 + 8.0 / 3.0 * z) - (1.0 + z) * l))
+        * (20.0 / (9.0 * z) - 2.0 + z * (6.0 - 56.0 / 9.0 * z) + l * (1.0 + z * (5.0 + 8.0 / 3.0 * z) - (1.0 + z) * l))
 }
 
 fn quark_gluon(point: &Point) -> f64 {
@@ -110,13 +99,11 @@ fn quark_gluon(point: &Point) -> f64 {
     let abelian = 4.0 - 9.0 * z - l * (1.0 - 4.0 * z + (1.0 - 2.0 * z) * l)
         + 4.0 * l1
         + (odds * (2.0 * odds - 4.0) - 4.0 * ZETA2 + 10.0) * pqg;
-    let rest = 182.0 / 9.0
-        + 14.0 / 9.0 * z
-        + 40.0 / (9.0 * z)
-        + l * (136.0 / 3.0 * z - 38.0 / 3.0 - (2.0 + 8.0 * z) * l)
-        - 4.0 * l1
-        + (l * (44.0 / 3.0 - l) + l1 * (4.0 - 2.0 * l1) + 2.0 * ZETA2 - 218.0 / 9.0) * pqg
-        + 2.0 * pqg_crossed * s2(point);
+    let rest =
+        182.0 / 9.0 + 14.0 / 9.0 * z + 40.0 / (9.0 * z) + l * (136.0 / 3.0 * z - 38.0 / 3.0 - (2.0 + 8.0 * z) * l)
+            - 4.0 * l1
+            + (l * (44.0 / 3.0 - l) + l1 * (4.0 - 2.0 * l1) + 2.0 * ZETA2 - 218.0 / 9.0) * pqg
+            + 2.0 * pqg_crossed * s2(point);
     NORM * TR * (CF * abelian + CA * rest)
 }
 
@@ -124,9 +111,7 @@ fn gluon_quark(point: &Point) -> f64 {
     let (z, y, l, l1) = (point.z, point.one_minus_z, point.ln_z, point.ln_1mz);
     let pgq = (1.0 + y * y) / z;
     let pgq_crossed = -(1.0 + (1.0 + z) * (1.0 + z)) / z;
-    let abelian = -2.5 - 3.5 * z + l * (2.0 + 3.5 * z - (1.0 - 0.5 * z) * l)
-        - 2.0 * z * l1
-        - l1 * (3.0 + l1) * pgq;
+    let abelian = -2.5 - 3.5 * z + l * (2.0 + 3.5 * z - (1.0 - 0.5 * z) * l) - 2.0 * z * l1 - l1 * (3.0 + l1) * pgq;
     let rest = 28.0 / 9.0
         + z * (65.0 / 18.0 + 44.0 / 9.0 * z)
         + l * ((4.0 + z) * l - 12.0 - z * (5.0 + 8.0 / 3.0 * z))
@@ -159,8 +144,7 @@ fn gluon_gluon(point: &Point) -> f64 {
 fn gluon_gluon_nf(point: &Point) -> f64 {
     let (z, y, l) = (point.z, point.one_minus_z, point.ln_z);
     let rest = 1.0 / z - 2.0 + z * y;
-    let abelian = -16.0 + z * (8.0 + 20.0 / 3.0 * z) + 4.0 / (3.0 * z)
-        - l * (6.0 + 10.0 * z + 2.0 * (1.0 + z) * l);
+    let abelian = -16.0 + z * (8.0 + 20.0 / 3.0 * z) + 4.0 / (3.0 * z) - l * (6.0 + 10.0 * z + 2.0 * (1.0 + z) * l);
     let other = 2.0 * y + 26.0 / 9.0 * (z * z - 1.0 / z) - 4.0 / 3.0 * (1.0 + z) * l;
     NORM * (CF * TR * abelian + CA * TR * other + 2.0 * CA * CUSP_NF * rest)
 }

@@ -20,18 +20,14 @@ const LOCAL_NF2: f64 = -64.0 / 81.0 * (51.0 / 16.0 + 3.0 * ZETA3 - 5.0 * ZETA2);
 pub(super) fn kernel(channel: Channel) -> Kernel {
     let common = Term::full(both_nf2, &[CUSP_NF2], LOCAL_NF2);
     match channel {
-        Channel::NsPlus => vec![
-            Term::full(plus, &[CUSP], LOCAL - 0.24),
-            Term::full(plus_nf, &[CUSP_NF], LOCAL_NF + 0.011),
-            common,
-        ]
-        .into(),
-        Channel::NsMinus => vec![
-            Term::full(minus, &[CUSP], LOCAL - 0.154),
-            Term::full(minus_nf, &[CUSP_NF], LOCAL_NF + 0.005),
-            common,
-        ]
-        .into(),
+        Channel::NsPlus => {
+            vec![Term::full(plus, &[CUSP], LOCAL - 0.24), Term::full(plus_nf, &[CUSP_NF], LOCAL_NF + 0.011), common]
+                .into()
+        }
+        Channel::NsMinus => {
+            vec![Term::full(minus, &[CUSP], LOCAL - 0.154), Term::full(minus_nf, &[CUSP_NF], LOCAL_NF + 0.005), common]
+                .into()
+        }
         Channel::NsSea => vec![Term::zero(), Term::smooth(sea_nf)].into(),
         _ => Kernel::default(),
     }

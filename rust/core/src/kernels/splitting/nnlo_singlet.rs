@@ -10,21 +10,11 @@ use crate::numerics::endpoint::Point;
 
 pub(super) fn kernel(channel: Channel) -> Kernel {
     match channel {
-        Channel::PureSinglet => vec![
-            Term::zero(),
-            Term::smooth(pure_singlet_nf),
-            Term::smooth(pure_singlet_nf2),
-        ],
-        Channel::QuarkGluon => vec![
-            Term::zero(),
-            Term::smooth(quark_gluon_nf),
-            Term::smooth(quark_gluon_nf2),
-        ],
-        Channel::GluonQuark => vec![
-            Term::smooth(gluon_quark),
-            Term::smooth(gluon_quark_nf),
-            Term::smooth(gluon_quark_nf2),
-        ],
+        Channel::PureSinglet => vec![Term::zero(), Term::smooth(pure_singlet_nf), Term::smooth(pure_singlet_nf2)],
+        Channel::QuarkGluon => vec![Term::zero(), Term::smooth(quark_gluon_nf), Term::smooth(quark_gluon_nf2)],
+        Channel::GluonQuark => {
+            vec![Term::smooth(gluon_quark), Term::smooth(gluon_quark_nf), Term::smooth(gluon_quark_nf2)]
+        }
         Channel::GluonGluon => vec![
             Term::full(gluon_gluon, &[2643.521], 4425.448 + 0.446),
             Term::full(gluon_gluon_nf, &[-412.172], -528.720 - 0.003),
@@ -37,16 +27,14 @@ pub(super) fn kernel(channel: Channel) -> Kernel {
 
 fn pure_singlet_nf(point: &Point) -> f64 {
     let (z, y, l, l1) = (point.z, point.one_minus_z, point.ln_z, point.ln_1mz);
-    y * (-l1 * (72.11 + l1 * (9.751 + 5.926 * l1)) + 177.4 + z * (392.9 - 101.4 * z)
-        - 57.04 * l * l1
+    y * (-l1 * (72.11 + l1 * (9.751 + 5.926 * l1)) + 177.4 + z * (392.9 - 101.4 * z) - 57.04 * l * l1
         + l * (-661.6 + l * (131.4 + l * (-400.0 / 9.0 + 160.0 / 27.0 * l)))
         - (506.0 + 3584.0 / 27.0 * l) / z)
 }
 
 fn pure_singlet_nf2(point: &Point) -> f64 {
     let (z, y, l, l1) = (point.z, point.one_minus_z, point.ln_z, point.ln_1mz);
-    y * (l1 * (5.944 + 1.778 * l1) + 100.1 + z * (-125.2 + z * (49.26 - 12.59 * z))
-        - 1.889 * l * l1
+    y * (l1 * (5.944 + 1.778 * l1) + 100.1 + z * (-125.2 + z * (49.26 - 12.59 * z)) - 1.889 * l * l1
         + l * (61.75 + l * (17.89 + 32.0 / 27.0 * l))
         + 256.0 / (81.0 * z))
 }
@@ -64,8 +52,7 @@ fn quark_gluon_nf(point: &Point) -> f64 {
 
 fn quark_gluon_nf2(point: &Point) -> f64 {
     let (z, l, l1) = (point.z, point.ln_z, point.ln_1mz);
-    l1 * (-5.496 + l1 * (200.0 / 27.0 + 20.0 / 27.0 * l1)) - 252.0
-        + z * (158.0 + z * (145.4 - 139.28 * z))
+    l1 * (-5.496 + l1 * (200.0 / 27.0 + 20.0 / 27.0 * l1)) - 252.0 + z * (158.0 + z * (145.4 - 139.28 * z))
         - l * l1 * (53.09 + 80.616 * l)
         + z * l * l * (-98.07 + 11.70 * l)
         - l * (254.0 + l * (90.80 + l * (376.0 / 27.0 + 16.0 / 9.0 * l)))
@@ -84,9 +71,7 @@ fn gluon_quark(point: &Point) -> f64 {
 
 fn gluon_quark_nf(point: &Point) -> f64 {
     let (z, l, l1) = (point.z, point.ln_z, point.ln_1mz);
-    -l1 * (296.7 + l1 * (68.069 + 400.0 / 81.0 * l1)) - 183.8
-        + z * (33.35 - 277.9 * z)
-        + 108.6 * z * l * l
+    -l1 * (296.7 + l1 * (68.069 + 400.0 / 81.0 * l1)) - 183.8 + z * (33.35 - 277.9 * z) + 108.6 * z * l * l
         - 49.68 * l * l1
         + l * (174.8 + l * (20.39 + l * (704.0 / 81.0 + 128.0 / 27.0 * l)))
         + (-46.41 + 71.082 * l) / z
