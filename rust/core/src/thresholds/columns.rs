@@ -199,9 +199,12 @@ impl LegColumns {
         columns
     }
 
-    /// Estimated error, relative to the largest value.
+    /// Estimated error relative to each value, panel 0 (x near 1, where values fall over decades) left out.
     pub fn error(&self) -> f64 {
-        self.differences.iter().map(|(_, solution)| solution.error()).fold(self.sum.error(), f64::max)
+        let first = if self.offsets.len() > 2 { self.offsets[1] } else { 0 };
+        let components = if self.start.family == Family::Plus { 2 } else { 1 };
+        let sum = self.sum.error(components * first);
+        self.differences.iter().map(|(_, solution)| solution.error(first)).fold(sum, f64::max)
     }
 }
 
