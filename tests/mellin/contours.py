@@ -1,0 +1,87 @@
+"""Contours of the inverse Mellin transform, and the transform itself.
+
+x f(x) = 1/(2 pi i) int dN x^(1-N) F(N) along a straight line bent to the left,
+N = c + s exp(+-3 i pi/4): the exponential then falls with s whatever F does. One line
+serves an interval of u = ln(1/x); c lies near the saddle point, right of every singularity.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+DIRECTION = np.exp(0.75j * np.pi)
+SMALL_X_FROM = 1.5
+"""u above which kernels are needed down to z = 0 (see `representations`)."""
+LARGEST_U = 21.0
+_REACH = 42.0
+"""exp(-42) = 6e-19: where the line may end, for the smallest u it serves."""
+
+
+@dataclass(frozen=True)
+class Contour:
+    """A bent line for least_u <= ln(1/x) <= most_u.
+
+    Attributes
+    ----------
+    start : float
+        Where it leaves the real axis.
+    least_u, most_u : float
+        Interval of ln(1/x) it serves.
+    order : int
+        Gauss-Legendre nodes in each panel.
+    """
+
+    start: float
+    least_u: float
+    most_u: float
+    order: int = 20
+
+    @property
+    def reaches_small_z(self) -> bool:
+        """Whether kernels are needed at every z, not only near z = 1."""
+        return self.least_u >= SMALL_X_FROM
+
+    @cached_property
+    def _nodes(self) -> tuple[Real, Real]:
+        length = _REACH / (-DIRECTION.real * self.least_u)
+        first = 2.0 / self.most_u
+        edges = np.concatenate(([0.0], first * 2.0 ** np.arange(40)))
+        last = int(np.searchsorted(edges, length))
+        edges = edges[: last + 1]
+        x, w = np.polynomial.legendre.leggauss(self.order)
+        half = np.diff(edges)[:, None] / 2
+        s = (edges[:-1, None] + half) + half * x
+        return s.ravel(), (half * w).ravel()
+
+    @cached_property
+    def points(self) -> Complex:
+        """The values of N on the upper half of the line."""
+        return self.start + DIRECTION * self._nodes[0]
+
+    def serves(self, u: Real) -> NDArray[np.bool_]:
+        """Return which ln(1/x) belong to this line."""
+        return (u >= self.least_u) & (u < self.most_u)
+
+    def invert(self, moments: Complex, u: Real) -> Real:
+        """Return x f(x) at x = exp(-u) from moments at `points`."""
+        kernel = np.exp(np.multiply.outer(u, self.points - 1)) * (DIRECTION * self._nodes[1])
+        return (kernel @ moments).imag / np.pi
+
+
+def contours(start: float, order: int = 20) -> tuple[Contour, ...]:
+    """Return the lines that serve every x, the one of small x leaving the axis at `start`.
+
+    Near x = 1 the saddle point of (1-x)^b is N ~ b/u, far right of every singularity.
+    """
+    return (
+        Contour(start, SMALL_X_FROM, LARGEST_U, order),
+        Contour(6.0, 0.25, SMALL_X_FROM, order),
+        Contour(30.0, 0.03, 0.25, order),
+    )
