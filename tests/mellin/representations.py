@@ -33,8 +33,10 @@ Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 LOGARITHMS = 4
+SMALLEST_SINGULAR = 3e-16
+"""Relative to the largest; what lies below is rounding."""
 WORST_FIT = 1e-11
-"""Largest misfit accepted, relative to the kernel's size: rounding gives 1e-14 to 1e-13."""
+"""Largest misfit accepted, relative to the kernel's size: rounding gives up to 1e-13."""
 
 
 class Parts(Protocol):
@@ -75,7 +77,7 @@ class _Fit:
         fall = decay ** np.arange(powers.shape[1])
         self._scale = np.multiply.outer(1 / fall, sizes).ravel()
         u, s, vt = np.linalg.svd(self._matrix / self._scale, full_matrices=False)
-        keep = s > 1e-14 * s[0]
+        keep = s > SMALLEST_SINGULAR * s[0]
         self._ut, self._s, self._v = u[:, keep].T, s[keep], vt[keep].T
 
     def __call__(self, values: Real) -> Real:
@@ -98,8 +100,8 @@ class EveryZ:
     """Quadrature for t < t_0, e^t sum_kj c_kj e^(-k (t - t_0)) t^j beyond."""
 
     SPLIT = 0.8
-    POWERS = 24
-    DECAY = 0.5
+    POWERS = 20
+    DECAY = 0.6
     """z_0 = exp(-0.8) = 0.45 over the distance 1 of the next singularity, rounded up."""
 
     def __init__(self) -> None:
@@ -153,19 +155,20 @@ class NearOne:
     """sum_kj c_kj (t/T)^k ln^j(t/T), right for t < T only."""
 
     LENGTH = 1.6
-    POWERS = 24
+    POWERS = 20
     DECAY = 0.6
     """T over the distance pi of the singularity of ln(1+z), rounded up."""
 
     def __init__(self) -> None:
         angle = (np.arange(400) + 0.5) * np.pi / 400
         bulk = self.LENGTH * (1 - np.cos(angle)) / 2
-        # towards t = 0 the logarithms differ by decades of t, not by t
-        self._t = np.sort(np.concatenate((bulk, self.LENGTH * np.logspace(-16, -5, 45))))
+        # towards t = 0 the logarithms differ by decades of t, not by t; what is divided
+        # by 1-z there has a rounding error like 1/t, and little weight in any integral
+        self._t = np.sort(np.concatenate((bulk, self.LENGTH * np.logspace(-11, -5, 45))))
         tau = self._t / self.LENGTH
         powers = tau[:, None] ** np.arange(self.POWERS)
         logs = np.log(tau)[:, None] ** np.arange(LOGARITHMS + 1)
-        self._fit = _Fit(powers, logs, (1 - np.log(tau)) ** -2.0, self.DECAY)
+        self._fit = _Fit(powers, logs, tau / (tau + 0.01), self.DECAY)
 
     def vector(self, parts: Parts) -> Real:
         """Return the regular part as coefficients that `matrix` multiplies."""
