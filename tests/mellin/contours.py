@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from typing import ClassVar, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,9 +20,46 @@ Complex = NDArray[np.complex128]
 DIRECTION = np.exp(0.75j * np.pi)
 SMALL_X_FROM = 1.5
 """u above which kernels are needed down to z = 0 (see `representations`)."""
-LARGEST_U = 21.0
+LEAST_U, LARGEST_U = 0.03, 21.0
+"""ln(1/x) at x = 0.97 and 8e-10: what is served."""
+_LARGE_X = (
+    (6.0, 0.5, SMALL_X_FROM),
+    (14.0, 0.2, 0.5),
+    (35.0, 0.08, 0.2),
+    (90.0, LEAST_U, 0.08),
+)
+"""Start, least and largest u: the saddle point of x^-N B(N, b+1) is near (b+1)/u."""
+ORDER = 28
+"""Nodes in a panel. 20 leave 1e-12 where the line passes the singularity of ln^4 z at N = 0."""
 _REACH = 42.0
 """exp(-42) = 6e-19: where the line may end, for the smallest u it serves."""
+
+
+class Points(Protocol):
+    """Values of N at which moments are wanted; hashable."""
+
+    @property
+    def points(self) -> Complex:
+        """The values."""
+        ...
+
+    @property
+    def reaches_small_z(self) -> bool:
+        """Whether kernels are needed at every z, not only near z = 1."""
+        ...
+
+
+@dataclass(frozen=True)
+class FreePoints:
+    """Values of N of one's own choice."""
+
+    values: tuple[complex, ...]
+    reaches_small_z: ClassVar[bool] = True
+
+    @property
+    def points(self) -> Complex:
+        """The values as an array."""
+        return np.array(self.values, dtype=np.complex128)
 
 
 @dataclass(frozen=True)
@@ -41,7 +79,7 @@ class Contour:
     start: float
     least_u: float
     most_u: float
-    order: int = 20
+    order: int = ORDER
 
     @property
     def reaches_small_z(self) -> bool:
@@ -75,13 +113,7 @@ class Contour:
         return (kernel @ moments).imag / np.pi
 
 
-def contours(start: float, order: int = 20) -> tuple[Contour, ...]:
-    """Return the lines that serve every x, the one of small x leaving the axis at `start`.
-
-    Near x = 1 the saddle point of (1-x)^b is N ~ b/u, far right of every singularity.
-    """
-    return (
-        Contour(start, SMALL_X_FROM, LARGEST_U, order),
-        Contour(6.0, 0.25, SMALL_X_FROM, order),
-        Contour(30.0, 0.03, 0.25, order),
-    )
+def contours(start: float, order: int = ORDER) -> tuple[Contour, ...]:
+    """Return the lines that serve every x, the one of small x leaving the axis at `start`."""
+    small = Contour(start, SMALL_X_FROM, LARGEST_U, order)
+    return (small, *(Contour(c, least, most, order) for c, least, most in _LARGE_X))

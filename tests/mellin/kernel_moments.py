@@ -8,7 +8,7 @@ from typing import Any, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from mellin.contours import Contour
+from mellin.contours import Points
 from mellin.representations import EveryZ, NearOne, Parts, plus_moments
 
 Complex = NDArray[np.complex128]
@@ -22,7 +22,9 @@ class Kernels(Protocol):
         """Coefficient of a^(order+1) of a splitting function."""
         ...
 
-    def matching(self, order: int, element: str, power_of_L: int, kind: str, form: str) -> Parts:
+    def matching(
+        self, order: int, element: str, power_of_L: int, kind: str, form: str
+    ) -> Parts:
         """Coefficient of a^order L^power of a matching element across a threshold."""
         ...
 
@@ -30,7 +32,7 @@ class Kernels(Protocol):
 class _OnContour:
     """What all kernels share on one contour."""
 
-    def __init__(self, contour: Contour, representation: EveryZ | NearOne) -> None:
+    def __init__(self, contour: Points, representation: EveryZ | NearOne) -> None:
         self.regular = representation.matrix(contour.points)
         self.plus = plus_moments(contour.points, HIGHEST_PLUS)
 
@@ -40,29 +42,29 @@ class KernelMoments:
 
     def __init__(self, kernels: Kernels) -> None:
         self._kernels = kernels
-        self._contours: dict[Contour, _OnContour] = {}
+        self._contours: dict[Points, _OnContour] = {}
         self._parts: dict[tuple[Any, ...], Parts] = {}
         self._vectors: dict[tuple[Any, ...], NDArray[np.float64]] = {}
         self._moments: dict[tuple[Any, ...], Complex] = {}
         self._representations = {True: EveryZ(), False: NearOne()}
 
-    def splitting(self, contour: Contour, order: int, channel: str, nf: int) -> Complex:
+    def splitting(self, contour: Points, order: int, channel: str, nf: int) -> Complex:
         """Return moments at `contour.points`, shape (n,)."""
         return self._at(contour, ("splitting", order, channel, nf))
 
     def matching(
-        self, contour: Contour, order: int, element: str, power: int, kind: str, form: str
+        self, contour: Points, order: int, element: str, power: int, kind: str, form: str
     ) -> Complex:
         """Return moments at `contour.points`, shape (n,)."""
         return self._at(contour, ("matching", order, element, power, kind, form))
 
-    def _at(self, contour: Contour, name: tuple[Any, ...]) -> Complex:
+    def _at(self, contour: Points, name: tuple[Any, ...]) -> Complex:
         key = (contour, *name)
         if key not in self._moments:
             self._moments[key] = self._compute(contour, name)
         return self._moments[key]
 
-    def _compute(self, contour: Contour, name: tuple[Any, ...]) -> Complex:
+    def _compute(self, contour: Points, name: tuple[Any, ...]) -> Complex:
         if name not in self._parts:
             self._parts[name] = getattr(self._kernels, name[0])(*name[1:])
         parts, near = self._parts[name], not contour.reaches_small_z

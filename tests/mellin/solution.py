@@ -8,6 +8,7 @@ for 1e-9 <= x <= 0.95 (measured in `test_convergence`).
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from math import log
 from typing import TypeVar
 
@@ -15,21 +16,29 @@ import numpy as np
 from numpy.typing import NDArray
 
 from mellin import evolution
-from mellin.contours import Contour, contours
+from mellin.contour_starts import ContourStarts
+from mellin.contours import LARGEST_U, LEAST_U, ORDER, Contour, FreePoints, Points, contours
 from mellin.coupling import Coupling, betas
 from mellin.flavours import GLUON, QUARKS, State, halves
 from mellin.inputs import Moments
 from mellin.kernel_moments import Kernels, moments_of
 from mellin.threshold import Threshold
 
-Name = TypeVar("Name", int, str)
+Name = TypeVar("Name")
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
-SINGLET_STARTS = (1.35, 1.7, 2.1, 2.6, 3.1)
-"""Right of the kernels' singularity at N = 1."""
-NON_SINGLET_STARTS = (0.5, 0.8, 1.1, *SINGLET_STARTS)
-"""Right of the kernels' singularity at N = 0."""
+FLAVOURS = (GLUON, *QUARKS, *(-q for q in QUARKS))
+
+
+@dataclass(frozen=True)
+class _Route:
+    """From where to where, in mu_f^2 and active flavours."""
+
+    start_q2: float
+    start_nf: int
+    q2: float
+    nf: int
 
 
 class MellinSolution:
@@ -76,7 +85,7 @@ class MellinSolution:
         evolution_mu2_ratio: float = 1.0,
         running_loops: int | None = None,
         form: str = "exact",
-        contour_order: int = 20,
+        contour_order: int = ORDER,
     ) -> None:
         if order not in (0, 1, 2):
             message = f"order is 0, 1 or 2, not {order!r}"
@@ -90,8 +99,14 @@ class MellinSolution:
         ratios = zip(masses, threshold_ratios, strict=True)
         self._thresholds = tuple(ratio * m**2 for m, ratio in ratios)
         self.coupling = Coupling(
-            alpha_s, alpha_s_q2, alpha_s_nf, self._masses, kind, self._thresholds,
-            self._loops, self._kappa,
+            alpha_s,
+            alpha_s_q2,
+            alpha_s_nf,
+            self._masses,
+            kind,
+            self._thresholds,
+            self._loops,
+            self._kappa,
         )
 
     def nf_at(self, q2: float) -> int:
@@ -102,6 +117,7 @@ class MellinSolution:
     def evolve(
         self,
         moments: Mapping[int, Moments],
+        *,
         start_q2: float,
         start_nf: int,
         q2: float,
@@ -115,69 +131,97 @@ class MellinSolution:
         moments : mapping from PDG number to callable
             Moments at `start_q2` as functions of a complex array N; flavours not named
             are zero, those heavier than `start_nf` are intrinsic.
+        start_q2, start_nf, q2 : float, int, float
+            Scales mu_f^2 and the number of active flavours at the start.
+        x : array
+            Between 1e-9 and 0.97.
+        nf : int, optional
+            Active flavours at `q2`; by default what `nf_at` says.
+
+        Raises
+        ------
+        ValueError
+            x out of range, an unknown flavour, moments singular far right of N = 1.
         """
-        everything = {pdg: {pdg: 1.0} for pdg in (GLUON, *QUARKS, *(-q for q in QUARKS))}
-        return self.evolve_combinations(everything, moments, start_q2, start_nf, q2, x, nf)
+        route = _Route(start_q2, start_nf, q2, self.nf_at(q2) if nf is None else nf)
+        return self._invert({f: {f: 1.0} for f in FLAVOURS}, moments, route, x)
 
     def evolve_combinations(
         self,
-        combinations: Mapping[Name, Mapping[int, float]],
+        combinations: Mapping[str, Mapping[int, float]],
         moments: Mapping[int, Moments],
+        *,
         start_q2: float,
         start_nf: int,
         q2: float,
         x: Real,
         nf: int | None = None,
-    ) -> dict[Name, Real]:
-        """Return x sum_f c_f f(x) for each mapping f -> c_f, small differences exactly.
+    ) -> dict[str, Real]:
+        """Return x sum_f c_f f(x) for each named mapping f -> c_f; else like `evolve`.
 
         The parts in q + qbar and q - qbar are inverted on different contours, u+ - d+ on
         one of its own: what vanishes faster at small x keeps its relative accuracy.
         """
+        route = _Route(start_q2, start_nf, q2, self.nf_at(q2) if nf is None else nf)
+        return self._invert(combinations, moments, route, x)
+
+    def evolve_moments(
+        self,
+        moments: Mapping[int, Moments],
+        n: Complex,
+        *,
+        start_q2: float,
+        start_nf: int,
+        q2: float,
+        nf: int | None = None,
+    ) -> dict[int, Complex]:
+        """Return moments of every flavour at q2, at any N but the poles 1, 0, -1, ..."""
+        route = _Route(start_q2, start_nf, q2, self.nf_at(q2) if nf is None else nf)
+        state = self._evolved(moments, FreePoints(tuple(np.atleast_1d(n).tolist())), route)
+        return {f: state.combination(*halves({f: 1.0})) for f in FLAVOURS}
+
+    def _invert(
+        self,
+        combinations: Mapping[Name, Mapping[int, float]],
+        moments: Mapping[int, Moments],
+        route: _Route,
+        x: Real,
+    ) -> dict[Name, Real]:
         u = np.log(1 / np.asarray(x, dtype=np.float64))
-        final_nf = self.nf_at(q2) if nf is None else nf
-        route = (start_q2, start_nf, q2, final_nf)
-        states: dict[Contour, State] = {}
-        split = {name: halves(c) for name, c in combinations.items()}
-        starts = _Starts(moments)
+        if not np.all((u >= LEAST_U) & (u < LARGEST_U)):
+            message = "x must lie between 1e-9 and 0.97"
+            raise ValueError(message)
+        starts, states = ContourStarts(moments), dict[Contour, State]()
         result = {name: np.zeros_like(u) for name in combinations}
-        for name, (plus, minus) in split.items():
+        for name, weights in combinations.items():
+            plus, minus = halves(weights)
             for part, start in (((plus, {}), starts.plus(plus)), (({}, minus), starts.minus)):
-                if not (part[0] or part[1]):
+                if not any(part):
                     continue
-                served = np.zeros(u.shape, dtype=bool)
                 for contour in contours(start, self._contour_order):
-                    mask = contour.serves(u)
-                    served |= mask
-                    if not np.any(mask):
-                        continue
-                    if contour not in states:
-                        states[contour] = self._evolved(moments, contour, *route)
-                    values = states[contour].combination(*part)
-                    result[name][mask] += contour.invert(values, u[mask])
-                if not np.all(served):
-                    message = "x must lie between 1e-9 and 0.97"
-                    raise ValueError(message)
+                    here = contour.serves(u)
+                    if np.any(here) and contour not in states:
+                        states[contour] = self._evolved(moments, contour, route)
+                    if np.any(here):
+                        values = states[contour].combination(*part)
+                        result[name][here] += contour.invert(values, u[here])
         return result
 
     def _evolved(
         self,
         moments: Mapping[int, Moments],
-        contour: Contour,
-        start_q2: float,
-        start_nf: int,
-        q2: float,
-        final_nf: int,
+        contour: Points,
+        route: _Route,
     ) -> State:
-        state, scale, nf = State.of(moments, contour.points), start_q2, start_nf
-        while nf != final_nf:
-            up = final_nf > nf
+        state, scale, nf = State.of(moments, contour.points), route.start_q2, route.start_nf
+        while nf != route.nf:
+            up = route.nf > nf
             lower = nf if up else nf - 1
             there = self._thresholds[lower - 3]
             state = self._fixed(state, contour, nf, scale, there)
             state = self._threshold(lower).cross(state, self._moments, contour, up=up)
             scale, nf = there, nf + (1 if up else -1)
-        return self._fixed(state, contour, nf, scale, q2)
+        return self._fixed(state, contour, nf, scale, route.q2)
 
     def _threshold(self, lower_nf: int) -> Threshold:
         scale, mass = self._thresholds[lower_nf - 3], self._masses[lower_nf - 3]
@@ -185,13 +229,13 @@ class MellinSolution:
         logarithm = log(scale / mass**2)
         return Threshold(lower_nf, self._order, a, logarithm, self._kind, self._form)
 
-    def _splitting(self, contour: Contour, channel: str, nf: int) -> list[Complex]:
+    def _splitting(self, contour: Points, channel: str, nf: int) -> list[Complex]:
         return [
             self._moments.splitting(contour, k, channel, nf) for k in range(self._order + 1)
         ]
 
     def _fixed(
-        self, state: State, contour: Contour, nf: int, from_q2: float, to_q2: float
+        self, state: State, contour: Points, nf: int, from_q2: float, to_q2: float
     ) -> State:
         if from_q2 == to_q2:
             return state
@@ -216,36 +260,3 @@ class MellinSolution:
         changed = valence * factor(p["ns-"] + p["ns-sea"])
         minus[:nf] = (minus[:nf] - valence / nf) * factor(p["ns-"]) + changed / nf
         return State(plus, minus, after[:, 1])
-
-
-class _Starts:
-    """Where contours leave the axis: left of nothing that is singular, yet not far right."""
-
-    def __init__(self, moments: Mapping[int, Moments]) -> None:
-        self._moments = moments
-        quarks = [halves({q: 1.0})[1] for q in QUARKS]
-        self.minus = max(self._first(NON_SINGLET_STARTS, {}, {q: 2 * h[q]}) for q, h in
-                         zip(QUARKS, quarks, strict=True))
-        self._singlet = max(self._first(SINGLET_STARTS, {q: 1.0}, {}) for q in (*QUARKS, GLUON))
-
-    def plus(self, weights: Mapping[int, float]) -> float:
-        """Return the start for a combination of q + qbar and gluon."""
-        light = {1, 2, 3}
-        if set(weights) <= light and abs(sum(weights.values())) < 1e-14:
-            return self._first(NON_SINGLET_STARTS, weights, {})
-        return self._singlet
-
-    def _first(
-        self, starts: Sequence[float], plus: Mapping[int, float], minus: Mapping[int, float]
-    ) -> float:
-        """Return the first start with no singularity of the moments to its right.
-
-        The integral around a circle right of it, by the trapezoidal rule, must vanish.
-        """
-        circle = 2.0 * np.exp(2j * np.pi * (np.arange(512) + 0.5) / 512)
-        for start in starts:
-            values = State.of(self._moments, start + 2.0 + circle).combination(plus, minus)
-            if abs(np.sum(values * circle)) <= 1e-9 * np.sum(np.abs(values * circle)):
-                return start
-        message = f"the moments are singular right of N = {starts[-1]}"
-        raise ValueError(message)

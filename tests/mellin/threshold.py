@@ -11,14 +11,21 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from mellin.contours import Contour
+from mellin.contours import Points
 from mellin.flavours import State
 from mellin.kernel_moments import KernelMoments
 
 Complex = NDArray[np.complex128]
 
-_ABSENT = frozenset({("heavy<-heavy", 2), ("gluon<-heavy", 2), ("heavy<-quark", 1),
-                     ("gluon<-quark", 1), ("quark<-quark", 1)})
+_ABSENT = frozenset(
+    {
+        ("heavy<-heavy", 2),
+        ("gluon<-heavy", 2),
+        ("heavy<-quark", 1),
+        ("gluon<-quark", 1),
+        ("quark<-quark", 1),
+    }
+)
 """Not known, or zero, at that order."""
 
 
@@ -33,7 +40,9 @@ class Threshold:
     kind: str
     form: str
 
-    def cross(self, state: State, kernels: KernelMoments, contour: Contour, *, up: bool) -> State:
+    def cross(
+        self, state: State, kernels: KernelMoments, contour: Points, *, up: bool
+    ) -> State:
         """Return the state on the other side."""
         light, heavy = slice(0, self.lower_nf), self.lower_nf
         non_singlet = 1 + self._element(kernels, contour, "quark<-quark")
@@ -51,7 +60,7 @@ class Threshold:
         minus[heavy] *= intrinsic if up else 1 / intrinsic
         return State(plus, minus, after[:, 0])
 
-    def _element(self, kernels: KernelMoments, contour: Contour, name: str) -> Complex:
+    def _element(self, kernels: KernelMoments, contour: Points, name: str) -> Complex:
         total = np.zeros_like(contour.points)
         for order in range(1, self.order + 1):
             if (name, order) in _ABSENT:
@@ -66,7 +75,7 @@ class Threshold:
         return total
 
     def _singlet(
-        self, kernels: KernelMoments, contour: Contour, non_singlet: Complex, intrinsic: Complex
+        self, kernels: KernelMoments, contour: Points, non_singlet: Complex, intrinsic: Complex
     ) -> Complex:
         """Matrix on (g, sum of light q + qbar, h + hbar), shape (n, 3, 3)."""
         matrix = np.zeros((len(contour.points), 3, 3), dtype=np.complex128)
