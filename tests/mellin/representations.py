@@ -35,7 +35,7 @@ Complex = NDArray[np.complex128]
 LOGARITHMS = 4
 SMALLEST_SINGULAR = 3e-16
 """Relative to the largest; what lies below is rounding."""
-WORST_FIT = 1e-11
+WORST_FIT = 1e-12
 """Largest misfit accepted, relative to the kernel's size: rounding gives up to 1e-13."""
 
 
@@ -54,7 +54,7 @@ def _values(parts: Parts, t: Real) -> Real:
     return np.asarray(parts.regular(np.exp(-t), -np.expm1(-t)), dtype=np.float64)
 
 
-def _graded(length: float, panels: int = 45, order: int = 16) -> tuple[Real, Real]:
+def graded(length: float, panels: int = 45, order: int = 16) -> tuple[Real, Real]:
     """Gauss-Legendre nodes and weights on [0, length], panels halving towards 0."""
     edges = length * np.concatenate(([0.0], 0.5 ** np.arange(panels - 1, -1, -1)))
     x, w = np.polynomial.legendre.leggauss(order)
@@ -105,7 +105,7 @@ class EveryZ:
     """z_0 = exp(-0.8) = 0.45 over the distance 1 of the next singularity, rounded up."""
 
     def __init__(self) -> None:
-        self._t, self._weights = _graded(self.SPLIT)
+        self._t, self._weights = graded(self.SPLIT)
         # dense where the powers of z differ, and as far down as any x needs
         angle = (np.arange(500) + 0.5) * np.pi / 1000
         self._far = self.SPLIT + (LARGEST_U + 5.0) * (1 - np.cos(angle)) ** 2
