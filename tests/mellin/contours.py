@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from itertools import pairwise
 from typing import ClassVar, Protocol
 
 import numpy as np
@@ -22,13 +23,9 @@ SMALL_X_FROM = 1.5
 """u above which kernels are needed down to z = 0 (see `representations`)."""
 LEAST_U, LARGEST_U = 0.03, 21.0
 """ln(1/x) at x = 0.97 and 8e-10: what is served."""
-_LARGE_X = (
-    (6.0, 0.5, SMALL_X_FROM),
-    (14.0, 0.2, 0.5),
-    (35.0, 0.08, 0.2),
-    (90.0, LEAST_U, 0.08),
-)
-"""Start, least and largest u: the saddle point of x^-N B(N, b+1) is near (b+1)/u."""
+_LARGE_X_EDGES = (SMALL_X_FROM, 0.8, 0.5, 0.3, 0.18, 0.11, 0.065, LEAST_U)
+_START_TIMES_U = 8.0
+"""The saddle point of x^-N B(N, b+1) is near N = (b+1)/u: lines for b = 3 to 10."""
 ORDER = 28
 """Nodes in a panel. 20 leave 1e-12 where the line passes the singularity of ln^4 z at N = 0."""
 _REACH = 42.0
@@ -116,4 +113,5 @@ class Contour:
 def contours(start: float, order: int = ORDER) -> tuple[Contour, ...]:
     """Return the lines that serve every x, the one of small x leaving the axis at `start`."""
     small = Contour(start, SMALL_X_FROM, LARGEST_U, order)
-    return (small, *(Contour(c, least, most, order) for c, least, most in _LARGE_X))
+    intervals = pairwise(_LARGE_X_EDGES)
+    return (small, *(Contour(_START_TIMES_U / m, least, m, order) for m, least in intervals))

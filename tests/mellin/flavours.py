@@ -40,7 +40,7 @@ class State:
         )
 
     def combination(self, plus: Mapping[int, float], minus: Mapping[int, float]) -> Complex:
-        """Return sum_q plus[q] (q + qbar) + minus[q] (q - qbar); key 21 of plus is the gluon."""
+        """Return sum_q plus[q] (q + qbar) + minus[q] (q - qbar); plus[21] is of the gluon."""
         total = np.zeros_like(self.gluon)
         for q, weight in plus.items():
             total = total + weight * (self.gluon if q == GLUON else self.plus[q - 1])

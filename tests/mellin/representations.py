@@ -125,7 +125,7 @@ class EveryZ:
         largest = np.max(np.abs(values[self._far < 3.0]))
         # without 1/z, P and not z P is fitted: its relative accuracy at small z is
         # needed, for non-singlet densities are small there too
-        first = 1 if abs(values[-1]) < 1e8 * largest else 0
+        first = 1 if abs(values[-1]) < 1e7 * largest else 0
         leading = values if first else values * np.exp(-self._far)
         growth = _power_of_growth(self._far, leading)
         far = self._fit(first, growth)(leading) * np.exp(-first * self.SPLIT)

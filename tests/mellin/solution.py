@@ -1,8 +1,12 @@
 """The solution: densities at any scale from densities at a start scale.
 
 Conventions: a = alpha_s/(4 pi); d f/d ln mu^2 = sum_k a^(k+1) P_k * f; moments
-int_0^1 dx x^(N-1) f(x); scales in GeV^2; results x f(x). Good to about 1e-11 relative
-for 1e-9 <= x <= 0.95 (measured in `test_convergence`).
+int_0^1 dx x^(N-1) f(x); scales in GeV^2; results x f(x). At NNLO on inputs x^a (1-x)^b,
+a = -0.4 to 0.8, b = 1.5 to 10, what is its own doing was measured to change 5e-13 of each
+flavour for 1e-9 <= x <= 0.4, 1e-11 for x <= 0.8 and 5e-11 at x = 0.9 (`test_convergence`
+keeps watch): it is rounding, of the valence where a sea is 1e-5 of it. A gluon or q + qbar
+that vanishes with x, which evolution allows for short distances only, is good to 1e-15
+x^-0.35 absolute.
 """
 
 from __future__ import annotations
@@ -89,6 +93,9 @@ class MellinSolution:
     ) -> None:
         if order not in (0, 1, 2):
             message = f"order is 0, 1 or 2, not {order!r}"
+            raise ValueError(message)
+        if running_loops not in (None, 1, 2, 3):
+            message = f"running_loops is 1, 2 or 3, not {running_loops!r}"
             raise ValueError(message)
         self._moments = moments_of(kernels)
         self._order, self._kind, self._form = order, kind, form

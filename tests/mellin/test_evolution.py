@@ -11,6 +11,7 @@ from scipy.integrate import solve_ivp
 from mellin import evolution, toy_input
 from mellin.contours import contours
 from mellin.coupling import Coupling, betas
+from mellin.inputs import beta_moments
 from mellin.kernel_moments import Kernels, moments_of
 from mellin.solution import MellinSolution
 
@@ -27,7 +28,7 @@ def benchmark(kernels: Kernels, order: int, **changes: object) -> MellinSolution
         "kind": "pole",
         "flavours": (3, 5),
     }
-    return MellinSolution(kernels, **(settings | changes))  # type: ignore[arg-type]
+    return MellinSolution(kernels, **(settings | changes))
 
 
 @pytest.mark.parametrize("which", [0, 2, 4])
@@ -99,7 +100,7 @@ def test_coupling_down_and_up_again() -> None:
 
 
 @pytest.mark.parametrize("order", [0, 1, 2])
-@pytest.mark.parametrize("change", ["kappa", "threshold", "mass"])
+@pytest.mark.parametrize("change", ["kappa", "threshold", "intrinsic", "mass"])
 def test_conventions_differ_by_one_order_more(
     kernels: Kernels, order: int, change: str
 ) -> None:
@@ -110,6 +111,11 @@ def test_conventions_differ_by_one_order_more(
     """
     if change == "mass" and order < 2:
         pytest.skip("the kind of mass first matters at NNLO")
+    if change == "intrinsic" and order == 2:
+        pytest.skip("no a^2 matching of an intrinsic density is known")
+    moments = dict(toy_input.MOMENTS)
+    if change == "intrinsic":  # thresholds again, with charm below its own
+        moments[4] = moments[-4] = beta_moments(0.3, 0.2, 4.0)
     x = np.array([1e-3, 0.1, 0.5])
     q2, final = 2.0, 400.0
     combinations = {"g": {21: 1.0}, "s": {3: 1.0, -3: 1.0}, "u_v": {2: 1.0, -2: -1.0}}
@@ -122,7 +128,7 @@ def test_conventions_differ_by_one_order_more(
             "alpha_s_q2": 2.0,
             "alpha_s_nf": 3,
         }
-        if changed and change == "threshold":
+        if changed and change in ("threshold", "intrinsic"):
             settings["threshold_ratios"] = (2.5, 1.0, 1.0)
         solution = benchmark(kernels, order, **settings)
         if changed and change == "kappa":
@@ -137,7 +143,7 @@ def test_conventions_differ_by_one_order_more(
             more["threshold_ratios"] = (9.0 / mass**2, 1.0, 1.0)
             solution = benchmark(kernels, order, **(settings | more))
         result = solution.evolve_combinations(
-            combinations, toy_input.MOMENTS, start_q2=q2, start_nf=3, q2=final, x=x
+            combinations, moments, start_q2=q2, start_nf=3, q2=final, x=x
         )
         return np.array(list(result.values()))
 
@@ -146,8 +152,9 @@ def test_conventions_differ_by_one_order_more(
     strong = (run(0.02, changed=True) - run(0.02, changed=False)) / base
     falls = np.log2(np.max(np.abs(strong), axis=1) / np.max(np.abs(weak), axis=1))
     # splitting functions lack a^(order+2), matching lacks a^(order+1); the term after next
-    # changes the power by a few times a ln(mu^2/mu_0^2) = 0.1, seen to be 0.1 to 0.4
-    assert np.all(falls > order + (1.5 if change == "kappa" else 0.6)), falls
+    # changes the power by a few times a ln(mu^2/mu_0^2), seen to be up to 0.2
+    expected = order + (2 if change == "kappa" else 1)
+    assert np.all(falls > expected - 0.3), falls
 
 
 @pytest.mark.parametrize("order", [0, 1, 2])
@@ -173,7 +180,7 @@ def test_down_inverts_up(kernels: Kernels, order: int) -> None:
 def test_momentum_with_intrinsic_charm(kernels: Kernels, order: int, tolerance: float) -> None:
     """Rounding at LO and NLO; at NNLO the parametrised kernels keep it to 3e-7."""
     moments = dict(toy_input.MOMENTS)
-    moments[4] = moments[-4] = lambda n: 0.01 / (n + 3)
+    moments[4] = moments[-4] = beta_moments(0.3, 0.2, 4.0)
     solution = benchmark(kernels, order, threshold_ratios=(1.5, 1.3, 1.0))
     two = np.array([2.0 + 0j])
     end = solution.evolve_moments(moments, two, start_q2=1.5, start_nf=3, q2=1e4)

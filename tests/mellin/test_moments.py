@@ -100,8 +100,19 @@ def test_continuation_to_the_left_against_closed_forms(name: str) -> None:
             line.invert(m * density.moments(line.points), u[here])
             for m in (computed, exact(line.points))
         )
-        # rounding: at x = 0.9 the result is 1e-2 to 1e-3 of what cancels in the integral
-        np.testing.assert_allclose(ours, known, rtol=1e-12)
+        mass = line.invert(density.moments(line.points) / line.points, u[here])
+        allowed = 1e-12 * np.abs(known) + rounding_of(kernel) * mass
+        assert np.all(np.abs(ours - known) <= allowed)
+
+
+def rounding_of(parts: Parts) -> float:
+    """Return 1e-14 of the largest value at z > 0.2.
+
+    Where P falls towards z = 1, as ln^4 z does or the pure singlet, its moments keep the
+    rounding of smaller z.
+    """
+    z = np.linspace(0.2, 0.999, 50)
+    return 1e-14 * float(np.max(np.abs(parts.regular(z, 1 - z))))
 
 
 def test_a_kernel_of_another_kind_is_refused() -> None:
@@ -176,11 +187,8 @@ def convolution(parts: Parts, density: Density, x: float) -> tuple[float, float]
     # [ln^k(1-z)/(1-z)]_+ over [0, x], which the subtraction leaves out
     rest = sum(c * np.log1p(-x) ** (k + 1) / (k + 1) for k, c in enumerate(parts.plus))
     local = f_x * (rest + parts.local)
-    # 1e-11 of the parts is what is claimed; where P falls towards z = 1, like the pure
-    # singlet, rounding is that of P at smaller z, 1e-13 with the parts of P themselves
-    z = np.linspace(0.2, 0.999, 50)
-    largest = float(np.max(np.abs(parts.regular(z, 1 - z))))
-    return regular + local, 1e-11 * (abs(regular) + abs(local)) + 1e-13 * largest * mass
+    # 1e-11 is what is claimed; the parts of NLO and NNLO kernels cancel further
+    return regular + local, 1e-11 * (abs(regular) + abs(local)) + 10 * rounding_of(parts) * mass
 
 
 @pytest.mark.parametrize("x", [1e-6, 1e-3, 0.1, 0.25, 0.5, 0.8])
