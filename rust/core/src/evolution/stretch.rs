@@ -101,9 +101,9 @@ impl StretchSolution {
         self.steps[(share.max(0.0) as usize).min(self.steps.len() - 1)].at(s)
     }
 
-    /// Estimated error from row `first_row` to the row before the last, relative to the largest value of each entry.
-    pub fn error(&self, first_row: usize) -> f64 {
-        self.steps.iter().map(|step| step.error(first_row)).fold(0.0, f64::max)
+    /// Estimated error of some rows, relative to the largest value of each entry over a step.
+    pub fn error(&self, rows: &[usize]) -> f64 {
+        self.steps.iter().map(|step| step.error(rows)).fold(0.0, f64::max)
     }
 }
 

@@ -133,15 +133,14 @@ impl Dense {
         Matrix::from_values(self.rows, self.cols, self.values.row(last).to_vec())
     }
 
-    /// Estimated error of each entry relative to its largest value over the step, the largest over all entries from
-    /// row `first_row` to the row before the last.
+    /// Estimated error of each entry of some rows relative to its largest value over the step, the largest of all.
     ///
     /// The first Chebyshev coefficient in s that is left out, from the last two kept, which fall geometrically.
-    pub fn error(&self, first_row: usize) -> f64 {
+    pub fn error(&self, rows: &[usize]) -> f64 {
         let degree = self.nodes.points().len() - 1;
         let mut series = vec![0.0; degree + 1];
         let mut worst = 0.0_f64;
-        for entry in first_row * self.cols..(self.rows - 1) * self.cols {
+        for entry in rows.iter().flat_map(|row| row * self.cols..(row + 1) * self.cols) {
             series.iter_mut().enumerate().for_each(|(node, value)| *value = self.values.row(node)[entry]);
             let largest = series.iter().fold(0.0_f64, |most, value| most.max(value.abs()));
             let falling = coefficients(&series);

@@ -199,12 +199,15 @@ impl LegColumns {
         columns
     }
 
-    /// Estimated error relative to each value, panel 0 (x near 1, where values fall over decades) left out.
-    pub fn error(&self) -> f64 {
-        let first = if self.offsets.len() > 2 { self.offsets[1] } else { 0 };
-        let components = if self.start.family == Family::Plus { 2 } else { 1 };
-        let sum = self.sum.error(components * first);
-        self.differences.iter().map(|(_, solution)| solution.error(first)).fold(sum, f64::max)
+    /// Estimated error relative to each value at the nodes named, over the whole leg.
+    pub fn error(&self, nodes: &[usize]) -> f64 {
+        let sum = if self.start.family == Family::Plus {
+            let rows = |component| nodes.iter().map(move |&i| place(&self.offsets, component, i));
+            self.sum.error(&rows(0).chain(rows(1)).collect::<Vec<_>>())
+        } else {
+            self.sum.error(nodes)
+        };
+        self.differences.iter().map(|(_, solution)| solution.error(nodes)).fold(sum, f64::max)
     }
 }
 

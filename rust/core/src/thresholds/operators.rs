@@ -281,6 +281,9 @@ impl Inputs {
     /// Unit columns would tell little: the error of the steps lies in what is rough in x, of which a density has next
     /// to nothing.
     fn probe(&self, theory: &Theory, grid: &Grid, prepared: &Prepared) -> Result<f64> {
+        // Nearer to x = 1 values fall over decades, and no accuracy relative to them is promised.
+        const LARGEST_X: f64 = 0.9;
+        let judged: Vec<usize> = (0..grid.nodes()).filter(|&i| grid.u()[i] >= -LARGEST_X.ln()).collect();
         let errors = self
             .families(prepared)
             .par_iter()
@@ -299,7 +302,7 @@ impl Inputs {
                     start.set_heavy(*flavour, start.empty());
                 }
                 let legs = prepared.carry(theory, &start, 0)?;
-                Ok(legs.iter().map(LegColumns::error).fold(0.0, f64::max))
+                Ok(legs.iter().map(|leg| leg.error(&judged)).fold(0.0, f64::max))
             })
             .collect::<Result<Vec<f64>>>()?;
         Ok(errors.into_iter().fold(0.0, f64::max))
