@@ -232,9 +232,8 @@ def _verify(data: memoryview, path: PathLike) -> tuple[int, bytes]:
         raise StoreError(f"{shown(path)}: damaged: the first {_BLOCK} bytes do not match their checksum")
     _, version, block, length, digest = _HEAD.unpack(head[: _HEAD.size])
     if version > FORMAT_VERSION:
-        raise StoreError(
-            f"{shown(path)}: made by a newer release (format {version}; this one reads up to {FORMAT_VERSION})"
-        )
+        limit = f"this one reads up to {FORMAT_VERSION}"
+        raise StoreError(f"{shown(path)}: made by a newer release (format {version}; {limit})")
     if version < 1 or block != _BLOCK:
         raise StoreError(f"{shown(path)}: format {version} with a head of {block} bytes is not known")
     if len(data) - _BLOCK != length:
