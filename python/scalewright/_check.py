@@ -202,11 +202,11 @@ def real(
 def whole(name: str, value: object, *, least: int | None = None, most: int | None = None) -> int:
     """Return one whole number within limits."""
     if isinstance(value, bool | np.bool_) or (isinstance(value, np.ndarray) and value.ndim != 0):
-        refuse(name, value, f"{name} must be a whole number")
+        refuse(name, value, f"{name} must be a whole number, not {type(value).__name__}")
     try:
         number = operator.index(value[()] if isinstance(value, np.ndarray) else value)  # type: ignore[arg-type]
     except (TypeError, IndexError):
-        refuse(name, value, f"{name} must be a whole number")
+        refuse(name, value, f"{name} must be a whole number, not {type(value).__name__}")
     if (least is not None and number < least) or (most is not None and number > most):
         limits = f"from {least} to {most}" if most is not None else f"at least {least}"
         if least is None:
