@@ -312,12 +312,17 @@ def function(name: str, value: object) -> None:
         refuse(name, value, f"{name} must be callable, not {type(value).__name__}")
 
 
-def called(name: str, function: Any, *arguments: object, shape: tuple[int, ...]) -> Floats:
-    """Return the finite values of a user's function, with the wanted shape; one number stands for all."""
+def raised(name: str, function: Any, *arguments: object) -> Any:
+    """Return what a user's function returns; if it raises, say which and what, as an `InputError`."""
     try:
-        result = function(*arguments)
+        return function(*arguments)
     except Exception as error:
         raise InputError(f"{name} raised {type(error).__name__}: {error}") from error
+
+
+def called(name: str, function: Any, *arguments: object, shape: tuple[int, ...]) -> Floats:
+    """Return the finite values of a user's function, with the wanted shape; one number stands for all."""
+    result = raised(name, function, *arguments)
     values = real_array(f"value of {name}", result)
     if values.ndim != 0 and values.shape != shape:
         raise InputError(

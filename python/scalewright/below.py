@@ -28,8 +28,8 @@ _LAST_U = 690.0
 #: A step that adds less than this part of the sum ends the integration.
 _SMALL = 1e-14
 
-#: Rounding of a difference q - qbar in parts of |q| + |qbar|; found by no trial: a function of a few operations
-#: is good to a few units of 2^-53 = 1.1e-16.
+#: Rounding of a difference q - qbar in parts of |q| + |qbar|: a function of a few operations is good to a few
+#: units of 2^-53 = 1.1e-16.
 _NOISE = 1e-15
 
 

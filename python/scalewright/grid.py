@@ -46,7 +46,7 @@ class ChebyshevGrid:
     --------
     >>> grid = ChebyshevGrid(x_min=1e-5)
     >>> values = grid.x**0.5 * (1 - grid.x) ** 3
-    >>> abs(grid.interpolate(values, 0.25) - 0.5 * 0.75**3) < 1e-7
+    >>> bool(abs(grid.interpolate(values, 0.25) - 0.5 * 0.75**3) < 1e-7)
     True
     """
 
