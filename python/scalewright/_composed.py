@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from . import _flows
-from ._check import Floats, show
+from ._check import show
 from ._route import Held, Route, listed
 from .errors import InputError
 

@@ -19,13 +19,11 @@ from ._progress import Progress, watcher
 from ._route import Live, Route
 from .densities import Densities
 from .grid import ChebyshevGrid
-from .kernels import SplittingKernel
+from .kernels import CHANNELS, SplittingKernel
 from .operators import Operators
 from .theory import ORDERS, Theory
 
 __all__ = ["build_operators", "evolve"]
-
-CHANNELS = ("ns+", "ns-", "ns-sea", "pure singlet", "qg", "gq", "gg")
 
 Further: TypeAlias = Sequence[Mapping[str, SplittingKernel]]
 
