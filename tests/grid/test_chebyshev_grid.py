@@ -43,9 +43,7 @@ def test_standard_and_fine_keep_within_their_numbers_of_nodes():
 
 def test_interpolation_is_that_of_scipy(one_panel):
     values = np.cos(3 * one_panel.u) - 1.0
-    reference = BarycentricInterpolator(
-        np.concatenate([[0.0], one_panel.u]), np.concatenate([[0.0], values])
-    )
+    reference = BarycentricInterpolator(np.concatenate([[0.0], one_panel.u]), np.concatenate([[0.0], values]))
     u = np.linspace(0.01, 2.99, 57)
     # 15 Lobatto nodes have a Lebesgue constant below 3: rounding times a few
     np.testing.assert_allclose(

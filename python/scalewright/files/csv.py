@@ -152,7 +152,7 @@ def _columns(path: PathLike) -> tuple[dict[str, Floats], list[int]]:
         text = read_whole(path).decode("utf-8-sig")
     except UnicodeDecodeError as error:
         raise InputError(f"{shown(path)}: not UTF-8 text at byte {error.start}") from error
-    reader = csv.reader(text.splitlines())
+    reader = csv.reader(text.splitlines(), strict=True)
     table: list[list[float]] = []
     lines: list[int] = []
     names: list[str] = []
