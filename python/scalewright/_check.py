@@ -29,8 +29,8 @@ def show(value: object) -> str:
     if isinstance(value, float | np.floating):
         text = repr(float(value))
         return text.removesuffix(".0")
-    if isinstance(value, np.integer):
-        return str(int(value))
+    if isinstance(value, np.generic):
+        return show(value.item()) if not isinstance(value.item(), np.generic) else repr(value)
     if isinstance(value, np.ndarray) and value.ndim == 0:
         return show(value[()])
     if isinstance(value, np.ndarray):
@@ -256,13 +256,13 @@ def scale(name: str, value: object) -> float:
 
 def scales(name: str, value: object) -> Floats:
     """Return squared scales in GeV^2, (scale,): finite, positive, at least one; a number makes one."""
-    array = np.atleast_1d(real_array(name, value))
-    if array.ndim != 1:
+    array = real_array(name, value)
+    if array.ndim > 1:
         _refuse_axes(name, array, 1)
     if array.size == 0:
         refuse(name, array, f"{name} must hold at least one scale")
     refuse_where(name, array, array <= 0.0, f"{name} must lie in (0, inf) GeV^2")
-    return array
+    return np.atleast_1d(array)
 
 
 def flavour_count(name: str, value: object) -> int:
@@ -291,9 +291,11 @@ def distinct_scales(name: str, q2: Floats, nf: Integers) -> None:
 
 def partons(name: str, value: object) -> tuple[int, ...]:
     """Return PDG numbers, each once: 21 (gluon), 1 to 6 (d, u, s, c, b, t), -1 to -6; at least one."""
+    if isinstance(value, str) or (isinstance(value, list | tuple) and any(isinstance(f, str) for f in value)):
+        refuse(name, value, f"{name} must be PDG numbers, not names")
     array = whole_array(name, value)
     if array.ndim != 1:
-        refuse(name, array if array.ndim else array[()], f"{name} must be a list of PDG numbers")
+        refuse(name, array, f"{name} must be a list of PDG numbers")
     if array.size == 0:
         refuse(name, (), f"{name} must hold at least one PDG number")
     known = np.isin(array, np.asarray(PARTONS))

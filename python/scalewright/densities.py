@@ -128,8 +128,12 @@ class Densities(Questions):
             If the grid resolves a function worse than 1e-6 of its largest value in a panel.
         """
         if not isinstance(functions, Mapping):
-            _check.refuse("functions", functions, "must be a mapping from PDG numbers to functions")
-        flavours = _check.partons("flavours", list(functions))
+            _check.refuse(
+                "functions",
+                functions,
+                f"must map PDG numbers to functions, and is a {type(functions).__name__}",
+            )
+        flavours = _check.partons("functions", list(functions))
         for flavour, function in zip(flavours, functions.values(), strict=True):
             _check.function(f"functions[{flavour}]", function)
         checked = {

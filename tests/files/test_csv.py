@@ -78,10 +78,10 @@ def test_other_x_are_interpolated_only_when_allowed(tmp_path, grid):
     np.testing.assert_allclose(
         made.values[0, 0, inside], spline(np.log(grid.x[inside])), rtol=1e-11, atol=1e-14
     )
-    # h = 0.023 in ln x, error ~ h^2 of the second derivative at the natural ends, h^4/384 of the fourth inside
+    # h = 0.023 in ln x, error ~ h^2 of the second derivative at the natural ends, h^4/384 of the fourth in
     middle = (grid.x > 2e-4) & (grid.x < 0.5)
     np.testing.assert_allclose(made.values[0, 0, middle], published(21, grid.x[middle]), rtol=1e-6)
-    with pytest.raises(RangeError, match="its smallest x is 0.0001: the grid reaches down to 1e-05"):
+    with pytest.raises(RangeError, match=r"its smallest x is 0\.0001: the grid reaches down to 1e-05"):
         Densities.from_csv(path, ChebyshevGrid(1e-5), interpolate=True)
 
 
