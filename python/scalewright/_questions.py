@@ -130,7 +130,7 @@ class Questions:
             If a scale is not at hand or an `x` lies below `x_min`.
         """
         asked, indices = self._find(q2, nf)
-        result = self._grid.interpolate(self._combined(flavour)[indices], x)
+        result = self._grid.interpolate(self._combined(flavour, indices), x)
         return result if asked else result[0]
 
     def scale(self, q2: float | None, nf: int | None = None) -> Self:
@@ -239,8 +239,8 @@ class Questions:
         """Drop the axis of scales where there is no list of them."""
         return result[0] if self._one else result
 
-    def _combined(self, name: int | str) -> Floats:
-        """Return the nodal values of a combination, (scale, replica, node)."""
+    def _combined(self, name: int | str, indices: list[int] | None = None) -> Floats:
+        """Return the nodal values of a combination at some or all scales, (scale, replica, node)."""
         held = {abs(number) for number in self._flavours if number != 21}
         weights = combination(name, sorted(held | set(range(1, int(self._nf.max()) + 1))))
         missing = [number for number in weights if number not in self._flavours]
@@ -248,9 +248,11 @@ class Questions:
             names = ", ".join(flavour_name(number) for number in missing)
             have = ", ".join(flavour_name(number) for number in self._flavours)
             _check.refuse("flavour", name, f"these densities do not hold {names}, only {have}")
-        result = np.zeros((self.scales, self.replicas, self._grid.nodes))
+        scales = self.scales if indices is None else len(indices)
+        result = np.zeros((scales, self.replicas, self._grid.nodes))
         for number, weight in weights.items():
-            result += weight * self._values[:, :, self._flavours.index(number)]
+            held_values = self._values[:, :, self._flavours.index(number)]
+            result += weight * (held_values if indices is None else held_values[indices])
         return result
 
     def _find(self, q2: ArrayLike | None, nf: ArrayLike | None) -> tuple[bool, list[int]]:

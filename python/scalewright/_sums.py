@@ -26,7 +26,7 @@ PROMISED = 1e-6
 def momentum(of: Questions, part: str) -> Floats:
     """Return the momentum of all flavours held, (scale, replica)."""
     _check.choice("part", part, ("total", "above"))
-    above: Floats = of._values.sum(axis=2) @ of._grid.handle().moment_weights(1.0)
+    above: Floats = (of._values @ of._grid.handle().moment_weights(1.0)).sum(axis=2)
     if part == "above":
         return above
     return _with_below("momentum", of, above, None if of._below is None else of._below.momentum)
@@ -78,8 +78,11 @@ def _panel_starts(of: Questions) -> list[int]:
     return [int(np.searchsorted(grid.u, edge, side="right")) for edge in grid.edges[:-1]]
 
 
-def warn_if_coarse(of: Questions) -> None:
-    """Warn where a density that a user brought is resolved worse than promised."""
+def warn_if_coarse(of: Questions, depth: int) -> None:
+    """Warn where a density that a user brought is resolved worse than promised.
+
+    `depth` is how many calls below the user's line the caller stands.
+    """
     errors = resolution(of)
     worst = np.unravel_index(int(np.argmax(errors)), errors.shape)
     if errors[worst] <= PROMISED:
@@ -91,4 +94,4 @@ def warn_if_coarse(of: Questions) -> None:
         f"x = {low:.3g} to {high:.3g}, not to {PROMISED:.0e}: "
         'take resolution="fine", or a function that is smooth there'
     )
-    warnings.warn(text, ResolutionWarning, stacklevel=4)
+    warnings.warn(text, ResolutionWarning, stacklevel=depth + 2)

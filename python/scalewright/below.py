@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
@@ -17,10 +18,9 @@ from .errors import InputError
 
 __all__ = ["Below"]
 
-#: Length in u = ln(1/x) of one step of the integration, and the Gauss-Legendre nodes in it: a power x^a with
-#: |a| <= 2 is integrated to rounding over such a step.
-_STEP = 2.0
-_NODES, _WEIGHTS = np.polynomial.legendre.leggauss(16)
+#: Length in u = ln(1/x) of one step of the integration, and the number of Gauss-Legendre nodes in it: a power
+#: x^a with |a| <= 2 is integrated to rounding over such a step.
+_STEP, _ORDER = 2.0, 16
 
 #: The integration ends here at the latest: x = exp(-690) is the end of the normal floats.
 _LAST_U = 690.0
@@ -120,21 +120,29 @@ def from_functions(functions: Mapping[int, Callable[[Floats], Floats]], u_min: f
     return Below(np.array([[_integral(momentum, u_min)]]), np.array([[numbers]]))
 
 
+@cache
+def _rule() -> tuple[Floats, Floats]:
+    """Return Gauss-Legendre nodes and weights on [0, 1]; made on first use, since it is slow to import."""
+    nodes, weights = np.polynomial.legendre.leggauss(_ORDER)
+    return 0.5 * (1.0 + nodes), 0.5 * weights
+
+
 def _integral(integrand: Callable[[Floats], tuple[Floats, Floats]], u_min: float) -> float:
     """Integrate over u from `u_min` upwards; nan where that does not converge.
 
     The integrand returns values and their rounding.
     """
+    nodes, weights = _rule()
     total, start = 0.0, u_min
     while start < _LAST_U:
-        u = start + 0.5 * _STEP * (1.0 + _NODES)
+        u = start + _STEP * nodes
         try:
             values, noise = integrand(np.exp(-u))
         except InputError:  # overflow of a function that is fine on the grid: x^-2 at 1e-290
             return float("nan")
-        step = 0.5 * _STEP * float(_WEIGHTS @ values)
+        step = _STEP * float(weights @ values)
         total += step
-        if abs(step) <= max(_SMALL * abs(total), 0.5 * _STEP * float(_WEIGHTS @ noise)):
+        if abs(step) <= max(_SMALL * abs(total), _STEP * float(weights @ noise)):
             return total
         start += _STEP
     return float("nan")

@@ -204,7 +204,7 @@ class Densities(Questions):
         values = np.stack([part[0] for part in parts])[:, np.newaxis]
         known = _sampling.joined([part[1] for part in parts])
         made = cls._of(grid, scales, counts, flavours, np.ascontiguousarray(values), known, one)
-        _sums.warn_if_coarse(made)
+        _sums.warn_if_coarse(made, depth=2)
         return made
 
     @classmethod
@@ -244,7 +244,7 @@ class Densities(Questions):
         table = read_lattice(path)
         values = _lattice.on_nodes(str(path), table.x, table.values, grid, interpolate)
         made = cls._of(grid, table.q2, table.nf, table.flavours, values, None, table.q2.size == 1)
-        _sums.warn_if_coarse(made)
+        _sums.warn_if_coarse(made, depth=1)
         return made
 
     @classmethod

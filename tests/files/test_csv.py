@@ -70,8 +70,9 @@ def test_other_x_are_interpolated_only_when_allowed(tmp_path, grid):
     match = f"its 399 x below 1 are not the {grid.nodes} nodes of the grid.*interpolate=True"
     with pytest.raises(InputError, match=match):
         Densities.from_csv(path, grid)
-    with pytest.warns(ResolutionWarning, match="g is resolved"):  # a spline is not smooth in its knots
+    with pytest.warns(ResolutionWarning, match="g is resolved") as caught:  # a spline has knots
         made = Densities.from_csv(path, grid, interpolate=True)
+    assert caught[0].filename == __file__
     spline = CubicSpline(np.log(x), published(21, x), bc_type="natural")
     inside = grid.x > 1.01e-4
     # the same spline in another variable: rounding
