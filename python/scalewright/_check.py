@@ -82,7 +82,12 @@ def refuse_where(
 
 
 def real_array(
-    name: str, value: object, *, ndim: int | None = None, shape: tuple[int | None, ...] | None = None
+    name: str,
+    value: object,
+    *,
+    ndim: int | None = None,
+    shape: tuple[int | None, ...] | None = None,
+    unknown: bool = False,
 ) -> Floats:
     """Return finite real numbers as a C-ordered float64 array, without a copy where none is needed.
 
@@ -96,6 +101,8 @@ def real_array(
         Number of axes wanted.
     shape : tuple, optional
         Shape wanted; None stands for any length.
+    unknown : bool
+        Whether nan may stand for what is not known.
     """
     array = _numbers(name, value)
     wanted = len(shape) if shape is not None else ndim
@@ -114,7 +121,8 @@ def real_array(
     with np.errstate(all="ignore"):
         suspicious = not np.isfinite(np.sum(floats))
     if suspicious:
-        refuse_where(name, array, ~np.isfinite(floats), f"{name} must be finite")
+        bad = np.isinf(floats) if unknown else ~np.isfinite(floats)
+        refuse_where(name, array, bad, f"{name} must be finite")
     return floats
 
 
@@ -160,6 +168,11 @@ def whole_array(name: str, value: object, *, ndim: int | None = None) -> Integer
     if array.dtype == np.uint64:
         refuse_where(name, array, array > np.uint64(2**63 - 1), f"{name} must be below 2^63")
     return np.asarray(array, dtype=np.int64, order="C")
+
+
+def is_one(name: str, value: object) -> bool:
+    """Say whether `value` is one number and not a list of them; refuse what is neither."""
+    return _numbers(name, value).ndim == 0 if not _is_empty(value) else False
 
 
 def _is_empty(value: object) -> bool:

@@ -135,7 +135,7 @@ class Questions:
 
     def scale(self, q2: float | None, nf: int | None = None) -> Self:
         """Return the densities of one scale at hand, without copying; arguments as for `at`."""
-        if q2 is not None and np.ndim(q2) != 0:
+        if q2 is not None and not _check.is_one("q2", q2):
             _check.refuse("q2", q2, "q2 must be one number")
         _, indices = self._find(q2, nf)
         part = slice(indices[0], indices[0] + 1)
@@ -261,7 +261,7 @@ class Questions:
             if self.scales != 1:
                 _check.refuse("q2", q2, f"q2 must be given: there are {self.scales} scales")
             q2 = float(self._q2[0])
-        many = np.ndim(q2) != 0
+        many = not _check.is_one("q2", q2)
         asked = _check.scales("q2", q2)
         counts = None if nf is None else _check.flavour_counts("nf", nf, asked.size)
         return many, [

@@ -48,7 +48,7 @@ class Below:
     Raises
     ------
     InputError
-        If the shapes do not fit each other.
+        If the shapes do not fit each other, or a number is infinite.
     """
 
     momentum: Floats
@@ -56,7 +56,7 @@ class Below:
 
     def __post_init__(self) -> None:
         for name in ("momentum", "number"):
-            array = np.array(getattr(self, name), dtype=np.float64, order="C")
+            array = _check.real_array(name, getattr(self, name), unknown=True).copy()
             array.flags.writeable = False
             object.__setattr__(self, name, array)
         momentum, number = self.momentum.shape, self.number.shape

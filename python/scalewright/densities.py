@@ -82,9 +82,10 @@ class Densities(Questions):
             want in (None, has) for want, has in zip(expected, array.shape, strict=True)
         )
         if not fits:
+            of = "one q2" if one else "a list of q2"
             words = ", ".join((*lead, "flavour", "node"))
             want = ", ".join("any" if n is None else str(n) for n in expected)
-            _check.refuse("values", array, f"the axes must be ({words}) = ({want})")
+            _check.refuse("values", array, f"the axes must be ({words}) = ({want}) for {of}")
         array = array[np.newaxis] if one else array
         known = _below.check(below, array.shape[0], array.shape[1])
         self._fill(grid, scales, counts, numbers, array, known, one)
@@ -328,9 +329,9 @@ def _check_grid(grid: object) -> None:
 
 def _check_scales(q2: ArrayLike, nf: ArrayLike) -> tuple[bool, Floats, Integers]:
     """Return whether there is one scale, not a list, and scales and numbers of flavours as arrays."""
-    one = np.ndim(q2) == 0
+    one = _check.is_one("q2", q2)
     scales = _check.scales("q2", q2)
-    if one and np.ndim(nf) != 0:
+    if one and not _check.is_one("nf", nf):
         _check.refuse("nf", nf, "nf must be one number where q2 is one")
     counts = _check.flavour_counts("nf", nf, scales.size)
     _check.distinct_scales("q2", scales, counts)

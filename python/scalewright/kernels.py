@@ -253,4 +253,4 @@ class SplittingKernel:
 
 def _coefficients(name: str, value: object) -> Floats:
     """Return coefficients as an array, (power,); there may be none."""
-    return _check.real_array(name, np.zeros(0) if value == () else value, ndim=1)
+    return _check.real_array(name, value, ndim=1)

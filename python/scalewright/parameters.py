@@ -53,7 +53,7 @@ class QuarkMasses:
     Parameters
     ----------
     charm, bottom, top : float
-        In GeV, rising.
+        In GeV, rising, in (0, 1e100).
     kind : {"msbar", "pole"}
         MS-bar masses m(m), or pole masses.
 
@@ -75,7 +75,9 @@ class QuarkMasses:
 
     def __post_init__(self) -> None:
         for name in ("charm", "bottom", "top"):
-            set_field(self, name, _check.real(name, getattr(self, name), above=0.0, unit="GeV"))
+            # the square must be a float too
+            mass = _check.real(name, getattr(self, name), above=0.0, below=1e100, unit="GeV")
+            set_field(self, name, mass)
         set_field(self, "kind", _check.choice("kind", self.kind, ("msbar", "pole")))
         for lighter, heavier in (("charm", "bottom"), ("bottom", "top")):
             if not getattr(self, lighter) < getattr(self, heavier):

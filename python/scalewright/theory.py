@@ -116,9 +116,10 @@ class Theory:
                 raise InputError("thresholds_q2 and threshold_mu2_ratio: give one of the two")
             given = _check.real_array("thresholds_q2", self.thresholds_q2, shape=(3,))
             set_field(self, "thresholds_q2", tuple(given.tolist()))
-        name = "thresholds_q2" if self.thresholds_q2 is not None else "mu_thr^2"
+        name = "thresholds_q2" if self.thresholds_q2 is not None else "threshold_mu2_ratio * mass^2"
         scales = np.asarray(self.threshold_scales)
-        _check.refuse_where(name, scales, scales <= 0.0, f"{name} must lie in (0, inf) GeV^2")
+        inside = (scales > 0.0) & np.isfinite(scales)
+        _check.refuse_where(name, scales, ~inside, f"{name} must lie in (0, inf) GeV^2")
         fallen = np.concatenate([[False], np.diff(scales) <= 0.0])
         _check.refuse_where(name, scales, fallen, "threshold scales must rise from charm to top")
 

@@ -115,7 +115,7 @@ THEORY = [
     (lambda g: Coupling(0.3, 2.0, True), "nf = True: nf must be a whole number, not bool"),
     (lambda g: QuarkMasses(charm=4.2), "bottom = 4.18: masses must rise, and charm = 4.2"),
     (lambda g: QuarkMasses(top=4), "top = 4: masses must rise, and bottom = 4.18"),
-    (lambda g: QuarkMasses(charm=-INF), "charm = -inf: charm must lie in (0, inf) GeV"),
+    (lambda g: QuarkMasses(charm=-INF), "charm = -inf: charm must lie in (0, 1e+100) GeV"),
     (
         lambda g: QuarkMasses(kind="MSbar"),
         'kind = \'MSbar\': kind must be one of "msbar", "pole"; did you mean "msbar"?',
@@ -195,12 +195,12 @@ DENSITIES = [
     (
         lambda g: g.densities(values=np.ones((2, 1, 5))),
         f"values = {ARRAY.format((2, 1, 5))}: "
-        "the axes must be (replica, flavour, node) = (any, 1, {nodes})",
+        "the axes must be (replica, flavour, node) = (any, 1, {nodes}) for one q2",
     ),
     (
         lambda g: g.densities(q2=[2.0], values=np.ones((1, 1, g.nodes))),
         "values = array of shape (1, 1, {nodes}) and dtype float64: "
-        "the axes must be (scale, replica, flavour, node) = (1, any, 1, {nodes})",
+        "the axes must be (scale, replica, flavour, node) = (1, any, 1, {nodes}) for a list of q2",
     ),
     (lambda g: g.spoilt(NAN, (1, 0, 7)), "values = nan at index (1, 0, 7): values must be finite"),
     (lambda g: g.spoilt(-INF, (0, 0, 0)), "values = -inf at index (0, 0, 0): values must be finite"),

@@ -121,7 +121,7 @@ def test_estimated_resolution_bounds_the_true_error():
 
 
 def test_a_kink_is_reported(grid):
-    with pytest.warns(ResolutionWarning, match=r"g is resolved to .* in x = .* to .*, not to 1e-06") as caught:
+    with pytest.warns(ResolutionWarning, match=r"g is resolved to .* in x = .*, not to 1e-06") as caught:
         made = Densities.sample(grid, 2.0, 3, {21: lambda x: abs(x - 0.2) * (1 - x)})
     assert caught[0].filename == __file__
     assert made.resolution().shape == (1, 1, grid.degrees.size)
