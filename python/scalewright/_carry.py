@@ -168,40 +168,37 @@ class Task:
         part = slice(index, index + 1)
         return replace(self, q2=self.q2[part], nf=self.nf[part])
 
-    def run(self, out: object = None, blocks: Floats | None = None) -> Densities:
-        """Apply; `blocks` are those of the task if they are at hand."""
+    def run(self, out: object = None, at_hand: tuple[Floats, Floats] | None = None) -> Densities:
+        """Apply; `at_hand` are blocks and flows of the task, if they are."""
         from . import _core
 
         shape = (self.q2.size, self.given.shape[0], len(self.made), self.grid.nodes)
         values = place(out, shape, self.given)
-        if blocks is None:
-            blocks = self.source.blocks(self.q2, self.nf, self.threads)
+        blocks, flows = at_hand or self.source.at(self.q2, self.nf, self.threads)
         _core.apply(
             names=self.source.names,
             light=self.source.light,
             values=blocks,
-            nf=self.nf,
             densities=self.given,
             in_flavours=np.asarray(self.route.allowed),
             out_flavours=np.asarray(self.made),
             out=values,
             threads=self.threads,
         )
-        under = self.below()
+        under = self.below(flows)
         return Densities(self.grid, q2=self.q2, nf=self.nf, flavours=self.made, values=values, below=under)
 
-    def below(self) -> Below | None:
+    def below(self, flows: Floats) -> Below | None:
         """Return what lies below x_min afterwards: what lay there, and what has flowed there since."""
         if self.before is None:
             return None
-        rows = np.moveaxis(self.source.flows(self.q2, self.nf), 1, 0)
-        flows = dict(zip(self.source.flow_names, rows, strict=True))
+        rows = dict(zip(self.source.flow_names, np.moveaxis(flows, 1, 0), strict=True))
         light = self.source.light
         combined = _flows.Input(self.given, self.route.allowed, light)
-        momentum = self.before.momentum + _flows.momentum(flows, combined)
+        momentum = self.before.momentum + _flows.momentum(rows, combined)
         numbers = np.repeat(self.before.number, self.nf.size, axis=0)
         for quark in range(1, max(self.made_of) + 1):
-            numbers[:, :, quark - 1] += _flows.number(flows, combined, quark, light)
+            numbers[:, :, quark - 1] += _flows.number(rows, combined, quark, light)
         return Below(momentum, numbers)
 
     @property

@@ -34,7 +34,8 @@ def composed(first: Operators, second: Operators) -> tuple[Route, Held]:
 
     _refuse_misfits(first, second)
     q2, nf = np.array([second.start_q2]), np.array([second.start_nf])
-    middle = first._source.blocks(q2, nf, 0)[0]
+    blocks, flows = first._source.at(q2, nf, 0)
+    middle = blocks[0]
     names, light, values = _core.compose(
         first_names=first.block_names,
         first_light=first.light,
@@ -44,13 +45,13 @@ def composed(first: Operators, second: Operators) -> tuple[Route, Held]:
         second_values=second.blocks,
     )
     rows = _flows.compose(
-        dict(zip(first._source.flow_names, first._source.flows(q2, nf)[0], strict=True)),
+        dict(zip(first._source.flow_names, flows[0], strict=True)),
         dict(zip(first.block_names, middle, strict=True)),
         first.light,
         dict(
             zip(
                 second._source.flow_names,
-                np.moveaxis(second._source.flows(second.q2, second.nf), 1, 0),
+                np.moveaxis(second._all()[1], 1, 0),
                 strict=True,
             )
         ),
@@ -58,8 +59,8 @@ def composed(first: Operators, second: Operators) -> tuple[Route, Held]:
     )
     route = Route(first.start_q2, first.start_nf, first.intrinsic, second.q2.copy(), second.nf.copy())
     error, steps = first.error + second.error, first.steps + second.steps
-    flows = np.stack(list(rows.values()), axis=1)
-    return route, Held(route, tuple(names), light, values, tuple(rows), flows, error, steps)
+    below = np.stack(list(rows.values()), axis=1)
+    return route, Held(route, tuple(names), light, values, tuple(rows), below, error, steps)
 
 
 def _refuse_misfits(first: Operators, second: Operators) -> None:

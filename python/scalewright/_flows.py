@@ -1,9 +1,11 @@
 """What flows below x_min: momentum and numbers that leave the grid, linear in the input.
 
-A flow is a row of one number a node: the row times the nodal values of a flavour combination is what has
-gone below x_min since the start scale. Rows are named like the blocks, "momentum<-gluon" or
-"number:charm-<-light-"; combinations are the gluon, light+ = sum of q + qbar over the flavours that act
-alike, charm+, and the same with minus for q - qbar.
+A flow is a row of one number a node: the row times the nodal values of a flavour combination is what has gone
+below x_min since the start scale. Rows are named like the blocks: "momentum<-gluon", "number:charm-<-light-".
+Combinations are the gluon; light+, the sum of q + qbar over the flavours that act alike; charm+ and so on;
+and the same with minus for q - qbar. "number:ns-" acts on what one flavour differs from the mean of them;
+where it is not held it equals "number:ns+", and where "number:light-<-light-" is not held it equals
+"number:ns-".
 """
 
 from __future__ import annotations
@@ -17,11 +19,6 @@ from ._check import Floats
 HEAVY = {4: "charm", 5: "bottom", 6: "top"}
 
 Rows = Mapping[str, Floats]
-
-
-def name_of(flavour: int) -> str:
-    """Return the name of a heavy flavour, as the blocks have it."""
-    return HEAVY[flavour]
 
 
 class Input:
@@ -71,34 +68,23 @@ def momentum(flows: Rows, given: Input) -> Floats:
     given : Input
         The input.
     """
-    gone = [
-        np.einsum("sn,rn->sr", row, given.named(name.removeprefix("momentum<-")))
-        for name, row in flows.items()
-        if name.startswith("momentum<-")
-    ]
-    return np.asarray(np.sum(gone, axis=0))
+    return np.asarray(sum(row @ given.named(source).T for source, row in _into(flows, "momentum").items()))
 
 
-def number(flows: Rows, given: Input, quark: int, light: int) -> Floats:
+def number(flows: Rows, given: Input, quark: int, light: int) -> Floats | float:
     """Return the number of q - qbar that went below x_min, (scale, replica); parameters as for `momentum`."""
-    valence = given.named("light-")
     if quark > light:
-        row = flows.get(f"number:{name_of(quark)}-<-light-")
-        own = flows.get(f"number:{name_of(quark)}-<-{name_of(quark)}-")
-        shape = (next(iter(flows.values())).shape[0], valence.shape[0])
-        gone = np.zeros(shape)
-        if row is not None:
-            gone += row @ valence.T
-        if own is not None:
-            gone += own @ given.minus(quark).T
-        return gone
-    own = flows["number:ns-"]
-    common = flows.get("number:light-<-light-", own)
-    return own @ (given.minus(quark) - valence / light).T + common @ (valence / light).T
+        rows = _into(flows, f"number:{HEAVY[quark]}-")
+        return sum((row @ given.named(source).T for source, row in rows.items()), 0.0)
+    own, valence = _own(flows), given.named("light-")
+    gone: Floats = own @ (given.minus(quark) - valence / light).T
+    for source, row in _common(flows).items():
+        gone = gone + row @ given.named(source).T / light
+    return gone
 
 
 def compose(
-    first: Rows, first_blocks: Rows, first_light: int, second: Rows, second_light: int
+    first: Rows, blocks: Rows, first_light: int, second: Rows, second_light: int
 ) -> dict[str, Floats]:
     """Return the rows of two steps, one after the other.
 
@@ -106,7 +92,7 @@ def compose(
     ----------
     first : mapping of name to ndarray, (node,)
         Rows of the first step to its end.
-    first_blocks : mapping of name to ndarray, (node, node)
+    blocks : mapping of name to ndarray, (node, node)
         Blocks of the first step to its end.
     first_light : int
         Number of flavours that act alike in the first step.
@@ -121,60 +107,80 @@ def compose(
         Rows of both, (scale, node).
     """
     made: dict[str, Floats] = {}
-    for name, row in first.items():
-        if name.startswith("momentum<-"):
-            made[name] = row + _momentum_after(
-                first_blocks, name.removeprefix("momentum<-"), second, second_light
-            )
-    ns = first_blocks.get("ns-", first_blocks["ns+"])
-    made["number:ns-"] = first["number:ns-"] + second["number:ns-"] @ ns
-    made |= _numbers_after(first, first_blocks, first_light, second, second_light)
+    for source, row in _into(first, "momentum").items():
+        made[f"momentum<-{source}"] = row + _momentum_after(blocks, source, second, second_light)
+    made["number:ns+"] = first["number:ns+"] + second["number:ns+"] @ blocks["ns+"]
+    if "number:ns-" in first or "number:ns-" in second:
+        made["number:ns-"] = _own(first) + _own(second) @ _ns_minus(blocks)
+    if any(name.startswith(("number:light-", *_HEAVY_ROWS)) for name in (*first, *second)):
+        sources = {source for rows in (blocks, first) for name in rows for source in _minus_source(name)}
+        for source in sorted(sources | {"light-"}):
+            made |= _numbers_after(first, blocks, first_light, second, second_light, source)
     return made
 
 
-def _heavies(least: int, most: int = 6) -> list[int]:
-    return [h for h in HEAVY if least < h <= most]
+_HEAVY_ROWS = tuple(f"number:{name}-" for name in HEAVY.values())
+
+
+def _into(flows: Rows, target: str) -> dict[str, Floats]:
+    """Return the rows of a target by their source."""
+    start = f"{target}<-"
+    return {name.removeprefix(start): row for name, row in flows.items() if name.startswith(start)}
+
+
+def _own(flows: Rows) -> Floats:
+    """Return the row that acts on what one flavour differs from the mean."""
+    return flows["number:ns-"] if "number:ns-" in flows else flows["number:ns+"]
+
+
+def _common(flows: Rows) -> dict[str, Floats]:
+    """Return the rows into the sum over the flavours that act alike."""
+    return {"light-": _own(flows)} | _into(flows, "number:light-")
+
+
+def _ns_minus(blocks: Rows) -> Floats:
+    return blocks["ns-"] if "ns-" in blocks else blocks["ns+"]
+
+
+def _minus_source(name: str) -> list[str]:
+    """Return the source of a block or row between minus combinations, if it is one."""
+    target, _, source = name.partition("<-")
+    return [source] if target.endswith("-") and source.endswith("-") else []
 
 
 def _momentum_after(blocks: Rows, source: str, second: Rows, light: int) -> Floats:
     """Return what the second step loses of what the first made of `source`."""
     gone = second["momentum<-gluon"] @ blocks[f"gluon<-{source}"]
     alike = blocks[f"light+<-{source}"]
-    for heavy in HEAVY:
-        block = blocks.get(f"{name_of(heavy)}+<-{source}")
+    for heavy, name in HEAVY.items():
+        block = blocks.get(f"{name}+<-{source}")
         if block is None:
             continue
         if heavy <= light:
             alike = alike + block
-        elif f"momentum<-{name_of(heavy)}+" in second:
-            gone = gone + second[f"momentum<-{name_of(heavy)}+"] @ block
+        elif f"momentum<-{name}+" in second:
+            gone = gone + second[f"momentum<-{name}+"] @ block
     return gone + second["momentum<-light+"] @ alike
 
 
-def _numbers_after(first: Rows, blocks: Rows, light: int, second: Rows, alike: int) -> dict[str, Floats]:
-    """Return the rows that act on the valence of the first step."""
-    ns = blocks.get("ns-", blocks["ns+"])
-    own, common = second["number:ns-"], second.get("number:light-<-light-", second["number:ns-"])
-    kept = blocks.get("light-<-light-", ns)
-    heavy_blocks = {h: blocks.get(f"{name_of(h)}-<-light-") for h in HEAVY}
-    valence = kept
-    for heavy in _heavies(light, alike):
-        block = heavy_blocks[heavy]
-        valence = valence if block is None else valence + block
-    made = {}
-    if "number:light-<-light-" in first or "number:light-<-light-" in second or "light-<-light-" in blocks:
-        share = light / alike
-        before = first.get("number:light-<-light-", first["number:ns-"])
-        made["number:light-<-light-"] = before + own @ (kept - share * valence) + share * common @ valence
-    for heavy in _heavies(light):
-        block, name = heavy_blocks[heavy], f"number:{name_of(heavy)}-<-light-"
-        parts = [first[name]] if name in first else []
-        if heavy <= alike:
-            share_of_one = valence / alike
-            alone = -share_of_one if block is None else block - share_of_one
-            parts.append(own @ alone + common @ share_of_one)
-        elif name in second:
-            parts.append(second[name] @ valence)
-        if parts:
-            made[name] = np.asarray(sum(parts))
+def _numbers_after(
+    first: Rows, blocks: Rows, light: int, second: Rows, alike: int, source: str
+) -> dict[str, Floats]:
+    """Return the rows of both steps into each number, from one source of the first step."""
+    zero = np.zeros_like(blocks["ns+"])
+    kept = blocks.get(f"light-<-{source}", _ns_minus(blocks) if source == "light-" else zero)
+    arriving = {h: blocks.get(f"{name}-<-{source}", zero) for h, name in HEAVY.items() if h > light}
+    # What the second step takes for its sources.
+    taken = {f"{HEAVY[h]}-": block for h, block in arriving.items() if h > alike}
+    taken["light-"] = valence = kept + sum((b for h, b in arriving.items() if h <= alike), zero)
+    own = _own(second)
+    common = sum(row @ taken[name] for name, row in _common(second).items()) / alike - own @ valence / alike
+    made = {f"number:light-<-{source}": _common(first).get(source, 0.0) + own @ kept + light * common}
+    for heavy, block in arriving.items():
+        name = f"number:{HEAVY[heavy]}-<-{source}"
+        later = own @ block + common
+        if heavy > alike:
+            rows = _into(second, f"number:{HEAVY[heavy]}-")
+            later = sum((row @ taken[of] for of, row in rows.items()), np.zeros_like(common))
+        made[name] = first.get(name, 0.0) + later
     return made

@@ -118,13 +118,20 @@ class Live:
         self.flow_names = tuple(evolution.flow_names)
         self.error, self.steps = evolution.error, evolution.steps
 
-    def blocks(self, q2: Floats, nf: Integers, threads: int) -> Floats:
-        """Return (scale, block, node, node)."""
-        return self._evolution.values(q2, nf, threads)
+    def refuse(self, q2: Floats, nf: Integers) -> None:
+        """Raise a `RangeError` if a scale is not served."""
+        ranges = self._evolution.ranges()
+        for scale, count in zip(q2, nf, strict=True):
+            slack = SAME_SCALE * scale
+            if not any(n == count and low - slack <= scale <= high + slack for n, low, high in ranges):
+                served = ", ".join(f"{show(low)} to {show(high)} (nf = {n})" for n, low, high in ranges)
+                asked = f"q2 = {show(scale)} (nf = {count})"
+                raise RangeError(f"{asked}: these operators serve {served} GeV^2; build them for more")
 
-    def flows(self, q2: Floats, nf: Integers) -> Floats:
-        """Return (scale, flow, node)."""
-        return self._evolution.flows(q2, nf)
+    def at(self, q2: Floats, nf: Integers, threads: int) -> tuple[Floats, Floats]:
+        """Return blocks (scale, block, node, node) and flows (scale, flow, node)."""
+        self.refuse(q2, nf)
+        return self._evolution.values(q2, nf, threads)
 
 
 @dataclass(frozen=True, eq=False)
@@ -144,21 +151,19 @@ class Held:
         for array in (self.values, self.flow_values):
             array.flags.writeable = False
 
-    def _at(self, q2: Floats, nf: Integers) -> list[int] | slice:
-        places = self.route.find(q2, nf)
-        if places is None:
+    def refuse(self, q2: Floats, nf: Integers) -> None:
+        """Raise a `RangeError` if a scale is not served."""
+        if self.route.find(q2, nf) is None:
             asked, at_hand = _words(q2, nf), _words(self.route.q2, self.route.nf)
             raise RangeError(f"q2 = {asked}: these operators hold {at_hand} GeV^2 only; build them for more")
-        # All of them in order is the common case, and a slice makes no copy.
-        return slice(None) if places == list(range(self.route.q2.size)) else places
 
-    def blocks(self, q2: Floats, nf: Integers, threads: int) -> Floats:
-        """Return (scale, block, node, node)."""
-        return np.ascontiguousarray(self.values[self._at(q2, nf)])
-
-    def flows(self, q2: Floats, nf: Integers) -> Floats:
-        """Return (scale, flow, node)."""
-        return np.ascontiguousarray(self.flow_values[self._at(q2, nf)])
+    def at(self, q2: Floats, nf: Integers, threads: int) -> tuple[Floats, Floats]:
+        """Return blocks (scale, block, node, node) and flows (scale, flow, node)."""
+        self.refuse(q2, nf)
+        places = self.route.find(q2, nf)
+        if places == list(range(self.route.q2.size)):  # all of them in order: no copy
+            return self.values, self.flow_values
+        return self.values[places], self.flow_values[places]
 
 
 #: What blocks and flows come from.

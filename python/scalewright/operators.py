@@ -49,11 +49,11 @@ class Operators:
     True
     """
 
-    __slots__ = ("_blocks", "_grid", "_lock", "_route", "_source", "_theory")
+    __slots__ = ("_grid", "_kept", "_lock", "_route", "_source", "_theory")
 
     def __init__(self, theory: Theory, grid: ChebyshevGrid, route: Route, source: Source) -> None:
         self._theory, self._grid, self._route, self._source = theory, grid, route, source
-        self._blocks: Floats | None = None
+        self._kept: tuple[Floats, Floats] | None = None
         self._lock = threading.Lock()
 
     # ---- what it is -------------------------------------------------------------------------------
@@ -106,11 +106,16 @@ class Operators:
     @property
     def blocks(self) -> Floats:
         """The blocks, (scale, block, node, node), read-only: output nodes first, input nodes last."""
+        return self._all()[0]
+
+    def _all(self) -> tuple[Floats, Floats]:
+        """Blocks and flows at all scales, computed once by whoever comes first."""
         with self._lock:
-            if self._blocks is None:
-                self._blocks = self._source.blocks(self.q2, self.nf, thread_count(None))
-                self._blocks.flags.writeable = False
-            return self._blocks
+            if self._kept is None:
+                self._kept = self._source.at(self.q2, self.nf, thread_count(None))
+                for array in self._kept:
+                    array.flags.writeable = False
+            return self._kept
 
     @property
     def error(self) -> float:
@@ -174,7 +179,7 @@ class Operators:
             If a scale is not served.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
-        return task.run(out, self.blocks if q2 is None else None)
+        return task.run(out, self._all() if q2 is None else None)
 
     def stream(
         self,
@@ -233,7 +238,7 @@ class Operators:
         asked = _check.scales("q2", q2)
         counts = self._theory.nf_at(asked) if nf is None else _check.flavour_counts("nf", nf, asked.size)
         _check.distinct_scales("q2", asked, counts)
-        self._source.flows(asked, counts)  # a set that does not serve them says so before any work
+        self._source.refuse(asked, counts)
         return asked, counts
 
     # ---- composing --------------------------------------------------------------------------------
@@ -283,12 +288,12 @@ class Operators:
         """Return the same operators as arrays at the scales `q2`, without the means to serve others."""
         if not self.live:
             return self
-        flows = self._source.flows(self.q2, self.nf)
+        blocks, flows = self._all()
         source = Held(
             self._route,
             self.block_names,
             self.light,
-            self.blocks,
+            blocks,
             self._source.flow_names,
             flows,
             self.error,

@@ -145,11 +145,11 @@ def test_lost_and_exchanged_pieces_are_noticed(stored, tmp_path):
     pieces = [good[start : start + 512] for start in range(0, len(good), 512)]
     for i in range(len(pieces)):
         if any(pieces[i]):
-            zeroed = [*pieces[:i], bytes(len(pieces[i])), *pieces[i + 1:]]
+            zeroed = [*pieces[:i], bytes(len(pieces[i])), *pieces[i + 1 :]]
             assert refused(tmp_path / "bad.h5", b"".join(zeroed))
         assert refused(tmp_path / "bad.h5", b"".join(pieces[: i + 1] + pieces[i:]))
         if i and pieces[i] != pieces[i - 1]:
-            swapped = [*pieces[:i - 1], pieces[i], pieces[i - 1], *pieces[i + 1:]]
+            swapped = [*pieces[: i - 1], pieces[i], pieces[i - 1], *pieces[i + 1 :]]
             assert refused(tmp_path / "bad.h5", b"".join(swapped))
 
 

@@ -60,8 +60,10 @@ def test_the_place_stands_before_the_message_of_others(job):
         coupling.blame("q2"),
     ):
         raise InputError("too low")
-    with pytest.raises(RangeError, match=r"^only this$"), coupling.blame():
-        raise RangeError("only this")
+    with pytest.raises(RangeError, match=r"job\.toml: \[theory\.coupling\]: too far$"), coupling.blame():
+        raise RangeError("too far")
+    with pytest.raises(StoreError, match=r"^a\.h5: damaged$"), coupling.blame():
+        raise StoreError("a.h5: damaged")
 
 
 @pytest.mark.parametrize(

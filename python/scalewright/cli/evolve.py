@@ -49,7 +49,8 @@ def run(options: argparse.Namespace) -> None:
     report = Report(options.quiet)
     job = read_evolve_job(options.job)
     start = time.perf_counter()
-    evolved = _evolved(job, report)
+    with job.place.blame():
+        evolved = _evolved(job, report)
     write_densities(evolved, job.file, job.x)
     report.say(f"{job.file}: {evolved!r}")
     report.say(f"  from {job.given!r}")

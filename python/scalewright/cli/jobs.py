@@ -23,6 +23,9 @@ from ..theory import Theory
 _STORED = (".h5", ".hdf5")
 _TABLE = ".csv"
 
+# The smallest x of a grid is exp(-u) of its last edge and may miss the number that was typed by its rounding.
+_ROUNDING = 1e-13
+
 
 @dataclass(frozen=True)
 class EvolveJob:
@@ -30,6 +33,8 @@ class EvolveJob:
 
     Attributes
     ----------
+    place
+        The job file, for messages.
     theory
         Order, coupling, masses, flavours.
     given
@@ -46,6 +51,7 @@ class EvolveJob:
         Where a table gives the result; None for the nodes of the grid.
     """
 
+    place: Section
     theory: Theory
     given: Densities
     missing: str
@@ -82,7 +88,11 @@ def read_evolve_job(path: PathLike) -> EvolveJob:
     given = _given(path, top, source)
     with source.blame():
         missing = _check.choice("missing", source.get("missing", "error"), ("error", "zero"))
-    return EvolveJob(theory, given, missing, source.get("intrinsic", ()), q2, output.get("nf", None), file, x)
+    with output.blame():
+        if x is not None:
+            _check.x_values("x", x, x_min=given.grid.x_min, rounding=_ROUNDING)
+    intrinsic, nf = source.get("intrinsic", ()), output.get("nf", None)
+    return EvolveJob(top, theory, given, missing, intrinsic, q2, nf, file, x)
 
 
 def _points(output: Section, file: str) -> Floats | None:

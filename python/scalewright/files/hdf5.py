@@ -16,10 +16,8 @@ import struct
 import zlib
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from importlib import metadata
 from typing import Any, TypeAlias
 
-import h5py  # type: ignore[import-untyped]
 import numpy as np
 from numpy.typing import NDArray
 
@@ -167,7 +165,16 @@ def identify(path: PathLike) -> Summary:
     return Summary(shown(path), str(attributes["kind"]), len(data), version, digest.hex(), listed, attributes)
 
 
+def _library() -> Any:
+    """Import h5py where it is used: it takes longer than the rest of the package."""
+    import h5py  # type: ignore[import-untyped]
+
+    return h5py
+
+
 def _version() -> str:
+    from importlib import metadata
+
     try:
         return metadata.version("scalewright")
     except metadata.PackageNotFoundError:  # run from a source tree
@@ -183,6 +190,7 @@ def _plain(dtype: np.dtype[Any]) -> str:
 
 def _image(arrays: Mapping[str, Array], attributes: Mapping[str, Attribute]) -> io.BytesIO:
     """Build the HDF5 file in memory, with room for the seal."""
+    h5py = _library()
     image = io.BytesIO()
     with h5py.File(
         image,
@@ -285,6 +293,7 @@ class _Stream(io.RawIOBase):
 
 def _contents(data: memoryview, path: PathLike) -> tuple[dict[str, Array], dict[str, Attribute]]:
     """Let HDF5 parse verified bytes. What still goes wrong was made by another program on purpose."""
+    h5py = _library()
     try:
         with h5py.File(_Stream(data), "r") as file:
             arrays = {name: _view(data, dataset) for name, dataset in _datasets(file, "", 0)}
@@ -298,6 +307,7 @@ def _contents(data: memoryview, path: PathLike) -> tuple[dict[str, Array], dict[
 
 def _datasets(group: Any, prefix: str, depth: int) -> Iterator[tuple[str, Any]]:
     """Walk over the datasets; links that lead elsewhere are refused."""
+    h5py = _library()
     if depth > _DEEPEST:
         raise ValueError(f"more than {_DEEPEST} groups deep")
     for name in group:
@@ -318,7 +328,7 @@ def _view(data: memoryview, dataset: Any) -> Array:
     if dtype.str[:2] != "|S" and dtype.str not in _DTYPES:
         raise ValueError(f"{dataset.name} has elements of type {dtype}")
     plist = dataset.id.get_create_plist()
-    if plist.get_layout() != h5py.h5d.CONTIGUOUS or plist.get_external_count():
+    if plist.get_layout() != _library().h5d.CONTIGUOUS or plist.get_external_count():
         raise ValueError(f"{dataset.name} is not stored in one piece")
     shape = tuple(int(n) for n in dataset.shape)
     count = int(np.prod(shape, dtype=object)) if shape else 1

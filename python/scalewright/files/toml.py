@@ -12,7 +12,7 @@ from collections.abc import Iterator, Mapping
 from typing import Any
 
 from .._check import nearest
-from ..errors import InputError
+from ..errors import InputError, RangeError
 from .whole import PathLike, read_whole, shown
 
 _REQUIRED = object()
@@ -105,10 +105,10 @@ class Section:
 
     @contextlib.contextmanager
     def blame(self, key: str | None = None) -> Iterator[None]:
-        """Put the place in front of the message of an `InputError` that is raised inside."""
+        """Put the place in front of the message of an input or range error that is raised inside."""
         try:
             yield
-        except InputError as error:
+        except (InputError, RangeError) as error:
             raise type(error)(f"{self.where(key)}: {error}") from error
 
 
