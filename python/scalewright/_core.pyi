@@ -84,12 +84,10 @@ class Evolution:
     def steps(self) -> int: ...
     # (nf, q2 from, q2 to) served
     def ranges(self) -> list[tuple[int, float, float]]: ...
-    # (scale, block, node, node)
+    # blocks (scale, block, node, node); flows (scale, flow, node): what has gone below x_min, by input
     def values(
         self, q2: NDArray[np.float64], nf: NDArray[np.int64], threads: int
-    ) -> NDArray[np.float64]: ...
-    # (scale, flow, node): what has flowed below x_min, linear in the input
-    def flows(self, q2: NDArray[np.float64], nf: NDArray[np.int64]) -> NDArray[np.float64]: ...
+    ) -> tuple[NDArray[np.float64], NDArray[np.float64]]: ...
 
 # intrinsic: heavy flavours above start_nf whose input is allowed; threads 0: all; further: user kernels as
 # (order k, nf, channel, regular values at quadrature_z, plus coefficients, local)
@@ -114,7 +112,6 @@ def apply(
     names: Sequence[str],
     light: int,
     values: NDArray[np.float64],
-    nf: NDArray[np.int64],
     densities: NDArray[np.float64],
     in_flavours: NDArray[np.int64],
     out_flavours: NDArray[np.int64],

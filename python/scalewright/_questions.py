@@ -10,7 +10,7 @@ from typing import Any, Self
 import numpy as np
 from numpy.typing import ArrayLike
 
-from . import _check, _sums
+from . import _check, _resolution, _sums
 from ._check import Floats, Integers
 from .below import Below
 from .errors import RangeError
@@ -228,12 +228,14 @@ class Questions:
     def resolution(self) -> Floats:
         """Return an estimate of the interpolation error in each panel, from its Chebyshev coefficients.
 
+        It errs on the safe side: the true error is mostly 10 to 100 times smaller.
+
         Returns
         -------
         ndarray, (replica, flavour, panel) or (scale, replica, flavour, panel)
             In parts of the largest value of the density in that panel; 0 where it vanishes.
         """
-        return self._shaped(_sums.resolution(self))
+        return self._shaped(_resolution.estimated(self))
 
     def _shaped(self, result: Floats) -> Floats:
         """Drop the axis of scales where there is no list of them."""

@@ -6,7 +6,7 @@ from collections.abc import Callable, Mapping
 
 import numpy as np
 
-from . import _check, below
+from . import _check, _resolution, below
 from ._check import Floats
 from .below import Below
 from .grid import ChebyshevGrid
@@ -24,12 +24,18 @@ def checked(name: str, function: Callable[..., object], *first: object) -> Calla
     return evaluate
 
 
-def sampled(grid: ChebyshevGrid, functions: Mapping[int, Callable[[Floats], Floats]]) -> tuple[Floats, Below]:
-    """Return the nodal values, (flavour, node), and what lies below x_min, of one scale and one replica."""
+def sampled(
+    grid: ChebyshevGrid, functions: Mapping[int, Callable[[Floats], Floats]]
+) -> tuple[Floats, Below, Floats]:
+    """Return what there is of one scale and one replica.
+
+    Nodal values, (flavour, node); what lies below x_min; errors of interpolation, (flavour, panel).
+    """
     x = np.array(grid.x)
     values = np.stack([function(x) for function in functions.values()])
+    errors = _resolution.measured(grid, functions, values)
     with np.errstate(all="ignore"):  # far below the grid a function may overflow: unknown, not wrong
-        return values, below.from_functions(functions, float(grid.u[-1]))
+        return values, below.from_functions(functions, float(grid.u[-1])), errors
 
 
 def joined(parts: list[Below]) -> Below:

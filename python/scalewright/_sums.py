@@ -1,4 +1,4 @@
-"""Integrals over densities, and how well a grid resolves them.
+"""Integrals over densities: momentum, quark numbers, moments.
 
 Works on densities with all four axes; results keep the axis of scales.
 """
@@ -17,10 +17,6 @@ from .flavours import flavour_name, quark
 
 if TYPE_CHECKING:
     from ._questions import Questions
-
-#: Interpolation error that standard resolution stays within for x^a (1-x)^b (1 + c sqrt x + d x), in parts of
-#: the largest value in a panel.
-PROMISED = 1e-6
 
 
 def momentum(of: Questions, part: str) -> Floats:
@@ -61,37 +57,3 @@ def moment(of: Questions, flavour: int | str, N: float) -> Floats:
     # x^(N-1) f dx = x^(N-1) F dx/x, and |N| ln(1/x_min) must stay far from overflow
     power = _check.real("N", N, least=-20.0, most=200.0) - 1.0
     return of._combined(flavour) @ of._grid.handle().moment_weights(power)
-
-
-def resolution(of: Questions) -> Floats:
-    """Return estimated errors, (scale, replica, flavour, panel), in parts of the largest value there."""
-    nodes = of._grid.nodes
-    absolute = of._grid.handle().tails(of._values.reshape(-1, nodes))
-    largest = np.maximum.reduceat(abs(of._values), _panel_starts(of), axis=-1)
-    errors = absolute.reshape(largest.shape)
-    return np.divide(errors, largest, out=np.zeros_like(errors), where=largest > 0.0)
-
-
-def _panel_starts(of: Questions) -> list[int]:
-    """Return the first node of each panel; a shared node counts for the panel below it in u."""
-    grid = of._grid
-    return [int(np.searchsorted(grid.u, edge, side="right")) for edge in grid.edges[:-1]]
-
-
-def warn_if_coarse(of: Questions, depth: int) -> None:
-    """Warn where a density that a user brought is resolved worse than promised.
-
-    `depth` is how many calls below the user's line the caller stands.
-    """
-    errors = resolution(of)
-    worst = np.unravel_index(int(np.argmax(errors)), errors.shape)
-    if errors[worst] <= PROMISED:
-        return
-    _, _, flavour, panel = (int(i) for i in worst)
-    low, high = np.exp(-of._grid.edges[panel + 1]), np.exp(-of._grid.edges[panel])
-    text = (
-        f"{flavour_name(of._flavours[flavour])} is resolved to {errors[worst]:.1e} of its largest value in "
-        f"x = {low:.3g} to {high:.3g}, not to {PROMISED:.0e}: "
-        'take resolution="fine", or a function that is smooth there'
-    )
-    warnings.warn(text, ResolutionWarning, stacklevel=depth + 2)

@@ -11,7 +11,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike
 
-from . import _check, _display, _lattice, _sampling, _stored, _sums
+from . import _check, _display, _lattice, _resolution, _sampling, _stored
 from . import below as _below
 from ._check import Floats, Integers
 from ._questions import Questions
@@ -126,7 +126,7 @@ class Densities(Questions):
         Warns
         -----
         ResolutionWarning
-            If the grid resolves a function worse than 1e-6 of its largest value in a panel.
+            If interpolation misses a function at x <= 0.9 by more than 1e-6 of its largest value in a panel.
         """
         if not isinstance(functions, Mapping):
             _check.refuse(
@@ -205,7 +205,8 @@ class Densities(Questions):
         values = np.stack([part[0] for part in parts])[:, np.newaxis]
         known = _sampling.joined([part[1] for part in parts])
         made = cls._of(grid, scales, counts, flavours, np.ascontiguousarray(values), known, one)
-        _sums.warn_if_coarse(made, depth=2)
+        errors = np.stack([part[2] for part in parts])[:, np.newaxis]
+        _resolution.warn_where_measured(made, errors, depth=2)
         return made
 
     @classmethod
@@ -239,13 +240,13 @@ class Densities(Questions):
         Warns
         -----
         ResolutionWarning
-            As `sample`.
+            If `resolution` estimates an error above 1e-4.
         """
         _check_grid(grid)
         table = read_lattice(path)
         values = _lattice.on_nodes(str(path), table.x, table.values, grid, interpolate)
         made = cls._of(grid, table.q2, table.nf, table.flavours, values, None, table.q2.size == 1)
-        _sums.warn_if_coarse(made, depth=1)
+        _resolution.warn_where_estimated(made, depth=1)
         return made
 
     @classmethod

@@ -32,7 +32,7 @@ class ChebyshevGrid:
     Parameters
     ----------
     x_min : float
-        Smallest momentum fraction, in [1e-12, 0.1].
+        Smallest momentum fraction, in [1e-9, 0.01].
     resolution : {"standard", "fine"}
         For x_min = 1e-7 and x <= 0.9, interpolation of densities x^a (1-x)^b (1 + c sqrt x + d x) to about
         1e-6, or 1e-8.
@@ -57,7 +57,7 @@ class ChebyshevGrid:
     def __init__(self, x_min: float = 1e-7, resolution: str = "standard") -> None:
         from . import _core
 
-        x_min = _check.real("x_min", x_min, least=1e-12, most=0.1)
+        x_min = _check.real("x_min", x_min, least=1e-9, most=0.01)
         resolution = _check.choice("resolution", resolution, ("standard", "fine"))
         self._handle = _core.Grid.preset(x_min, resolution)
 
@@ -70,7 +70,8 @@ class ChebyshevGrid:
         edges : array_like, (panel + 1,)
             In u = ln(1/x): 0 first, then rising; neighbouring panels share the node on their edge.
         degrees : array_like of int, (panel,)
-            Degree of the polynomial in each panel, at least 1: one less than its nodes.
+            Degree of the polynomial in each panel, 2 to 64: its nodes are one more, those on its edges
+            included. No more than 400 nodes in all.
 
         Returns
         -------
@@ -100,7 +101,7 @@ class ChebyshevGrid:
             _check.refuse(
                 "degrees", counts, f"there must be one degree for each of {borders.size - 1} panels"
             )
-        _check.refuse_where("degrees", counts, counts < 1, "a degree must be at least 1")
+        _check.refuse_where("degrees", counts, (counts < 2) | (counts > 64), "a degree must be from 2 to 64")
         grid = cls.__new__(cls)
         grid._handle = _core.Grid(borders, counts)
         return grid
@@ -125,17 +126,28 @@ class ChebyshevGrid:
     @cached_property
     def x(self) -> Floats:
         """Nodes as x, (node,), falling, read-only; the last is `x_min`."""
-        return _frozen(self._handle.x)
+        x = np.array(self._handle.x)
+        x[-1] = self.x_min
+        return _frozen(x)
 
-    @property
+    @cached_property
     def x_min(self) -> float:
-        """Smallest momentum fraction."""
-        return float(self.x[-1])
+        """Smallest momentum fraction.
+
+        The last edge is ln(1/x_min), rounded; of the numbers that it may stand for this is the one with the
+        fewest digits, so that a grid rebuilt from its edges has the x_min that it was made with.
+        """
+        last = float(self._handle.x[-1])
+        for digits in range(1, 17):
+            short = float(f"{last:.{digits}g}")
+            if abs(short - last) <= _ROUNDING * last:
+                return short
+        return last
 
     @property
     def nodes(self) -> int:
         """Number of nodes."""
-        return int(self.x.size)
+        return int(self.degrees.sum())
 
     def cardinals(self, x: ArrayLike) -> Floats:
         """Return the weights with which nodal values make a density at given x.
@@ -158,7 +170,8 @@ class ChebyshevGrid:
             If an `x` lies below `x_min`.
         """
         points = _check.x_values("x", x, x_min=self.x_min, rounding=_ROUNDING)
-        rows = self._handle.cardinals(np.ravel(points))
+        # x_min may lie an ulp below the last node of the core
+        rows = self._handle.cardinals(np.maximum(np.ravel(points), self._handle.x[-1]))
         return rows.reshape((*points.shape, self.nodes))
 
     def interpolate(self, values: ArrayLike, x: ArrayLike) -> Floats:

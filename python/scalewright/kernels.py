@@ -35,10 +35,10 @@ CHANNELS = ("ns+", "ns-", "ns-sea", "pure singlet", "qg", "gq", "gg")
 #: Matching across the threshold of a heavy quark; the heavy density is h + hbar.
 ELEMENTS = (
     "heavy<-gluon",
-    "heavy<-light",
+    "heavy<-quark",
     "gluon<-gluon",
-    "gluon<-light",
-    "light<-light",
+    "gluon<-quark",
+    "quark<-quark",
     "heavy<-heavy",
     "gluon<-heavy",
 )
@@ -123,10 +123,10 @@ def matching_element(
 
     Parameters
     ----------
-    element : {"heavy<-gluon", "heavy<-light", "gluon<-gluon", "gluon<-light", "light<-light",
+    element : {"heavy<-gluon", "heavy<-quark", "gluon<-gluon", "gluon<-quark", "quark<-quark",
                "heavy<-heavy", "gluon<-heavy"}
-        The target comes first; "heavy" is h + hbar, "light" as a source the singlet. Diagonal elements are
-        what they have beyond unity.
+        The target comes first; "heavy" is h + hbar, "quark" as a source the light singlet. Diagonal elements
+        are what they have beyond unity.
     z : array_like
         In (0, 1), any shape.
     order : {"NLO", "NNLO"}

@@ -149,7 +149,7 @@ CALLED = {
     "combination.name": "flavour",
     "from_json.text": "theory",
 }
-CALLED |= {"from_dict.options": "theory", "combination.name ": "flavour"}
+CALLED |= {"from_dict.options": "theory", "alpha_s.q2": ""}
 
 CASES = [(call, argument) for call, (_, good) in CALLS.items() for argument in good]
 

@@ -132,7 +132,7 @@ THEORY = [
 ]
 
 GRID = [
-    (lambda g: ChebyshevGrid(0.0), "x_min = 0: x_min must lie in [1e-12, 0.1]"),
+    (lambda g: ChebyshevGrid(0.0), "x_min = 0: x_min must lie in [1e-09, 0.01]"),
     (
         lambda g: ChebyshevGrid(1e-7, "high"),
         'resolution = \'high\': resolution must be one of "standard", "fine"',
@@ -142,7 +142,10 @@ GRID = [
         "edges = 0.1 at index 0: the first edge must be 0 (x = 1)",
     ),
     (lambda g: ChebyshevGrid.from_panels([0, 2, 2], [5, 5]), "edges = 2 at index 2: edges must rise"),
-    (lambda g: ChebyshevGrid.from_panels([0, 2], [0]), "degrees = 0 at index 0: a degree must be at least 1"),
+    (
+        lambda g: ChebyshevGrid.from_panels([0, 2], [1]),
+        "degrees = 1 at index 0: a degree must be from 2 to 64",
+    ),
     (
         lambda g: ChebyshevGrid.from_panels([0, 2], [5, 5]),
         "degrees = array of shape (2,) and dtype int64: there must be one degree for each of 1 panels",
