@@ -226,7 +226,8 @@ class Densities(Questions):
         Returns
         -------
         Densities
-            With an axis of scales if the table has more than one.
+            With an axis of scales, rising, if the table has more than one; replicas in the order of their
+            numbers.
 
         Raises
         ------
