@@ -181,6 +181,8 @@ def _numbers_after(
         later = own @ block + common
         if heavy > alike:
             rows = _into(second, f"number:{HEAVY[heavy]}-")
+            if not rows and name not in first:
+                continue
             later = sum((row @ taken[of] for of, row in rows.items()), np.zeros_like(common))
         made[name] = first.get(name, 0.0) + later
     return made

@@ -289,16 +289,8 @@ class Operators:
         if not self.live:
             return self
         blocks, flows = self._all()
-        source = Held(
-            self._route,
-            self.block_names,
-            self.light,
-            blocks,
-            self._source.flow_names,
-            flows,
-            self.error,
-            self.steps,
-        )
+        names, rows = self.block_names, self._source.flow_names
+        source = Held(self._route, names, self.light, blocks, rows, flows, self.error, self.steps)
         return Operators(self._theory, self._grid, self._route, source)
 
     def save(self, path: PathLike) -> None:

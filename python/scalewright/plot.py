@@ -176,7 +176,7 @@ def demo_picture(start: Densities, evolved: Densities, path: str | os.PathLike[s
     plot_densities(start, names, scale_by=factors, x=x, ax=left)
     plot_densities(evolved, names, q2=float(np.max(evolved.q2)), scale_by=factors, x=x, ax=right)
     for ax in (left, right):
-        ax.set_ylim(0.0, 2.0)
+        ax.set_ylim(0.0, 1.2)
     figure.suptitle(f"{start.replicas} replicas around the published input, NNLO: median and 68 per cent")
     image = io.BytesIO()
     figure.savefig(image, format="png", dpi=120)
@@ -238,9 +238,9 @@ def _label(flavour: int | str, factor: float) -> str:
     from .flavours import flavour_name
 
     name = flavour if isinstance(flavour, str) else flavour_name(flavour)
-    return name if factor == 1.0 else f"{name} x {show(factor)}"
+    return name if factor == 1.0 else f"{show(factor)} {name}"
 
 
 def _number(value: float | None) -> str:
-    """Write a scale as a title shows it: 2, 91.19, 1e+04."""
-    return f"{value:.4g}"
+    """Write a number as a title shows it: 2, 10000, 8315.18, 1e-05."""
+    return f"{value:.6g}"

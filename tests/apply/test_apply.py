@@ -156,7 +156,7 @@ def test_what_does_not_fit_is_refused(ops, many, grid):
         (np.ones(3), {}, sw.InputError, r"densities must be Densities, not ndarray"),
         (many, {"q2": 1.0}, sw.RangeError, r"1"),
         (many, {"q2": 2e4}, sw.RangeError, r"20000"),
-        (many, {"q2": -1.0}, sw.InputError, r"q2 = -1 at index 0: q2 must lie in \(0, inf\) GeV\^2"),
+        (many, {"q2": -1.0}, sw.InputError, r"q2 = -1: q2 must lie in \(0, inf\) GeV\^2"),
         (many, {"q2": [10.0, 10.0]}, sw.InputError, r"q2 = 10 at index 1: the scale .* stands at index 0"),
         (many, {"nf": 4}, sw.InputError, r"nf: give q2 with it"),
         (many, {"flavours": [22]}, sw.InputError, r"flavours = 22 at index 0"),

@@ -9,8 +9,8 @@ import pytest
 import scalewright as sw
 from scalewright.cli import benchmark, demo
 
-# Published numbers were recalled from memory and confirmed to one unit of their last digit (see the README beside
-# them); rounding adds one half.
+# Published numbers were recalled from memory and confirmed to one unit of their last digit (see the README
+# beside them); rounding adds one half.
 WORST = 1.5
 ENTRIES = {"LO": (77, 88), "NLO": (72, 81), "NNLO": (26, 84)}
 

@@ -106,7 +106,7 @@ WRONG = {
     "points for a stored file": ([("[output]", "[output]\nx = [0.1]")], "x is for a .csv file"),
     "a point outside": (
         [("out.h5", "out.csv"), ("[output]", "[output]\nx = [1e-6]")],
-        "job.toml: [output]: x = 1e-06 at index 0: x must lie in [0.0001, 1]",
+        "job.toml: [output]: x = 1e-06 at index 0: x must lie in [0.0001",
     ),
     "other nodes": ([("x_min = 1e-4", "x_min = 1e-3")], "are not the"),
     "x_min": ([("x_min = 1e-4", "x_min = 2")], "job.toml: [grid]: x_min = 2: x_min must lie in"),
