@@ -13,7 +13,7 @@ import warnings
 from collections.abc import Sequence
 from typing import TextIO
 
-from ..errors import InputError, RangeError, ScalewrightError
+from ..errors import InputError, RangeError, ResolutionWarning, ScalewrightError
 from . import demo, evolve, info
 
 COMMANDS = (demo, evolve, info)
@@ -39,6 +39,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return leaving.code if isinstance(leaving.code, int) else ASKED_WRONGLY
     with warnings.catch_warnings():
         warnings.showwarning = _warn
+        warnings.simplefilter("always", ResolutionWarning)  # about results: shown whatever Python was told
         try:
             options.run(options)
             sys.stdout.flush()
