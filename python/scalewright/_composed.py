@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from . import _flows
-from ._check import show
+from ._check import Floats, show
+from ._divide import divide
 from ._route import Held, Route, listed
 from .errors import InputError
 
@@ -44,23 +45,23 @@ def composed(first: Operators, second: Operators) -> tuple[Route, Held]:
         second_light=second.light,
         second_values=second.blocks,
     )
-    rows = _flows.compose(
-        dict(zip(first._source.flow_names, flows[0], strict=True)),
-        dict(zip(first.block_names, middle, strict=True)),
-        first.light,
-        dict(
-            zip(
-                second._source.flow_names,
-                np.moveaxis(second._all()[1], 1, 0),
-                strict=True,
-            )
-        ),
-        second.light,
-    )
+    rows = _flows_of_both(first, second, flows[0], middle)
     route = Route(first.start_q2, first.start_nf, first.intrinsic, second.q2.copy(), second.nf.copy())
     error, steps = first.error + second.error, first.steps + second.steps
     below = np.stack(list(rows.values()), axis=1)
     return route, Held(route, tuple(names), light, values, tuple(rows), below, error, steps)
+
+
+def _flows_of_both(first: Operators, second: Operators, flows: Floats, middle: Floats) -> dict[str, Floats]:
+    """Return the rows of what both lose below x_min."""
+    before = dict(zip(first._source.flow_names, flows, strict=True))
+    blocks = dict(zip(first.block_names, middle, strict=True))
+    light = first.light
+    if second.light < light:
+        before, blocks = divide(before, blocks, light, second.light)
+        light = second.light
+    after = dict(zip(second._source.flow_names, np.moveaxis(second._all()[1], 1, 0), strict=True))
+    return _flows.compose(before, blocks, light, after, second.light)
 
 
 def _refuse_misfits(first: Operators, second: Operators) -> None:

@@ -68,15 +68,15 @@ def momentum(flows: Rows, given: Input) -> Floats:
     given : Input
         The input.
     """
-    return np.asarray(sum(row @ given.named(source).T for source, row in _into(flows, "momentum").items()))
+    return np.asarray(sum(row @ given.named(source).T for source, row in into(flows, "momentum").items()))
 
 
 def number(flows: Rows, given: Input, quark: int, light: int) -> Floats | float:
     """Return the number of q - qbar that went below x_min, (scale, replica); parameters as for `momentum`."""
     if quark > light:
-        rows = _into(flows, f"number:{HEAVY[quark]}-")
+        rows = into(flows, f"number:{HEAVY[quark]}-")
         return sum((row @ given.named(source).T for source, row in rows.items()), 0.0)
-    own, valence = _own(flows), given.named("light-")
+    own, valence = own_row(flows), given.named("light-")
     gone: Floats = own @ (given.minus(quark) - valence / light).T
     for source, row in _common(flows).items():
         gone = gone + row @ given.named(source).T / light
@@ -99,7 +99,7 @@ def compose(
     second : mapping of name to ndarray, (scale, node)
         Rows of the second step.
     second_light : int
-        The same number in the second step, not less than that of the first.
+        The same number in the second step; not less, see `_divide`.
 
     Returns
     -------
@@ -107,11 +107,11 @@ def compose(
         Rows of both, (scale, node).
     """
     made: dict[str, Floats] = {}
-    for source, row in _into(first, "momentum").items():
+    for source, row in into(first, "momentum").items():
         made[f"momentum<-{source}"] = row + _momentum_after(blocks, source, second, second_light)
     made["number:ns+"] = first["number:ns+"] + second["number:ns+"] @ blocks["ns+"]
     if "number:ns-" in first or "number:ns-" in second:
-        made["number:ns-"] = _own(first) + _own(second) @ _ns_minus(blocks)
+        made["number:ns-"] = own_row(first) + own_row(second) @ ns_minus(blocks)
     if any(name.startswith(("number:light-", *_HEAVY_ROWS)) for name in (*first, *second)):
         sources = {source for rows in (blocks, first) for name in rows for source in _minus_source(name)}
         for source in sorted(sources | {"light-"}):
@@ -122,23 +122,24 @@ def compose(
 _HEAVY_ROWS = tuple(f"number:{name}-" for name in HEAVY.values())
 
 
-def _into(flows: Rows, target: str) -> dict[str, Floats]:
+def into(flows: Rows, target: str) -> dict[str, Floats]:
     """Return the rows of a target by their source."""
     start = f"{target}<-"
     return {name.removeprefix(start): row for name, row in flows.items() if name.startswith(start)}
 
 
-def _own(flows: Rows) -> Floats:
+def own_row(flows: Rows) -> Floats:
     """Return the row that acts on what one flavour differs from the mean."""
     return flows["number:ns-"] if "number:ns-" in flows else flows["number:ns+"]
 
 
 def _common(flows: Rows) -> dict[str, Floats]:
     """Return the rows into the sum over the flavours that act alike."""
-    return {"light-": _own(flows)} | _into(flows, "number:light-")
+    return {"light-": own_row(flows)} | into(flows, "number:light-")
 
 
-def _ns_minus(blocks: Rows) -> Floats:
+def ns_minus(blocks: Rows) -> Floats:
+    """Return the block that acts on what q - qbar of one flavour differs from the mean."""
     return blocks["ns-"] if "ns-" in blocks else blocks["ns+"]
 
 
@@ -168,19 +169,19 @@ def _numbers_after(
 ) -> dict[str, Floats]:
     """Return the rows of both steps into each number, from one source of the first step."""
     zero = np.zeros_like(blocks["ns+"])
-    kept = blocks.get(f"light-<-{source}", _ns_minus(blocks) if source == "light-" else zero)
+    kept = blocks.get(f"light-<-{source}", ns_minus(blocks) if source == "light-" else zero)
     arriving = {h: blocks.get(f"{name}-<-{source}", zero) for h, name in HEAVY.items() if h > light}
     # What the second step takes for its sources.
     taken = {f"{HEAVY[h]}-": block for h, block in arriving.items() if h > alike}
     taken["light-"] = valence = kept + sum((b for h, b in arriving.items() if h <= alike), zero)
-    own = _own(second)
+    own = own_row(second)
     common = sum(row @ taken[name] for name, row in _common(second).items()) / alike - own @ valence / alike
     made = {f"number:light-<-{source}": _common(first).get(source, 0.0) + own @ kept + light * common}
     for heavy, block in arriving.items():
         name = f"number:{HEAVY[heavy]}-<-{source}"
         later = own @ block + common
         if heavy > alike:
-            rows = _into(second, f"number:{HEAVY[heavy]}-")
+            rows = into(second, f"number:{HEAVY[heavy]}-")
             if not rows and name not in first:
                 continue
             later = sum((row @ taken[of] for of, row in rows.items()), np.zeros_like(common))
