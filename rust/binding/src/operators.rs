@@ -232,6 +232,26 @@ pub fn evolve(
     tolerance: f64,
     threads: i64,
 ) -> PyResult<Py<PyArrayDyn<f64>>> {
-    let _ = (theory, grid, start_q2, start_nf, densities, in_flavours, q2, nf, out_flavours, tolerance, threads);
-    Err(input(py, "evolution of vectors is not written yet".into()))
+    let asked = scales(py, &q2, &nf)?;
+    let shape = densities.shape().to_vec();
+    let values = block(py, "densities", &densities, 3)?;
+    let (inputs, outputs) = (slice(py, "in_flavours", &in_flavours)?, slice(py, "out_flavours", &out_flavours)?);
+    let (theory, grid) = (&theory.get().core, &grid.get().core);
+    if shape[1] != inputs.len() || shape[2] != grid.nodes() {
+        let expected = [inputs.len(), grid.nodes()];
+        return Err(input(py, format!("densities has shape {shape:?}: after the replicas it must be {expected:?}")));
+    }
+    let flavours = inputs.iter().chain(outputs);
+    flavours.copied().try_for_each(core_apply::check_flavour).map_err(|error| crate::errors::exception(py, &error))?;
+    let start_nf = count(py, "start_nf", start_nf)?;
+    let heavy = |flavour: &i64| (1..=6).contains(&flavour.abs()) && flavour.unsigned_abs() as usize > start_nf;
+    let intrinsic = inputs.iter().filter(|flavour| heavy(flavour)).map(|flavour| flavour.unsigned_abs() as usize);
+    let options =
+        BuildOptions { start_q2, start_nf, asked, intrinsic: intrinsic.collect(), tolerance, further: vec![] };
+    let vectors = thresholds::Vectors { in_flavours: inputs, values, out_flavours: outputs };
+    let shape = [options.asked.len(), shape[0], outputs.len(), grid.nodes()];
+    let out = run(py, count(py, "threads", threads)?, None, |watch| {
+        thresholds::evolve(theory, grid, &options, &vectors, watch)
+    })?;
+    handed_over(py, &shape, out)
 }
