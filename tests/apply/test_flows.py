@@ -27,11 +27,11 @@ ROUTES = {
 @pytest.mark.parametrize("order", ["LO", "NLO", "NNLO"])
 @pytest.mark.parametrize("route", ROUTES)
 def test_two_steps_lose_what_one_after_the_other_lose(theory, grid, order, route):
-    (q0, n0), (q1, n1), (q2, n2), intrinsic, passed, heavy = ROUTES[route]
+    (q0, n0), (q1, n1), (q2, n2), kept, passed, heavy = ROUTES[route]
     options = {"coupling": theory.coupling, "masses": theory.masses, "flavours": (3, 5)}
     theory = sw.Theory(order=order, **options)
     build = functools.partial(sw.build_operators, theory, grid)
-    first = build(start_q2=q0, start_nf=n0, q2=[q1], nf=[n1], intrinsic=intrinsic)
+    first = build(start_q2=q0, start_nf=n0, q2=[q1], nf=[n1], intrinsic=kept)
     second = build(start_q2=q1, start_nf=n1, q2=[q2], nf=[n2], intrinsic=passed)
     given = sw.Densities.sample(grid, q2=q0, nf=n0, functions=functions() | heavy)
     expected = second.apply(first.apply(given).scale(None)).below
@@ -39,7 +39,7 @@ def test_two_steps_lose_what_one_after_the_other_lose(theory, grid, order, route
     rows = _flows_of_both(first, second, flows[0], blocks[0])
     light = min(first.light, second.light)
     combined = _flows.Input(given.values, given.flavours, light)
-    # sums of some hundred terms; those of a route downwards are as large as the blocks that undo the evolution
+    # sums of some hundred terms; on a route downwards as large as the blocks that undo the evolution
     size = 1.0 if q2 > q0 else abs(second.blocks).max() * abs(first.blocks).max()
     momentum = given.below.momentum + _flows.momentum(rows, combined)
     np.testing.assert_allclose(momentum, expected.momentum, rtol=0, atol=1e-13 * size)
