@@ -41,12 +41,17 @@ def once():
         ops.apply(some, q2=1e9)
     except sw.RangeError:
         pass
-for _ in range(30):
-    once()
-before = resident()
-for _ in range(60):
-    once()
-print(resident() - before)
+def least():
+    #Freed memory goes back at odd moments: resident memory swings by 15 MB, its least value does not.
+    found = []
+    for _ in range(5):
+        for _ in range(8):
+            once()
+        found.append(resident())
+    return min(found)
+least()
+before = least()
+print(least() - before)
 """
 
 
@@ -69,5 +74,5 @@ def test_memory_of_a_stream_does_not_grow_with_the_scales():
 @pytest.mark.timeout(120)
 @pytest.mark.skipif(sys.platform != "linux", reason="reads /proc")
 def test_nothing_leaks(tmp_path):
-    # 60 rounds that keep nothing: a lost set of blocks would be 0.3 MB a round
-    assert run(LEAK, tmp_path / "a.h5") < 4_000_000
+    # 40 rounds that keep nothing: a lost set of blocks would be 0.3 MB a round
+    assert run(LEAK, tmp_path / "a.h5") < 6_000_000
