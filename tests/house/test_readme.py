@@ -41,7 +41,7 @@ def test_every_command_of_the_program_that_is_named_exists() -> None:
     named = set(re.findall(r"\bscalewright (\w+)", "\n".join(blocks(README, "sh"))))
     assert named <= set(COMMANDS)
     for command in named:
-        with pytest.raises(SystemExit, match="^0$"):
+        with pytest.raises(SystemExit, match=r"^0$"):
             main([command, "--help"])
 
 
