@@ -1,1 +1,45 @@
-"""scalewright."""
+"""Evolution operators for parton densities x f(x), as plain numpy arrays.
+
+The public names in the order of a calculation. Importing this package imports numpy and nothing heavier.
+"""
+
+from __future__ import annotations
+
+from .below import Below
+from .build import build_operators, evolve
+from .densities import Densities
+from .errors import InputError, RangeError, ResolutionWarning, ScalewrightError, StoreError
+from .grid import ChebyshevGrid
+from .kernels import SplittingKernel, matching_element, splitting_function
+from .operators import Operators
+from .parameters import Coupling, QuarkMasses
+from .theory import Theory
+
+__all__ = [
+    "Below",
+    "ChebyshevGrid",
+    "Coupling",
+    "Densities",
+    "InputError",
+    "Operators",
+    "QuarkMasses",
+    "RangeError",
+    "ResolutionWarning",
+    "ScalewrightError",
+    "SplittingKernel",
+    "StoreError",
+    "Theory",
+    "build_operators",
+    "evolve",
+    "matching_element",
+    "splitting_function",
+]
+
+
+def __getattr__(name: str) -> str:
+    """Look up the version only when it is asked for: the package metadata are slow to read."""
+    if name == "__version__":
+        from importlib.metadata import version
+
+        return version("scalewright")
+    raise AttributeError(f"module {__name__!r} has no attribute {name!r}")

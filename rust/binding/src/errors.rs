@@ -7,10 +7,8 @@ use scalewright_core::error::Error;
 /// The exception for an error: one match, no wildcard arm.
 pub fn exception(py: Python<'_>, error: &Error) -> PyErr {
     let class = match error {
-        Error::Argument { .. } | Error::Shape { .. } | Error::LandauPole { .. } | Error::Tolerance { .. } => {
-            "InputError"
-        }
-        Error::OutOfRange { .. } => "RangeError",
+        Error::Argument { .. } | Error::Shape { .. } | Error::Tolerance { .. } => "InputError",
+        Error::OutOfRange { .. } | Error::LandauPole { .. } => "RangeError",
         Error::Interrupted => return pyo3::exceptions::PyKeyboardInterrupt::new_err(()),
     };
     raise(py, class, error.to_string())

@@ -38,7 +38,7 @@ pub enum Error {
     },
     /// The running coupling meets the Landau pole between two scales.
     #[error(
-        "alpha_s grows beyond {limit} between {from_q2} and {to_q2} GeV^2 with nf = {nf} (Landau pole): \
+        "alpha_s grows beyond {limit} between {from_q2:?} and {to_q2:?} GeV^2 with nf = {nf} (Landau pole): \
          choose a smaller alpha_s or a higher scale"
     )]
     LandauPole {

@@ -27,22 +27,20 @@ pub enum Resolution {
 }
 
 impl Resolution {
-    /// Degrees of the panels near x = 1, of the middle panel, and of the last panel at `x_min = 1e-7`.
+    /// Inner edges in u and, for each panel, the degree; that of the last panel holds at `x_min = 1e-7`.
     ///
-    /// Found by trial on the published benchmark input; `benches/accuracy.py` shows how sharp they are.
-    fn degrees(self) -> [usize; 4] {
+    /// Found by trial on random `x^a (1-x)^b (1 + c sqrt x + d x)`, a from -0.4 to 0.8, b from 1.5 to 10, x <= 0.9, and
+    /// on the published benchmark input after evolution; `benches/accuracy.py` shows what they reach.
+    fn panels(self) -> (&'static [f64], &'static [usize]) {
         match self {
-            Self::Standard => [14, 19, 22, 16],
-            Self::Fine => [22, 30, 32, 24],
+            Self::Standard => (&[0.0, 0.107, 0.90, 6.47], &[14, 19, 21, 17]),
+            Self::Fine => (&[0.0, 0.03, 0.3, 1.2, 6.47], &[12, 22, 22, 28, 24]),
         }
     }
 }
 
-/// Edges in u shared by all presets, before the last one at `ln(1/x_min)`. Found by trial: short near x = 1, where
-/// a density falls over many decades.
-const EDGES: [f64; 4] = [0.0, 0.107, 0.90, 6.47];
-/// Length of the last panel for which [`Resolution::degrees`] holds.
-const LAST_PANEL: f64 = 9.63;
+/// Length of the last panel for which [`Resolution::panels`] holds: from 6.47 to `ln(1e7)`.
+const LAST_PANEL: f64 = 9.65;
 /// Below this length the last panel is merged into the one before.
 const SHORTEST_LAST_PANEL: f64 = 1.5;
 /// Largest number of nodes of a free grid: a build needs memory that grows with its square.
@@ -82,15 +80,16 @@ impl Grid {
             });
         }
         let u_max = -x_min.ln();
-        let mut edges = EDGES.to_vec();
-        let mut degrees = resolution.degrees().to_vec();
-        let length = u_max - EDGES[3];
+        let (inner, degrees) = resolution.panels();
+        let (mut edges, mut degrees) = (inner.to_vec(), degrees.to_vec());
+        let last = degrees.len() - 1;
+        let length = u_max - edges[last];
         if length < SHORTEST_LAST_PANEL {
             edges.pop();
             degrees.pop();
         } else {
-            let scaled = degrees[3] as f64 * (length / LAST_PANEL).powf(0.7);
-            degrees[3] = (scaled.round() as usize).max(degrees[3] / 2);
+            let scaled = degrees[last] as f64 * (length / LAST_PANEL).powf(0.7);
+            degrees[last] = (scaled.round() as usize).max(degrees[last] / 2);
         }
         edges.push(u_max);
         Self::new(&edges, &degrees)

@@ -133,27 +133,22 @@ impl Dense {
         Matrix::from_values(self.rows, self.cols, self.values.row(last).to_vec())
     }
 
-    /// Estimated error relative to the largest value: the last two Chebyshev coefficients in s.
-    pub fn error(&self) -> f64 {
-        let largest = self.values.values().iter().fold(0.0_f64, |most, v| most.max(v.abs()));
-        let count = self.nodes.points().len();
-        // The weights of the coefficients, as functionals on the values at the nodes.
-        let mut tail = 0.0_f64;
-        let functionals: Vec<Vec<f64>> = (0..count)
-            .map(|node| {
-                let mut unit = vec![0.0; count];
-                unit[node] = 1.0;
-                coefficients(&unit)
-            })
-            .collect();
-        for k in count.saturating_sub(2)..count {
-            let mut sum = vec![0.0; self.rows * self.cols];
-            for (node, functional) in functionals.iter().enumerate() {
-                let row = self.values.row(node);
-                sum.iter_mut().zip(row).for_each(|(total, v)| *total += functional[k] * v);
+    /// Estimated error of each entry of some rows relative to its largest value over the step, the largest of all.
+    ///
+    /// The first Chebyshev coefficient in s that is left out, from the last two kept, which fall geometrically.
+    pub fn error(&self, rows: &[usize]) -> f64 {
+        let degree = self.nodes.points().len() - 1;
+        let mut series = vec![0.0; degree + 1];
+        let mut worst = 0.0_f64;
+        for entry in rows.iter().flat_map(|row| row * self.cols..(row + 1) * self.cols) {
+            series.iter_mut().enumerate().for_each(|(node, value)| *value = self.values.row(node)[entry]);
+            let largest = series.iter().fold(0.0_f64, |most, value| most.max(value.abs()));
+            let falling = coefficients(&series);
+            let (before, last) = (falling[degree - 1].abs(), falling[degree].abs());
+            if largest > 0.0 {
+                worst = worst.max(last * if last < before { last / before } else { 1.0 } / largest);
             }
-            tail = sum.iter().fold(tail, |most, v| most.max(v.abs()));
         }
-        if largest > 0.0 { tail / largest } else { 0.0 }
+        worst
     }
 }

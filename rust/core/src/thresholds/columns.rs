@@ -199,9 +199,15 @@ impl LegColumns {
         columns
     }
 
-    /// Estimated error, relative to the largest value.
-    pub fn error(&self) -> f64 {
-        self.differences.iter().map(|(_, solution)| solution.error()).fold(self.sum.error(), f64::max)
+    /// Estimated error relative to each value at the nodes named, over the whole leg.
+    pub fn error(&self, nodes: &[usize]) -> f64 {
+        let sum = if self.start.family == Family::Plus {
+            let rows = |component| nodes.iter().map(move |&i| place(&self.offsets, component, i));
+            self.sum.error(&rows(0).chain(rows(1)).collect::<Vec<_>>())
+        } else {
+            self.sum.error(nodes)
+        };
+        self.differences.iter().map(|(_, solution)| solution.error(nodes)).fold(sum, f64::max)
     }
 }
 

@@ -15,6 +15,9 @@ use std::collections::BTreeMap;
 
 /// How many times steps are halved before a build gives up.
 const MOST_REFINEMENTS: u32 = 3;
+/// Powers a and b of the quark densities `x^a (1-x)^b` on which steps are judged, sea-like and valence-like; the gluon
+/// that goes with both is sea-like.
+const PROBES: [(f64, i32); 2] = [(-0.2, 6), (0.6, 3)];
 /// Names of the heavy flavours 4, 5, 6.
 const HEAVY_NAMES: [&str; 3] = ["charm", "bottom", "top"];
 
@@ -148,28 +151,29 @@ pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn W
     let mut refinement = 0;
     loop {
         let plan = Plan { tolerance: options.tolerance, refinement };
-        let set = build_once(theory, grid, &kernels, options, &plan, watch)?;
-        if set.error <= options.tolerance {
-            return Ok(set);
+        let prepared = Prepared::new(theory, grid, &kernels, options, &plan, watch)?;
+        let inputs = Inputs::of(&prepared, options);
+        let error = inputs.probe(theory, grid, &prepared)?;
+        if error <= options.tolerance {
+            return finish(theory, grid, prepared, &inputs, error, watch);
         }
         if refinement == MOST_REFINEMENTS {
-            let (reached, tolerance) = (set.error, options.tolerance);
-            return Err(Error::Tolerance { nf: options.start_nf, reached, tolerance, steps: set.steps });
+            let steps = prepared.steps();
+            return Err(Error::Tolerance { nf: options.start_nf, reached: error, tolerance: options.tolerance, steps });
         }
         refinement += 1;
     }
 }
 
-fn build_once(
+/// Carries the unit columns of all families.
+fn finish(
     theory: &Theory,
     grid: &Grid,
-    kernels: &KernelSet,
-    options: &BuildOptions,
-    plan: &Plan,
+    prepared: Prepared,
+    inputs: &Inputs,
+    error: f64,
     watch: &dyn Watch,
 ) -> Result<Evolution> {
-    let prepared = Prepared::new(theory, grid, kernels, options, plan, watch)?;
-    let inputs = Inputs::of(&prepared, options);
     let families = inputs.families(&prepared);
     let tasks: Vec<(Family, usize)> =
         families.iter().flat_map(|&family| (0..grid.panels()).map(move |panel| (family, panel))).collect();
@@ -181,7 +185,6 @@ fn build_once(
             Ok(Chunk { family, columns, legs: prepared.carry(theory, &start, panel)? })
         })
         .collect::<Result<_>>()?;
-    let error = chunks.iter().flat_map(|chunk| &chunk.legs).map(LegColumns::error).fold(0.0, f64::max);
     let steps = prepared.steps();
     let (names, flow_names) = (inputs.block_names(&families), inputs.flow_names(&families));
     let (theory, nodes, route) = (theory.clone(), grid.nodes(), prepared.route);
@@ -271,6 +274,38 @@ impl Inputs {
                 _ => self.block_names(&[family]).iter().map(|name| format!("number:{name}")).collect(),
             })
             .collect()
+    }
+
+    /// Error estimate of the steps: smooth densities of every family are carried along the route.
+    ///
+    /// Unit columns would tell little: the error of the steps lies in what is rough in x, of which a density has next
+    /// to nothing.
+    fn probe(&self, theory: &Theory, grid: &Grid, prepared: &Prepared) -> Result<f64> {
+        // Nearer to x = 1 values fall over decades, and no accuracy relative to them is promised.
+        const LARGEST_X: f64 = 0.9;
+        let judged: Vec<usize> = (0..grid.nodes()).filter(|&i| grid.u()[i] >= -LARGEST_X.ln()).collect();
+        let errors = self
+            .families(prepared)
+            .par_iter()
+            .map(|&family| {
+                let mut start = Columns::new(family, self.light, grid.nodes() + 1, PROBES.len());
+                let shape = |(power, fall): (f64, i32), u: f64| (-power * u).exp() * (-(-u).exp_m1()).powi(fall);
+                for (column, quark) in PROBES.into_iter().enumerate() {
+                    for (i, &u) in grid.u().iter().enumerate() {
+                        start.light_mut().row_mut(i)[column] = shape(quark, u);
+                        if family == Family::Plus {
+                            start.gluon_mut().row_mut(i)[column] = 2.0 * shape(PROBES[0], u);
+                        }
+                    }
+                }
+                for flavour in &self.heavy {
+                    start.set_heavy(*flavour, start.empty());
+                }
+                let legs = prepared.carry(theory, &start, 0)?;
+                Ok(legs.iter().map(|leg| leg.error(&judged)).fold(0.0, f64::max))
+            })
+            .collect::<Result<Vec<f64>>>()?;
+        Ok(errors.into_iter().fold(0.0, f64::max))
     }
 
     /// Unit columns of the nodes that a panel owns, one set for each input channel.

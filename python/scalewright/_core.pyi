@@ -1,0 +1,161 @@
+"""The compiled module as the type checker sees it; held to the binary by mypy's stubtest.
+
+Everything crosses as scalars, strings, C-ordered float64 and int64 arrays, and frozen handles. Shapes and
+finiteness are checked in `_check` first and again by the core, which raises the classes of `errors` itself.
+"""
+
+from collections.abc import Callable, Sequence
+from typing import final
+
+import numpy as np
+from numpy.typing import NDArray
+
+__all__ = [
+    "Evolution",
+    "Grid",
+    "Theory",
+    "apply",
+    "build",
+    "compose",
+    "evolve",
+    "matching_element",
+    "splitting_function",
+]
+
+@final
+class Grid:
+    # Nodes by growing u = ln(1/x): x falls from near 1 to x_min. The node x = 1 is not held: F(1) = 0.
+    def __new__(cls, edges: NDArray[np.float64], degrees: NDArray[np.int64]) -> Grid: ...
+    @staticmethod
+    def preset(x_min: float, resolution: str) -> Grid: ...
+    @property
+    def edges(self) -> NDArray[np.float64]: ...
+    @property
+    def degrees(self) -> NDArray[np.int64]: ...
+    @property
+    def u(self) -> NDArray[np.float64]: ...
+    @property
+    def x(self) -> NDArray[np.float64]: ...
+    # (len(x), nodes): F(x) = cardinals @ values
+    def cardinals(self, x: NDArray[np.float64]) -> NDArray[np.float64]: ...
+    # (nodes,): sum w F = int_{x_min}^1 x^power F(x) dx/x
+    def moment_weights(self, power: float) -> NDArray[np.float64]: ...
+    # (rows, nodes) -> (rows, panels): estimated absolute error
+    def tails(self, values: NDArray[np.float64]) -> NDArray[np.float64]: ...
+    # (points,): z at which the convolution evaluates kernels
+    def quadrature_z(self) -> NDArray[np.float64]: ...
+
+@final
+class Theory:
+    # order 0, 1, 2; masses (3,) in GeV; thresholds_q2 (3,) = mu_thr^2 of charm, bottom, top
+    def __new__(
+        cls,
+        *,
+        order: int,
+        alpha_s: float,
+        alpha_s_q2: float,
+        alpha_s_nf: int,
+        masses: NDArray[np.float64],
+        pole: bool,
+        thresholds_q2: NDArray[np.float64],
+        fewest: int,
+        most: int,
+        evolution_mu2_ratio: float,
+        running_loops: int,
+        compact: bool,
+    ) -> Theory: ...
+    # at mu_r^2, for the nf given, elementwise
+    def alpha_s(self, mu2: NDArray[np.float64], nf: NDArray[np.int64]) -> NDArray[np.float64]: ...
+    # of a factorisation scale; a scale on a threshold counts as above
+    def nf_at(self, q2: NDArray[np.float64]) -> NDArray[np.int64]: ...
+
+@final
+class Evolution:
+    # A live set: dense in scale between the lowest and the highest scale built, for each nf on its route.
+    @property
+    def names(self) -> list[str]: ...
+    @property
+    def light(self) -> int: ...
+    @property
+    def flow_names(self) -> list[str]: ...
+    @property
+    def error(self) -> float: ...
+    @property
+    def steps(self) -> int: ...
+    # (nf, q2 from, q2 to) served
+    def ranges(self) -> list[tuple[int, float, float]]: ...
+    # blocks (scale, block, node, node); flows (scale, flow, node): what has gone below x_min, by input
+    def values(
+        self, q2: NDArray[np.float64], nf: NDArray[np.int64], threads: int
+    ) -> tuple[NDArray[np.float64], NDArray[np.float64]]: ...
+
+# intrinsic: heavy flavours above start_nf whose input is allowed; threads 0: all; further: user kernels as
+# (order k, nf, channel, regular values at quadrature_z, plus coefficients, local)
+def build(
+    theory: Theory,
+    grid: Grid,
+    *,
+    start_q2: float,
+    start_nf: int,
+    q2: NDArray[np.float64],
+    nf: NDArray[np.int64],
+    intrinsic: Sequence[int],
+    tolerance: float,
+    threads: int,
+    further: Sequence[tuple[int, int, str, NDArray[np.float64], NDArray[np.float64], float]],
+    progress: Callable[[int, int], object] | None,
+) -> Evolution: ...
+
+# values (scale, block, node, node); densities (replica, flavour, node) -> out (scale, replica, flavour, node)
+def apply(
+    *,
+    names: Sequence[str],
+    light: int,
+    values: NDArray[np.float64],
+    densities: NDArray[np.float64],
+    in_flavours: NDArray[np.int64],
+    out_flavours: NDArray[np.int64],
+    out: NDArray[np.float64],
+    threads: int,
+) -> None: ...
+
+# second after first; first_values (block, node, node) of one scale, second_values (scale, block, node, node)
+def compose(
+    *,
+    first_names: Sequence[str],
+    first_light: int,
+    first_values: NDArray[np.float64],
+    second_names: Sequence[str],
+    second_light: int,
+    second_values: NDArray[np.float64],
+) -> tuple[list[str], int, NDArray[np.float64]]: ...
+
+# (scale, replica, flavour, node), without operators
+def evolve(
+    theory: Theory,
+    grid: Grid,
+    *,
+    start_q2: float,
+    start_nf: int,
+    densities: NDArray[np.float64],
+    in_flavours: NDArray[np.int64],
+    q2: NDArray[np.float64],
+    nf: NDArray[np.int64],
+    out_flavours: NDArray[np.int64],
+    tolerance: float,
+    threads: int,
+) -> NDArray[np.float64]: ...
+
+# regular part, coefficients of [ln^k(1-z)/(1-z)]_+, coefficient of delta(1-z)
+def splitting_function(
+    order: int, channel: str, nf: int, z: NDArray[np.float64], one_minus_z: NDArray[np.float64]
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+def matching_element(
+    order: int,
+    element: str,
+    power_of_log: int,
+    pole: bool,
+    compact: bool,
+    z: NDArray[np.float64],
+    one_minus_z: NDArray[np.float64],
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...

@@ -1,0 +1,90 @@
+"""Text and HTML about a theory: every option, and every convention in force.
+
+Knows the theory by its attributes alone, so that it stands below `theory`.
+"""
+
+from __future__ import annotations
+
+import html
+from typing import TYPE_CHECKING
+
+from ._check import show, show_all
+
+if TYPE_CHECKING:
+    from .theory import Theory
+
+_HEAVY = ("charm", "bottom", "top")
+
+
+def option_lines(theory: Theory) -> list[tuple[str, str]]:
+    """Return what each option says, as (name, sentence)."""
+    return [
+        ("order", f"{theory.order}: splitting functions up to a^{len(theory.order) - 1}, exact solution"),
+        ("coupling", _coupling(theory)),
+        ("running", f"{theory.loops} loops, decoupling with {theory.loops - 1}"),
+        ("masses", _masses(theory)),
+        ("flavours", _flavours(theory)),
+        ("thresholds", _thresholds(theory)),
+        ("scale ratio", f"mu_r^2/mu_f^2 = {show(theory.evolution_mu2_ratio)} in the splitting functions"),
+        ("A_Hg at a^2", _element(theory)),
+    ]
+
+
+def conventions(theory: Theory) -> str:
+    """Return one screen of text: options, then conventions."""
+    lines = option_lines(theory)
+    width = max(len(name) for name, _ in lines)
+    options = [f"  {name:<{width}}  {sentence}" for name, sentence in lines]
+    return "\n".join(["Theory", *options, "Conventions", *(f"  {rule}" for rule in _RULES)])
+
+
+def theory_html(theory: Theory) -> str:
+    """Return the options as an HTML table."""
+    cells = (
+        f"<tr><th style='text-align:left'>{html.escape(name)}</th><td>{html.escape(sentence)}</td></tr>"
+        for name, sentence in option_lines(theory)
+    )
+    return f"<table><caption>Theory</caption>{''.join(cells)}</table>"
+
+
+def _coupling(theory: Theory) -> str:
+    given = theory.coupling
+    return f"alpha_s = {show(given.alpha_s)} at mu_r^2 = {show(given.q2)} GeV^2 for nf = {given.nf}"
+
+
+def _masses(theory: Theory) -> str:
+    kind = "pole masses" if theory.masses.kind == "pole" else "MS-bar masses m(m)"
+    values = (f"{name} {show(mass)}" for name, mass in zip(_HEAVY, theory.masses.values, strict=True))
+    return f"{', '.join(values)} GeV, {kind}"
+
+
+def _flavours(theory: Theory) -> str:
+    if theory.fewest == theory.most:
+        return f"{theory.most}, fixed"
+    return f"{theory.fewest} to {theory.most}, decided by mu_f^2"
+
+
+def _thresholds(theory: Theory) -> str:
+    crossed = range(theory.fewest - 3, theory.most - 3)
+    if not crossed:
+        return "none"
+    scales = show_all(theory.threshold_scales[i] for i in crossed)
+    names = ", ".join(_HEAVY[i] for i in crossed)
+    return f"mu_f^2 = {scales} GeV^2 ({names}); a scale on a threshold counts as above it"
+
+
+def _element(theory: Theory) -> str:
+    if theory.heavy_gluon_element == "exact":
+        return "exact (M. Buza et al., hep-ph/9612398)"
+    return "compact parametrisation (A. Vogt, hep-ph/0408244)"
+
+
+_RULES = (
+    "a = alpha_s/(4 pi), MS-bar; d f/d ln mu^2 = sum_k a^(k+1) P_k * f, nothing expanded",
+    "densities are x f(x); scales are squared, in GeV^2; flavours are PDG numbers",
+    "coupling: exact solution of the renormalisation-group equation; n loops decouple with n - 1,",
+    "  the upward step as published, the downward step its exact inverse",
+    "densities at a threshold: continuous at LO, a^1 logarithms at NLO, a^2 at NNLO, with alpha_s of nf + 1;",
+    "  heavy quark = heavy antiquark there unless an intrinsic density is given",
+    "mu_r differs from mu_f: splitting functions re-expanded in a(mu_r); nf of the coupling is that of mu_f",
+)

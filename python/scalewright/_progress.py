@@ -1,0 +1,82 @@
+"""How far a long call is: one line on the terminal, or a callable of the user's."""
+
+from __future__ import annotations
+
+import os
+import sys
+import time
+from collections.abc import Callable
+from typing import TextIO, TypeAlias
+
+from ._check import refuse
+
+Progress: TypeAlias = bool | Callable[[int, int], object] | None
+
+_WIDTH = 24
+# Fast enough to look alive, slow enough to cost nothing.
+_EVERY_S = 0.1
+
+
+class Line:
+    """A line on standard error that is drawn again as the work goes on.
+
+    Parameters
+    ----------
+    label : str
+        What is being done.
+    stream : text file, optional
+        Where to; standard error by default.
+    """
+
+    def __init__(self, label: str, stream: TextIO | None = None) -> None:
+        self._label = label
+        self._stream = stream if stream is not None else sys.stderr
+        self._start = time.monotonic()
+        self._drawn = 0.0
+        self._shown = on_terminal(self._stream)
+
+    def __call__(self, done: int, total: int) -> None:
+        """Draw the line, if it is time to; clear it at the end."""
+        now = time.monotonic()
+        if not self._shown or (done < total and now - self._drawn < _EVERY_S):
+            return
+        self._drawn = now
+        share = done / total if total else 1.0
+        bar = ("=" * int(_WIDTH * share)).ljust(_WIDTH, ".")
+        left = (now - self._start) * (1.0 / share - 1.0) if share > 0.0 else 0.0
+        text = f"{self._label} [{bar}] {done} of {total}, {left:.0f} s left"
+        end = "\r\x1b[K" if done >= total else ""
+        self._stream.write(f"\r\x1b[K{text}{end}")
+        self._stream.flush()
+
+
+def on_terminal(stream: TextIO | None) -> bool:
+    """Say whether a stream is a terminal on which a line can be drawn again."""
+    try:
+        return bool(stream is not None and stream.isatty() and os.environ.get("TERM") != "dumb")
+    except ValueError:  # closed
+        return False
+
+
+def watcher(progress: Progress, label: str) -> Callable[[int, int], object] | None:
+    """Return what a long call reports to: None, the user's callable, or a line on the terminal.
+
+    Parameters
+    ----------
+    progress : bool, callable or None
+        True for a line on a terminal; a callable takes (done, total).
+    label : str
+        What is being done.
+
+    Raises
+    ------
+    InputError
+        If it is none of these.
+    """
+    if progress is None or progress is False:
+        return None
+    if progress is True:
+        return Line(label)
+    if not callable(progress):
+        refuse("progress", progress, "progress must be True, False or a callable of (done, total)")
+    return progress

@@ -1,0 +1,1 @@
+"""The command line: densities in, densities out, without writing Python."""

@@ -1,0 +1,68 @@
+"""What a command prints: lines and tables on standard output, how far it is on standard error."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from .._progress import Line
+
+
+class Report:
+    """Where a command speaks.
+
+    Parameters
+    ----------
+    quiet : bool
+        Whether it keeps silent.
+    """
+
+    def __init__(self, quiet: bool) -> None:
+        self._quiet = quiet
+
+    def say(self, text: str = "") -> None:
+        """Print one line or several."""
+        if not self._quiet:
+            print(text)
+
+    def table(self, head: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
+        """Print a table: the first column to the left, the others to the right."""
+        self.say(table(head, rows))
+
+    def progress(self, label: str) -> Line | None:
+        """Return what a long call reports to; nothing is drawn where standard error is no terminal."""
+        return None if self._quiet else Line(label)
+
+
+def table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    """Return a table as text, the first column to the left, the others to the right.
+
+    Examples
+    --------
+    >>> print(table(["what", "value"], [["a", "1.5"], ["bc", "12"]]))
+      what  value
+      a       1.5
+      bc       12
+    """
+    lines = [head, *rows]
+    widths = [max(len(line[i]) for line in lines) for i in range(len(head))]
+    return "\n".join(
+        "  "
+        + "  ".join(
+            word.rjust(n) if i else word.ljust(n)
+            for i, (word, n) in enumerate(zip(line, widths, strict=True))
+        ).rstrip()
+        for line in lines
+    )
+
+
+def size(count: int) -> str:
+    """Return a number of bytes in words.
+
+    Examples
+    --------
+    >>> size(512), size(22_334_599)
+    ('512 bytes', '22.3 MB')
+    """
+    if count < 1000:
+        return f"{count} bytes"
+    return f"{count / 1e3:.1f} kB" if count < 1_000_000 else f"{count / 1e6:.1f} MB"
