@@ -12,9 +12,8 @@ from __future__ import annotations
 import time
 from statistics import median
 
-import numpy as np
-
 import job
+import numpy as np
 import scalewright as sw
 import unit
 from figures import Figure, check, show

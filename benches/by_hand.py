@@ -13,7 +13,6 @@ from dataclasses import dataclass, field
 from itertools import pairwise
 
 import numpy as np
-
 import scalewright as sw
 from job import Floats
 

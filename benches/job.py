@@ -6,11 +6,10 @@ Sources of the input and of the numbers it is checked with: python/scalewright/d
 from __future__ import annotations
 
 import numpy as np
-from numpy.typing import NDArray
-from scalewright.cli import benchmark
-
 import scalewright as sw
 from figures import check
+from numpy.typing import NDArray
+from scalewright.cli import benchmark
 
 Floats = NDArray[np.float64]
 

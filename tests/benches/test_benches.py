@@ -7,7 +7,6 @@ import subprocess
 import sys
 
 import pytest
-
 from house.tree import ROOT
 
 BENCHES = ("accuracy", "apply", "build", "memory", "plain", "unit")

@@ -11,7 +11,6 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 import pytest
-
 import scalewright
 
 HEADING = re.compile(r"^(\w[\w ]+)\n-+$", re.MULTILINE)

@@ -6,7 +6,6 @@ import re
 from pathlib import Path
 
 import pytest
-
 from house.tree import ROOT
 
 SOURCES = sorted(
@@ -16,22 +15,20 @@ SOURCES = sorted(
     for path in (ROOT / folder).rglob(suffix)
     if path != Path(__file__).resolve()
 )
+# Tests may quote a wrong word to see it refused.
+PUBLIC_SOURCES = [path for path in SOURCES if path.relative_to(ROOT).parts[0] in ("rust", "python")]
 DOCUMENTS = [path for path in (ROOT / "README.md", ROOT / "DEVELOPERS.md") if path.exists()]
 
 DRAWERS = {"util", "utils", "helper", "helpers", "misc", "hacks", "common", "stuff", "tools", "base", "lib2"}
 # Synonyms of words that have been chosen: the second is the one to use.
 SYNONYMS = {
     r"\bflavor": "flavour",
-    r"\bfactori[sz]ation_scale\b": "q2",
-    r"\bmu_?f2\b": "q2",
-    r"\bQ2(?=\s*[=:,)])": "q2",
     r"\bn_f\b": "nf",
     r"\bxgrid\b": "grid",
     r"\bx_?points\b": "nodes",
-    r"\banomalous_dim\b": "splitting_function",
 }
-# Largest number of lines; a table of printed coefficients may be longer.
-LONGEST = 400
+# No file is longer, nine in ten are shorter than the second number; tables of printed coefficients may be longer.
+LONGEST, LONG = 600, 400
 TABLES = {"nnlo_nonsinglet.rs", "nnlo_singlet.rs", "nnlo_heavy.rs", "nnlo_light.rs", "polylog.rs"}
 
 
@@ -49,17 +46,20 @@ def test_no_file_is_a_drawer_for_anything(path: Path) -> None:
     )
 
 
-@pytest.mark.parametrize("path", [*SOURCES, *DOCUMENTS], ids=name)
+@pytest.mark.parametrize("path", [*PUBLIC_SOURCES, *DOCUMENTS], ids=name)
 def test_one_word_for_one_thing(path: Path) -> None:
     for number, line in enumerate(path.read_text("utf-8").splitlines(), start=1):
         for wrong, right in SYNONYMS.items():
             assert not re.search(wrong, line), f"{name(path)}:{number}: {line.strip()!r}: say {right}"
 
 
-@pytest.mark.parametrize("path", SOURCES, ids=name)
-def test_a_file_can_be_read_at_one_sitting(path: Path) -> None:
-    lines = len(path.read_text("utf-8").splitlines())
-    assert lines <= LONGEST or path.name in TABLES, f"{name(path)} has {lines} lines"
+def test_a_file_can_be_read_at_one_sitting() -> None:
+    lines = {
+        name(path): len(path.read_text("utf-8").splitlines()) for path in SOURCES if path.name not in TABLES
+    }
+    assert not {path: count for path, count in lines.items() if count > LONGEST}
+    long = {path: count for path, count in lines.items() if count > LONG}
+    assert 10 * len(long) < len(lines), long
 
 
 @pytest.mark.parametrize("path", SOURCES, ids=name)

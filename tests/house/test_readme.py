@@ -7,7 +7,6 @@ import tomllib
 from pathlib import Path
 
 import pytest
-
 from house.tree import README, ROOT
 
 DEVELOPERS = ROOT / "DEVELOPERS.md"
