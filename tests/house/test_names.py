@@ -27,7 +27,7 @@ SYNONYMS = {
     r"\bxgrid\b": "grid",
     r"\bx_?points\b": "nodes",
 }
-# No file is longer, nine in ten are shorter than the second number; tables of printed coefficients may be longer.
+# No file is longer, and nine in ten are shorter than the second number; printed coefficients do not count.
 LONGEST, LONG = 600, 400
 TABLES = {"nnlo_nonsinglet.rs", "nnlo_singlet.rs", "nnlo_heavy.rs", "nnlo_light.rs", "polylog.rs"}
 

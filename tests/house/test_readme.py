@@ -40,8 +40,7 @@ def test_every_command_of_the_program_that_is_named_exists() -> None:
     named = set(re.findall(r"\bscalewright (\w+)", "\n".join(blocks(README, "sh"))))
     assert named <= set(COMMANDS)
     for command in named:
-        with pytest.raises(SystemExit, match=r"^0$"):
-            main([command, "--help"])
+        assert main([command, "--help"]) == 0
 
 
 def test_every_dependency_has_its_reason() -> None:
@@ -61,7 +60,7 @@ def test_every_dependency_has_its_reason() -> None:
 
 @pytest.mark.parametrize("document", [README, DEVELOPERS], ids=lambda path: path.name)
 def test_every_file_that_is_named_is_there(document: Path) -> None:
-    text = document.read_text("utf-8")
+    text = BLOCK.sub("", document.read_text("utf-8"))
     for target in re.findall(r"\]\((?!https?:)([^)#]+)", text):
         assert (ROOT / target).exists(), f"{document.name}: {target}"
     for path in re.findall(r"`((?:rust|python|tests|benches|\.ci)/[\w./]+)`", text):
