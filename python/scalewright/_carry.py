@@ -89,7 +89,7 @@ def _picked(densities: Densities, route: Route, missing: str) -> Floats:
             f"densities have no flavour {_check.show_all(absent)}, active at nf = {route.start_nf}: {cure}"
         )
     if tuple(densities.flavours) == route.allowed:
-        return values
+        return np.require(values, requirements=("C", "A"))
     picked = np.zeros((values.shape[0], len(route.allowed), values.shape[2]))
     for place, flavour in enumerate(route.allowed):
         if flavour in held:

@@ -11,6 +11,7 @@ use pyo3::prelude::*;
 use scalewright_core::apply as core_apply;
 use scalewright_core::convolution::convolve_values;
 use scalewright_core::evolution::FurtherKernel;
+use scalewright_core::numerics::blocks::Matrix;
 use scalewright_core::thresholds::{self, BuildOptions};
 
 /// A live set, dense in scale along its route.
@@ -185,8 +186,33 @@ pub fn compose(
     second_light: i64,
     second_values: PyReadonlyArrayDyn<'_, f64>,
 ) -> PyResult<(Vec<String>, usize, Py<PyArrayDyn<f64>>)> {
-    let _ = (first_names, first_light, first_values, second_names, second_light, second_values);
-    Err(input(py, "composition is not written yet".into()))
+    let nodes = first_values.shape().last().copied().unwrap_or(0);
+    let size = nodes * nodes;
+    let (before, after) =
+        (block(py, "first_values", &first_values, 3)?, block(py, "second_values", &second_values, 4)?);
+    let fits = first_values.shape() == [first_names.len(), nodes, nodes]
+        && second_values.shape()[1..] == [second_names.len(), nodes, nodes];
+    if !fits {
+        let (first, second) = (first_values.shape(), second_values.shape());
+        return Err(input(py, format!("shapes of first_values {first:?} and second_values {second:?} do not fit")));
+    }
+    let named = |names: &[String], light: i64| {
+        let light = count(py, "light", light)?;
+        core_apply::Blocks::new(names, light).map_err(|error| crate::errors::exception(py, &error))
+    };
+    let matrices = |values: &[f64]| -> Vec<Matrix> {
+        values.chunks_exact(size).map(|values| Matrix::from_values(nodes, nodes, values.to_vec())).collect()
+    };
+    let first = core_apply::Set { blocks: named(&first_names, first_light)?, values: matrices(before) };
+    let blocks = named(&second_names, second_light)?;
+    let second: Vec<core_apply::Set> = after
+        .chunks_exact((size * second_names.len()).max(1))
+        .map(|values| core_apply::Set { blocks: blocks.clone(), values: matrices(values) })
+        .collect();
+    let (names, light, values) = run(py, 0, None, |_| core_apply::compose(&first, &second))?;
+    let shape = [values.len(), names.len(), nodes, nodes];
+    let values = values.iter().flatten().flat_map(|matrix| matrix.values()).copied().collect();
+    Ok((names, light, handed_over(py, &shape, values)?))
 }
 
 #[pyfunction]
@@ -206,6 +232,26 @@ pub fn evolve(
     tolerance: f64,
     threads: i64,
 ) -> PyResult<Py<PyArrayDyn<f64>>> {
-    let _ = (theory, grid, start_q2, start_nf, densities, in_flavours, q2, nf, out_flavours, tolerance, threads);
-    Err(input(py, "evolution of vectors is not written yet".into()))
+    let asked = scales(py, &q2, &nf)?;
+    let shape = densities.shape().to_vec();
+    let values = block(py, "densities", &densities, 3)?;
+    let (inputs, outputs) = (slice(py, "in_flavours", &in_flavours)?, slice(py, "out_flavours", &out_flavours)?);
+    let (theory, grid) = (&theory.get().core, &grid.get().core);
+    if shape[1] != inputs.len() || shape[2] != grid.nodes() {
+        let expected = [inputs.len(), grid.nodes()];
+        return Err(input(py, format!("densities has shape {shape:?}: after the replicas it must be {expected:?}")));
+    }
+    let flavours = inputs.iter().chain(outputs);
+    flavours.copied().try_for_each(core_apply::check_flavour).map_err(|error| crate::errors::exception(py, &error))?;
+    let start_nf = count(py, "start_nf", start_nf)?;
+    let heavy = |flavour: &i64| (1..=6).contains(&flavour.abs()) && flavour.unsigned_abs() as usize > start_nf;
+    let intrinsic = inputs.iter().filter(|flavour| heavy(flavour)).map(|flavour| flavour.unsigned_abs() as usize);
+    let options =
+        BuildOptions { start_q2, start_nf, asked, intrinsic: intrinsic.collect(), tolerance, further: vec![] };
+    let vectors = thresholds::Vectors { in_flavours: inputs, values, out_flavours: outputs };
+    let shape = [options.asked.len(), shape[0], outputs.len(), grid.nodes()];
+    let out = run(py, count(py, "threads", threads)?, None, |watch| {
+        thresholds::evolve(theory, grid, &options, &vectors, watch)
+    })?;
+    handed_over(py, &shape, out)
 }

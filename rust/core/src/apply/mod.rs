@@ -5,5 +5,5 @@ mod compose;
 mod recombine;
 
 pub use batch::{Batch, apply};
-pub use compose::compose;
+pub use compose::{Composed, Set, compose};
 pub use recombine::{Blocks, check_flavour};

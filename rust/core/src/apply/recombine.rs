@@ -83,6 +83,16 @@ impl Blocks {
         Ok(blocks)
     }
 
+    /// The names as given.
+    pub fn names(&self) -> &[String] {
+        &self.names
+    }
+
+    /// Whether a block of this name is held.
+    pub fn has(&self, name: &str) -> bool {
+        self.position(name).is_some()
+    }
+
     /// The block from one channel to another, if it is not zero: light to light of `q - qbar` falls back to `ns-`,
     /// that to `ns+`.
     pub fn between(&self, output: Channel, input: Channel) -> Option<usize> {

@@ -16,7 +16,6 @@ use crate::theory::Theory;
 pub struct Crossing {
     /// Flavours below.
     nf: usize,
-    offsets: Vec<usize>,
     /// `A` of each element, without unity, and its last row: what goes below x_min.
     quark: Both,
     gluon_gluon: Matrix,
@@ -38,13 +37,13 @@ impl Crossing {
     ///
     /// # Errors
     /// Those of the running coupling.
-    pub fn new(theory: &Theory, kernels: &KernelSet, nf: usize, offsets: &[usize]) -> Result<Self> {
+    pub fn new(theory: &Theory, kernels: &KernelSet, nf: usize, nodes: usize) -> Result<Self> {
         let q2 = theory.threshold_q2(nf + 1);
         let a = theory.a(q2, nf + 1)?;
         let log = (q2 / theory.mass2(nf + 1)).ln();
         let form = if theory.compact_heavy_gluon() { HeavyGluonForm::Compact } else { HeavyGluonForm::Exact };
         let element = |element: Element| {
-            let mut sum = Convolved::zeros(offsets[offsets.len() - 1]);
+            let mut sum = Convolved::zeros(nodes);
             for order in 1..=theory.order() {
                 let part = kernels.matching(order, element, theory.mass_kind(), form, log, nf as f64);
                 sum.add_scaled(a.powi(order as i32), &part);
@@ -58,7 +57,6 @@ impl Crossing {
         };
         Ok(Self {
             nf,
-            offsets: offsets.to_vec(),
             quark: both(Element::LightQuark),
             gluon_gluon: momentum(Element::GluonGluon),
             gluon_quark: momentum(Element::GluonQuark),
@@ -193,11 +191,6 @@ impl Crossing {
         Factors::of(&system).solve(stacked.part_mut(0..2 * n, 0..cols));
         gluon.values_mut().copy_from_slice(&stacked.values()[..n * cols]);
         heavy.values_mut().copy_from_slice(&stacked.values()[n * cols..]);
-    }
-
-    /// Panels of the grid.
-    pub fn offsets(&self) -> &[usize] {
-        &self.offsets
     }
 }
 

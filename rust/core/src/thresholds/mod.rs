@@ -4,5 +4,7 @@ mod columns;
 mod crossing;
 mod operators;
 mod route;
+mod vector;
 
 pub use operators::{BuildOptions, Evolution, build};
+pub use vector::{Vectors, evolve};

@@ -60,7 +60,6 @@ struct Chunk {
 /// Everything that serves all columns of a route.
 pub(super) struct Prepared {
     pub route: Route,
-    equations: BTreeMap<usize, FixedFlavour>,
     /// One a leg.
     stretches: Vec<Stretch>,
     /// One a leg; none for those that leave the start.
@@ -97,11 +96,11 @@ impl Prepared {
                 Entry::Start => Ok(None),
                 Entry::Crossing { from_leg } => {
                     let below = leg.nf.min(route.legs[from_leg].nf);
-                    Crossing::new(theory, kernels, below, &offsets).map(Some)
+                    Crossing::new(theory, kernels, below, grid.nodes()).map(Some)
                 }
             })
             .collect::<Result<_>>()?;
-        Ok(Self { route, equations, stretches, crossings, offsets })
+        Ok(Self { route, stretches, crossings, offsets })
     }
 
     /// Carries columns along every leg. Rows of panels before `first` are zero.
@@ -137,7 +136,7 @@ impl Prepared {
 }
 
 /// `s = ln a` at a factorisation scale.
-fn scale(theory: &Theory, q2: f64, nf: usize) -> Result<f64> {
+pub(super) fn scale(theory: &Theory, q2: f64, nf: usize) -> Result<f64> {
     theory.a_at_factorisation(q2, nf).map(f64::ln)
 }
 
@@ -147,6 +146,17 @@ fn scale(theory: &Theory, q2: f64, nf: usize) -> Result<f64> {
 /// [`Error::Tolerance`] where the steps do not reach the tolerance; those of the running coupling;
 /// [`Error::Interrupted`].
 pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn Watch) -> Result<Evolution> {
+    let (prepared, inputs, error) = prepare(theory, grid, options, watch)?;
+    finish(theory, grid, prepared, &inputs, error, watch)
+}
+
+/// Factors the equations of a route finely enough for the tolerance; also returns the error reached.
+pub(super) fn prepare(
+    theory: &Theory,
+    grid: &Grid,
+    options: &BuildOptions,
+    watch: &dyn Watch,
+) -> Result<(Prepared, Inputs, f64)> {
     let kernels = kernels_on(grid, watch)?;
     let mut refinement = 0;
     loop {
@@ -155,11 +165,11 @@ pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn W
         let inputs = Inputs::of(&prepared, options);
         let error = inputs.probe(theory, grid, &prepared)?;
         if error <= options.tolerance {
-            return finish(theory, grid, prepared, &inputs, error, watch);
+            return Ok((prepared, inputs, error));
         }
         if refinement == MOST_REFINEMENTS {
-            let steps = prepared.steps();
-            return Err(Error::Tolerance { nf: options.start_nf, reached: error, tolerance: options.tolerance, steps });
+            let (nf, tolerance, steps) = (options.start_nf, options.tolerance, prepared.steps());
+            return Err(Error::Tolerance { nf, reached: error, tolerance, steps });
         }
         refinement += 1;
     }
@@ -192,10 +202,10 @@ fn finish(
 }
 
 /// What the input of a route consists of.
-struct Inputs {
-    light: usize,
+pub(super) struct Inputs {
+    pub light: usize,
     /// Heavy flavours of the input, each an input channel after gluon and light sum.
-    heavy: Vec<usize>,
+    pub heavy: Vec<usize>,
     /// Heavy flavours of the output.
     heavy_out: Vec<usize>,
 }
