@@ -116,9 +116,7 @@ def _published_logarithms() -> dict[tuple[str, int], np.ndarray]:
     hg_cf = 8 * p * l1 - (4 - 8 * z + 16 * z**2) * lz - (2 - 8 * z)
     hg_ca = -8 * p * l1 - (8 + 32 * z) * lz - 16 / 3 / z - 4 - 32 * z + 124 / 3 * z**2
     return {
-        ("quark<-quark", 1): -CF
-        * TR
-        * (8 / 3 * (1 + z**2) / y * lz + 80 / 9 / y + (8 - 88 * z) / 9),
+        ("quark<-quark", 1): -CF * TR * (8 / 3 * (1 + z**2) / y * lz + 80 / 9 / y + (8 - 88 * z) / 9),
         ("heavy<-quark", 1): -CF * TR * hq,
         ("gluon<-quark", 1): -CF * TR * gq,
         ("gluon<-gluon", 1): -TR * (CF * gg_cf + CA * gg_ca),
@@ -148,9 +146,7 @@ def test_published_local_logarithms() -> None:
 def test_leading_small_x_of_heavy_quark_constants() -> None:
     """1/z terms of A_Hq and A_Hg: ratio CF/CA (high-energy factorisation), to rounding."""
     z = np.array([1e-40])
-    quark, gluon = (
-        matching(2, e, 0).regular(z, 1 - z)[0] for e in ("heavy<-quark", "heavy<-gluon")
-    )
+    quark, gluon = (matching(2, e, 0).regular(z, 1 - z)[0] for e in ("heavy<-quark", "heavy<-gluon"))
     assert quark == pytest.approx(CF / CA * gluon, rel=1e-14)
 
 

@@ -38,9 +38,7 @@ class ContourStarts:
             return self._first(NON_SINGLET_STARTS, weights, {})
         return self._singlet
 
-    def _first(
-        self, starts: Sequence[float], plus: Mapping[int, float], minus: Mapping[int, float]
-    ) -> float:
+    def _first(self, starts: Sequence[float], plus: Mapping[int, float], minus: Mapping[int, float]) -> float:
         """Return the first start with no singularity of the moments to its right.
 
         The integral around a circle right of it, by the trapezoidal rule, must vanish.

@@ -85,8 +85,4 @@ class Coupling:
 
     def _down(self, a: float, lower_nf: int, mur2: float) -> float:
         """Invert `_up` exactly."""
-        return float(
-            brentq(
-                lambda b: self._up(b, lower_nf, mur2) - a, a / 3, 3 * a, xtol=1e-17, rtol=1e-15
-            )
-        )
+        return float(brentq(lambda b: self._up(b, lower_nf, mur2) - a, a / 3, 3 * a, xtol=1e-17, rtol=1e-15))

@@ -16,9 +16,7 @@ STEP = 0.12
 """Largest step in ln a: order 12 in a step this small is at rounding (`test_evolution`)."""
 
 
-def rescaled(
-    kernels: Sequence[Complex], log_kappa: float, beta: Sequence[float]
-) -> list[Complex]:
+def rescaled(kernels: Sequence[Complex], log_kappa: float, beta: Sequence[float]) -> list[Complex]:
     """Re-expand kernels for the coupling at mu_r^2 = kappa mu_f^2.
 
     a(mu_f^2) = a + beta0 l a^2 + (beta0^2 l^2 + beta1 l) a^3, l = ln kappa, a = a(mu_r^2).
@@ -37,9 +35,7 @@ def _generator(kernels: Sequence[Complex], beta: Sequence[float], a: float) -> C
     return -upper / sum(a**k * b for k, b in enumerate(beta))
 
 
-def non_singlet(
-    kernels: Sequence[Complex], beta: Sequence[float], a_from: float, a_to: float
-) -> Complex:
+def non_singlet(kernels: Sequence[Complex], beta: Sequence[float], a_from: float, a_to: float) -> Complex:
     """Return the factor E, shape (n,): the exponential of an integral over ln a."""
     x, w = np.polynomial.legendre.leggauss(NON_SINGLET_NODES)
     middle, half = (np.log(a_to * a_from)) / 2, np.log(a_to / a_from) / 2

@@ -42,16 +42,12 @@ class Density:
         return Density(self.terms + other.terms)
 
 
-def shaped(
-    normalisation: float, a: float, b: float, root: float = 0.0, slope: float = 0.0
-) -> Density:
+def shaped(normalisation: float, a: float, b: float, root: float = 0.0, slope: float = 0.0) -> Density:
     """Return x f = A x^a (1-x)^b (1 + root sqrt(x) + slope x)."""
     parts = ((1.0, a), (root, a + 0.5), (slope, a + 1.0))
     return Density(tuple((normalisation * c, e, b) for c, e in parts if c != 0.0))
 
 
-def beta_moments(
-    normalisation: float, a: float, b: float, root: float = 0.0, slope: float = 0.0
-) -> Moments:
+def beta_moments(normalisation: float, a: float, b: float, root: float = 0.0, slope: float = 0.0) -> Moments:
     """Return the moments of `shaped` as a callable of complex N."""
     return shaped(normalisation, a, b, root, slope).moments

@@ -22,9 +22,7 @@ class Kernels(Protocol):
         """Coefficient of a^(order+1) of a splitting function."""
         ...
 
-    def matching(
-        self, order: int, element: str, power_of_L: int, kind: str, form: str
-    ) -> Parts:
+    def matching(self, order: int, element: str, power_of_L: int, kind: str, form: str) -> Parts:
         """Coefficient of a^order L^power of a matching element across a threshold."""
         ...
 

@@ -196,8 +196,7 @@ def plus_moments(n: Complex, highest: int) -> list[Complex]:
     From int_0^1 dz (z^(n-1) - 1) (1-z)^(e-1) = [G(n) G(1+e) / G(n+e) - 1] / e, G = Gamma.
     """
     slopes = [
-        complex_polygamma(m, np.ones(1, complex))[0] - complex_polygamma(m, n)
-        for m in range(highest + 1)
+        complex_polygamma(m, np.ones(1, complex))[0] - complex_polygamma(m, n) for m in range(highest + 1)
     ]
     derivatives = derivatives_of_exponential(slopes)
     return [derivatives[k + 1] / (k + 1) for k in range(highest + 1)]

@@ -237,13 +237,9 @@ class MellinSolution:
         return Threshold(lower_nf, self._order, a, logarithm, self._kind, self._form)
 
     def _splitting(self, contour: Points, channel: str, nf: int) -> list[Complex]:
-        return [
-            self._moments.splitting(contour, k, channel, nf) for k in range(self._order + 1)
-        ]
+        return [self._moments.splitting(contour, k, channel, nf) for k in range(self._order + 1)]
 
-    def _fixed(
-        self, state: State, contour: Points, nf: int, from_q2: float, to_q2: float
-    ) -> State:
+    def _fixed(self, state: State, contour: Points, nf: int, from_q2: float, to_q2: float) -> State:
         if from_q2 == to_q2:
             return state
         beta = betas(nf, self._loops)

@@ -11,9 +11,11 @@ from mellin.published import QUANTITIES
 from mellin.representations import EveryZ, NearOne
 from mellin.solution import MellinSolution
 
-X = np.array(
-    [*(10.0**-k for k in range(9, 2, -1)), 0.01, 0.05, 0.1, 0.2, 0.22, 0.2232, 0.25, 0.3]
-    + [0.4, 0.5, 0.6, 0.61, 0.7, 0.8, 0.82, 0.9]
+X = np.concatenate(
+    [
+        10.0 ** -np.arange(9.0, 2.0, -1.0),
+        [0.01, 0.05, 0.1, 0.2, 0.22, 0.2232, 0.25, 0.3, 0.4, 0.5, 0.6, 0.61, 0.7, 0.8, 0.82, 0.9],
+    ]
 )
 
 CHANGES = {
@@ -48,9 +50,7 @@ def run(kernels: Kernels, order: int, contour_order: int) -> dict[str, np.ndarra
         threshold_ratios=(1.0, 1.4, 1.0),
         contour_order=contour_order,
     )
-    return solution.evolve_combinations(
-        QUANTITIES, toy_input.MOMENTS, start_q2=2.0, start_nf=3, q2=1e4, x=X
-    )
+    return solution.evolve_combinations(QUANTITIES, toy_input.MOMENTS, start_q2=2.0, start_nf=3, q2=1e4, x=X)
 
 
 @pytest.fixture(scope="module", params=[0, 1, 2], ids=["LO", "NLO", "NNLO"])

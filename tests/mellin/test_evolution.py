@@ -53,9 +53,7 @@ def test_singlet_against_dop853(kernels: Kernels, order: int, which: int) -> Non
         e = e.reshape(-1, 2, 1)
         return (-(upper @ e) / sum(a**k * b for k, b in enumerate(beta))).ravel()
 
-    other = solve_ivp(
-        slope, np.log(ENDS), start.ravel(), method="DOP853", rtol=1e-13, atol=1e-15
-    )
+    other = solve_ivp(slope, np.log(ENDS), start.ravel(), method="DOP853", rtol=1e-13, atol=1e-15)
     scale = np.max(np.abs(other.y), axis=1).reshape(-1, 2).max(axis=1)[:, None]
     # its own tolerance, 1e-13 a step, adds up to a few 1e-13 to 1e-12
     assert np.all(np.abs(ours - other.y[:, -1].reshape(-1, 2)) < 3e-12 * scale)
@@ -75,9 +73,7 @@ def test_coupling_at_one_and_two_loops() -> None:
     """One loop is a straight line in 1/a; two loops have a closed implicit form."""
     a, scale = 0.35 / (4 * pi), 2.0
     for loops in (1, 2):
-        coupling = Coupling(
-            0.35, 2.0, 4, toy_input.MASSES, "pole", (2.0, 20.0, 3e4), loops, 1.0
-        )
+        coupling = Coupling(0.35, 2.0, 4, toy_input.MASSES, "pole", (2.0, 20.0, 3e4), loops, 1.0)
         b = coupling.at(1e4, 4)
         b0, b1, _ = betas(4, loops)
 
@@ -101,9 +97,7 @@ def test_coupling_down_and_up_again() -> None:
 
 @pytest.mark.parametrize("order", [0, 1, 2])
 @pytest.mark.parametrize("change", ["kappa", "threshold", "intrinsic", "mass"])
-def test_conventions_differ_by_one_order_more(
-    kernels: Kernels, order: int, change: str
-) -> None:
+def test_conventions_differ_by_one_order_more(kernels: Kernels, order: int, change: str) -> None:
     """mu_r/mu_f, mu_thr/m and pole against m(m) change nothing to the order of the theory.
 
     All logarithms of re-expansion and matching must be right for that: each difference
@@ -142,9 +136,7 @@ def test_conventions_differ_by_one_order_more(
             more = {"masses": (mass, 100.0, 175.0), "kind": "msbar"}
             more["threshold_ratios"] = (9.0 / mass**2, 1.0, 1.0)
             solution = benchmark(kernels, order, **(settings | more))
-        result = solution.evolve_combinations(
-            combinations, moments, start_q2=q2, start_nf=3, q2=final, x=x
-        )
+        result = solution.evolve_combinations(combinations, moments, start_q2=q2, start_nf=3, q2=final, x=x)
         return np.array(list(result.values()))
 
     base = run(0.01, changed=False)
@@ -200,9 +192,6 @@ def test_quark_numbers(kernels: Kernels, order: int, tolerance: float) -> None:
     )
     numbers = [np.mean(end[q] - end[-q]).real for q in (1, 2, 3, 4, 5)]
     # the input's normalisations have seven digits: 1 and 2 to 1e-6
-    start = [
-        np.mean(toy_input.MOMENTS[q](circle) - toy_input.MOMENTS[-q](circle)).real
-        for q in (1, 2)
-    ]
+    start = [np.mean(toy_input.MOMENTS[q](circle) - toy_input.MOMENTS[-q](circle)).real for q in (1, 2)]
     np.testing.assert_allclose(numbers, [*start, 0, 0, 0], atol=tolerance)
     np.testing.assert_allclose(start, [1, 2], atol=2e-6)

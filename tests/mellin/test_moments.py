@@ -97,8 +97,7 @@ def test_continuation_to_the_left_against_closed_forms(name: str) -> None:
         computed = representation.matrix(line.points) @ representation.vector(kernel)
         here = line.serves(u)
         ours, known = (
-            line.invert(m * density.moments(line.points), u[here])
-            for m in (computed, exact(line.points))
+            line.invert(m * density.moments(line.points), u[here]) for m in (computed, exact(line.points))
         )
         mass = line.invert(density.moments(line.points) / line.points, u[here])
         allowed = 1e-12 * np.abs(known) + rounding_of(kernel) * mass
@@ -151,9 +150,7 @@ def direct_moment(parts: Parts, n: float) -> float:
 
 @pytest.mark.parametrize("order", [0, 1, 2])
 @pytest.mark.parametrize("channel", CHANNELS)
-def test_splitting_moments_against_quadrature(
-    kernels: Kernels, order: int, channel: str
-) -> None:
+def test_splitting_moments_against_quadrature(kernels: Kernels, order: int, channel: str) -> None:
     n = 2.75
     here = FreePoints((complex(n),))
     computed = moments_of(kernels).splitting(here, order, channel, 4)[0]

@@ -59,7 +59,7 @@ def test_bad_arguments_are_refused(kernels: Kernels) -> None:
         solution(kernels, running_loops=4)
     ask = {"start_q2": 2.0, "start_nf": 3, "q2": 1e2}
     for x in (1e-10, 0.98):
-        with pytest.raises(ValueError, match="between 1e-9 and 0.97"):
+        with pytest.raises(ValueError, match=r"between 1e-9 and 0\.97"):
             solution(kernels).evolve(toy_input.MOMENTS, x=np.array([x]), **ask)
     with pytest.raises(ValueError, match="PDG number"):
         solution(kernels).evolve({7: toy_input.MOMENTS[21]}, x=X, **ask)

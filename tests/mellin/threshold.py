@@ -40,17 +40,13 @@ class Threshold:
     kind: str
     form: str
 
-    def cross(
-        self, state: State, kernels: KernelMoments, contour: Points, *, up: bool
-    ) -> State:
+    def cross(self, state: State, kernels: KernelMoments, contour: Points, *, up: bool) -> State:
         """Return the state on the other side."""
         light, heavy = slice(0, self.lower_nf), self.lower_nf
         non_singlet = 1 + self._element(kernels, contour, "quark<-quark")
         intrinsic = 1 + self._element(kernels, contour, "heavy<-heavy")
         matrix = self._singlet(kernels, contour, non_singlet, intrinsic)
-        before = np.stack(
-            (state.gluon, state.plus[light].sum(axis=0), state.plus[heavy]), axis=1
-        )[:, :, None]
+        before = np.stack((state.gluon, state.plus[light].sum(axis=0), state.plus[heavy]), axis=1)[:, :, None]
         after = (matrix @ before if up else np.linalg.solve(matrix, before))[:, :, 0]
         plus, minus = state.plus.copy(), state.minus.copy()
         factor = non_singlet if up else 1 / non_singlet
@@ -69,9 +65,7 @@ class Threshold:
                 if power and self.log == 0.0:
                     continue
                 weight = self.a**order * self.log**power
-                total = total + weight * kernels.matching(
-                    contour, order, name, power, self.kind, self.form
-                )
+                total = total + weight * kernels.matching(contour, order, name, power, self.kind, self.form)
         return total
 
     def _singlet(

@@ -183,9 +183,7 @@ def _second_order(element: str, power_of_l: int, kind: str, form: str) -> Parts:
     return _flavour_step(LINEAR[element]) if power_of_l == 1 else SQUARED[element]()
 
 
-def matching(
-    order: int, element: str, power_of_L: int, kind: str = "pole", form: str = "exact"
-) -> Parts:
+def matching(order: int, element: str, power_of_L: int, kind: str = "pole", form: str = "exact") -> Parts:
     """Coefficient of a^order L^power_of_L of a matching element, order 1 or 2.
 
     `kind` is "pole" or "msbar" (m = m(m)); `form` is "exact" or "compact" and concerns the
