@@ -4,7 +4,7 @@ import math
 
 import numpy as np
 import pytest
-from scalewright import Coupling, RangeError, QuarkMasses, Theory
+from scalewright import Coupling, QuarkMasses, RangeError, Theory
 from scipy.integrate import solve_ivp
 
 #: alpha_s(1e4 GeV^2) of the published benchmark (W. Giele et al., hep-ph/0204316; M. Dittmar et al.,
