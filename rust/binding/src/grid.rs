@@ -55,8 +55,7 @@ impl Grid {
 
     #[getter]
     fn x<'py>(&self, py: Python<'py>) -> Bound<'py, PyArray1<f64>> {
-        let x: Vec<f64> = self.core.u().iter().map(|u| (-u).exp()).collect();
-        copied(py, &x)
+        copied(py, &self.core.x())
     }
 
     fn cardinals(&self, py: Python<'_>, x: PyReadonlyArray1<'_, f64>) -> PyResult<Py<PyArrayDyn<f64>>> {

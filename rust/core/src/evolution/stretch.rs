@@ -92,13 +92,25 @@ impl Stretch {
 }
 
 impl StretchSolution {
-    /// The solution at `s = ln a` within the stretch.
-    pub fn at(&self, s: f64) -> Matrix {
+    /// The solution at several `s = ln a` within the stretch.
+    pub fn at_many(&self, s: &[f64]) -> Vec<Matrix> {
         if self.steps.is_empty() {
-            return self.start.clone();
+            return vec![self.start.clone(); s.len()];
         }
-        let share = (s - self.from) / (self.to - self.from) * self.steps.len() as f64;
-        self.steps[(share.max(0.0) as usize).min(self.steps.len() - 1)].at(s)
+        let last = self.steps.len() - 1;
+        let step_of = |s: f64| {
+            let share = (s - self.from) / (self.to - self.from) * self.steps.len() as f64;
+            (share.max(0.0) as usize).min(last)
+        };
+        let mut solutions = vec![Matrix::default(); s.len()];
+        for (index, step) in self.steps.iter().enumerate() {
+            let here: Vec<usize> = (0..s.len()).filter(|&i| step_of(s[i]) == index).collect();
+            let at: Vec<f64> = here.iter().map(|&i| s[i]).collect();
+            for (solution, i) in step.at_many(&at).into_iter().zip(here) {
+                solutions[i] = solution;
+            }
+        }
+        solutions
     }
 
     /// Estimated error of some rows, relative to the largest value of each entry over a step.

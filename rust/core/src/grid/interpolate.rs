@@ -4,8 +4,8 @@ use super::Grid;
 use crate::error::{Error, Result};
 use crate::numerics::gauss_legendre::gauss_legendre;
 
-/// How far above `u_max` an argument may lie and still count as `x_min`: the rounding of `exp` and `ln`.
-const ROUNDING: f64 = 4e-15;
+/// How far below `x_min` an argument may lie, relatively, and still count as `x_min`: the rounding of `exp` and `ln`.
+const ROUNDING: f64 = 1e-13;
 
 impl Grid {
     /// Values of all cardinal functions at `x`, one entry a node: `F(x) = sum_j row_j F_j`.
@@ -14,7 +14,7 @@ impl Grid {
     /// [`Error::OutOfRange`] where x is not in `[x_min, 1]`.
     pub fn cardinals(&self, x: f64, row: &mut [f64]) -> Result<()> {
         let u = -x.ln();
-        if !(u >= 0.0 && u <= self.u_max() * (1.0 + ROUNDING)) {
+        if !(x <= 1.0 && x >= self.x_min() * (1.0 - ROUNDING)) {
             return Err(Error::OutOfRange {
                 name: "x",
                 value: format!("{x:?}"),

@@ -115,9 +115,20 @@ impl Grid {
         self.u.len()
     }
 
-    /// Smallest x.
+    /// Smallest x: `e^-u` of the last edge without the rounding of its last digits, so that a grid made with
+    /// `x_min = 1e-7` says 1e-7.
     pub fn x_min(&self) -> f64 {
-        (-self.u_max()).exp()
+        let x = (-self.u_max()).exp();
+        format!("{x:.13e}").parse().unwrap_or(x)
+    }
+
+    /// x of the nodes, falling to `x_min`.
+    pub fn x(&self) -> Vec<f64> {
+        let mut x: Vec<f64> = self.u.iter().map(|u| (-u).exp()).collect();
+        if let Some(last) = x.last_mut() {
+            *last = self.x_min();
+        }
+        x
     }
 
     /// Largest u.

@@ -83,6 +83,13 @@ impl Matrix {
         }
     }
 
+    /// Multiplies every entry.
+    pub fn scale(&mut self, factor: f64) {
+        for value in &mut self.data {
+            *value *= factor;
+        }
+    }
+
     /// A rectangular part, for reading.
     pub fn part(&self, rows: Range<usize>, cols: Range<usize>) -> View<'_> {
         View::from_row_major_slice(&self.data, self.rows, self.cols).submatrix(

@@ -113,18 +113,21 @@ impl Step {
 }
 
 impl Dense {
-    /// The solution at `s`, inside the step.
-    pub fn at(&self, s: f64) -> Matrix {
-        let mut weights = vec![0.0; self.nodes.points().len()];
-        self.nodes.cardinals(s, &mut weights);
-        let mut value = Matrix::zeros(self.rows, self.cols);
-        for (node, &weight) in weights.iter().enumerate() {
-            if weight != 0.0 {
-                let row = self.values.row(node);
-                value.values_mut().iter_mut().zip(row).for_each(|(sum, v)| *sum += weight * v);
-            }
+    /// The solution at several `s` inside the step.
+    pub fn at_many(&self, s: &[f64]) -> Vec<Matrix> {
+        let (count, size) = (self.nodes.points().len(), self.rows * self.cols);
+        let mut weights = Matrix::zeros(s.len(), count);
+        for (row, &s) in s.iter().enumerate() {
+            self.nodes.cardinals(s, weights.row_mut(row));
         }
-        value
+        let mut values = Matrix::zeros(s.len(), size);
+        multiply_add(
+            values.part_mut(0..s.len(), 0..size),
+            1.0,
+            weights.part(0..s.len(), 0..count),
+            self.values.part(0..count, 0..size),
+        );
+        (0..s.len()).map(|row| Matrix::from_values(self.rows, self.cols, values.row(row).to_vec())).collect()
     }
 
     /// The solution at the end of the step.

@@ -164,36 +164,63 @@ impl LegColumns {
 
     /// The columns at `s = ln a`.
     pub fn at(&self, s: f64) -> Columns {
-        let mut columns = self.start.clone();
-        let mut singlet = self.sum.at(s);
+        // One scale gives one set of columns.
+        self.at_many(&[s]).swap_remove(0)
+    }
+
+    /// The columns at several scales.
+    pub fn at_many(&self, s: &[f64]) -> Vec<Columns> {
+        let mut deviations: Vec<_> = self
+            .differences
+            .iter()
+            .map(|(flavour, solution)| solution.at_many(s).into_iter().map(move |values| (*flavour, values)))
+            .collect();
+        let sums = self.sum.at_many(s);
+        sums.into_iter()
+            .map(|sum| self.by_flavour(sum, deviations.iter_mut().filter_map(Iterator::next).collect()))
+            .collect()
+    }
+
+    /// Flavours from their sum and what each heavy one differs from its share of the light sum.
+    ///
+    /// With `d_h = h - L/light` and `Sigma = L + sum_h h`: `L = (light/nf) (Sigma - sum_h d_h)`.
+    fn by_flavour(&self, sum: Matrix, deviations: Vec<(usize, Matrix)>) -> Columns {
+        let mut columns = self.inactive();
+        if matches!(columns.family, Family::NsPlus | Family::NsMinus) {
+            columns.channels[LIGHT] = Some(sum);
+            return columns;
+        }
+        let mut average = sum;
         if columns.family == Family::Plus {
-            let (gluon, quarks) = unpack(&singlet, &self.offsets);
-            *columns.gluon_mut() = gluon;
-            singlet = quarks;
+            let (gluon, quarks) = unpack(&average, &self.offsets);
+            columns.channels[GLUON] = Some(gluon);
+            average = quarks;
         }
-        // With d_h = h - L/light and Sigma = L + sum_h h: L = (light/nf) (Sigma - sum_h d_h).
-        let deviations: Vec<(usize, Matrix)> =
-            self.differences.iter().map(|(flavour, solution)| (*flavour, solution.at(s))).collect();
-        let mut average = singlet;
-        if matches!(columns.family, Family::Plus | Family::Minus) {
-            for (_, deviation) in &deviations {
-                average.add_scaled(-1.0, deviation);
-            }
-            average.values_mut().iter_mut().for_each(|value| *value /= self.nf as f64);
+        for (_, deviation) in &deviations {
+            average.add_scaled(-1.0, deviation);
         }
+        average.scale(1.0 / self.nf as f64);
         for (flavour, mut heavy) in deviations {
             heavy.add_scaled(1.0, &average);
             columns.set_heavy(flavour, heavy);
         }
-        if matches!(columns.family, Family::Plus | Family::Minus) {
-            let light = columns.light as f64;
-            average.values_mut().iter_mut().for_each(|value| *value *= light);
-        }
-        *columns.light_mut() = average;
+        average.scale(columns.light as f64);
+        columns.channels[LIGHT] = Some(average);
         if columns.family == Family::Plus {
             columns.gather_momentum();
         }
         columns
+    }
+
+    /// What does not evolve on this leg: heavy flavours that are not active.
+    fn inactive(&self) -> Columns {
+        let mut channels = [const { None }; CHANNELS];
+        for (place, channel) in self.start.channels.iter().enumerate().skip(LIGHT + 1) {
+            if place + CHARM - LIGHT - 1 > self.nf {
+                channels[place].clone_from(channel);
+            }
+        }
+        Columns { family: self.start.family, light: self.start.light, channels }
     }
 
     /// Estimated error relative to each value at the nodes named, over the whole leg.

@@ -2,9 +2,12 @@
 
 mod columns;
 mod crossing;
+mod inputs;
 mod operators;
+mod prepared;
 mod route;
 mod vector;
 
-pub use operators::{BuildOptions, Evolution, build};
+pub use operators::{Evolution, build};
+pub use prepared::BuildOptions;
 pub use vector::{Vectors, evolve};

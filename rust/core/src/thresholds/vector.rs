@@ -1,7 +1,8 @@
 //! Some densities to a few scales without building operators.
 
 use super::columns::{Columns, Family, LegColumns};
-use super::operators::{BuildOptions, Inputs, prepare, scale};
+use super::inputs::Inputs;
+use super::prepared::{BuildOptions, prepare, scale};
 use crate::error::Result;
 use crate::grid::Grid;
 use crate::numerics::blocks::Matrix;
