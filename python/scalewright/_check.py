@@ -113,9 +113,9 @@ def real_array(
         if not fits:
             want = ", ".join("any" if n is None else str(n) for n in shape)
             refuse(name, array, f"the shape of {name} must be ({want})")
-    # order="C" and not ascontiguousarray: that one turns a 0-d array into one of length 1
+    # Not ascontiguousarray: that one turns a 0-d array into one of length 1, and lets unaligned memory through.
     with np.errstate(over="ignore"):  # a longdouble beyond float64 becomes inf and is refused below
-        floats: Floats = np.asarray(array, dtype=np.float64, order="C")
+        floats: Floats = np.require(array, dtype=np.float64, requirements=("C", "A"))
     # One pass without a temporary array as large as the input: a sum of finite numbers can overflow, so a sum
     # that is not finite only says "look closer".
     with np.errstate(all="ignore"):
@@ -251,7 +251,7 @@ def x_values(name: str, value: object, *, x_min: float | None = None, rounding: 
     limits = "(0, 1]" if x_min is None else f"[{show(float(x_min))}, 1]"
     array = _numbers(name, value)
     with np.errstate(over="ignore"):
-        floats: Floats = np.asarray(array, dtype=np.float64, order="C")
+        floats: Floats = np.require(array, dtype=np.float64, requirements=("C", "A"))
     inside = (floats > 0.0) & (floats <= 1.0)
     refuse_where(name, floats, ~inside, f"{name} must lie in {limits}")
     if x_min is not None:

@@ -17,7 +17,7 @@ fn dot(a: &[f64], b: &[f64]) -> f64 {
     a.iter().zip(b).map(|(a, b)| a * b).sum()
 }
 
-/// Momentum, above and below x_min, that a kernel gives to a density.
+/// Momentum, above and below `x_min`, that a kernel gives to a density.
 fn momentum(grid: &Grid, set: &KernelSet, order: usize, channel: Channel, f: &[f64]) -> f64 {
     let kernel = set.splitting(order, channel, 4.0);
     let above: Vec<f64> = (0..grid.nodes()).map(|i| dot(kernel.matrix.row(i), f)).collect();

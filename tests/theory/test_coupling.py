@@ -4,7 +4,7 @@ import math
 
 import numpy as np
 import pytest
-from scalewright import Coupling, InputError, QuarkMasses, Theory
+from scalewright import Coupling, QuarkMasses, RangeError, Theory
 from scipy.integrate import solve_ivp
 
 #: alpha_s(1e4 GeV^2) of the published benchmark (W. Giele et al., hep-ph/0204316; M. Dittmar et al.,
@@ -60,5 +60,5 @@ def test_a_fixed_number_below_that_of_the_coupling_decouples_first():
 
 
 def test_below_the_landau_pole_there_is_no_coupling():
-    with pytest.raises(InputError, match="alpha_s grows beyond"):
+    with pytest.raises(RangeError, match="alpha_s grows beyond"):
         Theory().alpha_s(1e-3)

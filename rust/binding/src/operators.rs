@@ -21,6 +21,9 @@ pub struct Evolution {
     nodes: usize,
 }
 
+/// An array of any number of axes.
+type Array = Py<PyArrayDyn<f64>>;
+
 /// A kernel of the user: order, nf, channel, regular values, plus coefficients, local part.
 type Further<'py> = (i64, i64, String, PyReadonlyArray1<'py, f64>, PyReadonlyArray1<'py, f64>, f64);
 
@@ -125,7 +128,7 @@ impl Evolution {
         q2: PyReadonlyArray1<'_, f64>,
         nf: PyReadonlyArray1<'_, i64>,
         threads: i64,
-    ) -> PyResult<(Py<PyArrayDyn<f64>>, Py<PyArrayDyn<f64>>)> {
+    ) -> PyResult<(Array, Array)> {
         let asked = scales(py, &q2, &nf)?;
         let count_scales = asked.len();
         let (blocks, flows) =
@@ -211,7 +214,8 @@ pub fn compose(
         .collect();
     let (names, light, values) = run(py, 0, None, |_| core_apply::compose(&first, &second))?;
     let shape = [values.len(), names.len(), nodes, nodes];
-    let values = values.iter().flatten().flat_map(|matrix| matrix.values()).copied().collect();
+    let values =
+        values.iter().flatten().flat_map(scalewright_core::numerics::blocks::Matrix::values).copied().collect();
     Ok((names, light, handed_over(py, &shape, values)?))
 }
 

@@ -2,9 +2,8 @@
 
 use super::recombine::{Blocks, Channel, GLUON, check_flavour};
 use crate::error::{Error, Result};
-use crate::numerics::blocks::{Matrix, multiply_add};
+use crate::numerics::blocks::{Matrix, View, multiply_add};
 use crate::watch::Watch;
-use faer::MatRef;
 use rayon::prelude::*;
 
 /// Replicas of one piece. Found by trial: blocks of 72 nodes and the combinations of a piece fit the second-level cache.
@@ -67,7 +66,7 @@ pub fn apply(batch: &Batch, out: &mut [f64], watch: &dyn Watch) -> Result<()> {
 
 /// A block and where its rows end.
 struct Block<'a> {
-    values: MatRef<'a, f64>,
+    values: View<'a>,
     /// Number of leading columns that are not all zero, by strip of rows.
     reach: Vec<usize>,
 }
@@ -81,7 +80,7 @@ impl<'a> Block<'a> {
                 ends.max().unwrap_or(0)
             })
             .collect();
-        Self { values: MatRef::from_row_major_slice(values, n, n), reach }
+        Self { values: View::from_row_major_slice(values, n, n), reach }
     }
 
     /// `target += source * block^T`: each row of `source` is a density.

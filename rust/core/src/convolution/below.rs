@@ -1,4 +1,4 @@
-//! What flows below x_min.
+//! What flows below `x_min`.
 //!
 //! A density `f` above `x_min` feeds what lies below: the momentum there grows by
 //! `int_0^(x_min) dx x (P * f)(x) = int_0^1 dz z P(z) C(ln 1/z)` with

@@ -78,7 +78,7 @@ pub(super) fn count(grid: &Grid, i: usize) -> usize {
     NodePoints::of(grid, i).points.len()
 }
 
-/// Points of `t > u_max`, for the last node alone: they matter only to what flows below x_min.
+/// Points of `t > u_max`, for the last node alone: they matter only to what flows below `x_min`.
 fn points_beyond(grid: &Grid, i: usize) -> Vec<(f64, f64)> {
     const PIECES: usize = 8;
     const LENGTH: f64 = 5.0; // e^-40 = 4e-18 of the momentum is left out

@@ -107,8 +107,10 @@ fn compute(grid: &Grid, watch: &dyn Watch) -> Result<KernelSet> {
         .collect();
 
     let mut formulas = Formulas::default();
-    splitting.iter().for_each(|(_, kernel)| formulas.collect(kernel));
-    matching.iter().flat_map(|(_, powers)| powers).for_each(|kernel| formulas.collect(kernel));
+    let of_matching = matching.iter().flat_map(|(_, powers)| powers);
+    for kernel in splitting.iter().map(|(_, kernel)| kernel).chain(of_matching) {
+        formulas.collect(kernel);
+    }
     let parts = integrate(grid, &Functions::Formulas(&formulas.regular), formulas.plus, watch)?;
 
     let assemble = |kernel: &Kernel| formulas.assemble(kernel, &parts, grid.nodes());

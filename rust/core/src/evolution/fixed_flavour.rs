@@ -1,7 +1,7 @@
 //! The equations at fixed nf: `dE/d ln a = - (sum_k a^k P_k)/(sum_k beta_k a^k) E`, nothing expanded.
 //!
 //! What evolves alone: the singlet pair (gluon, quark singlet) and three kinds of non-singlet. Each carries one more
-//! row, what has flowed below x_min: momentum for the singlet pair, number for the non-singlets.
+//! row, what has flowed below `x_min`: momentum for the singlet pair, number for the non-singlets.
 
 use crate::convolution::{Convolved, KernelSet};
 use crate::kernels::splitting::Channel;
@@ -53,9 +53,12 @@ impl FixedFlavour {
         let beta = theory.beta(nf);
         let channel = |channel: Channel| {
             let mut terms: Vec<Convolved> = (0..orders)
-                .map(|order| match order < known {
-                    true => kernels.splitting(order, channel, nf as f64),
-                    false => Convolved::zeros(offsets[offsets.len() - 1]),
+                .map(|order| {
+                    if order < known {
+                        kernels.splitting(order, channel, nf as f64)
+                    } else {
+                        Convolved::zeros(offsets[offsets.len() - 1])
+                    }
                 })
                 .collect();
             for own in further.iter().filter(|own| own.nf == nf && own.channel == channel) {
@@ -118,7 +121,7 @@ impl FixedFlavour {
         sum
     }
 
-    /// Panels of the rows of a sector; the last one is the row of what lies below x_min.
+    /// Panels of the rows of a sector; the last one is the row of what lies below `x_min`.
     pub fn panels(&self, sector: Sector) -> Vec<usize> {
         let components = if sector == Sector::Singlet { 2 } else { 1 };
         let mut panels: Vec<usize> = self.offsets.iter().map(|offset| components * offset).collect();
@@ -162,7 +165,7 @@ fn at_renormalisation_scale(terms: &mut [Convolved], beta: &[f64], log: f64) {
     }
 }
 
-/// The singlet pair, panel by panel (gluon nodes, then quark nodes of each), and the row of momentum below x_min.
+/// The singlet pair, panel by panel (gluon nodes, then quark nodes of each), and the row of momentum below `x_min`.
 fn pair(gg: &Convolved, gq: &Convolved, qg: &Convolved, qq: &Convolved, offsets: &[usize]) -> Matrix {
     let n = offsets[offsets.len() - 1];
     let mut all = Matrix::zeros(2 * n + 1, 2 * n + 1);
@@ -196,7 +199,7 @@ fn scatter(row: &mut [f64], values: &[f64], component: usize, offsets: &[usize])
     }
 }
 
-/// A non-singlet kernel and the row of number below x_min.
+/// A non-singlet kernel and the row of number below `x_min`.
 fn with_number(matrix: &Matrix, number: &[f64]) -> Matrix {
     let n = matrix.rows();
     let mut all = Matrix::zeros(n + 1, n + 1);

@@ -94,7 +94,7 @@ impl Stretch {
 impl StretchSolution {
     /// The solution at `s = ln a` within the stretch.
     pub fn at(&self, s: f64) -> Matrix {
-        if self.steps.is_empty() || s == self.from {
+        if self.steps.is_empty() {
             return self.start.clone();
         }
         let share = (s - self.from) / (self.to - self.from) * self.steps.len() as f64;

@@ -4,8 +4,13 @@
 //! independent pieces of work shares those out.
 
 use faer::linalg::solvers::{PartialPivLu, Solve};
-use faer::{Accum, MatMut, MatRef, Par};
+use faer::{Accum, Par};
 use std::ops::Range;
+
+/// A matrix, or a part of one, for reading.
+pub type View<'a> = faer::MatRef<'a, f64>;
+/// A matrix, or a part of one, for writing.
+pub type ViewMut<'a> = faer::MatMut<'a, f64>;
 
 /// A row-major matrix.
 #[derive(Debug, Clone, PartialEq, Default)]
@@ -65,6 +70,7 @@ impl Matrix {
     }
 
     /// The same values in another shape.
+    #[must_use]
     pub fn reshaped(self, rows: usize, cols: usize) -> Self {
         Self::from_values(rows, cols, self.data)
     }
@@ -78,8 +84,8 @@ impl Matrix {
     }
 
     /// A rectangular part, for reading.
-    pub fn part(&self, rows: Range<usize>, cols: Range<usize>) -> MatRef<'_, f64> {
-        MatRef::from_row_major_slice(&self.data, self.rows, self.cols).submatrix(
+    pub fn part(&self, rows: Range<usize>, cols: Range<usize>) -> View<'_> {
+        View::from_row_major_slice(&self.data, self.rows, self.cols).submatrix(
             rows.start,
             cols.start,
             rows.len(),
@@ -88,8 +94,8 @@ impl Matrix {
     }
 
     /// A rectangular part, for writing.
-    pub fn part_mut(&mut self, rows: Range<usize>, cols: Range<usize>) -> MatMut<'_, f64> {
-        MatMut::from_row_major_slice_mut(&mut self.data, self.rows, self.cols).submatrix_mut(
+    pub fn part_mut(&mut self, rows: Range<usize>, cols: Range<usize>) -> ViewMut<'_> {
+        ViewMut::from_row_major_slice_mut(&mut self.data, self.rows, self.cols).submatrix_mut(
             rows.start,
             cols.start,
             rows.len(),
@@ -99,7 +105,7 @@ impl Matrix {
 }
 
 /// `target += factor * left * right`, on this thread.
-pub fn multiply_add(target: MatMut<'_, f64>, factor: f64, left: MatRef<'_, f64>, right: MatRef<'_, f64>) {
+pub fn multiply_add(target: ViewMut<'_>, factor: f64, left: View<'_>, right: View<'_>) {
     if left.ncols() > 0 && right.ncols() > 0 {
         faer::linalg::matmul::matmul(target, Accum::Add, left, right, factor, Par::Seq);
     }
@@ -117,7 +123,7 @@ impl Factors {
     }
 
     /// Replaces the right-hand sides by the solutions.
-    pub fn solve(&self, right: MatMut<'_, f64>) {
+    pub fn solve(&self, right: ViewMut<'_>) {
         self.lu.solve_in_place(right);
     }
 }

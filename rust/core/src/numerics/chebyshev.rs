@@ -58,7 +58,9 @@ impl Nodes {
         }
         if sum.is_finite() {
             let scale = 1.0 / sum;
-            out.iter_mut().for_each(|value| *value *= scale);
+            for value in out.iter_mut() {
+                *value *= scale;
+            }
         } else {
             for (value, &point) in out.iter_mut().zip(&self.points) {
                 *value = f64::from(distance(point) == 0.0);

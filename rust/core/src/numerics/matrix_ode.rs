@@ -79,7 +79,7 @@ impl Step {
                 }
             }
         }
-        let values = solution.iter().flat_map(|matrix| matrix.values()).copied().collect();
+        let values = solution.iter().flat_map(super::blocks::Matrix::values).copied().collect();
         Dense { nodes: self.nodes.clone(), values: Matrix::from_values(m + 1, rows * cols, values), rows, cols }
     }
 

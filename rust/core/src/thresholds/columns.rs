@@ -1,7 +1,7 @@
 //! Some columns of the operators (or some densities): what became of them at one scale, flavour by flavour.
 //!
 //! Flavours 1 to `light` act alike along the whole route and are held as one sum; differences among them evolve in
-//! families of their own. Each matrix has one row a node and a last row: what has flowed below x_min (all of the
+//! families of their own. Each matrix has one row a node and a last row: what has flowed below `x_min` (all of the
 //! momentum in that of the gluon, each flavour's own number elsewhere).
 
 use crate::evolution::{Sector, Stretch, StretchSolution, place};
@@ -37,7 +37,7 @@ pub struct Columns {
 }
 
 impl Columns {
-    /// Columns with nothing in them: `rows` with the last one for what flows below x_min.
+    /// Columns with nothing in them: `rows` with the last one for what flows below `x_min`.
     pub fn new(family: Family, light: usize, rows: usize, cols: usize) -> Self {
         let mut channels = [const { None }; CHANNELS];
         channels[LIGHT] = Some(Matrix::zeros(rows, cols));
@@ -64,13 +64,8 @@ impl Columns {
         self.channels[LIGHT].as_ref().expect("every family holds the light channel")
     }
 
-    /// The sum of the light flavours.
+    /// The sum of the light flavours; for a non-singlet family the only content.
     pub fn light_mut(&mut self) -> &mut Matrix {
-        self.channel_mut(LIGHT)
-    }
-
-    /// The content of a non-singlet family.
-    pub fn single_mut(&mut self) -> &mut Matrix {
         self.channel_mut(LIGHT)
     }
 
@@ -110,7 +105,7 @@ impl Columns {
         sum
     }
 
-    /// Moves all momentum below x_min to the gluon's last row.
+    /// Moves all momentum below `x_min` to the gluon's last row.
     pub fn gather_momentum(&mut self) {
         let mut total = vec![0.0; self.light_sum().cols()];
         for matrix in self.channels.iter_mut().flatten() {
@@ -181,7 +176,9 @@ impl LegColumns {
             self.differences.iter().map(|(flavour, solution)| (*flavour, solution.at(s))).collect();
         let mut average = singlet;
         if matches!(columns.family, Family::Plus | Family::Minus) {
-            deviations.iter().for_each(|(_, deviation)| average.add_scaled(-1.0, deviation));
+            for (_, deviation) in &deviations {
+                average.add_scaled(-1.0, deviation);
+            }
             average.values_mut().iter_mut().for_each(|value| *value /= self.nf as f64);
         }
         for (flavour, mut heavy) in deviations {
@@ -211,7 +208,7 @@ impl LegColumns {
     }
 }
 
-/// Gluon and singlet as the singlet pair is ordered; the last row is the momentum below x_min.
+/// Gluon and singlet as the singlet pair is ordered; the last row is the momentum below `x_min`.
 fn pack(gluon: &Matrix, singlet: &Matrix, offsets: &[usize]) -> Matrix {
     let n = offsets[offsets.len() - 1];
     let mut pair = Matrix::zeros(2 * n + 1, gluon.cols());

@@ -16,7 +16,7 @@ use crate::theory::Theory;
 pub struct Crossing {
     /// Flavours below.
     nf: usize,
-    /// `A` of each element, without unity, and its last row: what goes below x_min.
+    /// `A` of each element, without unity, and its last row: what goes below `x_min`.
     quark: Both,
     gluon_gluon: Matrix,
     gluon_quark: Matrix,
@@ -26,7 +26,7 @@ pub struct Crossing {
     heavy_heavy: Both,
 }
 
-/// An element that acts on sums (momentum is counted below x_min) and on differences (number is).
+/// An element that acts on sums (momentum is counted below `x_min`) and on differences (number is).
 struct Both {
     momentum: Matrix,
     number: Matrix,
@@ -75,28 +75,28 @@ impl Crossing {
                 let singlet = columns.singlet(self.nf);
                 let (gluon, intrinsic) = (columns.gluon().clone(), columns.heavy(heavy).cloned());
                 let mut target = gluon.clone();
-                self.add(&mut target, &self.gluon_gluon, &gluon);
-                self.add(&mut target, &self.gluon_quark, &singlet);
+                add(&mut target, 1.0, &self.gluon_gluon, &gluon);
+                add(&mut target, 1.0, &self.gluon_quark, &singlet);
                 let mut made = Matrix::zeros(gluon.rows(), gluon.cols());
-                self.add(&mut made, &self.heavy_gluon, &gluon);
-                self.add(&mut made, &self.heavy_quark, &singlet);
+                add(&mut made, 1.0, &self.heavy_gluon, &gluon);
+                add(&mut made, 1.0, &self.heavy_quark, &singlet);
                 if let Some(intrinsic) = &intrinsic {
-                    self.add(&mut target, &self.gluon_heavy, intrinsic);
-                    self.add(&mut made, &self.heavy_heavy.momentum, intrinsic);
+                    add(&mut target, 1.0, &self.gluon_heavy, intrinsic);
+                    add(&mut made, 1.0, &self.heavy_heavy.momentum, intrinsic);
                     made.add_scaled(1.0, intrinsic);
                 }
                 *columns.gluon_mut() = target;
                 columns.set_heavy(heavy, made);
-                self.quarks(columns, |matrix| self.grow(matrix, &self.quark.momentum));
+                self.quarks(columns, |matrix| grow(matrix, &self.quark.momentum));
                 columns.gather_momentum();
             }
             Family::Minus => {
                 let mut made = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
-                self.grow(&mut made, &self.heavy_heavy.number);
+                grow(&mut made, &self.heavy_heavy.number);
                 columns.set_heavy(heavy, made);
-                self.quarks(columns, |matrix| self.grow(matrix, &self.quark.number));
+                self.quarks(columns, |matrix| grow(matrix, &self.quark.number));
             }
-            Family::NsPlus | Family::NsMinus => self.grow(columns.single_mut(), &self.quark.number),
+            Family::NsPlus | Family::NsMinus => grow(columns.light_mut(), &self.quark.number),
         }
     }
 
@@ -105,12 +105,12 @@ impl Crossing {
         let heavy = self.nf + 1;
         match columns.family {
             Family::Plus => {
-                self.quarks(columns, |matrix| self.shrink(matrix, &self.quark.momentum));
+                self.quarks(columns, |matrix| shrink(matrix, &self.quark.momentum));
                 let singlet = columns.singlet(self.nf);
                 let mut gluon = columns.gluon().clone();
-                self.subtract(&mut gluon, &self.gluon_quark, &singlet);
+                add(&mut gluon, -1.0, &self.gluon_quark, &singlet);
                 let mut left = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
-                self.subtract(&mut left, &self.heavy_quark, &singlet);
+                add(&mut left, -1.0, &self.heavy_quark, &singlet);
                 self.solve_pair(&mut gluon, &mut left);
                 *columns.gluon_mut() = gluon;
                 columns.set_heavy(heavy, left);
@@ -118,11 +118,11 @@ impl Crossing {
             }
             Family::Minus => {
                 let mut left = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
-                self.shrink(&mut left, &self.heavy_heavy.number);
+                shrink(&mut left, &self.heavy_heavy.number);
                 columns.set_heavy(heavy, left);
-                self.quarks(columns, |matrix| self.shrink(matrix, &self.quark.number));
+                self.quarks(columns, |matrix| shrink(matrix, &self.quark.number));
             }
-            Family::NsPlus | Family::NsMinus => self.shrink(columns.single_mut(), &self.quark.number),
+            Family::NsPlus | Family::NsMinus => shrink(columns.light_mut(), &self.quark.number),
         }
     }
 
@@ -134,41 +134,6 @@ impl Crossing {
                 act(matrix);
             }
         }
-    }
-
-    /// `target += element source`.
-    fn add(&self, target: &mut Matrix, element: &Matrix, source: &Matrix) {
-        let (rows, cols) = (target.rows(), target.cols());
-        multiply_add(
-            target.part_mut(0..rows, 0..cols),
-            1.0,
-            element.part(0..rows, 0..rows),
-            source.part(0..rows, 0..cols),
-        );
-    }
-
-    fn subtract(&self, target: &mut Matrix, element: &Matrix, source: &Matrix) {
-        let (rows, cols) = (target.rows(), target.cols());
-        multiply_add(
-            target.part_mut(0..rows, 0..cols),
-            -1.0,
-            element.part(0..rows, 0..rows),
-            source.part(0..rows, 0..cols),
-        );
-    }
-
-    /// `target <- (1 + element) target`.
-    fn grow(&self, target: &mut Matrix, element: &Matrix) {
-        let before = target.clone();
-        self.add(target, element, &before);
-    }
-
-    /// `target <- (1 + element)^-1 target`.
-    fn shrink(&self, target: &mut Matrix, element: &Matrix) {
-        let mut sum = Matrix::identity(element.rows());
-        sum.add_scaled(1.0, element);
-        let (rows, cols) = (target.rows(), target.cols());
-        Factors::of(&sum).solve(target.part_mut(0..rows, 0..cols));
     }
 
     /// Solves `g' = (1 + A_gg) g + A_gh h`, `h' = A_hg g + (1 + A_hh) h` for g and h.
@@ -194,7 +159,32 @@ impl Crossing {
     }
 }
 
-/// A kernel with one more row and column: what it sends below x_min, and nothing back.
+/// `target += factor element source`.
+fn add(target: &mut Matrix, factor: f64, element: &Matrix, source: &Matrix) {
+    let (rows, cols) = (target.rows(), target.cols());
+    multiply_add(
+        target.part_mut(0..rows, 0..cols),
+        factor,
+        element.part(0..rows, 0..rows),
+        source.part(0..rows, 0..cols),
+    );
+}
+
+/// `target <- (1 + element) target`.
+fn grow(target: &mut Matrix, element: &Matrix) {
+    let before = target.clone();
+    add(target, 1.0, element, &before);
+}
+
+/// `target <- (1 + element)^-1 target`.
+fn shrink(target: &mut Matrix, element: &Matrix) {
+    let mut sum = Matrix::identity(element.rows());
+    sum.add_scaled(1.0, element);
+    let (rows, cols) = (target.rows(), target.cols());
+    Factors::of(&sum).solve(target.part_mut(0..rows, 0..cols));
+}
+
+/// A kernel with one more row and column: what it sends below `x_min`, and nothing back.
 fn with_row(kernel: &Convolved, row: impl Fn(&Convolved) -> &Vec<f64>) -> Matrix {
     let n = kernel.matrix.rows();
     let mut all = Matrix::zeros(n + 1, n + 1);

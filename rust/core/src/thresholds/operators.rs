@@ -112,9 +112,9 @@ impl Prepared {
                     let from_nf = self.route.legs[from_leg].nf;
                     let mut columns = legs[from_leg].at(scale(theory, leg.from_q2, from_nf)?);
                     if leg.nf > from_nf {
-                        crossing.up(&mut columns)
+                        crossing.up(&mut columns);
                     } else {
-                        crossing.down(&mut columns)
+                        crossing.down(&mut columns);
                     }
                     columns
                 }
@@ -273,7 +273,7 @@ impl Inputs {
             .collect()
     }
 
-    /// Flows below x_min: momentum from each plus channel, number of each minus block.
+    /// Flows below `x_min`: momentum from each plus channel, number of each minus block.
     fn flow_names(&self, families: &[Family]) -> Vec<String> {
         families
             .iter()
@@ -358,7 +358,7 @@ impl Evolution {
         &self.names
     }
 
-    /// Names of the flows below x_min.
+    /// Names of the flows below `x_min`.
     pub fn flow_names(&self) -> &[String] {
         &self.flow_names
     }
