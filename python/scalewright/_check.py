@@ -113,7 +113,7 @@ def real_array(
         if not fits:
             want = ", ".join("any" if n is None else str(n) for n in shape)
             refuse(name, array, f"the shape of {name} must be ({want})")
-    # Not ascontiguousarray: that one turns a 0-d array into one of length 1, and lets unaligned memory through.
+    # Not ascontiguousarray: that one makes a 0-d array one of length 1, and lets unaligned memory through.
     with np.errstate(over="ignore"):  # a longdouble beyond float64 becomes inf and is refused below
         floats: Floats = np.require(array, dtype=np.float64, requirements=("C", "A"))
     # One pass without a temporary array as large as the input: a sum of finite numbers can overflow, so a sum
