@@ -20,10 +20,11 @@ ORDERS = ("LO", "NLO", "NNLO")
 CHANNELS = ("ns+", "ns-", "ns-sea", "pure singlet", "qg", "gq", "gg")
 ELEMENTS = ("heavy<-gluon", "heavy<-quark", "gluon<-gluon", "gluon<-quark", "quark<-quark")
 LIGHT = 3
-# Points of an interval, ratio of neighbouring intervals and smallest t = ln(1/z): with these the matrices are
-# good to 1e-9, found by doubling.
+# Points of an interval, ratio of neighbouring intervals and smallest t = ln(1/z). Found by trial on the job
+# of `plain.py`: 16 points make the answer wrong by 2e-6, 36 with the ratio 0.4 change it by less than 1e-10.
 POINTS, RATIO, DEPTH = 24, 0.25, 1e-14
-# Longest step in ln a: with it the result is good to 1e-7, found by halving.
+# Longest step in ln a. The answer is off by 3e-7, 2.4e-8, 2.2e-9 with 0.024, 0.012, 0.006: fourth order, as
+# it should be, towards scalewright's.
 STEP = 0.012
 
 

@@ -62,16 +62,55 @@ def uses(text: str) -> set[str]:
     """Return what a Rust source takes from its own crate: "grid::Grid", groups in braces taken apart."""
     text = re.sub(r"//[^\n]*", "", text)
     found: set[str] = set()
-    for path in re.findall(r"\bcrate::([\w:]+(?:\{[^{}]*\})?)", text):
-        head, brace, group = path.partition("{")
-        names = [name.strip() for name in group.rstrip("}").split(",")] if brace else [""]
-        found |= {head + name.partition(" as ")[0] for name in names}
+    for start in re.finditer(r"\bcrate::", text):
+        found |= set(_paths(text, start.end()))
     return found
+
+
+def _paths(text: str, place: int) -> Iterable[str]:
+    """Yield the paths that begin at a place: one, or all of a group in braces, groups within it included."""
+    head = re.compile(r"[\w:\s]*").match(text, place)
+    assert head is not None
+    path = "".join(head[0].partition(" as ")[0].split())
+    if text[head.end() : head.end() + 1] != "{":
+        yield path
+        return
+    depth, begin = 0, head.end() + 1
+    for at in range(head.end(), len(text)):
+        depth += {"{": 1, "}": -1}.get(text[at], 0)
+        if depth == 0 or (depth == 1 and text[at] == ","):
+            if text[begin:at].strip():
+                yield from (path + inner for inner in _paths(text, begin))
+            begin = at + 1
+        if depth == 0:
+            return
+
+
+@pytest.mark.parametrize(
+    ("text", "expected"),
+    [
+        ("use crate::grid::Grid;", {"grid::Grid"}),
+        ("pub use crate::coupling::masses::MassKind as Kind;", {"coupling::masses::MassKind"}),
+        ("use crate::grid::{self, Grid};", {"grid::self", "grid::Grid"}),
+        ("use crate::{\n    colour::CA,\n    apply::{batch::Batch, compose},\n};",
+         {"colour::CA", "apply::batch::Batch", "apply::compose"}),
+        ("let x = crate::watch::poll(); // crate::apply", {"watch::poll"}),
+    ],
+)  # fmt: skip
+def test_what_a_source_uses_is_read_rightly(text: str, expected: set[str]) -> None:
+    assert uses(text) == expected
 
 
 def is_allowed(user: str, used: str, layers: Sequence[Sequence[str]]) -> bool:
     """Say whether one top-level module may know another."""
     return user == used or rank(used, layers) < rank(user, layers)
+
+
+def test_every_module_has_its_place() -> None:
+    for names, layers in ((RUST_SOURCES, RUST_LAYERS), (PYTHON_SOURCES, PYTHON_LAYERS)):
+        for module in names:
+            if module not in ("lib", ""):
+                rank(module.split(".")[0], layers)
 
 
 @pytest.mark.parametrize("module", sorted(name for name in RUST_SOURCES if name != "lib"))
