@@ -43,7 +43,7 @@ def test_thresholds_off_the_mass_and_kinds_of_mass(case: Case, resolution: str) 
 
 
 @pytest.mark.parametrize("resolution", PROMISE)
-@pytest.mark.parametrize(("order", "ratio"), itertools.product([0, 1], [1.0, 1.5]))
+@pytest.mark.parametrize(("order", "ratio"), list(itertools.product([0, 1], [1.0, 1.5])))
 def test_intrinsic_charm(order: int, ratio: float, resolution: str) -> None:
     """Charm and anticharm of their own shapes, constant below the threshold, matched with A_HH and A_gH."""
     charm = {4: shaped(0.3, 0.2, 4.0), -4: shaped(0.25, 0.3, 5.0)}
@@ -67,12 +67,19 @@ def test_both_sides_of_a_threshold_at_one_scale(order: int) -> None:
     there = 1.5 * 4.5**2
     sides = case.operators(on, [there, there], nf=[4, 5]).apply(case.start(on))
     for nf in (4, 5):
+        # at LO bottom begins with nothing: no relative error there; without it the promise
+        names = QUANTITIES if order else tuple(name for name in QUANTITIES if name != "b+")
         side = sides.scale(there, nf)
-        assert worst(errors(replace(case, q2=there), side, PUBLISHED_X))[0] < 1e-7
+        assert worst(errors(replace(case, q2=there), side, PUBLISHED_X, names))[0] < 1e-7
+    if order == 0:
+        # rounding of the sea, 10 at most, from which flavours are put together
+        assert np.all(np.abs(sides.scale(there, 5).combination("b+")) < 1e-14)
     step = {
         name: np.max(np.abs(sides.scale(there, 5).combination(name) - sides.scale(there, 4).combination(name)))
         for name in ("g", "u_v")
     }
-    # continuous at LO; the gluon moves by a L beyond; the valence by a^2 only
-    assert (step["g"] == 0.0) == (order == 0)
-    assert (step["u_v"] == 0.0) == (order < 2)
+    # continuous at LO; the gluon moves by a L = 0.8 per cent beyond, the valence by a^2 only; a rounding of
+    # quark and antiquark, below 1, is not a step
+    assert (step["g"] > 1e-3) == (order > 0)
+    assert (step["u_v"] > 1e-6) == (order == 2)
+    assert step["u_v"] < 1e-15 or order == 2
