@@ -12,7 +12,9 @@ SMOOTH = ("dbar + ubar", "s+", "g")
 VALENCE = ("u_v", "d_v", "dbar - ubar")
 
 
-@pytest.mark.parametrize(("resolution", "smooth", "valence"), [("standard", 1e-6, 1e-6), ("fine", 1e-9, 1e-9)])
+@pytest.mark.parametrize(
+    ("resolution", "smooth", "valence"), [("standard", 1e-6, 1e-6), ("fine", 1e-9, 1e-9)]
+)
 @pytest.mark.parametrize("order", [0, 1, 2])
 def test_backwards_at_fixed_nf(order: int, resolution: str, smooth: float, valence: float) -> None:
     """From 1e4 down to 20 GeV^2, the published input at the upper end.

@@ -20,7 +20,12 @@ def inputs(random: int) -> list[dict[int, Density]]:
     for _ in range(random):
         flavours = (21, 1, -1, 2, -2, 3, -3)
         draws = {
-            f: (rng.uniform(0.5, 2.0), rng.uniform(-0.4, 0.8), rng.uniform(1.5, 10.0), *rng.uniform(0.0, 3.0, 2))
+            f: (
+                rng.uniform(0.5, 2.0),
+                rng.uniform(-0.4, 0.8),
+                rng.uniform(1.5, 10.0),
+                *rng.uniform(0.0, 3.0, 2),
+            )
             for f in flavours
         }
         made.append({f: shaped(*draw) for f, draw in draws.items()})

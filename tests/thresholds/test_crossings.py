@@ -75,7 +75,9 @@ def test_both_sides_of_a_threshold_at_one_scale(order: int) -> None:
         # rounding of the sea, 10 at most, from which flavours are put together
         assert np.all(np.abs(sides.scale(there, 5).combination("b+")) < 1e-14)
     step = {
-        name: np.max(np.abs(sides.scale(there, 5).combination(name) - sides.scale(there, 4).combination(name)))
+        name: np.max(
+            np.abs(sides.scale(there, 5).combination(name) - sides.scale(there, 4).combination(name))
+        )
         for name in ("g", "u_v")
     }
     # continuous at LO; the gluon moves by a L = 0.8 per cent beyond, the valence by a^2 only; a rounding of
