@@ -7,8 +7,8 @@ kernels, at every x of the published tables (1e-7 to 0.9), from 2 to 1e4 GeV^2.
     python benches/accuracy.py --write FILE        the same into a file
     python benches/accuracy.py --json | --small    for run.py, and for the tests
 
-The errors are those of `tests/evolution/cases.py`: relative to the value, or to that at LO where this is larger
-(heavy quarks change sign near x = 0.9 beyond LO); rounding of stored flavours is taken off differences of them.
+The errors are those of `tests/evolution/cases.py`: relative to the value, or to that at LO where this is
+larger (heavy quarks change sign near x = 0.9 beyond LO); rounding of stored flavours is taken off.
 """
 
 from __future__ import annotations
@@ -68,9 +68,9 @@ def shown(found: dict[str, np.ndarray], x: np.ndarray) -> str:
 
 
 def kernels(small: bool) -> Iterator[Figure]:
-    """Compare the compiled kernels with the second writing, relative to the value plus the largest in the bulk.
+    """Compare the compiled kernels with the second writing, relative to value plus largest in the bulk.
 
-    1 - z from 1e-3 on: nearer to 1 the second writing of P_ns^(1) and P_gg^(1) loses digits, the compiled one not.
+    1 - z from 1e-3 on: nearer to 1 the second writing of P_ns^(1) and P_gg^(1) loses digits.
     """
     small_z, small_rest = np.geomspace(1e-7, 0.5, 400), np.geomspace(1e-3, 0.5, 400)
     z = np.concatenate([small_z, 1.0 - small_rest])
@@ -116,7 +116,7 @@ def evolution(small: bool) -> Iterator[Figure]:
     """Compare the published input at 1e4 GeV^2 with the Mellin-space solution."""
     x = cases.PUBLISHED_X
     for order, (words, settings) in itertools.product((2,) if small else (0, 1, 2), SETTINGS.items()):
-        if settings.get("kind") == "msbar" and order < 2 or small and settings:
+        if (settings.get("kind") == "msbar" and order < 2) or (small and settings):
             continue
         case = cases.Case(order, **settings)
         for resolution, goal in GOALS.items():
@@ -128,7 +128,7 @@ def evolution(small: bool) -> Iterator[Figure]:
 
 
 def wider(small: bool) -> Iterator[Figure]:
-    """Compare x^a (1-x)^b (1 + c sqrt x + d x), a = -0.4 to 0.8, b = 1.5 to 10: corners and random mixtures."""
+    """Compare x^a (1-x)^b (1 + c sqrt x + d x), a = -0.4 to 0.8, b = 1.5 to 10: corners and mixtures."""
     for order, (resolution, goal) in itertools.product((2,) if small else (0, 1, 2), WIDER_GOALS.items()):
         base, on = cases.Case(order), cases.grid(resolution)
         operators, worst = base.operators(on), {}

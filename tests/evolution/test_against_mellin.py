@@ -52,9 +52,9 @@ def test_second_writing_of_the_kernels(kernels: KernelFunctions) -> None:
     end = case.operators(on).apply(case.start(on)).scale(case.q2)
     ours, theirs = (case.exact(x, kernels=k) for k in (COMPILED, kernels))
     for name in QUANTITIES:
-        # the printed nf^2 delta(1-z) of the second writing is 3.63e-6 nf^2 larger than the exact one: the integral of
-        # nf^2 a^3 over ln mu^2, nf^2/(2 beta0) (a^2 at the start - a^2 at the end), is 7e-4 for nf = 4 or so, which
-        # makes 2.6e-9 of whatever is made of quarks; twice as much for nf = 5 and thresholds
+        # the printed nf^2 delta(1-z) of the second writing is 3.63e-6 nf^2 larger than the exact one; the
+        # integral of nf^2 a^3 over ln mu^2, nf^2/(2 beta0) (a^2 at the start - a^2 at the end), is 7e-4, which
+        # makes 2.6e-9 of whatever is made of quarks; twice that is allowed
         np.testing.assert_allclose(theirs[name], ours[name], rtol=5e-9, err_msg=name)
         floor = STORED * np.abs(end.at(None, x, "dbar + ubar")[0])
         difference = np.abs(end.at(None, x, name)[0] - theirs[name])

@@ -20,9 +20,9 @@ def test_backwards_at_fixed_nf(order: int, resolution: str, smooth: float, valen
     """From 1e4 down to 20 GeV^2, the published input at the upper end.
 
     Large x grows on the way down, and with it what the grid leaves out of the input: 1e-6 at standard
-    resolution, the promise for the wider class, which such an end belongs to. Valence-like densities fall like
-    x^0.8 over five decades within the last panel: no promise below 1e-4 at standard resolution, where 1e-5
-    was seen.
+    resolution, the promise for the wider class, which such an end belongs to. Valence-like densities fall
+    like x^0.8 over five decades within the last panel: no promise below 1e-4 at standard resolution, where
+    1e-5 was seen.
     """
     case, on = Case(order, (4, 4), start_q2=1e4, q2=20.0), grid(resolution)
     end = case.operators(on).apply(case.start(on)).scale(case.q2)
@@ -65,7 +65,7 @@ def test_there_and_back_gives_the_input(case: dict[str, object], order: int, res
 def test_the_start_may_have_fewer_flavours_than_its_scale_suggests() -> None:
     """Three flavours at 30 GeV^2, above the charm and bottom thresholds: down to charm's, then up again."""
     coupling = (0.2, 30.0, 3)
-    # standard: the promise for inputs that are not the published one; dbar - ubar = x^0.9 at 1e-6 is 1.4e-7 off
+    # standard: the promise for inputs other than the published one; dbar - ubar at 1e-6 is 1.4e-7 off
     for resolution, promise in (("standard", 1e-6), ("fine", 1e-9)):
         on = grid(resolution)
         for order in range(3):

@@ -1,8 +1,8 @@
 """Momentum and quark numbers, what lies above plus what lies below x_min.
 
 LO and NLO: kernels and matching conserve both exactly, so what is lost is lost by the numerics. NNLO: the
-parametrised kernels (hep-ph/0403192, hep-ph/0404111) do not conserve them exactly; what they lose is computed from
-their moments by the Mellin-space solution, and scalewright must lose the same.
+parametrised kernels (hep-ph/0403192, hep-ph/0404111) do not conserve them exactly; what they lose is computed
+from their moments by the Mellin-space solution, and scalewright must lose the same.
 """
 
 from __future__ import annotations

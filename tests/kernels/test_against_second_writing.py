@@ -23,8 +23,8 @@ Z = np.concatenate([_SMALL_Z, 1.0 - _SMALL_REST])
 REST = np.concatenate([1.0 - _SMALL_Z, _SMALL_REST])
 _BULK = (Z > 0.01) & (REST > 0.01)
 
-#: Both writings add some 20 to 50 terms, which cancel by one or two decades at most: 50 roundings of 2^-53 times
-#: 20. In units of the value plus the largest value in 0.01 < z < 0.99, since terms stay where their sum vanishes.
+#: Both writings add some 20 to 50 terms, which cancel by one or two decades at most: 50 roundings of 2^-53
+#: times 20. In units of the value plus the largest in 0.01 < z < 0.99: terms stay where their sum vanishes.
 ROUNDING = 1e-13
 
 #: The second writing divides ln z ln(1-z) + Li2(1-z) + Li2(z) - pi^2/6, a sum that vanishes at z = 1, by 1-z.
@@ -99,8 +99,8 @@ def test_the_two_disagree_where_they_should() -> None:
 def test_quark_number_decides_the_local_term(nf: int) -> None:
     """Of the two writings of nf^2 delta(1-z) the compiled one keeps the quark number exactly.
 
-    The nf^2 part of ns- is exact: its first moment vanishes (S. Moch et al., hep-ph/0403192). The other powers
-    are parametrised, hence the second difference in nf, from nf - 1, nf, nf + 1 of the three to six flavours.
+    The nf^2 part of ns- is exact: its first moment vanishes (S. Moch et al., hep-ph/0403192). The other
+    powers are parametrised, hence the second difference in nf, from three of the three to six flavours.
     """
     middle = min(max(nf, 4), 5)
     weights = {middle - 1: 0.5, middle: -1.0, middle + 1: 0.5}

@@ -1,4 +1,4 @@
-"""Quark thresholds against the Mellin-space solution: scales off the mass, kinds of mass, intrinsic charm, top.
+"""Quark thresholds against the Mellin-space solution: off the mass, kinds of mass, intrinsic charm, top.
 
 M. Buza et al., hep-ph/9612398, for the matching; the coupling in it is a^(nl+1) at mu_r^2 = mu_thr^2.
 """
