@@ -53,7 +53,7 @@ def test_second_writing_of_the_kernels(kernels: KernelFunctions) -> None:
     ours, theirs = (case.exact(x, kernels=k) for k in (COMPILED, kernels))
     for name in QUANTITIES:
         # the printed nf^2 delta(1-z) of the second writing is 3.63e-6 nf^2 larger than the exact one; the
-        # integral of nf^2 a^3 over ln mu^2, nf^2/(2 beta0) (a^2 at the start - a^2 at the end), is 7e-4, which
+        # integral of nf^2 a^3 over ln mu^2, nf^2/(2 beta0) (a^2 at start - a^2 at end), is 7e-4, which
         # makes 2.6e-9 of whatever is made of quarks; twice that is allowed
         np.testing.assert_allclose(theirs[name], ours[name], rtol=5e-9, err_msg=name)
         floor = STORED * np.abs(end.at(None, x, "dbar + ubar")[0])

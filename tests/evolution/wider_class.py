@@ -1,4 +1,4 @@
-"""Inputs that the grid promises to carry: x^a (1-x)^b (1 + c sqrt x + d x), a = -0.4 to 0.8, b = 1.5 to 10."""
+"""What the grid promises to carry: x^a (1-x)^b (1 + c sqrt x + d x), -0.4 <= a <= 0.8, 1.5 <= b <= 10."""
 
 from __future__ import annotations
 
