@@ -17,6 +17,10 @@ const LONGEST: f64 = 1.3;
 const LOWEST: f64 = 2.4;
 const SLOPE: f64 = 10.0;
 const UNIT: f64 = 1.2;
+/// Largest degree tried first.
+const HIGHEST: f64 = 24.0;
+/// By how much the degree is raised where the accuracy was missed.
+const RAISE: usize = 2;
 
 /// The steps of one stretch, factored for every sector.
 pub struct Stretch {
@@ -124,7 +128,7 @@ impl StretchSolution {
 pub struct Plan {
     /// Relative accuracy wanted.
     pub tolerance: f64,
-    /// How many times the steps have been halved because the accuracy was missed.
+    /// How many times the degree has been raised because the accuracy was missed.
     pub refinement: u32,
 }
 
@@ -134,7 +138,7 @@ impl Plan {
         if length == 0.0 {
             return 0;
         }
-        ((length.abs() / LONGEST).ceil() as usize) << self.refinement
+        (length.abs() / LONGEST).ceil() as usize
     }
 
     /// Degree of a step of this length.
@@ -142,6 +146,6 @@ impl Plan {
         let digits = -self.tolerance.log10();
         let share = length.abs() / UNIT;
         let degree = LOWEST + SLOPE * share.powf(0.55) + (digits - 8.0) * share.powf(0.2);
-        degree.ceil().clamp(3.0, 24.0) as usize
+        degree.ceil().clamp(3.0, HIGHEST) as usize + RAISE * self.refinement as usize
     }
 }
