@@ -12,7 +12,7 @@ from typing import TypeAlias
 import numpy as np
 from numpy.typing import ArrayLike
 
-from . import _check
+from . import _check, _downward
 from ._carry import matched, thread_count
 from ._check import Floats, Integers, refuse
 from ._progress import Progress, watcher
@@ -27,8 +27,9 @@ __all__ = ["build_operators", "evolve"]
 
 Further: TypeAlias = Sequence[Mapping[str, SplittingKernel]]
 
-# Relative error allowed to the steps in scale, well below what each resolution of the grid promises.
-_TOLERANCE = {"standard": 1e-9, "fine": 1e-11}
+# Relative error allowed to the steps in scale, as the core estimates it on smooth densities: well below what
+# each resolution of the grid promises.
+_TOLERANCE = {"standard": 1e-8, "fine": 1e-10}
 
 
 def build_operators(
@@ -65,7 +66,7 @@ def build_operators(
     intrinsic : sequence of int
         Heavy flavours, 4 to 6 and above `start_nf`, that the input may have.
     tolerance : float, optional
-        Relative error allowed to the steps in scale; by default 1e-9, and 1e-11 on a fine grid.
+        Relative error allowed to the steps in scale; by default 1e-8, and 1e-10 on a fine grid.
     threads : int, optional
         By default the environment's SCALEWRIGHT_THREADS, or all processors. The bits do not depend on it.
     further_orders : sequence of mappings
@@ -159,6 +160,11 @@ def evolve(
     InputError, RangeError
         As for `build_operators` and `Operators.apply`.
 
+    Warns
+    -----
+    ResolutionWarning
+        As `Operators.apply`.
+
     Examples
     --------
     >>> import scalewright as sw
@@ -177,6 +183,8 @@ def evolve(
     route = _route(theory, start_q2, start_nf, q2, nf, _heavy(densities, start_nf))
     given = matched(densities, densities.grid, route, missing)
     made = route.made(route.nf) if flavours is None else _check.partons("flavours", flavours)
+    heavy = _downward.remaining(route.start_nf, route.nf)
+    also = [f for quark in heavy for f in (quark, -quark) if f not in made]  # looked at, not handed out
     values = _core.evolve(
         theory.handle(),
         densities.grid.handle(),
@@ -186,10 +194,18 @@ def evolve(
         in_flavours=np.asarray(route.allowed),
         q2=route.q2,
         nf=route.nf,
-        out_flavours=np.asarray(made),
+        out_flavours=np.asarray((*made, *also)),
         tolerance=_tolerance(tolerance, densities.grid),
         threads=thread_count(threads),
     )
+
+    def pair(quark: int, scales: list[int]) -> Floats:
+        one, other = ((*made, *also).index(flavour) for flavour in (quark, -quark))
+        return values[scales, :, one] + values[scales, :, other]
+
+    x = densities.grid.x
+    _downward.warn_where_enlarged(given, route.start_nf, route.q2, route.nf, x, pair)
+    values = np.ascontiguousarray(values[:, :, : len(made)])
     return Densities(densities.grid, q2=route.q2, nf=route.nf, flavours=made, values=values)
 
 

@@ -261,6 +261,11 @@ class Densities(Questions):
         copy : bool
             Read into memory instead of mapping the file: for network file systems.
 
+        Returns
+        -------
+        Densities
+            With what is known of below x_min.
+
         Raises
         ------
         StoreError
@@ -273,6 +278,11 @@ class Densities(Questions):
     def save(self, path: PathLike) -> None:
         """Store the densities, whole or not at all; `load` gives every bit back.
 
+        Parameters
+        ----------
+        path : path-like
+            The file, HDF5 in a checked wrapping; its folder must exist.
+
         Raises
         ------
         StoreError
@@ -284,6 +294,11 @@ class Densities(Questions):
         """Write a table with the columns q2, nf, x, flavour, replica, value, at the nodes of the grid.
 
         Floats keep every bit. What is known of below x_min is not in the table.
+
+        Parameters
+        ----------
+        path : path-like
+            The file; its folder must exist.
 
         Raises
         ------

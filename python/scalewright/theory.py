@@ -169,7 +169,22 @@ class Theory:
         return self._count(q2, 1.0)
 
     def start_nf(self, q2: float) -> int:
-        """Number of flavours of an input at `q2` (GeV^2) that names none: that of `nf_at`."""
+        """Number of flavours of an input that names none: that of `nf_at`.
+
+        Parameters
+        ----------
+        q2 : float
+            Scale of the input in GeV^2. A scale equal to a threshold counts as above it.
+
+        Returns
+        -------
+        int
+
+        Raises
+        ------
+        InputError
+            If the scale is not one positive, finite number.
+        """
         return int(self.nf_at(_check.scale("start_q2", q2)))
 
     def _count(self, q2: ArrayLike, ratio: float) -> Integers:
@@ -253,6 +268,10 @@ class Theory:
         where : str
             Such as "[theory]", for messages.
 
+        Returns
+        -------
+        Theory
+
         Raises
         ------
         InputError
@@ -275,6 +294,15 @@ class Theory:
     @classmethod
     def from_json(cls, text: str) -> Theory:
         """Read a theory from the text that `to_json` writes.
+
+        Parameters
+        ----------
+        text : str
+            JSON; options that are missing take their defaults.
+
+        Returns
+        -------
+        Theory
 
         Raises
         ------

@@ -31,7 +31,7 @@ PYTHON_LAYERS = (
     ("_progress",),
     ("files",),
     ("flavours", "parameters", "below", "kernels", "_route", "_flows", "_describe"),
-    ("theory", "grid", "_divide"),
+    ("theory", "grid", "_divide", "_downward"),
     ("_lattice", "_resolution"),
     ("_display", "_sampling", "_stored", "_sums"),
     ("_questions",),
