@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from . import _check, _downward, _flows
+from . import _check, _flows
 from ._check import Floats, Integers, refuse, show
 from ._route import SAME_SCALE, Route, Source
 from .below import Below
@@ -170,41 +170,23 @@ class Task:
 
     def run(self, out: object = None, at_hand: tuple[Floats, Floats] | None = None) -> Densities:
         """Apply; `at_hand` are blocks and flows of the task, if they are."""
+        from . import _core
+
         shape = (self.q2.size, self.given.shape[0], len(self.made), self.grid.nodes)
         values = place(out, shape, self.given)
         blocks, flows = at_hand or self.source.at(self.q2, self.nf, self.threads)
-        self._apply(blocks, self.made, values)
-        self._warn_downward(blocks, values)
-        under = self.below(flows)
-        return Densities(self.grid, q2=self.q2, nf=self.nf, flavours=self.made, values=values, below=under)
-
-    def _apply(self, blocks: Floats, made: tuple[int, ...], out: Floats) -> None:
-        """Write the flavours `made` to `out`."""
-        from . import _core
-
         _core.apply(
             names=self.source.names,
             light=self.source.light,
             values=blocks,
             densities=self.given,
             in_flavours=np.asarray(self.route.allowed),
-            out_flavours=np.asarray(made),
-            out=out,
+            out_flavours=np.asarray(self.made),
+            out=values,
             threads=self.threads,
         )
-
-    def _warn_downward(self, blocks: Floats, values: Floats) -> None:
-        """Warn where a downward crossing has enlarged a heavy density, asked for or not."""
-
-        def pair(quark: int, scales: list[int]) -> Floats:
-            if quark in self.made and -quark in self.made:
-                return values[scales, :, self.made.index(quark)] + values[scales, :, self.made.index(-quark)]
-            both = np.empty((len(scales), self.given.shape[0], 2, self.grid.nodes))
-            self._apply(np.ascontiguousarray(blocks[scales]), (quark, -quark), both)
-            return both[:, :, 0] + both[:, :, 1]
-
-        x = self.grid.x
-        _downward.warn_where_enlarged(self.given, self.route.start_nf, self.q2, self.nf, x, pair)
+        under = self.below(flows)
+        return Densities(self.grid, q2=self.q2, nf=self.nf, flavours=self.made, values=values, below=under)
 
     def below(self, flows: Floats) -> Below | None:
         """Return what lies below x_min afterwards: what lay there, and what has flowed there since."""

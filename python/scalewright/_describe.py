@@ -80,8 +80,8 @@ _RULES = (
     "  that of nf + 1 flavours at mu_r^2 = mu_thr^2, also where mu_r differs from mu_f elsewhere",
     "intrinsic heavy densities are matched up to a^1: there is no intrinsic matching at a^2 (NNLO);",
     "  without one, heavy quark = heavy antiquark at the threshold",
-    "downwards at a threshold: the exact inverse of the upward step, which enlarges without bound a heavy",
-    "  density that no upward crossing has made",
+    "downwards at a threshold: the exact inverse of the upward step; an intrinsic heavy density (what the",
+    "  light densities do not make) goes back to the order kept in a, so that nothing is enlarged",
     "mu_r differs from mu_f: splitting functions re-expanded in a(mu_r); nf of the coupling is that of mu_f",
     "the same bits on one kind of CPU, whatever the number of threads; 1e-12 of each other between kinds",
 )

@@ -12,7 +12,7 @@ from typing import TypeAlias
 import numpy as np
 from numpy.typing import ArrayLike
 
-from . import _check, _downward
+from . import _check
 from ._carry import matched, thread_count
 from ._check import Floats, Integers, refuse
 from ._progress import Progress, watcher
@@ -160,11 +160,6 @@ def evolve(
     InputError, RangeError
         As for `build_operators` and `Operators.apply`.
 
-    Warns
-    -----
-    ResolutionWarning
-        As `Operators.apply`.
-
     Examples
     --------
     >>> import scalewright as sw
@@ -183,8 +178,6 @@ def evolve(
     route = _route(theory, start_q2, start_nf, q2, nf, _heavy(densities, start_nf))
     given = matched(densities, densities.grid, route, missing)
     made = route.made(route.nf) if flavours is None else _check.partons("flavours", flavours)
-    heavy = _downward.remaining(route.start_nf, route.nf)
-    also = [f for quark in heavy for f in (quark, -quark) if f not in made]  # looked at, not handed out
     values = _core.evolve(
         theory.handle(),
         densities.grid.handle(),
@@ -194,18 +187,10 @@ def evolve(
         in_flavours=np.asarray(route.allowed),
         q2=route.q2,
         nf=route.nf,
-        out_flavours=np.asarray((*made, *also)),
+        out_flavours=np.asarray(made),
         tolerance=_tolerance(tolerance, densities.grid),
         threads=thread_count(threads),
     )
-
-    def pair(quark: int, scales: list[int]) -> Floats:
-        one, other = ((*made, *also).index(flavour) for flavour in (quark, -quark))
-        return values[scales, :, one] + values[scales, :, other]
-
-    x = densities.grid.x
-    _downward.warn_where_enlarged(given, route.start_nf, route.q2, route.nf, x, pair)
-    values = np.ascontiguousarray(values[:, :, : len(made)])
     return Densities(densities.grid, q2=route.q2, nf=route.nf, flavours=made, values=values)
 
 

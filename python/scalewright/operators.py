@@ -177,12 +177,6 @@ class Operators:
             are missing or not allowed.
         RangeError
             If a scale is not served.
-
-        Warns
-        -----
-        ResolutionWarning
-            If a threshold was crossed downwards and the heavy density that remains is larger than ten times
-            the input: the inverse of the matching has no bound for what no upward crossing has made.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
         return task.run(out, self._all() if q2 is None else None)
@@ -213,11 +207,6 @@ class Operators:
         ------
         InputError, RangeError
             As `apply`, before the first scale.
-
-        Warns
-        -----
-        ResolutionWarning
-            As `apply`, with the scale it is about.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
         parts = (task.one(index).run() for index in range(task.q2.size))

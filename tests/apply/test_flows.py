@@ -24,8 +24,6 @@ ROUTES = {
 }
 
 
-# On the routes downwards the heavy inputs are made up, and said to be enlarged: test_downward.py.
-@pytest.mark.filterwarnings("ignore:[bc] .* exact inverse of the matching:scalewright.ResolutionWarning")
 @pytest.mark.parametrize("order", ["LO", "NLO", "NNLO"])
 @pytest.mark.parametrize("route", ROUTES)
 def test_two_steps_lose_what_one_after_the_other_lose(theory, grid, order, route):

@@ -31,7 +31,7 @@ PYTHON_LAYERS = (
     ("_progress",),
     ("files",),
     ("flavours", "parameters", "below", "kernels", "_route", "_flows", "_describe"),
-    ("theory", "grid", "_downward"),
+    ("theory", "grid"),
     ("_resolution",),
     ("_nodal", "_stored_densities", "_sums"),
     ("_questions",),

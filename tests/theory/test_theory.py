@@ -106,7 +106,7 @@ def test_the_description_says_what_surprises():
     for convention in (
         "the coupling there is that of nf + 1 flavours at mu_r^2 = mu_thr^2, also where mu_r differs",
         "there is no intrinsic matching at a^2 (NNLO)",
-        "downwards at a threshold: the exact inverse of the upward step, which enlarges without bound",
+        "downwards at a threshold: the exact inverse of the upward step; an intrinsic heavy density",
         "the same bits on one kind of CPU, whatever the number of threads; 1e-12 of each other between kinds",
     ):
         assert convention in said
