@@ -30,8 +30,9 @@ _ROUNDING = 16.0
 #: Two entries that mirror each other may differ by this part of the diagonal: more is no rounding of print.
 _MIRRORED = 1e-6
 
-#: The alternating projections end when a step moves no entry by more than this, or after so many steps.
-_STEP, _STEPS = 1e-13, 20_000
+#: The alternating projections end when a step moves no entry by more than this: far below what is printed.
+#: After so many steps they are given up; they converge linearly, mostly in tens of steps.
+_STEP, _STEPS = 1e-10, 2_000
 
 
 @dataclass(frozen=True, eq=False)
@@ -155,7 +156,7 @@ def repaired(matrix: Floats, repair: str | None, name: str) -> tuple[Floats, flo
             f"{name}: not positive semi-definite: the smallest eigenvalue of the correlations is "
             f"{values[0]:.3g}, mostly of {heaviest(vectors[:, 0])}; repair = \"clip\" or \"nearest\" mends it"
         )
-    better = _clipped(values, vectors) if repair == "clip" else _nearest(matrix)
+    better = _clipped(values, vectors) if repair == "clip" else _nearest(matrix, name)
     return better, float(np.abs(np.linalg.eigvalsh(better) - values).max())
 
 
@@ -174,7 +175,7 @@ def _clipped(values: Floats, vectors: Floats) -> Floats:
     return _unit(matrix / scale[:, None] / scale)
 
 
-def _nearest(matrix: Floats) -> Floats:
+def _nearest(matrix: Floats, name: str) -> Floats:
     """Project in turn on positive matrices and on those of unit diagonal."""
     unit, correction = matrix, np.zeros_like(matrix)
     for _ in range(_STEPS):
@@ -184,10 +185,9 @@ def _nearest(matrix: Floats) -> Floats:
         following = _unit(positive)
         step = float(np.abs(following - unit).max())
         unit = following
-        if step <= _STEP:
-            break
-    # what is left of negative eigenvalues is as small as the last step
-    return _clipped(*np.linalg.eigh(unit))
+        if step <= _STEP:  # what is left of negative eigenvalues is as small as the last step
+            return _clipped(*np.linalg.eigh(unit))
+    raise InputError(f'{name}: no nearest correlation matrix after {_STEPS} steps; repair = "clip" has no steps')
 
 
 def _unit(matrix: Floats) -> Floats:
