@@ -3,8 +3,8 @@
 - Without more, a line is a row and the datum measured there.
 - ``[combination]``: a line is one datum made of several rows that stand at its x and Q^2 and differ in the
   attributes that ``rows`` names: a deuteron over a proton, an asymmetry of beams.
-- ``[[datum]]``: the line of that label is a datum made of other lines, by their labels: a bin average, a ratio
-  of different points. A line without value is a row alone.
+- ``[[datum]]``: the line of that label is a datum made of other lines, by their labels: a bin average, a
+  ratio of different points. A line without value is a row alone.
 """
 
 from __future__ import annotations
@@ -71,8 +71,10 @@ def assemble(section: Section, cells: Cells, columns: Mapping[str, str]) -> Asse
         return section.where(key) if inside is None else f"{section.where('combination')}: rows: {key}"
 
     reader = Reader(cells, columns, defaults, where)
-    made = _by_line(section, cells, columns, reader) if not section.get("combination", None) else None
-    built = made or _by_name(section, cells, reader)
+    if section.get("combination", None) is not None:
+        built = _by_name(section, cells, reader)
+    else:
+        built = _by_line(section, cells, columns, reader)
     _refuse_doubles(built, cells)
     return built
 
@@ -146,9 +148,7 @@ def _assembly(
     first = [rows_here[0] for rows_here in members]
     y = np.asarray([rows.y[m[0]] if len({rows.y[r] for r in m}) == 1 else np.nan for m in members])
     combination = Combination(tops, bottoms, len(rows))
-    return Assembly(
-        rows, combination, tuple(lines), tuple(needs), members, rows.x[first], rows.q2[first], y
-    )
+    return Assembly(rows, combination, tuple(lines), tuple(needs), members, rows.x[first], rows.q2[first], y)
 
 
 def _labels(section: Section, cells: Cells, columns: Mapping[str, str]) -> dict[str, int]:

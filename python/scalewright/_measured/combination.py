@@ -44,6 +44,15 @@ class Weights:
             np.asarray(columns[0], np.int64), np.asarray(columns[1], np.int64), np.asarray(columns[2], float)
         )
 
+    def lists(self, data: int, start: int) -> list[list[tuple[int, float]]]:
+        """Return what `of` takes, rows counted from `start`."""
+        result: list[list[tuple[int, float]]] = [[] for _ in range(data)]
+        for datum, row, weight in zip(
+            self.datum.tolist(), self.row.tolist(), self.weight.tolist(), strict=True
+        ):
+            result[datum].append((row + start, weight))
+        return result
+
     def sums(self, rows: Floats, data: int) -> Floats:
         """Return (..., datum) of (..., row); a datum without entry is 0."""
         result = np.zeros((*rows.shape[:-1], data))
@@ -85,6 +94,20 @@ class Combination:
         self.rows, self.data = rows, len(numerator)
         self.numerator, self.denominator = Weights.of(numerator), Weights.of(denominator)
         self._divided = np.asarray([bool(terms) for terms in denominator], dtype=bool)
+
+    @classmethod
+    def join(cls, parts: Sequence[Combination]) -> Combination:
+        """Put the data of several tables one after another."""
+        if len(parts) == 1:
+            return parts[0]
+        tops: list[list[tuple[int, float]]] = []
+        bottoms: list[list[tuple[int, float]]] = []
+        start = 0
+        for part in parts:
+            tops += part.numerator.lists(part.data, start)
+            bottoms += part.denominator.lists(part.data, start)
+            start += part.rows
+        return cls(tops, bottoms, start)
 
     @property
     def is_linear(self) -> bool:

@@ -70,7 +70,7 @@ class Correlated:
 
     @cached_property
     def _parts(self) -> tuple[float, Floats]:
-        """Return c and A (datum, source) with R = c + A A^T: what every datum has for itself, and the rest."""
+        """Return c and A (datum, source) with R = c + A A^T: each datum for itself, and the rest."""
         values, vectors = np.linalg.eigh(self.matrix)
         # Half of the smallest eigenvalue: the larger c, the better both forms of chi-square agree, but the
         # rest must stay safely positive.
@@ -83,6 +83,12 @@ class Correlated:
         own, shifts = self._parts
         size = self.at(reference)
         return own * size**2, size[:, None] * shifts
+
+    def draw(self, rng: np.random.Generator, shape: tuple[int, int]) -> Floats:
+        """Return normal numbers of unit variance with these correlations, (replica, datum)."""
+        own, shifts = self._parts
+        drawn: Floats = np.sqrt(own) * rng.standard_normal(shape) + rng.standard_normal(shape) @ shifts.T
+        return drawn
 
 
 def _rounding(values: Floats) -> float:
@@ -154,7 +160,7 @@ def repaired(matrix: Floats, repair: str | None, name: str) -> tuple[Floats, flo
     if repair is None:
         raise InputError(
             f"{name}: not positive semi-definite: the smallest eigenvalue of the correlations is "
-            f"{values[0]:.3g}, mostly of {heaviest(vectors[:, 0])}; repair = \"clip\" or \"nearest\" mends it"
+            f'{values[0]:.3g}, mostly of {heaviest(vectors[:, 0])}; repair = "clip" or "nearest" mends it'
         )
     better = _clipped(values, vectors) if repair == "clip" else _nearest(matrix, name)
     return better, float(np.abs(np.linalg.eigvalsh(better) - values).max())
@@ -187,7 +193,9 @@ def _nearest(matrix: Floats, name: str) -> Floats:
         unit = following
         if step <= _STEP:  # what is left of negative eigenvalues is as small as the last step
             return _clipped(*np.linalg.eigh(unit))
-    raise InputError(f'{name}: no nearest correlation matrix after {_STEPS} steps; repair = "clip" has no steps')
+    raise InputError(
+        f'{name}: no nearest correlation matrix after {_STEPS} steps; repair = "clip" has no steps'
+    )
 
 
 def _unit(matrix: Floats) -> Floats:

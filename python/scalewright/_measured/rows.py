@@ -97,7 +97,7 @@ class Rows:
     @classmethod
     def join(cls, parts: Sequence[Rows]) -> Rows:
         """Put rows of several tables one after another."""
-        joined = {}
+        joined: dict[str, Any] = {}
         for field in fields(cls):
             columns = [getattr(part, field.name) for part in parts]
             arrays = isinstance(columns[0], np.ndarray)

@@ -62,6 +62,7 @@ class Table:
             for part in sections(section, "uncertainty")
         ]
         self._refuse_same_names(found)
+        self.described: tuple[Uncertainty, ...] = tuple(found)
         # where errors are asymmetric, the value may not be the printed one
         self.value = printed + sum((part.offset for part in found), np.zeros_like(printed))
         self.uncertainties, self.correlated = self._with_matrices(section, found, printed)
@@ -75,9 +76,7 @@ class Table:
         if not isinstance(other, Table):
             return NotImplemented
         same = self._nameless == other._nameless and self.cells == other.cells
-        return same and all(
-            np.array_equal(a, b) for a, b in zip(self.matrices, other.matrices, strict=True)
-        )
+        return same and all(np.array_equal(a, b) for a, b in zip(self.matrices, other.matrices, strict=True))
 
     __hash__ = None  # type: ignore[assignment]
 
@@ -148,9 +147,7 @@ class Table:
             correlated.append(self._matrix(part, matrix, found, printed))
         return tuple(found), tuple(correlated)
 
-    def _matrix(
-        self, part: Section, matrix: Floats, found: list[Uncertainty], printed: Floats
-    ) -> Correlated:
+    def _matrix(self, part: Section, matrix: Floats, found: list[Uncertainty], printed: Floats) -> Correlated:
         """Return what one matrix says; the uncertainty that it correlates is taken out of `found`."""
         name = str(part.text("name", None) or part.text("file"))
         kind = choice(part, "kind", ("covariance", "correlation"))
@@ -158,15 +155,17 @@ class Table:
         if kind == "correlation":
             for key in ("given_in", "scales_with"):
                 if part.get(key, None) is not None:
-                    raise InputError(f"{part.where(key)}: goes with kind = \"covariance\"; of says it here")
+                    raise InputError(f'{part.where(key)}: goes with kind = "covariance"; of says it here')
             off = np.flatnonzero(np.abs(size - 1.0) > 1e-6)  # rounding in print leaves a 1 a 1
             for row in off[:1]:
-                raise InputError(f"{name}: row {row + 1}: {show(matrix[row, row])} on the diagonal: must be 1")
+                raise InputError(
+                    f"{name}: row {row + 1}: {show(matrix[row, row])} on the diagonal: must be 1"
+                )
             of = self._taken(part, found)
             size, multiplicative = of.size, of.multiplicative
         else:
             if part.get("of", None) is not None:
-                raise InputError(f"{part.where('of')}: goes with kind = \"correlation\"")
+                raise InputError(f'{part.where("of")}: goes with kind = "correlation"')
             multiplicative = choice(part, "scales_with", ("nothing", "value")) == "value"
             if choice(part, "given_in", ("value", "percent")) == "percent":
                 size = size / 100.0 if multiplicative else size / 100.0 * printed
@@ -191,7 +190,8 @@ class Table:
 
     def _refuse_no_error(self) -> None:
         """Refuse a datum without any uncertainty."""
-        sizes = [part.size for part in (*self.uncertainties, *self.correlated)]
+        parts: list[Uncertainty | Correlated] = [*self.uncertainties, *self.correlated]
+        sizes = [part.size for part in parts]
         none = ~np.any([size != 0.0 for size in sizes], axis=0) if sizes else np.ones(len(self), bool)
         for datum in np.flatnonzero(none)[:1]:
             raise InputError(f"{self.place(datum)}: the datum has no uncertainty at all")

@@ -17,10 +17,10 @@ from .._check import Floats
 __all__ = ["ASYMMETRIC", "Uncertainty"]
 
 #: Rules for a shift `up` at +1 sigma and `down` at -1 sigma, with mean shift s = (up - down)/2 and
-#: d = (up + down)/2. "mean": s, value untouched (common practice, no source). "larger": the larger of |up| and
-#: |down| with the sign of s, value untouched (common practice, no source). "shifted": the value moves by d and
-#: the size is sqrt(s^2 + 2 d^2) with the sign of s (G. D'Agostini, physics/0403086, mean and variance of a
-#: parabola through the three points; recalled from memory).
+#: d = (up + down)/2. "mean": s, value untouched (common practice, no source). "larger": the larger of |up|
+#: and |down| with the sign of s, value untouched (common practice, no source). "shifted": the value moves by
+#: d and the size is sqrt(s^2 + 2 d^2) with the sign of s (G. D'Agostini, physics/0403086: mean and variance
+#: of a parabola through the three points; recalled from memory).
 ASYMMETRIC = ("mean", "larger", "shifted")
 
 
@@ -56,7 +56,7 @@ class Uncertainty:
 def symmetric(up: Floats, down: Floats, rule: str) -> tuple[Floats, Floats]:
     """Return size and offset of shifts `up` and `down` by a rule of `ASYMMETRIC`."""
     mean, half = 0.5 * (up - down), 0.5 * (up + down)
-    # a source that moves the value the same way at both ends has mean 0 or of either sign: count it as positive
+    # a source that moves the value equally at both ends has mean 0: count it as positive
     sign = np.where(mean < 0.0, -1.0, 1.0)
     if rule == "mean":
         return mean, np.zeros_like(mean)

@@ -1,0 +1,413 @@
+"""Measured data with their uncertainties: read, cut, combined, written back, pseudo-data drawn from them.
+
+A table is a TOML description beside a CSV file of points; `Measurements` are one table or several. Rows are
+the points at which a theory predicts; data are what was measured: rows, or sums, ratios and averages of them.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from numpy.random import Generator
+from numpy.typing import ArrayLike, NDArray
+
+from . import _check
+from ._check import Floats, Integers
+from ._measured import model
+from ._measured.combination import Combination
+from ._measured.cuts import Cut, Range, apply_cuts, in_range
+from ._measured.report import describe
+from ._measured.revalued import revalued
+from ._measured.rows import Rows
+from ._measured.storing import from_columns, read_tables, write_tables
+from ._measured.table import Table
+from .errors import InputError
+from .files.whole import PathLike
+
+__all__ = ["Measurements", "PseudoData"]
+
+
+@dataclass(frozen=True)
+class PseudoData:
+    """Values drawn around a truth.
+
+    Parameters
+    ----------
+    values : ndarray, (datum,) or (replica, datum)
+        What an experiment might have measured.
+    negative : int
+        How many of them are negative; they are kept.
+    """
+
+    values: Floats
+    negative: int
+
+
+class Measurements:
+    """Data points with their uncertainties, from one table or several.
+
+    Made by `read`, `from_columns` or `join`; never changed afterwards.
+
+    Attributes
+    ----------
+    tables : tuple of str
+        Titles.
+    x, q2, y : ndarray, (datum,)
+        Where each datum was measured; q2 in GeV^2. y is nan where it is not known or not one number.
+    value : ndarray, (datum,)
+        What was measured; moved where an asymmetric error is described as "shifted".
+    table_of : ndarray of int, (datum,)
+        Number of the table of each datum.
+    rows : Rows
+        The points at which the theory must predict, with measure, current, exchange, beam, polarisation,
+        target, tagged and s of each.
+    data : Combination
+        The map from rows to data, with its derivative.
+    cuts : tuple
+        What cuts removed, and why.
+    names_of_sources : tuple of str
+        The nuisance parameters, in the order of the columns of `nuisance`.
+
+    Examples
+    --------
+    >>> table = Measurements.from_columns(
+    ...     {"title": "Run 1", "measures": "F2", "exchange": "photon", "uncertainty": [
+    ...         {"column": "stat", "given_in": "value", "scales_with": "nothing"},
+    ...         {"name": "luminosity", "size": 2.0, "given_in": "percent", "scales_with": "value",
+    ...          "shared_as": "luminosity"}]},
+    ...     {"x": [0.01, 0.1, 0.4], "q2": [10.0, 10.0, 10.0], "value": [1.0, 0.5, 0.2],
+    ...      "stat": [0.02, 0.01, 0.01]})
+    >>> table
+    Measurements(3 data in 1 table)
+    >>> print(table.covariance().round(6))
+    [[8.00e-04 2.00e-04 8.00e-05]
+     [2.00e-04 2.00e-04 4.00e-05]
+     [8.00e-05 4.00e-05 1.16e-04]]
+    >>> for cut in table.cut(x=(None, 0.2)).cuts:
+    ...     print(cut)
+    x <= 0.2: removed 1 (1 of Run 1)
+    """
+
+    def __init__(self, tables: Sequence[Table], cuts: Sequence[Cut] = ()) -> None:
+        if not isinstance(tables, list | tuple) or not all(isinstance(part, Table) for part in tables):
+            _check.refuse("tables", tables, "measurements are made by read, from_columns or join")
+        titles = [table.title for table in tables]
+        for place, title in enumerate(titles):
+            if title in titles[:place]:
+                raise InputError(f"table {title!r} stands there twice: titles must differ")
+        self._tables, self.tables, self.cuts = tuple(tables), tuple(titles), tuple(cuts)
+        self.value: Floats = _fixed([table.value for table in tables])
+        self.x: Floats = _fixed([table.assembly.x for table in tables])
+        self.q2: Floats = _fixed([table.assembly.q2 for table in tables])
+        self.y: Floats = _fixed([table.assembly.y for table in tables])
+        sizes = [len(table) for table in tables]
+        self.table_of: Integers = np.repeat(np.arange(len(sizes), dtype=np.int64), sizes)
+
+    @classmethod
+    def read(cls, path: PathLike) -> Measurements:
+        """Read a description and the files that it names.
+
+        Parameters
+        ----------
+        path : path-like
+            A TOML file: one table, or ``tables = ["a.toml", "b.toml"]``.
+
+        Returns
+        -------
+        Measurements
+
+        Raises
+        ------
+        StoreError
+            If a file cannot be read.
+        InputError
+            If something in it is wrong: the message names file, line and column, or the key.
+
+        Warns
+        -----
+        InputWarning
+            If a y column differs from Q^2/(x (s - M^2)) by more than rounding in print.
+        """
+        return cls(read_tables(path))
+
+    @classmethod
+    def from_columns(
+        cls, description: Mapping[str, Any], points: Any, matrices: Sequence[ArrayLike] = ()
+    ) -> Measurements:
+        """Make one table of arrays.
+
+        Parameters
+        ----------
+        description : mapping
+            The keys of the TOML description, ``points`` and ``file`` left out.
+        points : mapping or data frame
+            Name of a column -> numbers or text, all of one length.
+        matrices : sequence of array_like, (datum, datum)
+            One for each covariance of the description.
+
+        Returns
+        -------
+        Measurements
+
+        Raises
+        ------
+        InputError
+            As for `read`.
+        """
+        return cls([from_columns(description, points, matrices)])
+
+    @classmethod
+    def join(cls, parts: Iterable[Measurements]) -> Measurements:
+        """Put several tables together; sources of one name become one.
+
+        Parameters
+        ----------
+        parts : iterable of Measurements
+
+        Returns
+        -------
+        Measurements
+            The data in the order given.
+
+        Raises
+        ------
+        InputError
+            If there is nothing to join, or two tables have one title.
+        """
+        try:
+            given = list(parts)
+        except TypeError:
+            given = []
+        if not given or not all(isinstance(part, Measurements) for part in given):
+            _check.refuse("parts", parts, "parts must be a list of Measurements, at least one")
+        return cls([t for part in given for t in part._tables], [cut for part in given for cut in part.cuts])
+
+    def write(self, path: PathLike) -> None:
+        """Write description, points and matrices; `read` gives back the same measurements to the last bit.
+
+        Parameters
+        ----------
+        path : path-like
+            ``NAME.toml``; points go to ``NAME.csv``, matrices to ``NAME.matrix-1.csv`` and so on, several
+            tables to ``NAME-1.toml`` and so on. Files of these names are replaced. Columns that nothing uses
+            and the way numbers are printed are kept, comments and the record of cuts are not.
+
+        Raises
+        ------
+        StoreError
+            If a file cannot be written; each is whole or not there, the description is written last.
+        """
+        write_tables(path, self._tables)
+
+    def cut(
+        self,
+        *,
+        x: Range | None = None,
+        q2: Range | None = None,
+        w2: Range | None = None,
+        y: Range | None = None,
+        keep: ArrayLike | None = None,
+        reason: str = "keep",
+    ) -> Measurements:
+        """Return what lies within limits; how much each limit removes stands in `cuts`.
+
+        Parameters
+        ----------
+        x, q2, w2, y : (float or None, float or None), optional
+            Least and most, both included; q2 and w2 = M^2 + Q^2 (1 - x)/x in GeV^2. A datum that is made of
+            several rows stays if all of them lie inside.
+        keep : array_like of bool, (datum,), optional
+            Which data stay, by any other reason.
+        reason : str
+            The reason for `keep`, in words.
+
+        Returns
+        -------
+        Measurements
+
+        Raises
+        ------
+        InputError
+            If a limit is not one, y is cut on but not known, or nothing is left.
+        """
+        rows, conditions = self.rows, {}
+        for name, given in (("x", x), ("q2", q2), ("w2", w2), ("y", y)):
+            if given is not None:
+                words, inside = in_range(name, given, getattr(rows, name), rows.place)
+                conditions[words] = self._of_all_rows(inside)
+        if keep is not None:
+            chosen = np.asarray(keep)
+            if chosen.dtype != bool or chosen.shape != self.value.shape:
+                _check.refuse("keep", keep, f"keep must be {self.value.size} booleans, one a datum")
+            conditions[str(reason)] = chosen
+        tables, cuts = apply_cuts(self._tables, conditions)
+        return Measurements(tables, (*self.cuts, *cuts))
+
+    def _of_all_rows(self, inside: NDArray[np.bool_]) -> NDArray[np.bool_]:
+        """Say for each datum whether all of its rows are."""
+        start, result = 0, []
+        for table in self._tables:
+            part = inside[start : start + len(table.assembly.rows)]
+            result += [bool(part[list(members)].all()) for members in table.assembly.rows_of_datum]
+            start += part.size
+        return np.asarray(result, dtype=bool)
+
+    @cached_property
+    def rows(self) -> Rows:
+        """The points at which the theory must predict."""
+        return Rows.join([table.assembly.rows for table in self._tables])
+
+    @cached_property
+    def data(self) -> Combination:
+        """The map from rows to data."""
+        return Combination.join([table.assembly.combination for table in self._tables])
+
+    @property
+    def names_of_sources(self) -> tuple[str, ...]:
+        """The nuisance parameters: shared sources, then the directions of covariance matrices."""
+        return model.names_of_sources(self._tables)
+
+    def covariance(self, reference: ArrayLike | None = None) -> Floats:
+        """Covariance of the data.
+
+        Parameters
+        ----------
+        reference : array_like, (datum,), optional
+            What multiplicative errors multiply: the data by default, or an earlier prediction; never the
+            prediction that is being fitted (R. Ball et al., arXiv:0912.2276).
+
+        Returns
+        -------
+        ndarray, (datum, datum)
+
+        Raises
+        ------
+        InputError
+            If `reference` does not have one finite number a datum.
+        """
+        return model.covariance(self._tables, self.reference(reference))
+
+    def nuisance(self, reference: ArrayLike | None = None) -> tuple[Floats, Floats]:
+        """Return the same uncertainties as independent errors and common sources.
+
+        Parameters
+        ----------
+        reference : array_like, (datum,), optional
+            As for `covariance`.
+
+        Returns
+        -------
+        sigma : ndarray, (datum,)
+            Standard deviations of what each datum has for itself.
+        shifts : ndarray, (datum, source)
+            Shifts by one standard deviation of each source; sigma^2 + shifts shifts^T is the covariance.
+
+        Raises
+        ------
+        InputError
+            As for `covariance`.
+        """
+        return model.nuisance(self._tables, self.reference(reference))
+
+    def reference(self, reference: ArrayLike | None = None) -> Floats:
+        """Return a checked reference: the data where none is given.
+
+        Parameters
+        ----------
+        reference : array_like, (datum,), optional
+
+        Returns
+        -------
+        ndarray, (datum,)
+        """
+        if reference is None:
+            return self.value
+        return _check.real_array("reference", reference, shape=(self.value.size,))
+
+    def pseudo_data(
+        self, rng: Generator, truth: ArrayLike | None = None, *, replicas: int | None = None
+    ) -> PseudoData:
+        """Draw what the experiments might have measured.
+
+        Parameters
+        ----------
+        rng : numpy.random.Generator
+            Where the random numbers come from.
+        truth : array_like, (datum,), optional
+            Around what to draw: the data by default, or the prediction of a known law.
+        replicas : int, optional
+            How many; without it one, and no axis of replicas.
+
+        Returns
+        -------
+        PseudoData
+            (truth + sum of additive shifts) times the product of (1 + multiplicative shifts); negative values
+            are kept and counted.
+
+        Raises
+        ------
+        InputError
+            If `rng` is no generator, or `truth` does not have one finite number a datum.
+        """
+        if not isinstance(rng, Generator):
+            _check.refuse("rng", rng, "rng must be a numpy.random.Generator")
+        count = 1 if replicas is None else _check.whole("replicas", replicas, least=1)
+        centre = self.value if truth is None else truth
+        centre = _check.real_array("truth", centre, shape=(self.value.size,))
+        values = model.pseudo_data(self._tables, rng, centre, count)
+        return PseudoData(values[0] if replicas is None else values, int((values < 0.0).sum()))
+
+    def with_values(self, values: ArrayLike) -> Measurements:
+        """Return the same measurements with other values, as those of `pseudo_data`.
+
+        Parameters
+        ----------
+        values : array_like, (datum,)
+
+        Returns
+        -------
+        Measurements
+            Additive errors keep their size, multiplicative ones their fraction; asymmetric ones are replaced
+            by the symmetric size that the stated rule gave them.
+
+        Raises
+        ------
+        InputError
+            If there is not one finite number a datum.
+        """
+        array = _check.real_array("values", values, shape=(self.value.size,))
+        parts = np.split(array, np.cumsum([len(table) for table in self._tables])[:-1])
+        tables = [revalued(table, part) for table, part in zip(self._tables, parts, strict=True)]
+        return Measurements(tables, self.cuts)
+
+    def describe(self) -> str:
+        """What was understood: data, rows, uncertainties, repairs and cuts of each table, in words."""
+        return describe(self._tables, self.cuts)
+
+    def __len__(self) -> int:
+        return int(self.value.size)
+
+    def __eq__(self, other: object) -> bool:
+        """Say whether description, lines and matrices of all tables are the same."""
+        return self._tables == other._tables if isinstance(other, Measurements) else NotImplemented
+
+    __hash__ = None  # type: ignore[assignment]
+
+    def __repr__(self) -> str:
+        tables = "1 table" if len(self.tables) == 1 else f"{len(self.tables)} tables"
+        data = "1 datum" if len(self) == 1 else f"{len(self)} data"
+        return f"Measurements({data} in {tables})"
+
+    def __str__(self) -> str:
+        return self.describe()
+
+
+def _fixed(parts: Sequence[Floats]) -> Floats:
+    """Join arrays into one that cannot be changed."""
+    joined = np.concatenate(parts) if parts else np.zeros(0)
+    joined.flags.writeable = False
+    return joined
