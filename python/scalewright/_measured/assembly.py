@@ -124,9 +124,9 @@ def _by_line(section: Section, cells: Cells, columns: Mapping[str, str], reader:
     lines = [line for line in range(len(cells.rows)) if valued[line]]
     tops, bottoms, needs = [], [], []
     for line in lines:
-        part = made.get(line)
-        tops.append([(row_of[line], 1.0)] if part is None else _terms(part, "numerator", targets))
-        bottoms.append([] if part is None else _terms(part, "denominator", targets))
+        of = made.get(line)
+        tops.append([(row_of[line], 1.0)] if of is None else _terms(of, "numerator", targets))
+        bottoms.append([] if of is None else _terms(of, "denominator", targets))
         needs.append(tuple(sorted({line, *(places[row] for row, _ in tops[-1] + bottoms[-1])})))
     for line in range(len(cells.rows)):
         if not valued[line] and (line in made or all(line not in need for need in needs)):

@@ -102,7 +102,7 @@ def from_columns(
         _check.real_array(f"matrices[{place}]", matrix, ndim=2) for place, matrix in enumerate(matrices)
     ]
     plain = {str(key): _plain(value) for key, value in description.items()}
-    parts = plain.get("covariance", None)
+    parts = plain.get("covariance")
     if isinstance(parts, list) and all(isinstance(part, dict) for part in parts):
         files = ({"file": f"matrix {place + 1}"} | part for place, part in enumerate(parts))
         plain["covariance"] = [_named(part) for part in files]

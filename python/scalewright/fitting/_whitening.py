@@ -50,7 +50,7 @@ class Cholesky:
     """
 
     def __init__(self, covariance: Floats) -> None:
-        from scipy.linalg import lapack
+        from scipy.linalg import lapack  # type: ignore[import-untyped]
 
         self._size = np.sqrt(np.diagonal(covariance))
         for datum in np.flatnonzero(~(self._size > 0.0))[:1]:

@@ -1,15 +1,14 @@
 """How far a prediction is from the data: chi-square with correlated uncertainties, pulls, best-fit shifts.
 
-Two forms of one number. "covariance": r^T C^-1 r with r = value - prediction. "nuisance": the minimum over b of
-sum_i ((r_i - sum_k shifts_ik b_k)/sigma_i)^2 + sum_k b_k^2, one b for each common source. The second costs data
-times sources instead of data squared, and needs an error of its own for each datum.
+Two forms of one number. "covariance": r^T C^-1 r with r = value - prediction. "nuisance": the minimum over b
+of sum_i ((r_i - sum_k shifts_ik b_k)/sigma_i)^2 + sum_k b_k^2, one b for each common source. The second costs
+data times sources instead of data squared, and needs an error of its own for each datum.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -20,7 +19,7 @@ from ..errors import InputError
 from ..measurements import Measurements
 from ._whitening import Cholesky, LowRank, Whitening
 
-__all__ = ["ChiSquare", "Settled", "TablePart", "settle_reference"]
+__all__ = ["ChiSquare", "TablePart"]
 
 
 @dataclass(frozen=True)
@@ -56,7 +55,7 @@ class ChiSquare:
         The same number in two ways; see the module.
     reference : array_like, (datum,), optional
         What multiplicative errors multiply while this object lives: the data by default, or an earlier
-        prediction, as R. Ball et al., arXiv:0912.2276; `settle_reference` iterates.
+        prediction, as R. Ball et al., arXiv:0912.2276; `reference.settle_reference` iterates.
     theory : array_like, (datum, datum), optional
         Covariance of the theory, added to that of the data (R. Abdul Khalek et al., arXiv:1906.10698).
 
@@ -144,7 +143,8 @@ class ChiSquare:
         residuals = self.residuals(prediction)
         if residuals.ndim == 1:
             return float(residuals @ residuals)
-        return np.einsum("...i,...i->...", residuals, residuals)
+        values: Floats = np.einsum("...i,...i->...", residuals, residuals)
+        return values
 
     def residuals(self, prediction: ArrayLike) -> Floats:
         """Return whitened residuals, whose sum of squares is chi-square.
@@ -196,9 +196,9 @@ class ChiSquare:
         ----------
         prediction : array_like, (..., datum)
         shifted : bool
-            False: (value - prediction) over the total standard deviation of the datum. True: the common sources
-            are first moved to their best fit, and what is left is divided by the error the datum has for
-            itself; nan where it has none.
+            False: (value - prediction) over the total standard deviation of the datum. True: the common
+            sources are first moved to their best fit, and what is left is divided by the error the datum has
+            for itself; nan where it has none.
 
         Returns
         -------
@@ -286,8 +286,8 @@ class ChiSquare:
         Returns
         -------
         float
-            r^T C(t)^-1 r + ln det C(t): without the determinant a fit would be pulled to predictions that make
-            their own errors large. Factorises anew at each call.
+            r^T C(t)^-1 r + ln det C(t): without the determinant a fit would be pulled to predictions that
+            make their own errors large. Factorises anew at each call.
 
         Raises
         ------
@@ -329,53 +329,3 @@ def _theory(theory: ArrayLike | None, data: int) -> Floats | None:
     if data and values[0] < -1e-10 * max(float(values[-1]), 0.0):  # far above rounding, n eps
         raise InputError(f"theory: not positive semi-definite: the smallest eigenvalue is {values[0]:.3g}")
     return matrix
-
-
-class Settled(NamedTuple):
-    """A fit whose reference has settled: its chi-square object, its prediction, all chi-squares on the way."""
-
-    chi_square: ChiSquare
-    prediction: Floats
-    history: tuple[float, ...]
-
-
-def settle_reference(
-    start: ChiSquare, fit: Callable[[ChiSquare], ArrayLike], *, tolerance: float = 0.1, most: int = 20
-) -> Settled:
-    """Fit, take the prediction as reference for multiplicative errors, fit again, until chi-square settles.
-
-    Parameters
-    ----------
-    start : ChiSquare
-        With its first reference, usually the data.
-    fit : callable
-        ChiSquare -> prediction (datum,) that minimises it.
-    tolerance : float
-        Ends when chi-square moves by less.
-    most : int
-        Fits at most.
-
-    Returns
-    -------
-    Settled
-        The last object fitted with, and what it gave.
-
-    Raises
-    ------
-    InputError
-        If it has not settled after `most` fits; the chi-squares are listed.
-
-    Notes
-    -----
-    R. Ball et al., arXiv:0912.2276: a reference that is fixed during each fit keeps the best fit unbiased.
-    """
-    least, limit = _check.real("tolerance", tolerance, above=0.0), _check.whole("most", most, least=2)
-    current, history = start, list[float]()
-    for _ in range(limit):
-        prediction = _check.real_array("prediction of fit", _check.raised("fit", fit, current), ndim=1)
-        history.append(float(np.asarray(current.value(prediction))))
-        if len(history) > 1 and abs(history[-1] - history[-2]) < least:
-            return Settled(current, prediction, tuple(history))
-        current = current.with_reference(prediction)
-    said = ", ".join(f"{value:.4g}" for value in history[-4:])
-    raise InputError(f"reference has not settled after {limit} fits: the last chi-squares are {said}")

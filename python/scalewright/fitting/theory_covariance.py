@@ -21,10 +21,10 @@ __all__ = ["ScaleCovariance", "scale_covariance"]
 
 Point = tuple[int, int]
 
-#: Normalisation and points (common, own), each -1, 0, +1 for down, central, up, in groups. The normalisation is
-#: scale parameters over points. Inside a group the own ratio of one process is independent of that of another,
-#: so that between processes the average over the group stands in place of each point. Equations for one and for
-#: two processes in section 4.2 of the paper (recalled from memory) follow from these groups.
+#: Normalisation and points (common, own), each -1, 0, +1 for down, central, up, in groups. The normalisation
+#: is scale parameters over points. Inside a group the own ratio of one process is independent of that of
+#: another, so that between processes the average over the group stands in place of each point. Equations for
+#: one and for two processes in section 4.2 of the paper (recalled from memory) follow from these groups.
 PRESCRIPTIONS: dict[str, tuple[float, tuple[tuple[Point, ...], ...]]] = {
     "3": (1 / 2, (((1, 1), (-1, -1)),)),
     "5": (1 / 2, (((1, 0),), ((-1, 0),), ((0, 1), (0, -1)))),
@@ -101,13 +101,13 @@ def scale_covariance(
 
     Examples
     --------
-    >>> moved = {(1, 1): [1.0, 2.0], (4, 4): [1.1, 2.1], (0.25, 0.25): [0.9, 1.8]}
+    >>> moved = {(1, 1): [1.0, 2.0], (4, 4): [1.1, 2.1], (0.25, 0.25): [0.95, 1.8]}
     >>> scale_covariance(moved, "3").matrix.round(6)
-    array([[0.01 , 0.015],
-           [0.015, 0.025]])
+    array([[0.00625, 0.01   ],
+           [0.01   , 0.025  ]])
     >>> scale_covariance(moved, "3", ["NC", "CC"]).matrix.round(6)
-    array([[0.01 , 0.   ],
-           [0.   , 0.025]])
+    array([[ 0.00625, -0.00125],
+           [-0.00125,  0.025  ]])
     """
     _check.choice("prescription", prescription, tuple(PRESCRIPTIONS))
     norm, groups = PRESCRIPTIONS[prescription]
