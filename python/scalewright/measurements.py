@@ -17,7 +17,7 @@ from numpy.typing import ArrayLike, NDArray
 from . import _check
 from ._check import Floats
 from ._measured import model
-from ._measured.cuts import Cut, Range, apply_cuts, in_range
+from ._measured.cuts import Range, apply_cuts, in_range
 from ._measured.questions import Questions
 from ._measured.revalued import revalued
 from ._measured.storing import from_columns, read_tables, write_tables

@@ -1,4 +1,4 @@
-"""What can be asked of measurements: arrays by datum, rows, covariance, nuisance parameters, a description."""
+"""What can be asked of measurements: arrays by datum, rows, covariance, nuisance parameters, words."""
 
 from __future__ import annotations
 

@@ -162,24 +162,23 @@ class Reader:
             return q2, np.nan if given is None else given
         y = q2 / (x * energy)
         if given is not None:
-            self._compare(line, given, y)
+            self._compare(line, given, y, q2)
         if y > 1.0:
             raise InputError(f"{place}: y = {y:.6g} from x, q2 and s: y must lie in (0, 1]")
         return q2, y
 
-    def _compare(self, line: int, given: float, y: float) -> None:
-        """Warn of a printed y that rounding does not explain; refuse one that is another y."""
+    def _compare(self, line: int, given: float, y: float, q2: float) -> None:
+        """Warn of a printed y that rounding in print does not explain; refuse one that is another y."""
+        digit = {key: _half_digit(self.cells.words(self.columns[key])[line]) for key in ("x", "q2", "y")}
+        spread = digit["x"] / self.x[line] + digit["q2"] / q2
+        # one part in 10^12 for the arithmetic itself
+        if abs(given - y) <= digit["y"] + y * (spread + 1e-12):
+            return
         place = self.cells.place(line, self.columns["y"])
         said = f"{place}: {show(given)}, but x, q2 and s say {y:.6g}"
         if abs(given - y) > _WRONG_Y * y:
             raise InputError(f"{said}: y must be q2/(x (s - M^2)) within 5 per cent")
-        digit = {key: _half_digit(self.cells.words(self.columns[key])[line]) for key in ("x", "q2", "y")}
-        if self.given_q2 is None:
-            return
-        spread = digit["x"] / self.x[line] + digit["q2"] / self.given_q2[line]
-        # one part in 10^12 for the arithmetic itself
-        if abs(given - y) > digit["y"] + y * (spread + 1e-12):
-            warnings.warn(f"{said}; the latter is used", InputWarning, stacklevel=2)
+        warnings.warn(f"{said}; the latter is used", InputWarning, stacklevel=2)
 
     def _value(self, key: str, line: int, overrides: Mapping[str, Any]) -> Any:
         """Return the checked value of an attribute, None where there is none."""

@@ -1,4 +1,4 @@
-"""The reference of multiplicative errors: fixed while a fit runs, renewed between fits until nothing moves."""
+"""The reference of multiplicative errors: fixed during a fit, renewed between fits until nothing moves."""
 
 from __future__ import annotations
 
