@@ -2,41 +2,9 @@
 
 import numpy as np
 import pytest
+from measurements.combined import DESCRIPTION, POINTS, RATIO
 from scalewright import InputError, Measurements
 from scalewright._measured.combination import Combination
-
-RATIO = {
-    "rows": {"d": {"target": "deuteron"}, "p": {"target": "proton"}},
-    "numerator": {"d": 1},
-    "denominator": {"p": 1.0},
-}
-POINTS = """\
-line,x,q2,value,stat
-low,0.1,10,,
-high,0.2,10,,
-bin,0.15,10,0.9,0.1
-plain,0.3,10,0.5,0.1
-over,0.3,10,1.8,0.2
-"""
-DESCRIPTION = """\
-title = "Bins"
-points = "bins.csv"
-measures = "F2"
-exchange = "photon"
-[columns]
-label = "line"
-[[uncertainty]]
-column = "stat"
-given_in = "value"
-scales_with = "nothing"
-[[datum]]
-label = "bin"
-numerator = { low = 0.25, high = 0.75 }
-[[datum]]
-label = "over"
-numerator = { low = 1.0 }
-denominator = { plain = 1.0 }
-"""
 
 
 @pytest.fixture
@@ -117,7 +85,9 @@ def test_tables_are_joined_with_their_rows(make, bins):
 
 def test_a_vanishing_denominator_is_refused(make):
     data = make(combination=RATIO).data
-    with pytest.raises(InputError, match=r"denominator = 0 at index 1: the denominator of a datum must not be 0"):
+    with pytest.raises(
+        InputError, match=r"denominator = 0 at index 1: the denominator of a datum must not be 0"
+    ):
         data.predict([1.0, 1.0, 1.0, 0.0, 1.0, 1.0])
     with pytest.raises(InputError, match="the last axis must have 6 rows"):
         data.predict([1.0, 2.0])

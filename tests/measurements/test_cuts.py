@@ -44,7 +44,10 @@ def test_a_cut_that_removes_nothing_still_counts(make):
         ({"x": (0.5, None)}, r"nothing left after cuts: 0\.5 <= x: removed 3 \(3 of A\)"),
         ({"x": (None, None)}, r"x = \(None, None\): x must be \(least, most\), one of them may be None"),
         ({"x": 0.3}, r"x = 0\.3: x must be \(least, most\)"),
-        ({"q2": (5.0, 1.0)}, r"q2 = \(5\.0, 1\.0\): q2 must be \(least, most\): the first is above the second"),
+        (
+            {"q2": (5.0, 1.0)},
+            r"q2 = \(5\.0, 1\.0\): q2 must be \(least, most\): the first is above the second",
+        ),
         ({"q2": ("a", None)}, "q2 = 'a': q2 must be real numbers, not text"),
         ({"w2": (float("nan"), None)}, r"w2 = nan: w2 must lie in \(-inf, inf\)"),
         ({"y": (None, 0.9)}, "points: line 1: y is not known, so it cannot be cut on"),

@@ -14,7 +14,9 @@ def test_a_covariance_file_is_added(run):
     run.with_suffix(".m.csv").write_text("1e-4,2e-5,0\n2e-5,4e-4,0\n0,0,9e-4\n")
     bare = Measurements.read(run).covariance()
     with run.open("a") as file:
-        file.write('\n[[covariance]]\nfile = "run1.m.csv"\nkind = "covariance"\ngiven_in = "value"\nscales_with = "nothing"\n')
+        file.write(
+            '\n[[covariance]]\nfile = "run1.m.csv"\nkind = "covariance"\ngiven_in = "value"\nscales_with = "nothing"\n'
+        )
     added = np.array([[1e-4, 2e-5, 0], [2e-5, 4e-4, 0], [0, 0, 9e-4]])
     np.testing.assert_allclose(Measurements.read(run).covariance(), bare + added, rtol=1e-13, atol=1e-18)
 
@@ -69,7 +71,9 @@ def test_the_nearest_correlation_matrix_is_that_of_a_published_example():
     # N. Higham, IMA J. Numer. Anal. 22 (2002) 329, section 4: the nearest correlation matrix to
     # [[1, 1, 0], [1, 1, 1], [0, 1, 1]] has 0.7607 and 0.1573 (recalled from memory, four digits).
     better, moved = repaired(np.array([[1.0, 1, 0], [1, 1, 1], [0, 1, 1]]), "nearest", "m")
-    np.testing.assert_allclose(better, [[1, 0.7607, 0.1573], [0.7607, 1, 0.7607], [0.1573, 0.7607, 1]], atol=5e-5)
+    np.testing.assert_allclose(
+        better, [[1, 0.7607, 0.1573], [0.7607, 1, 0.7607], [0.1573, 0.7607, 1]], atol=5e-5
+    )
     assert moved > 0.1
 
 
@@ -109,7 +113,9 @@ def test_rounding_below_zero_is_no_reason_to_refuse(make):
 
 def test_a_datum_without_variance_has_no_part_in_it(make):
     matrix = np.array([[0.04, 0.0, 0.01], [0.0, 0.0, 0.0], [0.01, 0.0, 0.09]])
-    table = make(None, [matrix], covariance=[{"kind": "covariance", "given_in": "value", "scales_with": "nothing"}])
+    table = make(
+        None, [matrix], covariance=[{"kind": "covariance", "given_in": "value", "scales_with": "nothing"}]
+    )
     expected = matrix + np.diag([0.1, 0.2, 0.3]) ** 2
     np.testing.assert_allclose(table.covariance(), expected, rtol=1e-14)
 

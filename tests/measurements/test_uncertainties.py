@@ -32,7 +32,10 @@ def test_a_name_that_is_shared_is_one_source_in_all_tables(make):
     stat = {"column": "stat", "given_in": "value", "scales_with": "nothing"}
     own = {"name": "own", "size": 1.0, "correlated": True, **PERCENT}
     both = Measurements.join(
-        [make(title="A", uncertainty=[stat, luminosity, own]), make(title="B", uncertainty=[stat, luminosity, own])]
+        [
+            make(title="A", uncertainty=[stat, luminosity, own]),
+            make(title="B", uncertainty=[stat, luminosity, own]),
+        ]
     )
     assert both.names_of_sources == ("luminosity", "A: own", "B: own")
     value = np.array([1.0, 2.0, 4.0] * 2)
@@ -91,7 +94,13 @@ def test_the_rule_shifted_is_the_mean_and_variance_of_a_parabola(make):
     moved = 0.3 * nodes + 0.1 * nodes**2
     mean = weights @ moved
     points = {"up": [0.4] * 3, "down": [-0.2] * 3}
-    part = {"up": "up", "down": "down", "asymmetric": "shifted", "given_in": "value", "scales_with": "nothing"}
+    part = {
+        "up": "up",
+        "down": "down",
+        "asymmetric": "shifted",
+        "given_in": "value",
+        "scales_with": "nothing",
+    }
     table = make(points, uncertainty=[part])
     np.testing.assert_allclose(table.value - [1.0, 2.0, 4.0], mean, rtol=1e-13)
     np.testing.assert_allclose(np.diagonal(table.covariance()), weights @ (moved - mean) ** 2, rtol=1e-13)

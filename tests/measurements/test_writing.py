@@ -5,7 +5,7 @@ import tomllib
 
 import numpy as np
 import pytest
-from measurements.test_combination import DESCRIPTION, POINTS, RATIO
+from measurements.combined import DESCRIPTION, POINTS, RATIO
 from scalewright import InputError, Measurements, StoreError
 from scalewright.files.toml_text import toml_text
 
@@ -44,7 +44,10 @@ def test_random_tables_with_everything_come_back(make, tmp_path):
         matrix = rng.normal(size=(3, 3)) / 10
         points = {name: rng.normal(size=3) for name in ("value", "a", "up", "stat")}
         points |= {"down": -points["up"], "x": rng.uniform(0, 1, 3), "q2": np.exp(rng.normal(size=3))}
-        kind = {"given_in": ["value", "percent"][trial % 2], "scales_with": ["nothing", "value"][trial // 2 % 2]}
+        kind = {
+            "given_in": ["value", "percent"][trial % 2],
+            "scales_with": ["nothing", "value"][trial // 2 % 2],
+        }
         table = make(
             points, [matrix @ matrix.T, np.eye(3)], target={"z": 26, "a": 56}, note='a "quoted"\nline \\ é',
             uncertainty=[
@@ -96,7 +99,9 @@ def test_other_values_keep_the_errors_they_should(make, tmp_path):
     assert other.names_of_sources == table.names_of_sources
     # percents are written anew: one rounding there and one back
     np.testing.assert_allclose(other.covariance(), table.covariance(values), rtol=1e-14, atol=1e-18)
-    np.testing.assert_allclose(other.covariance([1, 2, 3]), table.covariance([1, 2, 3]), rtol=1e-14, atol=1e-18)
+    np.testing.assert_allclose(
+        other.covariance([1, 2, 3]), table.covariance([1, 2, 3]), rtol=1e-14, atol=1e-18
+    )
     other.write(tmp_path / "o.toml")
     same(Measurements.read(tmp_path / "o.toml"), other)
 

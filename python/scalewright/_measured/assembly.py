@@ -128,8 +128,9 @@ def _by_line(section: Section, cells: Cells, columns: Mapping[str, str], reader:
         tops.append([(row_of[line], 1.0)] if of is None else _terms(of, "numerator", targets))
         bottoms.append([] if of is None else _terms(of, "denominator", targets))
         needs.append(tuple(sorted({line, *(places[row] for row, _ in tops[-1] + bottoms[-1])})))
-    for line in range(len(cells.rows)):
-        if not valued[line] and (line in made or all(line not in need for need in needs)):
+    used = {line for need in needs for line in need}
+    for line in (*made, *row_of):
+        if line not in used:
             cells.refuse(line, columns["value"], "no value, and no datum is made of this line")
     own = [(n, line) for n, line in enumerate(lines) if line in made]
     built = _assembly(entries, tops, bottoms, lines, needs)
