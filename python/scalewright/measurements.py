@@ -220,12 +220,19 @@ class Measurements(Questions):
                 words, inside = in_range(name, given, getattr(rows, name), rows.place)
                 conditions[words] = self._of_all_rows(inside)
         if keep is not None:
-            chosen = np.asarray(keep)
-            if chosen.dtype != bool or chosen.shape != self.value.shape:
-                _check.refuse("keep", keep, f"keep must be {self.value.size} booleans, one a datum")
-            conditions[str(reason)] = chosen
+            conditions[str(reason)] = self._chosen(keep)
         tables, cuts = apply_cuts(self._tables, conditions)
         return Measurements(tables, (*self.cuts, *cuts))
+
+    def _chosen(self, keep: ArrayLike) -> NDArray[np.bool_]:
+        """Return `keep` as booleans, one a datum."""
+        try:
+            chosen = np.asarray(keep)
+        except ValueError:  # ragged lists
+            chosen = np.zeros(0)
+        if chosen.dtype != bool or chosen.shape != self.value.shape:
+            _check.refuse("keep", keep, f"keep must be {self.value.size} booleans, one a datum")
+        return chosen
 
     def _of_all_rows(self, inside: NDArray[np.bool_]) -> NDArray[np.bool_]:
         """Say for each datum whether all of its rows are."""
@@ -263,7 +270,7 @@ class Measurements(Questions):
         """
         if not isinstance(rng, Generator):
             _check.refuse("rng", rng, "rng must be a numpy.random.Generator")
-        count = 1 if replicas is None else _check.whole("replicas", replicas, least=1)
+        count = 1 if replicas is None else _check.whole("replicas", replicas, least=1, most=10**9)
         centre = self.value if truth is None else truth
         centre = _check.real_array("truth", centre, shape=(self.value.size,))
         values = model.pseudo_data(self._tables, rng, centre, count)

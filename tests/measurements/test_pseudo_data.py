@@ -77,7 +77,7 @@ def test_a_generator_in_the_same_state_gives_the_same_values(make):
         ({"rng": 7}, "rng = 7: rng must be a numpy.random.Generator"),
         ({"truth": [1.0]}, r"the shape of truth must be \(3\)"),
         ({"truth": [1.0, 2.0, float("nan")]}, "truth = nan at index 2: truth must be finite"),
-        ({"replicas": 0}, "replicas = 0: replicas must be at least 1"),
+        ({"replicas": 0}, "replicas = 0: replicas must be from 1 to 1000000000"),
     ],
 )
 def test_wrong_arguments_are_refused(make, arguments, message):

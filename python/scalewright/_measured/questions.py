@@ -25,8 +25,11 @@ class Questions:
     """Data of one table or several; see `Measurements`, which can be read, cut and written too."""
 
     def __init__(self, tables: Sequence[Table], cuts: Sequence[Cut] = ()) -> None:
-        if not isinstance(tables, list | tuple) or not all(isinstance(part, Table) for part in tables):
-            _check.refuse("tables", tables, "measurements are made by read, from_columns or join")
+        for name, given, kind in (("tables", tables, Table), ("cuts", cuts, Cut)):
+            if not isinstance(given, list | tuple) or not all(isinstance(part, kind) for part in given):
+                _check.refuse(name, given, "measurements are made by read, from_columns or join")
+        if not tables:
+            _check.refuse("tables", tables, "there must be at least one table")
         titles = [table.title for table in tables]
         for place, title in enumerate(titles):
             if title in titles[:place]:

@@ -86,7 +86,7 @@ def from_columns(
         _check.refuse("description", description, "description must be a mapping, as TOML has it")
     if not hasattr(points, "keys") and hasattr(points, "to_dict"):
         points = points.to_dict()
-    if not hasattr(points, "keys") or not hasattr(points, "__getitem__"):
+    if isinstance(points, type) or not hasattr(points, "keys") or not hasattr(points, "__getitem__"):
         _check.refuse("points", points, "points must map names of columns to lists or arrays")
     if not isinstance(matrices, list | tuple):
         _check.refuse("matrices", matrices, "matrices must be a list of arrays")
@@ -101,7 +101,7 @@ def from_columns(
     checked = [
         _check.real_array(f"matrices[{place}]", matrix, ndim=2) for place, matrix in enumerate(matrices)
     ]
-    plain = {str(key): _plain(value) for key, value in description.items()}
+    plain = {str(key): _plain(value, f"description: {key}") for key, value in description.items()}
     parts = plain.get("covariance")
     if isinstance(parts, list) and all(isinstance(part, dict) for part in parts):
         files = ({"file": f"matrix {place + 1}"} | part for place, part in enumerate(parts))
@@ -117,12 +117,14 @@ def _texts(name: str, column: Any) -> list[str]:
     return ["" if v is None else v if isinstance(v, str) else repr(v) for v in array.tolist()]
 
 
-def _plain(value: Any) -> Any:
-    """Turn tuples and numpy numbers into what TOML knows."""
-    if isinstance(value, np.generic):
-        return value.item()
+def _plain(value: Any, where: str) -> Any:
+    """Turn tuples, arrays and numpy numbers into what TOML knows; refuse what it has no form for."""
+    if isinstance(value, np.generic | np.ndarray):
+        return _plain(value.tolist(), where)
     if isinstance(value, Mapping):
-        return {str(key): _plain(inner) for key, inner in value.items()}
+        return {str(key): _plain(inner, f"{where}: {key}") for key, inner in value.items()}
     if isinstance(value, list | tuple):
-        return [_plain(inner) for inner in value]
+        return [_plain(inner, f"{where}[{place}]") for place, inner in enumerate(value)]
+    if not isinstance(value, str | bool | int | float):
+        _check.refuse(where, value, "must be text, a number, true or false, or a list or mapping of these")
     return value

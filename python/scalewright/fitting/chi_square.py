@@ -210,6 +210,8 @@ class ChiSquare:
             As for `value`.
         """
         difference = self._difference(prediction)
+        if not isinstance(shifted, bool):
+            _check.refuse("shifted", shifted, "shifted must be True or False")
         if not shifted:
             return difference / np.sqrt(np.diagonal(self.covariance))
         left = difference - self.shifts(prediction) @ self._shifts.T
@@ -294,6 +296,8 @@ class ChiSquare:
         InputError
             As for `value`.
         """
+        if self._difference(prediction).ndim != 1:
+            _check.refuse("prediction", prediction, "prediction must be one, (datum,)")
         current = self.with_reference(prediction)
         return float(np.asarray(current.value(prediction))) + current.log_determinant
 
