@@ -2,6 +2,40 @@
 
 A table is a TOML description beside a CSV file of points; `Measurements` are one table or several. Rows are
 the points at which a theory predicts; data are what was measured: rows, or sums, ratios and averages of them.
+
+Keys of a description (those with a star may also be columns: ``[columns] s = "energy squared"``):
+
+================== ==========================================================================================
+title              name of the table, unlike those of others
+points             CSV file beside the description; its first line names the columns
+measures *         reduced_cross_section, F2, FL, F1, xF3, d2sigma_dx_dq2 or d2sigma_dx_dy
+current *          neutral (default) or charged
+exchange *         photon or photon+Z (default for neutral), W (charged)
+beam *             e-, e+, nu or nubar; needless for F1, F2, FL, xF3 by photons alone
+polarisation *     of the beam, -1 to 1; 0 by default
+target *           proton (default), neutron, deuteron, isoscalar or { z = 26, a = 56 }; "z=26 a=56" in a column
+tagged *           charm or bottom: the current couples to this quark
+s *                GeV^2; y follows from Q^2 = x y (s - M^2)
+unit, note         text
+columns            which columns hold x, q2, value, y and label; x, q2 and value may be called so
+uncertainty        ``[[uncertainty]]``, see below
+covariance         ``[[covariance]]``, see below
+combination        data that are made of rows at one point: ``rows = { d = { target = "deuteron" }, p = {} }``,
+                   ``numerator = { d = 1 }``, ``denominator = { p = 1 }``
+datum              ``[[datum]]``: the line called ``label`` is made of other lines, ``numerator = { a = 0.5, b = 0.5 }``,
+                   ``denominator = { c = 1 }``; a line without value is a row alone
+================== ==========================================================================================
+
+An ``[[uncertainty]]`` has a ``column``; or one ``size`` for all and a ``name``; or ``up`` and ``down``, columns of
+signed shifts (``down_as = "size"``: without sign) with ``asymmetric = "mean"``, ``"larger"`` or ``"shifted"``.
+``given_in`` is ``"percent"`` or ``"value"``; ``scales_with`` is ``"nothing"`` (additive) or ``"value"``
+(multiplicative). Each datum has its own, unless ``correlated = true`` (one source in this table) or
+``shared_as = "name"`` (one source wherever this name appears).
+
+A ``[[covariance]]`` has a ``file``, a matrix without head in the order of the data, and a ``kind``:
+``"covariance"``, with ``given_in`` and ``scales_with``; or ``"correlation"``, ``of`` one of the uncertainties.
+``repair = "clip"`` or ``"nearest"`` mends a matrix that is not positive semi-definite, and `describe` says by
+how much.
 """
 
 from __future__ import annotations
