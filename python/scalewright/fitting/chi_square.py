@@ -101,7 +101,7 @@ class ChiSquare:
 
     @cached_property
     def _nuisance(self) -> tuple[Floats, Floats]:
-        """Independent errors and shifts by sources; only made when asked for, a matrix takes an eigensystem."""
+        """Independent errors and shifts by sources, made when asked for: a matrix takes an eigensystem."""
         return self.measurements.nuisance(self.reference)
 
     def _factorised(self) -> Whitening:
