@@ -31,14 +31,14 @@ columns of signed shifts (``down_as = "size"``: without sign) with ``asymmetric 
 or ``shared_as = "name"`` (one source wherever this name appears).
 
 A ``[[covariance]]`` has a ``file``, a matrix without head in the order of the data, and a ``kind``:
-``"covariance"``, with ``given_in`` and ``scales_with``; or ``"correlation"``, ``of`` one of the uncertainties.
-``repair = "clip"`` or ``"nearest"`` mends a matrix that is not positive semi-definite, and `describe` says
-by how much.
+``"covariance"``, with ``given_in`` and ``scales_with``; or ``"correlation"``, ``of`` one of the
+uncertainties. ``repair = "clip"`` or ``"nearest"`` mends a matrix that is not positive semi-definite, and
+`describe` says by how much.
 
-A ``[combination]`` names rows by what sets them apart, ``rows = { d = { target = "deuteron" }, p = {} }``, and
-their weights, ``numerator = { d = 1 }`` and, for a ratio, ``denominator = { p = 1 }``. A ``[[datum]]`` has the
-``label`` of the line that bears its value, and weights of other lines by their labels; a line without value
-is a row alone.
+A ``[combination]`` names rows by what sets them apart, ``rows = { d = { target = "deuteron" }, p = {} }``,
+and their weights, ``numerator = { d = 1 }`` and, for a ratio, ``denominator = { p = 1 }``. A ``[[datum]]``
+has the ``label`` of the line that bears its value, and weights of other lines by their labels; a line
+without value is a row alone.
 """
 
 from __future__ import annotations
