@@ -48,7 +48,6 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from numpy.random import Generator
 from numpy.typing import ArrayLike, NDArray
 
 from . import _check
@@ -281,7 +280,7 @@ class Measurements(Questions):
         return np.asarray(result, dtype=bool)
 
     def pseudo_data(
-        self, rng: Generator, truth: ArrayLike | None = None, *, replicas: int | None = None
+        self, rng: np.random.Generator, truth: ArrayLike | None = None, *, replicas: int | None = None
     ) -> PseudoData:
         """Draw what the experiments might have measured.
 
@@ -305,7 +304,7 @@ class Measurements(Questions):
         InputError
             If `rng` is no generator, or `truth` does not have one finite number a datum.
         """
-        if not isinstance(rng, Generator):
+        if not isinstance(rng, np.random.Generator):
             _check.refuse("rng", rng, "rng must be a numpy.random.Generator")
         count = 1 if replicas is None else _check.whole("replicas", replicas, least=1, most=10**9)
         centre = self.value if truth is None else truth
