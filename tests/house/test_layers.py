@@ -39,6 +39,9 @@ PYTHON_LAYERS = (
     ("_carry", "_composed", "_stored_operators"),
     ("operators",),
     ("build",),
+    ("_measured",),
+    ("measurements",),
+    ("fitting",),
     ("plot",),
     ("cli",),
 )
