@@ -58,7 +58,7 @@ def test_an_interrupt_ends_a_long_call_and_nothing_is_broken(call, delay):
     assert words[-1:] == ["works"], (done.stdout, done.stderr[-2000:])
     if words[0] == "finished":
         pytest.skip(f"the call took less than {delay} s")
-    # 200 ms is the promise, on every processor; counted in processor time, since the machine may be busy with others
+    # 200 ms is the promise, on every processor; in processor time, since the machine may be busy with others
     assert float(words[1]) < 0.2 * (os.cpu_count() or 1), words
 
 
