@@ -191,7 +191,7 @@ class Operators:
         threads: int | None = None,
         missing: str = "error",
     ) -> Iterator[Densities]:
-        """Carry densities to other scales, one at a time: memory does not grow with their number.
+        """Carry densities to other scales, a few at a time: memory does not grow with their number.
 
         Parameters
         ----------
@@ -209,8 +209,7 @@ class Operators:
             As `apply`, before the first scale.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
-        parts = (task.one(index).run() for index in range(task.q2.size))
-        return (part.scale(None) for part in parts)
+        return (one for part in task.parts() for one in part.run_apart())
 
     def _task(
         self,

@@ -206,11 +206,10 @@ fn weight_in(channel: Channel, flavour: i64, light: usize) -> f64 {
     let sign = if channel.is_plus() { 1.0 } else { flavour.signum() as f64 };
     let off_mean = |own: usize| f64::from(own == quark) - 1.0 / light as f64;
     sign * match channel {
-        Channel::Gluon => 0.0,
         Channel::LightPlus | Channel::LightMinus => f64::from(quark <= light),
         Channel::HeavyPlus(own) | Channel::HeavyMinus(own) => f64::from(own == quark),
         Channel::DifferencePlus(own) | Channel::DifferenceMinus(own) if quark <= light => off_mean(own),
-        Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => 0.0,
+        Channel::Gluon | Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => 0.0,
     }
 }
 
