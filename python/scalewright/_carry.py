@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import os
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
@@ -167,17 +168,24 @@ class Task:
     made: tuple[int, ...]
     threads: int
 
-    def parts(self) -> Iterator[Task]:
-        """Return the task in parts of a few scales, whose results take `PART` bytes."""
-        one = 8 * self.given.shape[0] * len(self.made) * self.grid.nodes
-        together = max(1, PART // max(one, 1))
+    def parts(self, out: Floats | None) -> list[tuple[Task, Floats | None]]:
+        """Return the task in parts of a few scales with their place: as many as `out` holds, or `PART` bytes."""
+        shape = (self.given.shape[0], len(self.made), self.grid.nodes)
+        if out is None:
+            together = max(1, PART // max(8 * math.prod(shape), 1))
+        else:
+            together = np.shape(out)[0] if np.ndim(out) == 4 else 0
+            place(out, (max(together, 1), *shape), self.given)
+        parts: list[tuple[Task, Floats | None]] = []
         for first in range(0, self.q2.size, together):
             part = slice(first, first + together)
-            yield replace(self, q2=self.q2[part], nf=self.nf[part])
+            task = replace(self, q2=self.q2[part], nf=self.nf[part])
+            parts.append((task, None if out is None else out[: task.q2.size]))
+        return parts
 
-    def run_apart(self) -> Iterator[Densities]:
+    def run_apart(self, out: Floats | None) -> Iterator[Densities]:
         """Apply, and return the result scale by scale."""
-        result = self.run()
+        result = self.run(out)
         return (result.scale(q2, nf) for q2, nf in zip(self.q2.tolist(), self.nf.tolist(), strict=True))
 
     def run(self, out: object = None, at_hand: tuple[Floats, Floats] | None = None) -> Densities:

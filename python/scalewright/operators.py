@@ -188,6 +188,7 @@ class Operators:
         q2: Scales = None,
         nf: Scales = None,
         flavours: ArrayLike | None = None,
+        out: Floats | None = None,
         threads: int | None = None,
         missing: str = "error",
     ) -> Iterator[Densities]:
@@ -197,6 +198,9 @@ class Operators:
         ----------
         densities, q2, nf, flavours, threads, missing
             As for `apply`.
+        out : ndarray, (k, replica, flavour, node), optional
+            Where to write, k scales at a time, again and again: what was yielded before is overwritten. Saves
+            the time to fetch fresh memory for every scale.
 
         Yields
         ------
@@ -209,7 +213,7 @@ class Operators:
             As `apply`, before the first scale.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
-        return (one for part in task.parts() for one in part.run_apart())
+        return (one for part, place in task.parts(out) for one in part.run_apart(place))
 
     def _task(
         self,
