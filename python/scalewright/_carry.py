@@ -169,7 +169,7 @@ class Task:
     threads: int
 
     def parts(self, out: Floats | None) -> list[tuple[Task, Floats | None]]:
-        """Return the task in parts of a few scales with their place: as many as `out` holds, or `PART` bytes."""
+        """Return parts of a few scales, each with its place: as many as `out` holds, or `PART` bytes."""
         shape = (self.given.shape[0], len(self.made), self.grid.nodes)
         if out is None:
             together = max(1, PART // max(8 * math.prod(shape), 1))
