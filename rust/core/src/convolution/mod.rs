@@ -5,8 +5,10 @@
 mod below;
 mod matrices;
 mod points;
+mod rows;
 mod store;
 
 pub use matrices::Convolved;
 pub use points::quadrature_z;
+pub use rows::massive_rows;
 pub use store::{KernelSet, convolve_values, kernels_on};
