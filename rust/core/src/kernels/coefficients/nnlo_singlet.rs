@@ -22,7 +22,8 @@ pub(super) fn kernel(function: StructureFunction, coefficient: Coefficient) -> K
 
 fn f2_pure_singlet(point: &Point) -> f64 {
     let (z, y, l, l1) = (point.z, point.one_minus_z, point.ln_z, point.ln_1mz);
-    y * (l1 * (8.0 / 3.0 * l1 - 32.0 / 3.0) + 9.8937) + y * y * (9.57 - 13.41 * z + 0.08 * l1 * l1 * l1)
+    y * (l1 * (8.0 / 3.0 * l1 - 32.0 / 3.0) + 9.8937)
+        + y * y * (9.57 - 13.41 * z + 0.08 * l1 * l1 * l1)
         + 5.667 * z * l * l * l
         - l * l * l1 * (20.26 - 33.93 * z)
         + 43.36 * y * l
