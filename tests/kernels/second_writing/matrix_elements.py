@@ -37,7 +37,7 @@ GAMMA5 = 1j * GAMMA[0] @ GAMMA[1] @ GAMMA[2] @ GAMMA[3]
 VECTOR = np.eye(4, dtype=complex)
 LEFT = np.eye(4) - GAMMA5
 ANGLES = 160
-"""Gauss-Legendre nodes in v; an exponential of them is seen to converge in the tests."""
+"""Gauss-Legendre nodes in v."""
 
 
 def slash(momentum: np.ndarray) -> Complex:
@@ -95,9 +95,9 @@ class Process:
         before = (slash(early) + light * VECTOR) / (_dot(early, early) - light**2)
         amplitude = np.einsum("nab,bc,mcd->mnad", GAMMA, after, current)
         amplitude = amplitude + np.einsum("mab,bc,ncd->mnad", current, before, GAMMA)
-        adjoint = np.einsum("ab,mnbc,cd->mnad", GAMMA[0], _dagger(amplitude), GAMMA[0])
+        adjoint = GAMMA[0] @ _dagger(amplitude) @ GAMMA[0]
         final = slash(k1) + mass1 * VECTOR
-        square = np.einsum("ab,mnbc,cd,rsda->mnrs", final, amplitude, line, adjoint)
+        square = np.einsum("mnab,rsba->mnrs", final @ amplitude @ line, adjoint)
         return -0.5 * np.einsum("mnrs,ns->mr", square, METRIC)
 
     def projections(self, tensor: Complex, p: np.ndarray, q: np.ndarray) -> np.ndarray:
@@ -112,58 +112,63 @@ class Process:
         return np.array([f1, f2 / 2, f3])
 
     def lowest(self) -> np.ndarray:
-        """The same for current + quark -> quark, s = m1^2, over 2 p.q (its delta function)."""
-        q, p, k1, _ = self.momenta(self.m1 + 1e-300, 0.0) if self.m1 else self._massless()
+        """The same for current + quark -> quark of mass m1, in the Breit frame."""
+        root = np.sqrt(self.q2)
+        energy = (self.q2 + self.m1) / (2 * root)
+        p, q = np.array([energy, 0.0, 0.0, energy]), np.array([0.0, 0.0, 0.0, -root])
         current = np.einsum("mab,bc->mac", GAMMA, self.vertex)
-        adjoint = np.einsum("ab,mbc,cd->mad", GAMMA[0], _dagger(current), GAMMA[0])
-        k1 = p + q
-        final = slash(k1) + np.sqrt(self.m1) * VECTOR
-        tensor = 0.5 * np.einsum("ab,mbc,cd,nda->mn", final, current, slash(p), adjoint)
-        return self.projections(tensor, p, q) / (2 * _dot(p, q))
-
-    def _massless(self) -> tuple[np.ndarray, ...]:
-        """Breit frame."""
-        half = np.sqrt(self.q2) / 2
-        q = np.array([0.0, 0.0, 0.0, -2 * half])
-        p = np.array([half, 0.0, 0.0, half])
-        return q, p, p + q, p
+        adjoint = GAMMA[0] @ _dagger(current) @ GAMMA[0]
+        left = (slash(p + q) + np.sqrt(self.m1) * VECTOR) @ current @ slash(p)
+        return self.projections(0.5 * np.einsum("mab,nba->mn", left, adjoint), p, q)
 
 
 def _dagger(matrices: Complex) -> Complex:
     return np.conj(np.swapaxes(matrices, -1, -2))
 
 
-def _angles(start: float, stop: float) -> tuple[np.ndarray, np.ndarray]:
-    x, w = np.polynomial.legendre.leggauss(ANGLES)
-    half = (stop - start) / 2
-    return start + half * (1 + x), half * w
+def residue(process: Process, z: float) -> tuple[float, float]:
+    """R_0 and R_1 of the pole at v = 0: twice the unregularised splitting functions."""
+    if process.gluon_initiated:
+        return 2 * TR * (z**2 + (1 - z) ** 2), -4 * TR * z * (1 - z)
+    return 2 * CF * (1 + z**2) / (1 - z), -2 * CF * (1 - z)
+
+
+def integrand(process: Process, z: float, v: np.ndarray) -> np.ndarray:
+    """F1, F2/(2 xi), F3/2 for each v (rows), in units of the lowest order.
+
+    z = (Q^2 + M^2)/(2 p.q), M = m1 for one massive quark and 0 for a massive pair.
+    """
+    # the lowest order of a pair is current + massless quark
+    heavy = 0.0 if process.m2 > 0 else process.m1
+    base = Process(process.gluon_initiated, process.vertex, process.q2, heavy, 0.0)
+    s = (process.q2 + heavy) / z - process.q2
+    kallen = np.sqrt((s - process.m1 - process.m2) ** 2 - 4 * process.m1 * process.m2)
+    q, p, _, _ = process.momenta(s, 0.5)
+    values = np.array([process.projections(process.tensor(s, t), p, q) for t in v])
+    # (1/4 pi) 16 pi^2 a |M|^2 kallen/(8 pi s) dv over (1/4 pi) 2 pi delta(s - M^2) |M_0|^2
+    factor = (TR if process.gluon_initiated else CF) * kallen / s * (process.q2 + heavy)
+    unit = base.lowest()
+    unit[1] *= z
+    parity = np.abs(unit) > 1e-9 * abs(unit[0])
+    return np.divide(factor * values, unit, out=np.zeros_like(values), where=parity)
 
 
 def coefficients(process: Process, z: float, mu2: float) -> np.ndarray:
     """F1, F2/(2 xi), F3/2 at z < 1, MS-bar at mu_f^2 = mu2, in units of the lowest order.
 
-    z = (Q^2 + M^2)/(2 p.q) with M = m1 for one massive quark and M = 0 for a pair. Massless
-    second partons are collinear at v = 0; a massless first quark at v = 1 as well if the
-    parton is a gluon.
+    A massless second parton is collinear to the first at v = 0; a massless first quark from
+    a gluon also at v = 1, where the current meets an antiquark and F3 changes sign.
     """
-    pair = process.m1 > 0 and process.m2 > 0
-    heavy = 0.0 if pair else process.m1
-    pq = (process.q2 + heavy) / (2 * z)
-    s = 2 * pq - process.q2
-    kallen = np.sqrt((s - process.m1 - process.m2) ** 2 - 4 * process.m1 * process.m2)
-    v, weight = _angles(0.0, 1.0)
-    q, p, _, _ = process.momenta(s, 0.5)
-    values = np.array([process.projections(process.tensor(s, t), p, q) for t in v])
-    # W = (1/4 pi) |M|^2 dPS2, dPS2 = kallen/(8 pi s) dv; lowest order (1/4 pi) 2 pi delta
-    colour = TR if process.gluon_initiated else CF
-    factor = colour * 16 * np.pi**2 * kallen / (8 * np.pi * s) / (2 * np.pi)
-    values = values * factor / _unit(process, pq) 
-    values[:, 1] /= 1.0
-    poles = _poles(process, z)
+    x, weight = np.polynomial.legendre.leggauss(ANGLES)
+    v, weight = (1 + x) / 2, weight / 2
+    values = integrand(process, z, v)
+    r0, r1 = residue(process, z)
+    heavy = 0.0 if process.m2 > 0 else process.m1
+    s = (process.q2 + heavy) / z - process.q2
+    finite = r0 * np.log((s - process.m1) ** 2 / (s * mu2)) - r1
     total = weight @ values
     if process.m2 == 0:
-        total = total + _finite(process, z, poles[0], s, mu2) - _subtracted(poles[0], v, weight)
-    if process.gluon_initiated and process.m1 == 0:
-        total = total + _finite(process, z, poles[1], s, mu2)
-        total = total - _subtracted(poles[1], 1 - v, weight)
+        total += finite - weight @ (r0 / v)
+    if process.m1 == 0 and process.gluon_initiated:
+        total += (finite - weight @ (r0 / (1 - v))) * np.array([1.0, 1.0, -1.0])
     return np.asarray(total)
