@@ -44,8 +44,7 @@ GLUON_F2_NNLO_2 = -8.918338961
 """N = 2, one flavour."""
 
 SOFT_0 = (
-    CF**2 * (51 / 2 + 36 * ZETA2 - 8 * ZETA3)
-    + CF * CA * (-3155 / 54 + 44 / 3 * ZETA2 + 40 * ZETA3),
+    CF**2 * (51 / 2 + 36 * ZETA2 - 8 * ZETA3) + CF * CA * (-3155 / 54 + 44 / 3 * ZETA2 + 40 * ZETA3),
     CF**2 * (-27 - 32 * ZETA2) + CF * CA * (367 / 9 - 8 * ZETA2),
     -18 * CF**2 - 22 / 3 * CF * CA,
     8 * CF**2,

@@ -135,4 +135,3 @@ def nnlo(sf: str, name: str, nf: int) -> Parts:
     if sf == "F3" or name == "ns-":
         return older.non_singlet(sf, name, nf)
     return _even_f2(nf) if sf == "F2" else _even_fl(nf)
-

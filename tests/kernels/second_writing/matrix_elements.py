@@ -29,15 +29,17 @@ Complex = np.ndarray
 _SIGMA = np.array([[[0, 1], [1, 0]], [[0, -1j], [1j, 0]], [[1, 0], [0, -1]]], dtype=complex)
 _ONE = np.eye(2)
 METRIC = np.diag([1.0, -1.0, -1.0, -1.0])
-GAMMA = np.array(
-    [np.kron([[0, 1], [1, 0]], _ONE)] + [np.kron([[0, 1], [-1, 0]], s) for s in _SIGMA]
-)
+GAMMA = np.array([np.kron([[0, 1], [1, 0]], _ONE)] + [np.kron([[0, 1], [-1, 0]], s) for s in _SIGMA])
 """Weyl representation, upper index."""
 GAMMA5 = 1j * GAMMA[0] @ GAMMA[1] @ GAMMA[2] @ GAMMA[3]
 VECTOR = np.eye(4, dtype=complex)
 LEFT = np.eye(4) - GAMMA5
-ANGLES = 160
-"""Gauss-Legendre nodes in v."""
+MASSIVE_EDGES = (0.0, 1e-4, 1e-3, 1e-2, 0.1, 0.5)
+"""Panels towards an end of v near which the pole of a massive propagator lies."""
+MASSLESS_EDGES = (0.0, 0.1, 0.5)
+"""Panels where the pole lies at the end itself and is subtracted: 1e-16/v stays small."""
+NODES = 16
+"""Gauss-Legendre nodes of a panel."""
 
 
 def slash(momentum: np.ndarray) -> Complex:
@@ -126,6 +128,18 @@ def _dagger(matrices: Complex) -> Complex:
     return np.conj(np.swapaxes(matrices, -1, -2))
 
 
+def _half(mass: float) -> tuple[np.ndarray, np.ndarray]:
+    x, w = np.polynomial.legendre.leggauss(NODES)
+    edges = np.array(MASSIVE_EDGES if mass > 0 else MASSLESS_EDGES)
+    half = np.diff(edges)[:, None] / 2
+    return (edges[:-1, None] + half * (1 + x)).ravel(), (half * w).ravel()
+
+
+def _angles(process: Process) -> tuple[np.ndarray, np.ndarray]:
+    (low, below), (high, above) = _half(process.m2), _half(process.m1)
+    return np.concatenate((low, 1 - high)), np.concatenate((below, above))
+
+
 def residue(process: Process, z: float) -> tuple[float, float]:
     """R_0 and R_1 of the pole at v = 0: twice the unregularised splitting functions."""
     if process.gluon_initiated:
@@ -159,8 +173,7 @@ def coefficients(process: Process, z: float, mu2: float) -> np.ndarray:
     A massless second parton is collinear to the first at v = 0; a massless first quark from
     a gluon also at v = 1, where the current meets an antiquark and F3 changes sign.
     """
-    x, weight = np.polynomial.legendre.leggauss(ANGLES)
-    v, weight = (1 + x) / 2, weight / 2
+    v, weight = _angles(process)
     values = integrand(process, z, v)
     r0, r1 = residue(process, z)
     heavy = 0.0 if process.m2 > 0 else process.m1
