@@ -16,6 +16,8 @@ const LONGEST: f64 = 2.5;
 /// Points of a sub-interval beyond those which the degree of the panel asks for. With the ratio 1/4 a logarithm
 /// converges like `3^(-2n)`. Found by doubling all numbers of points: see `tests/rust/convolution.rs`.
 const MARGIN: usize = 16;
+/// The same in the square root of t.
+const THRESHOLD_MARGIN: usize = 10;
 
 /// One stretch of quadrature points, all of whose `x/z` lie in one panel.
 pub(super) struct Stretch {
@@ -107,6 +109,30 @@ pub(super) fn stretch_points(from: f64, to: f64, degree: usize) -> Vec<(f64, f64
         let rule = rule(points_needed(lower, upper, to, degree));
         let (middle, half) = (0.5 * (lower + upper), 0.5 * (upper - lower));
         points.extend(rule.nodes.iter().zip(&rule.weights).map(|(x, w)| (middle + half * x, half * w)));
+        upper = lower;
+    }
+    points
+}
+
+/// Points and weights in t for functions of `tau = t^(1/2)` that are analytic but for `tau = +-i distance`: graded in tau
+/// towards that distance. The panel is given by its length and degree.
+pub(super) fn threshold_points(from: f64, to: f64, panel: (f64, usize), distance: f64) -> Vec<(f64, f64)> {
+    let (from, (length, degree)) = (from.sqrt(), panel);
+    let mut points = Vec::new();
+    let mut upper = to.sqrt();
+    while upper > from {
+        let lower = if upper <= 1.5 * distance { from } else { upper * RATIO };
+        let lower = lower.max((upper * upper - LONGEST).max(0.0).sqrt());
+        let lower = if lower - from < 0.1 * (upper - lower) { from } else { lower };
+        let share = (upper * upper - lower * lower) / length;
+        // Twice the degree of the panel, in tau.
+        let needed = THRESHOLD_MARGIN as f64 + degree as f64 * share.sqrt();
+        let rule = rule(needed.round() as usize);
+        let (middle, half) = (0.5 * (lower + upper), 0.5 * (upper - lower));
+        points.extend(rule.nodes.iter().zip(&rule.weights).map(|(x, w)| {
+            let tau = middle + half * x;
+            (tau * tau, 2.0 * tau * half * w)
+        }));
         upper = lower;
     }
     points

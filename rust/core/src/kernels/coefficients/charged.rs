@@ -70,7 +70,7 @@ impl Single {
     /// `lambda C_3`
     pub fn f3_gluon(&self, z: &Logarithms) -> f64 {
         let (lambda, rest) = (self.lambda, self.rest);
-        let logarithms = 2.0 * z.ln_1mz - self.ln_lambda - self.ln_rest - 2.0 * (self.k * z.one_minus_z).ln_1p();
+        let logarithms = 2.0 * z.ln_1mz() - self.ln_lambda - self.ln_rest - 2.0 * (self.k * z.one_minus_z).ln_1p();
         let smooth = 2.0 * rest * z.z * z.one_minus_z;
         let logarithm = rest * z.z * self.mass_logarithm(z) * (2.0 * lambda * z.z - 2.0 * z.one_minus_z);
         2.0 * lambda * (splitting(z) * logarithms + smooth + logarithm)
@@ -78,7 +78,7 @@ impl Single {
 
     /// `P_qg` times its logarithms in F1 and F2; those of D cancel.
     fn collinear(&self, z: &Logarithms) -> f64 {
-        splitting(z) * (2.0 * (z.ln_1mz - z.ln_z) - self.ln_rest - self.ln_lambda)
+        splitting(z) * (2.0 * (z.ln_1mz() - z.ln_z) - self.ln_rest - self.ln_lambda)
     }
 }
 
@@ -121,7 +121,7 @@ impl Single {
     fn common(self, z: &Logarithms) -> f64 {
         let (y, d) = (z.one_minus_z, self.denominator(z));
         let square = 1.0 + z.z * z.z;
-        (1.0 + z.z) * (self.ln_lambda + self.ln_rest - 2.0 * z.ln_1mz) - square * (z.ln_z + (self.k * y).ln_1p()) / y
+        (1.0 + z.z) * (self.ln_lambda + self.ln_rest - 2.0 * z.ln_1mz()) - square * (z.ln_z + (self.k * y).ln_1p()) / y
             + 0.5 * y / (d * d)
     }
 

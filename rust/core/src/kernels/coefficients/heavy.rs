@@ -38,7 +38,9 @@ impl Pair {
     }
 
     pub fn kernel(self, function: fn(&Self, &Logarithms) -> f64) -> MassiveKernel {
-        MassiveKernel::smooth(1.0 / self.z_max, move |w| self.z_max * function(&self, w))
+        // beta is infinite where w = 1 + 4 r.
+        let distance = (4.0 * self.r).ln_1p().sqrt();
+        MassiveKernel::smooth(1.0 / self.z_max, move |w| self.z_max * function(&self, w)).from_threshold(distance)
     }
 
     pub fn f2(&self, w: &Logarithms) -> f64 {

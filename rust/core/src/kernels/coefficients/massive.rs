@@ -82,13 +82,21 @@ pub struct MassiveKernel {
     pub plus: Vec<f64>,
     /// Coefficient of `delta(1-w)`.
     pub local: f64,
+    /// Where the kernel begins like a power of `(1-w)^(1/2)`: it is analytic in `ln(1/w)^(1/2)` from minus to plus this
+    /// distance and beyond, and singular at i times it. `None` where it begins with logarithms.
+    pub threshold: Option<f64>,
     regular: Box<dyn Fn(&Logarithms) -> f64 + Send + Sync>,
 }
 
 impl MassiveKernel {
     /// A kernel that is nothing but an ordinary function.
     pub(super) fn smooth(rescaling: f64, regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static) -> Self {
-        Self { rescaling, plus: vec![], local: 0.0, regular: Box::new(regular) }
+        Self { rescaling, plus: vec![], local: 0.0, threshold: None, regular: Box::new(regular) }
+    }
+
+    /// The same with a threshold.
+    pub(super) fn from_threshold(self, distance: f64) -> Self {
+        Self { threshold: Some(distance), ..self }
     }
 
     /// The same with plus distributions and a local part.
