@@ -181,7 +181,7 @@ def coefficient_function(
 # in w, 0 < w < 1, with which the rows below are made: F(x) = int_chi^1 dw K(w) G(chi/w), chi = x (1 + 4 m^2/Q^2) for a
 # pair and x (1 + m^2/Q^2) for a single quark
 def massive_coefficient(
-    what: str, w: NDArray[np.float64], q2: float, mass: float
+    what: str, w: NDArray[np.float64], one_minus_w: NDArray[np.float64], q2: float, mass: float
 ) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
 
 # (node, node), computed once a grid and kept: nodal values of x (P * f)(x), or of a part of F2, FL, xF3, from those
