@@ -98,6 +98,11 @@ fn points_beyond(grid: &Grid, i: usize) -> Vec<(f64, f64)> {
 
 /// Points and weights in t, graded towards zero, for functions with logarithms at t = 0 times a polynomial.
 pub(super) fn stretch_points(from: f64, to: f64, degree: usize) -> Vec<(f64, f64)> {
+    graded_points(from, to, degree, to.max(LONGEST))
+}
+
+/// The same for functions that go on growing like 1/t down to t = `scale`.
+pub(super) fn graded_points(from: f64, to: f64, degree: usize, scale: f64) -> Vec<(f64, f64)> {
     let mut points = Vec::new();
     let mut upper = to;
     while upper > from {
@@ -106,7 +111,7 @@ pub(super) fn stretch_points(from: f64, to: f64, degree: usize) -> Vec<(f64, f64
         let lower = if upper * RATIO <= 1.5 * floor { from } else { upper * RATIO };
         let lower = lower.max(upper - LONGEST);
         let lower = if lower - from < 0.1 * (upper - lower) { from } else { lower };
-        let rule = rule(points_needed(lower, upper, to, degree));
+        let rule = rule(points_needed(lower, upper, to, degree, scale));
         let (middle, half) = (0.5 * (lower + upper), 0.5 * (upper - lower));
         points.extend(rule.nodes.iter().zip(&rule.weights).map(|(x, w)| (middle + half * x, half * w)));
         upper = lower;
@@ -139,10 +144,10 @@ pub(super) fn threshold_points(from: f64, to: f64, panel: (f64, usize), distance
 }
 
 /// Fewer points where the sub-interval, and with it its share of the integral and of the polynomial, is small.
-fn points_needed(lower: f64, upper: f64, whole: f64, degree: usize) -> usize {
-    let share = (upper - lower) / whole.max(LONGEST);
-    let logarithm = MARGIN as f64 + 0.5 * share.ln();
-    let polynomial = 0.5 * degree as f64 * share.sqrt();
+fn points_needed(lower: f64, upper: f64, whole: f64, degree: usize, scale: f64) -> usize {
+    let length = upper - lower;
+    let logarithm = MARGIN as f64 + 0.5 * (length / scale).min(1.0).ln();
+    let polynomial = 0.5 * degree as f64 * (length / whole.max(LONGEST)).sqrt();
     (logarithm + polynomial).round().max(4.0) as usize
 }
 

@@ -4,10 +4,10 @@
 //! panel, not at a node; the quadrature is graded towards it, so that a threshold like `(1-w)^(1/2)` and
 //! logarithms do not limit the accuracy.
 
-use super::points::{stretch_points, threshold_points};
+use super::points::{graded_points, threshold_points};
 use crate::error::{Error, Result};
 use crate::grid::Grid;
-use crate::kernels::coefficients::{Massive, MassiveKernel};
+use crate::kernels::coefficients::{Massive, MassiveKernel, Onset};
 use crate::numerics::endpoint::Logarithms;
 use crate::watch::Watch;
 use rayon::prelude::*;
@@ -18,7 +18,7 @@ use rayon::prelude::*;
 ///
 /// # Errors
 /// [`Error::OutOfRange`] where the lowest momentum fraction needed lies below `x_min`, [`Error::Argument`] where
-/// an argument is not positive or x exceeds 1, [`Error::Shape`] where there are not as many `q2` as `x`,
+/// an argument is not positive and finite, [`Error::Shape`] where there are not as many `q2` as `x`,
 /// [`Error::Interrupted`].
 pub fn massive_rows(
     grid: &Grid,
@@ -124,8 +124,8 @@ fn plus_part(kernel: &MassiveKernel, w: &Logarithms) -> f64 {
 /// Quadrature of a panel in t, as the kernel begins.
 fn points(grid: &Grid, kernel: &MassiveKernel, panel: usize, from: f64, to: f64) -> Vec<(f64, f64)> {
     let (length, degree) = (grid.edges()[panel + 1] - grid.edges()[panel], grid.degrees()[panel]);
-    match kernel.threshold {
-        Some(distance) => threshold_points(from, to, (length, degree), distance),
-        None => stretch_points(from, to, degree),
+    match kernel.onset {
+        Onset::Root(distance) => threshold_points(from, to, (length, degree), distance),
+        Onset::Logarithms(distance) => graded_points(from, to, degree, distance),
     }
 }

@@ -9,7 +9,7 @@
 //! regular, written so that nothing cancels at either end or for small `m^2/Q^2`. Below `D = 1 - lambda z` and
 //! `k = lambda/(1 - lambda) = Q^2/m^2`, so that `D = (1 - lambda)(1 + k (1-z))`.
 
-use super::massive::MassiveKernel;
+use super::massive::{MassiveKernel, Onset};
 use crate::colour::{CF, TR};
 use crate::numerics::endpoint::Logarithms;
 use crate::numerics::polylog::{ZETA2, li2_with_complement};
@@ -35,7 +35,12 @@ impl Single {
 
     /// A gluon kernel.
     pub fn smooth(self, function: fn(&Self, &Logarithms) -> f64) -> MassiveKernel {
-        MassiveKernel::smooth(1.0 / self.lambda, move |z| function(&self, z))
+        self.kernel(move |z| function(&self, z))
+    }
+
+    fn kernel(self, regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static) -> MassiveKernel {
+        // D vanishes where z = 1/lambda.
+        MassiveKernel::smooth(1.0 / self.lambda, Onset::Logarithms(-self.ln_lambda), regular)
     }
 
     fn denominator(&self, z: &Logarithms) -> f64 {
@@ -108,7 +113,7 @@ impl Single {
     }
 
     fn quark(self, regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static) -> MassiveKernel {
-        MassiveKernel::smooth(1.0 / self.lambda, move |z| 2.0 * CF * regular(z))
+        self.kernel(move |z| 2.0 * CF * regular(z))
     }
 
     /// Plus distributions of `factor` times what F1, F2 and F3 share, `B_1 = -2` at z = 1 included.
