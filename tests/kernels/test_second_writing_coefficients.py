@@ -203,6 +203,14 @@ def test_two_published_fits_agree_for_the_singlet(n: int) -> None:
         assert moment(old, n) == pytest.approx(moment(new, n), abs=near), name
 
 
+@pytest.mark.parametrize("n", [2, 3, 4, 6])
+def test_pure_singlet_of_fl_is_the_exact_one(n: int) -> None:
+    """E. Zijlstra, W. van Neerven (1992), in closed form. 1e-3 of int z^(n-1) |C|: the fit."""
+    fit, full = coefficient(2, "FL", "pure singlet", 1), Parts(exact.pure_singlet_fl, (), 0.0)
+    near = 1e-3 * _of_size(full, n)
+    assert moment(fit, n) == pytest.approx(moment(full, n), abs=near)
+
+
 @pytest.mark.parametrize("sf", STRUCTURE_FUNCTIONS)
 @pytest.mark.parametrize("n", [1, 2, 4])
 def test_even_minus_odd_agrees_with_the_later_fit(sf: str, n: int) -> None:
