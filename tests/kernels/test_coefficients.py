@@ -24,8 +24,8 @@ Z = np.concatenate([_SMALL_Z, 1.0 - _SMALL_REST])
 REST = np.concatenate([1.0 - _SMALL_Z, _SMALL_REST])
 _BULK = (Z > 0.01) & (REST > 0.01)
 
-#: Both writings add up to thirty terms, which cancel by a decade or two: 50 roundings of 2^-53 times 20. In units
-#: of the value plus the largest in 0.01 < z < 0.99.
+#: Both writings add up to thirty terms, which cancel by a decade or two: 50 roundings of 2^-53 times 20. In
+#: units of the value plus the largest in 0.01 < z < 0.99.
 ROUNDING = 1e-13
 
 
@@ -128,8 +128,8 @@ def test_charged_current_charm_is_that_of_the_second_writing(
     values, plus, local = _core.massive_coefficient(f"charged {function} {source}", Z, REST, q2, mass)
     each = np.array([weight * part.regular(Z, REST) for weight, part in parts])
     size = np.abs(each).sum(axis=0) + np.abs(each[:, _BULK]).sum(axis=0).max()
-    # The second writing divides by 1 - z, and by 1 - lambda z, what vanishes there, with values of some ten; and
-    # in F2 two poles at z = 0 cancel.
+    # The second writing divides by 1 - z, and by 1 - lambda z, what vanishes there, with values of some
+    # ten; and in F2 two poles at z = 0 cancel.
     allowed = ROUNDING * size + 20 * 2.0**-53 * (1 / REST + 1 / Z)
     assert np.all(np.abs(values - each.sum(axis=0)) <= allowed)
     for k in range(2):

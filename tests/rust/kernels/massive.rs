@@ -82,11 +82,13 @@ fn charm_of_a_quark_becomes_massless() {
     for (what, function) in CHARGED_QUARK {
         let massless = coefficients::kernel(1, function, Coefficient::NsMinus);
         for n in [1.0, 2.0, 5.0, 12.0] {
-            let difference = |ratio: f64| massive_moment(what, ratio, n) - moment(&massless, n, 0.0);
-            println!("{} N = {n}: {:.2e} {:.2e}", what.name(), difference(1e-9), difference(1e-4));
-            // Moments reach large z, where 1 - z < m^2/Q^2 is massive at any Q^2: up to two logarithms of r.
-            assert!(difference(1e-9).abs() < 1e-9 * 1e9_f64.ln().powi(2) * n * n, "{} {n}", what.name());
-            assert!(difference(1e-4).abs() < 0.02 * n * n && difference(1e-4) != 0.0, "{} {n}", what.name());
+            let expected = moment(&massless, n, 0.0);
+            for ratio in [1e-4, 1e-9] {
+                // Moments reach large z, where 1 - z < m^2/Q^2 is massive at any Q^2: up to two logarithms. Measured
+                // below 0.92 of it; in F2 the moment N = 1 is zero for both.
+                let allowed = ratio * f64::ln(ratio).powi(2) * n;
+                assert_near(massive_moment(what, ratio, n), expected, allowed);
+            }
         }
     }
 }
