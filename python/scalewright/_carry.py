@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -14,6 +15,9 @@ from .below import Below
 from .densities import Densities
 from .errors import InputError
 from .grid import ChebyshevGrid
+
+#: Bytes of results that a stream makes at once: combinations of flavours are formed once for as many scales.
+PART = 130_000_000
 
 
 def thread_count(threads: int | None) -> int:
@@ -163,10 +167,18 @@ class Task:
     made: tuple[int, ...]
     threads: int
 
-    def one(self, index: int) -> Task:
-        """Return the part of one scale."""
-        part = slice(index, index + 1)
-        return replace(self, q2=self.q2[part], nf=self.nf[part])
+    def parts(self) -> Iterator[Task]:
+        """Return the task in parts of a few scales, whose results take `PART` bytes."""
+        one = 8 * self.given.shape[0] * len(self.made) * self.grid.nodes
+        together = max(1, PART // max(one, 1))
+        for first in range(0, self.q2.size, together):
+            part = slice(first, first + together)
+            yield replace(self, q2=self.q2[part], nf=self.nf[part])
+
+    def run_apart(self) -> Iterator[Densities]:
+        """Apply, and return the result scale by scale."""
+        result = self.run()
+        return (result.scale(q2, nf) for q2, nf in zip(self.q2.tolist(), self.nf.tolist(), strict=True))
 
     def run(self, out: object = None, at_hand: tuple[Floats, Floats] | None = None) -> Densities:
         """Apply; `at_hand` are blocks and flows of the task, if they are."""

@@ -44,6 +44,10 @@ pub enum Channel {
     HeavyPlus(usize),
     /// `h - hbar` of one heavy flavour.
     HeavyMinus(usize),
+    /// What one light flavour's `q + qbar` differs from the mean.
+    DifferencePlus(usize),
+    /// What one light flavour's `q - qbar` differs from the mean.
+    DifferenceMinus(usize),
 }
 
 impl Channel {
@@ -55,12 +59,14 @@ impl Channel {
             Self::LightMinus => "light-".into(),
             Self::HeavyPlus(flavour) => format!("{}+", HEAVY_NAMES[flavour - 4]),
             Self::HeavyMinus(flavour) => format!("{}-", HEAVY_NAMES[flavour - 4]),
+            Self::DifferencePlus(_) => "ns+".into(),
+            Self::DifferenceMinus(_) => "ns-".into(),
         }
     }
 
     /// Whether it is a sum `q + qbar` or the gluon.
     pub fn is_plus(self) -> bool {
-        !matches!(self, Self::LightMinus | Self::HeavyMinus(_))
+        !matches!(self, Self::LightMinus | Self::HeavyMinus(_) | Self::DifferenceMinus(_))
     }
 }
 
@@ -107,21 +113,6 @@ impl Blocks {
         if plus { plus_block() } else { self.position("ns-").or_else(plus_block) }
     }
 
-    /// The output channels that a set can fill, plus ones first.
-    pub fn outputs(&self) -> Vec<Channel> {
-        let heavy = (self.light + 1).max(4)..=6;
-        let all = [Channel::Gluon, Channel::LightPlus]
-            .into_iter()
-            .chain(heavy.clone().map(Channel::HeavyPlus))
-            .chain([Channel::LightMinus])
-            .chain(heavy.map(Channel::HeavyMinus));
-        all.filter(|&output| {
-            output == Channel::LightMinus
-                || self.names.iter().any(|name| name.starts_with(&format!("{}<-", output.name())))
-        })
-        .collect()
-    }
-
     /// The input channels that act on an output.
     pub fn inputs(&self, output: Channel) -> Vec<(Channel, usize)> {
         let heavy = (self.light + 1).max(4)..=6;
@@ -147,4 +138,98 @@ impl Blocks {
     fn position(&self, name: &str) -> Option<usize> {
         self.names.iter().position(|known| known == name)
     }
+}
+
+/// How flavours become channels, what acts on them, and how channels become flavours.
+pub struct Recombination {
+    /// Number of input flavours.
+    pub in_flavours: usize,
+    /// For each channel `(index of the input flavour, weight)`.
+    pub into_channels: Vec<Vec<(usize, f64)>>,
+    /// `(output channel, input channel, block)`.
+    pub actions: Vec<(usize, usize, usize)>,
+    /// For each output flavour `(channel, weight)`.
+    pub from_channels: Vec<Vec<(usize, f64)>>,
+}
+
+impl Recombination {
+    /// The ways of a set between lists of flavours.
+    pub fn new(blocks: &Blocks, in_flavours: &[i64], out_flavours: &[i64]) -> Self {
+        let light = blocks.light;
+        // Differences add up to zero, so that of the last light flavour is not carried.
+        let differences = || 1..light;
+        let heavy = || (light + 1).max(4)..=6;
+        let channels: Vec<Channel> = [Channel::Gluon, Channel::LightPlus, Channel::LightMinus]
+            .into_iter()
+            .chain(heavy().map(Channel::HeavyPlus))
+            .chain(heavy().map(Channel::HeavyMinus))
+            .chain(differences().map(Channel::DifferencePlus))
+            .chain(differences().map(Channel::DifferenceMinus))
+            .collect();
+        let index = |channel: Channel| channels.iter().position(|known| *known == channel);
+        let into = |channel: &Channel| {
+            let weights = in_flavours.iter().map(|&flavour| weight_in(*channel, flavour, light)).enumerate();
+            weights.filter(|(_, weight)| *weight != 0.0).collect()
+        };
+        let mut actions = Vec::new();
+        for (output, &channel) in channels.iter().enumerate() {
+            match channel {
+                Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => {
+                    let block = blocks.difference(channel.is_plus());
+                    actions.extend(block.map(|block| (output, output, block)));
+                }
+                _ => {
+                    let inputs = blocks.inputs(channel).into_iter();
+                    actions.extend(inputs.filter_map(|(input, block)| Some((output, index(input)?, block))));
+                }
+            }
+        }
+        let from = |&flavour: &i64| {
+            let parts = parts_of(flavour, light).into_iter();
+            parts.filter_map(|(channel, weight)| Some((index(channel)?, weight))).collect()
+        };
+        Self {
+            in_flavours: in_flavours.len(),
+            into_channels: channels.iter().map(into).collect(),
+            actions,
+            from_channels: out_flavours.iter().map(from).collect(),
+        }
+    }
+}
+
+/// The weight of an input flavour in a channel.
+fn weight_in(channel: Channel, flavour: i64, light: usize) -> f64 {
+    if flavour == GLUON {
+        return f64::from(channel == Channel::Gluon);
+    }
+    let quark = flavour.unsigned_abs() as usize;
+    let sign = if channel.is_plus() { 1.0 } else { flavour.signum() as f64 };
+    let off_mean = |own: usize| f64::from(own == quark) - 1.0 / light as f64;
+    sign * match channel {
+        Channel::LightPlus | Channel::LightMinus => f64::from(quark <= light),
+        Channel::HeavyPlus(own) | Channel::HeavyMinus(own) => f64::from(own == quark),
+        Channel::DifferencePlus(own) | Channel::DifferenceMinus(own) if quark <= light => off_mean(own),
+        Channel::Gluon | Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => 0.0,
+    }
+}
+
+/// The channels that make up an output flavour: `q = ((q + qbar) + (q - qbar))/2`, a light flavour's parts being its
+/// difference and its share of the light sum.
+fn parts_of(flavour: i64, light: usize) -> Vec<(Channel, f64)> {
+    if flavour == GLUON {
+        return vec![(Channel::Gluon, 1.0)];
+    }
+    let quark = flavour.unsigned_abs() as usize;
+    let (plus, minus) = (0.5, 0.5 * flavour.signum() as f64);
+    if quark > light {
+        return vec![(Channel::HeavyPlus(quark), plus), (Channel::HeavyMinus(quark), minus)];
+    }
+    let share = 1.0 / light as f64;
+    let mut parts = vec![(Channel::LightPlus, share * plus), (Channel::LightMinus, share * minus)];
+    let (others, sign) = if quark < light { (quark..quark + 1, 1.0) } else { (1..light, -1.0) };
+    for own in others {
+        parts.push((Channel::DifferencePlus(own), sign * plus));
+        parts.push((Channel::DifferenceMinus(own), sign * minus));
+    }
+    parts
 }

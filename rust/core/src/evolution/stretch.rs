@@ -17,6 +17,10 @@ const LONGEST: f64 = 1.3;
 const LOWEST: f64 = 2.4;
 const SLOPE: f64 = 10.0;
 const UNIT: f64 = 1.2;
+/// Largest degree tried first.
+const HIGHEST: f64 = 24.0;
+/// By how much the degree is raised where the accuracy was missed.
+const RAISE: usize = 2;
 
 /// The steps of one stretch, factored for every sector.
 pub struct Stretch {
@@ -44,7 +48,7 @@ impl Stretch {
         let representative: HashMap<_, _> =
             sectors.iter().map(|&sector| (sector, equations.representative(sector))).collect();
         let distinct = sectors.into_iter().filter(|sector| representative[sector] == *sector);
-        let count = plan.steps(to - from);
+        let count = Plan::steps(to - from);
         let tasks: Vec<(Sector, usize)> = distinct.flat_map(|sector| (0..count).map(move |i| (sector, i))).collect();
         let factored: Vec<Step> = tasks
             .par_iter()
@@ -124,17 +128,17 @@ impl StretchSolution {
 pub struct Plan {
     /// Relative accuracy wanted.
     pub tolerance: f64,
-    /// How many times the steps have been halved because the accuracy was missed.
+    /// How many times the degree has been raised because the accuracy was missed.
     pub refinement: u32,
 }
 
 impl Plan {
     /// Number of steps for a stretch of this length in `ln a`; none for a length of zero.
-    fn steps(&self, length: f64) -> usize {
+    fn steps(length: f64) -> usize {
         if length == 0.0 {
             return 0;
         }
-        ((length.abs() / LONGEST).ceil() as usize) << self.refinement
+        (length.abs() / LONGEST).ceil() as usize
     }
 
     /// Degree of a step of this length.
@@ -142,6 +146,6 @@ impl Plan {
         let digits = -self.tolerance.log10();
         let share = length.abs() / UNIT;
         let degree = LOWEST + SLOPE * share.powf(0.55) + (digits - 8.0) * share.powf(0.2);
-        degree.ceil().clamp(3.0, 24.0) as usize
+        degree.ceil().clamp(3.0, HIGHEST) as usize + RAISE * self.refinement as usize
     }
 }

@@ -13,7 +13,7 @@ use crate::watch::Watch;
 use rayon::prelude::*;
 use std::collections::BTreeMap;
 
-/// How many times steps are halved before a build gives up.
+/// How many times the degree of the steps is raised before a build gives up.
 const MOST_REFINEMENTS: u32 = 3;
 
 /// What is to be built.
