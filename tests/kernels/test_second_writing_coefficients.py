@@ -11,9 +11,9 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from kernels.second_writing import coefficient_moments as exact
-from kernels.second_writing import coefficients_nnlo, coefficients_nnlo_2000
+from kernels.second_writing import coefficients_nnlo, coefficients_older_fits
 from kernels.second_writing.coefficients import NAMES, STRUCTURE_FUNCTIONS, coefficient
-from kernels.second_writing.coefficients_nnlo_2000 import add
+from kernels.second_writing.coefficients_older_fits import add
 from kernels.second_writing.matrix_elements import LEFT, VECTOR, Process, coefficients
 from kernels.second_writing.moments import moment
 from kernels.second_writing.parts import CA, CF, Parts
@@ -179,7 +179,7 @@ def test_two_published_fits_agree_for_even_moments(sf: str, n: int) -> None:
     old, new = (
         [build(nf) for nf in (0, 1)]
         for build in (
-            lambda nf: coefficients_nnlo_2000.non_singlet(sf, "ns+", nf),
+            lambda nf: coefficients_older_fits.non_singlet(sf, "ns+", nf),
             lambda nf: coefficient(2, sf, "ns+", nf),
         )
     )
@@ -192,10 +192,10 @@ def test_two_published_fits_agree_for_even_moments(sf: str, n: int) -> None:
 @pytest.mark.parametrize("n", [2, 3, 4, 6, 10])
 def test_two_published_fits_agree_for_the_singlet(n: int) -> None:
     """hep-ph/0504242 against hep-ph/0006154, to the same 2e-3 of int z^(n-1) |C|."""
-    local = coefficients_nnlo_2000.GLUON_F2_LOCAL
+    local = coefficients_older_fits.GLUON_F2_LOCAL
     older = {
-        "pure singlet": Parts(coefficients_nnlo_2000.pure_singlet_f2, (), 0.0),
-        "gluon": Parts(coefficients_nnlo_2000.gluon_f2, (), local),
+        "pure singlet": Parts(coefficients_older_fits.pure_singlet_f2, (), 0.0),
+        "gluon": Parts(coefficients_older_fits.gluon_f2, (), local),
     }
     for name, old in older.items():
         new = coefficient(2, "F2", name, 1)
@@ -218,8 +218,8 @@ def test_even_minus_odd_agrees_with_the_later_fit(sf: str, n: int) -> None:
 
     0.07 absolute: a part in a thousand of parts of size 70.
     """
-    even = moment(coefficients_nnlo_2000.non_singlet(sf, "ns+", 0), n)
-    odd = moment(coefficients_nnlo_2000.non_singlet(sf, "ns-", 0), n)
+    even = moment(coefficients_older_fits.non_singlet(sf, "ns+", 0), n)
+    odd = moment(coefficients_older_fits.non_singlet(sf, "ns-", 0), n)
     assert moment(coefficients_nnlo.DIFFERENCE[sf], n) == pytest.approx(even - odd, abs=0.07)
 
 
