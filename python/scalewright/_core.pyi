@@ -16,10 +16,15 @@ __all__ = [
     "Theory",
     "apply",
     "build",
+    "coefficient_function",
+    "coefficient_matrix",
     "compose",
     "evolve",
+    "massive_coefficient",
+    "massive_rows",
     "matching_element",
     "splitting_function",
+    "splitting_matrix",
 ]
 
 @final
@@ -159,3 +164,35 @@ def matching_element(
     z: NDArray[np.float64],
     one_minus_z: NDArray[np.float64],
 ) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+
+# light coefficient functions: structure_function "F2", "FL", "xF3"; coefficient "ns+", "ns-", "pure singlet", "gluon";
+# order: the power of a, 0 to 2, of FL to 3
+def coefficient_function(
+    order: int,
+    structure_function: str,
+    coefficient: str,
+    nf: int,
+    z: NDArray[np.float64],
+    one_minus_z: NDArray[np.float64],
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+
+# what: "F2 gluon", "FL gluon" (a pair made by a photon), "charged F2 gluon", "charged FL gluon", "charged F3 gluon",
+# "charged F2 quark", "charged FL quark", "charged F3 quark" (half of F2, FL, xF3 of a single charm quark). The kernel
+# in w, 0 < w < 1, with which the rows below are made: F(x) = int_chi^1 dw K(w) G(chi/w), chi = x (1 + 4 m^2/Q^2) for a
+# pair and x (1 + m^2/Q^2) for a single quark
+def massive_coefficient(
+    what: str, w: NDArray[np.float64], q2: float, mass: float
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+
+# (node, node), computed once a grid and kept: nodal values of x (P * f)(x), or of a part of F2, FL, xF3, from those
+# of x f(x)
+def splitting_matrix(grid: Grid, order: int, channel: str, nf: int) -> NDArray[np.float64]: ...
+def coefficient_matrix(
+    grid: Grid, order: int, structure_function: str, coefficient: str, nf: int
+) -> NDArray[np.float64]: ...
+
+# (point, node): the coefficient of a of a massive contribution at mu_f^2 = q2, from nodal values of the gluon, or
+# of the light quark; x and q2 (points,), GeV^2 and GeV. Needs x_min <= chi; zero above threshold
+def massive_rows(
+    grid: Grid, what: str, x: NDArray[np.float64], q2: NDArray[np.float64], mass: float
+) -> NDArray[np.float64]: ...

@@ -1,5 +1,7 @@
 //! Kernels and what they are computed from, against results of other origin.
 
+#[path = "kernels/coefficients.rs"]
+mod coefficients;
 #[path = "kernels/matching.rs"]
 mod matching;
 #[path = "kernels/moments.rs"]

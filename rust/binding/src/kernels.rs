@@ -10,7 +10,7 @@ use scalewright_core::kernels::splitting::{self, Channel};
 use scalewright_core::numerics::endpoint::Point;
 
 /// Regular values, plus coefficients, local part.
-type Parts<'py> = (Bound<'py, PyArray1<f64>>, Bound<'py, PyArray1<f64>>, f64);
+pub type Parts<'py> = (Bound<'py, PyArray1<f64>>, Bound<'py, PyArray1<f64>>, f64);
 
 /// The channel of a name.
 pub fn channel(py: Python<'_>, name: &str) -> PyResult<Channel> {
@@ -75,7 +75,8 @@ pub fn matching_element<'py>(
     parts(py, &matching::kernel(order, element, kind, form)[power], 0.0, &z, &one_minus_z)
 }
 
-fn parts<'py>(
+/// The three parts of a kernel at z.
+pub fn parts<'py>(
     py: Python<'py>,
     kernel: &Kernel,
     nf: f64,

@@ -74,3 +74,25 @@ impl Point {
         }
     }
 }
+
+/// One z with its logarithms alone, for formulas that need no more and are asked at many points.
+#[derive(Debug, Clone, Copy)]
+pub struct Logarithms {
+    /// `z`
+    pub z: f64,
+    /// `1 - z`
+    pub one_minus_z: f64,
+    /// `ln z`
+    pub ln_z: f64,
+    /// `ln(1-z)`
+    pub ln_1mz: f64,
+}
+
+impl Logarithms {
+    /// The point `z = e^-t`, for t > 0.
+    pub fn at(t: f64) -> Self {
+        let (z, one_minus_z) = ((-t).exp(), -(-t).exp_m1());
+        let ln_1mz = if z < 0.5 { (-z).ln_1p() } else { one_minus_z.ln() };
+        Self { z, one_minus_z, ln_z: -t, ln_1mz }
+    }
+}
