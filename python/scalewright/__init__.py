@@ -8,9 +8,11 @@ from __future__ import annotations
 from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities
-from .errors import InputError, RangeError, ResolutionWarning, ScalewrightError, StoreError
+from .errors import InputError, InputWarning, RangeError, ResolutionWarning, ScalewrightError, StoreError
+from .fitting.chi_square import ChiSquare
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
+from .measurements import Measurements
 from .operators import Operators
 from .parameters import Coupling, QuarkMasses
 from .theory import Theory
@@ -18,9 +20,12 @@ from .theory import Theory
 __all__ = [
     "Below",
     "ChebyshevGrid",
+    "ChiSquare",
     "Coupling",
     "Densities",
     "InputError",
+    "InputWarning",
+    "Measurements",
     "Operators",
     "QuarkMasses",
     "RangeError",

@@ -6,7 +6,7 @@ lower case and without a full stop: ``x = 1.3 at index 4: x must lie in (0, 1]``
 
 from __future__ import annotations
 
-__all__ = ["InputError", "RangeError", "ResolutionWarning", "ScalewrightError", "StoreError"]
+__all__ = ["InputError", "InputWarning", "RangeError", "ResolutionWarning", "ScalewrightError", "StoreError"]
 
 
 class ScalewrightError(Exception):
@@ -27,3 +27,7 @@ class StoreError(ScalewrightError, OSError):
 
 class ResolutionWarning(UserWarning):
     """A result that is less accurate, or covers less, than its name promises."""
+
+
+class InputWarning(UserWarning):
+    """An input that is used, but contradicts itself or may not be meant as it stands."""

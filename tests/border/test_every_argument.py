@@ -66,6 +66,20 @@ ONE = Densities(GRID, q2=2.0, nf=3, flavours=(21, 2, -2), values=np.ones((3, GRI
 THEORY = Theory(order="LO")
 KERNEL = sw.SplittingKernel(lambda z, nf: z)
 
+DESCRIPTION = {
+    "title": "A",
+    "measures": "F2",
+    "exchange": "photon",
+    "s": 1000.0,
+    "uncertainty": [
+        {"column": "stat", "given_in": "value", "scales_with": "nothing"},
+        {"name": "lumi", "size": 2.0, "given_in": "percent", "scales_with": "value", "correlated": True},
+    ],
+}
+POINTS = {"x": [0.1, 0.2], "q2": [10.0, 20.0], "value": [1.0, 2.0], "stat": [0.1, 0.2]}
+MEASURED = sw.Measurements.from_columns(DESCRIPTION, POINTS)
+CHI2 = sw.ChiSquare(MEASURED)
+
 
 def power(x):
     return x**0.5 * (1 - x) ** 3
@@ -122,6 +136,36 @@ CALLS = {
     "Densities.number": (ONE.number, {"flavour": 2, "part": "above"}),
     "Densities.moment": (ONE.moment, {"flavour": 2, "N": 2.0}),
     "Densities.resolution": (ONE.resolution, {}),
+    "Measurements": (sw.Measurements, {"tables": MEASURED._tables, "cuts": ()}),
+    "Measurements.from_columns": (
+        sw.Measurements.from_columns,
+        {"description": DESCRIPTION, "points": POINTS, "matrices": ()},
+    ),
+    "Measurements.join": (sw.Measurements.join, {"parts": [MEASURED]}),
+    "Measurements.cut": (
+        MEASURED.cut,
+        {"x": (0.0, 1.0), "q2": None, "w2": None, "y": None, "keep": [True, True], "reason": "a"},
+    ),
+    "Measurements.covariance": (MEASURED.covariance, {"reference": [1.0, 2.0]}),
+    "Measurements.nuisance": (MEASURED.nuisance, {"reference": [1.0, 2.0]}),
+    "Measurements.reference": (MEASURED.reference, {"reference": [1.0, 2.0]}),
+    "Measurements.pseudo_data": (
+        MEASURED.pseudo_data,
+        {"rng": np.random.default_rng(1), "truth": [1.0, 2.0], "replicas": 2},
+    ),
+    "Measurements.with_values": (MEASURED.with_values, {"values": [1.0, 2.0]}),
+    "ChiSquare": (
+        sw.ChiSquare,
+        {"measurements": MEASURED, "form": "nuisance", "reference": [1.0, 2.0], "theory": np.eye(2)},
+    ),
+    "ChiSquare.value": (CHI2.value, {"prediction": [1.0, 2.0]}),
+    "ChiSquare.residuals": (CHI2.residuals, {"prediction": [1.0, 2.0]}),
+    "ChiSquare.whiten": (CHI2.whiten, {"matrix": [1.0, 2.0]}),
+    "ChiSquare.pulls": (CHI2.pulls, {"prediction": [1.0, 2.0], "shifted": True}),
+    "ChiSquare.shifts": (CHI2.shifts, {"prediction": [1.0, 2.0]}),
+    "ChiSquare.per_table": (CHI2.per_table, {"prediction": [1.0, 2.0]}),
+    "ChiSquare.with_reference": (CHI2.with_reference, {"reference": [1.0, 2.0]}),
+    "ChiSquare.minus_two_log_likelihood": (CHI2.minus_two_log_likelihood, {"prediction": [1.0, 2.0]}),
     "SplittingKernel": (sw.SplittingKernel, {"regular": lambda z, nf: z, "plus": (), "local": 0.0}),
     "SplittingKernel.evaluate": (KERNEL.evaluate, {"z": [0.5], "nf": 4}),
     "splitting_function": (
@@ -193,10 +237,25 @@ def _signatures():
                     yield f"{name}.{method}", attribute
 
 
-#: Tested elsewhere: files in tests/files and tests/densities, operators in tests/apply.
-ELSEWHERE = ("Densities.from_csv", "Densities.load", "Densities.save", "Densities.to_csv", "Operators")
+#: Tested elsewhere: files in tests/files, tests/measurements and tests/densities, operators in tests/apply.
+ELSEWHERE = (
+    "Measurements.read",
+    "Measurements.write",
+    "Densities.from_csv",
+    "Densities.load",
+    "Densities.save",
+    "Densities.to_csv",
+    "Operators",
+)
 #: Methods that take nothing.
-NOTHING = ("Theory.to_json", "Theory.to_dict", "Theory.describe", "Theory.handle", "ChebyshevGrid.handle")
+NOTHING = (
+    "Theory.to_json",
+    "Theory.to_dict",
+    "Theory.describe",
+    "Theory.handle",
+    "ChebyshevGrid.handle",
+    "Measurements.describe",
+)
 
 
 def test_every_public_callable_and_every_argument_stands_in_the_table():

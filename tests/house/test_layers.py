@@ -39,6 +39,9 @@ PYTHON_LAYERS = (
     ("_carry", "_composed", "_operator_files"),
     ("operators",),
     ("build",),
+    ("_measured",),
+    ("measurements",),
+    ("fitting",),
     ("plot",),
     ("cli",),
 )

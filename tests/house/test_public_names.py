@@ -12,9 +12,12 @@ import scalewright
 PUBLIC = [
     "Below",
     "ChebyshevGrid",
+    "ChiSquare",
     "Coupling",
     "Densities",
     "InputError",
+    "InputWarning",
+    "Measurements",
     "Operators",
     "QuarkMasses",
     "RangeError",

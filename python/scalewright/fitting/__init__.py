@@ -1,0 +1,1 @@
+"""Fits: chi-square, shapes, least squares, replicas, ensembles."""
