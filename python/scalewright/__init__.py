@@ -8,8 +8,10 @@ from __future__ import annotations
 from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities
+from .electroweak import Electroweak
 from .errors import InputError, InputWarning, RangeError, ResolutionWarning, ScalewrightError, StoreError
 from .fitting.chi_square import ChiSquare
+from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
@@ -23,6 +25,8 @@ __all__ = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Electroweak",
+    "ForwardMap",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -36,6 +40,7 @@ __all__ = [
     "Theory",
     "build_operators",
     "evolve",
+    "forward_map",
     "matching_element",
     "splitting_function",
 ]
