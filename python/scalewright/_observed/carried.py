@@ -2,20 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator
 
 import numpy as np
 
 from .._check import Floats, Integers
 from ..build import build_operators
 from ..operators import Operators
+from .point_rows import point_rows
 from .problem import Problem
 from .pullback import flavour_rows, pulled_back
 
 __all__ = ["carried_matrix", "scale_groups"]
 
-#: Scales whose operators are held at a time, and points whose rows are: some 30 MB of each.
-_SCALES, _POINTS = 32, 256
+#: Scales whose operators are held at a time, and points whose rows are unless one scale has more: some 30 MB.
+_SCALES, _POINTS = 32, 512
 
 
 def scale_groups(problem: Problem) -> tuple[Floats, Integers, Integers]:
@@ -59,29 +60,37 @@ def carried_matrix(
     )
     flavours = operators._route.active
     matrix = np.empty((len(problem.points), len(flavours), problem.grid.nodes))
-    for first in range(0, q2.size, _SCALES):
-        chunk = np.arange(first, min(first + _SCALES, q2.size))
+    members = [np.flatnonzero(group == scale) for scale in range(q2.size)]
+    for chunk in _chunks(nf, [part.size for part in members]):
         blocks, _ = operators._source.at(q2[chunk], nf[chunk], 0)
+        together = np.concatenate([members[scale] for scale in chunk])
+        rows = point_rows(problem, together, int(nf[chunk[0]]))
+        start = 0
         for place, scale in enumerate(chunk):
             named = dict(zip(operators.block_names, blocks[place], strict=True))
-            _fill(matrix, problem, np.flatnonzero(group == scale), int(nf[scale]), named, operators.light, flavours)
+            some = members[scale]
+            back = pulled_back(rows[start : start + some.size], named, operators.light)
+            back = flavour_rows(back, flavours)
+            matrix[some] = with_target(back, problem.points.protons[some], flavours)
+            start += some.size
     return matrix, operators
 
 
-def _fill(
-    matrix: Floats,
-    problem: Problem,
-    members: Integers,
-    nf: int,
-    blocks: dict[str, Floats],
-    light: int,
-    flavours: Sequence[int],
-) -> None:
-    """Compute the rows of the points of one scale, proton and neutron weighted."""
-    for first in range(0, members.size, _POINTS):
-        some = members[first : first + _POINTS]
-        rows = flavour_rows(pulled_back(problem.rows(some, nf), blocks, light), tuple(flavours))
-        matrix[some] = with_target(rows, problem.points.protons[some], tuple(flavours))
+def _chunks(nf: Integers, sizes: list[int]) -> Iterator[Integers]:
+    """Yield scales that share a number of flavours, few enough to hold their operators and rows at once."""
+    start = 0
+    while start < nf.size:
+        end, points = start + 1, sizes[start]
+        while (
+            end < nf.size
+            and nf[end] == nf[start]
+            and end - start < _SCALES
+            and points + sizes[end] <= _POINTS
+        ):
+            points += sizes[end]
+            end += 1
+        yield np.arange(start, end)
+        start = end
 
 
 def with_target(rows: Floats, protons: Floats, flavours: tuple[int, ...]) -> Floats:

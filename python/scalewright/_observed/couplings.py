@@ -52,9 +52,14 @@ class Weights:
         keep = np.arange(1, 7) <= nf
         return Weights(self.even * keep, self.odd * keep, self.even3 * keep, self.odd3 * keep)
 
-    def picked(self, rows: object) -> Weights:
-        """Return those of some points."""
-        return Weights(self.even[rows], self.odd[rows], self.even3[rows], self.odd3[rows])  # type: ignore[index]
+    def plus(self, other: Weights, factor: float = 1.0) -> Weights:
+        """Return the sum with `factor` times other weights."""
+        return Weights(
+            self.even + factor * other.even,
+            self.odd + factor * other.odd,
+            self.even3 + factor * other.even3,
+            self.odd3 + factor * other.odd3,
+        )
 
 
 def neutral(points: Points, electroweak: Electroweak) -> Weights:
@@ -93,7 +98,7 @@ def neutral(points: Points, electroweak: Electroweak) -> Weights:
     return Weights(even * keep, nothing, nothing, odd3 * keep)
 
 
-def charged(points: Points, electroweak: Electroweak, nf: int) -> Weights:
+def charged(points: Points, electroweak: Electroweak, nf: int, without: int | None = None) -> Weights:
     """Return the weights for charged currents between the quarks up to `nf`, zero at other points.
 
     Parameters
@@ -104,6 +109,8 @@ def charged(points: Points, electroweak: Electroweak, nf: int) -> Weights:
         With the mixing matrix.
     nf : int
         A pair counts where both quarks are active.
+    without : int, optional
+        PDG number of a quark whose pairs are left out, at points where no other quark is tagged.
 
     Returns
     -------
@@ -112,10 +119,13 @@ def charged(points: Points, electroweak: Electroweak, nf: int) -> Weights:
     weights = [np.zeros((len(points), 6)) for _ in range(4)]
     tags = [None, *TAGS]
     for tag in tags:
-        pairs = mixing_pairs(electroweak, nf, None if tag is None else TAGS[tag])
+        number = None if tag is None else TAGS[tag]
+        pairs = mixing_pairs(electroweak, nf, number)
+        if without is not None and number in (None, without):
+            pairs = pairs - mixing_pairs(electroweak, nf, without)
         up, down = pairs.sum(axis=1), pairs.sum(axis=0)
         for negative in (True, False):
-            chosen = points.is_charged & (points.tag == (0 if tag is None else TAGS[tag]))
+            chosen = points.is_charged & (points.tag == (number or 0))
             chosen &= points.is_negative == negative
             # quark weights and antiquark weights in F2; in xF3 the latter change sign
             quark, anti = np.zeros(6), np.zeros(6)

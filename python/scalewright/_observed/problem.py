@@ -1,10 +1,9 @@
-"""A table of points under a theory: scales, coupling, and rows of the points that share a number of flavours."""
+"""A table of points under a theory: what is asked, its scales and coupling, and what is refused."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any
 
 import numpy as np
 
@@ -14,11 +13,10 @@ from ..electroweak import Electroweak
 from ..errors import InputError, RangeError
 from ..grid import ChebyshevGrid
 from ..theory import ORDERS, Theory
-from .couplings import Weights, charged, neutral
 from .light import HIGHEST
 from .measures import FUNCTIONS, measure_weights
 from .points import Points
-from .rows import Setting, light_rows
+from .rows import Setting
 
 __all__ = ["Problem"]
 
@@ -125,25 +123,3 @@ class Problem:
 
     def _lowest(self) -> str:
         return self.points.place[int(np.argmin(self.points.q2))]
-
-    def nodal(self, chosen: Integers) -> dict[str, Floats]:
-        """Return the weights of structure functions at nodes in what is measured, (point, node) each."""
-        at_x = self.grid.cardinals(np.minimum(self.points.x[chosen], 1.0))
-        return {name: self.factors[chosen, i, np.newaxis] * at_x for i, name in enumerate(FUNCTIONS)}
-
-    def weights(self, chosen: Integers, nf: int) -> Weights:
-        """Return the couplings of the active quarks at some points."""
-        part = self.part(chosen)
-        both = (neutral(part, self.electroweak).active(nf), charged(part, self.electroweak, nf))
-        return Weights(*(getattr(both[0], name) + getattr(both[1], name) for name in _NAMES))
-
-    def part(self, chosen: Any) -> Points:
-        """Return some of the points."""
-        return self.points.part(chosen)
-
-    def rows(self, chosen: Integers, nf: int) -> Floats:
-        """Return the rows of points that share a number of flavours, (point, 13, node), at their mu_f."""
-        return light_rows(self.setting, self.nodal(chosen), self.weights(chosen, nf), self.a[chosen], nf)
-
-
-_NAMES = ("even", "odd", "even3", "odd3")
