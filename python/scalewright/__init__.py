@@ -15,6 +15,7 @@ from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
+from .observables import structure_function
 from .operators import Operators
 from .parameters import Coupling, QuarkMasses
 from .theory import Theory
@@ -43,6 +44,7 @@ __all__ = [
     "forward_map",
     "matching_element",
     "splitting_function",
+    "structure_function",
 ]
 
 

@@ -6,6 +6,7 @@ powers of a and the couplings of the quarks, and carried back to the input by th
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -13,13 +14,16 @@ import numpy as np
 from . import _check
 from ._check import Floats, show
 from ._measured.combination import Combination
+from ._observed import storing
 from ._observed.carried import carried_matrix
+from ._observed.differences import TOLERANCE, Derivative, differentiated
 from ._observed.points import Points
 from ._observed.problem import Problem
 from ._route import SAME_SCALE
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError
+from .files.whole import PathLike
 from .grid import ChebyshevGrid
 from .theory import Theory
 
@@ -101,6 +105,69 @@ class ForwardMap:
     def predict(self, densities: Densities | Floats) -> Floats:
         """Predict each datum, (replica, datum); as `predict_rows` otherwise."""
         return self.data.predict(self.predict_rows(densities))
+
+    def derivative(self, parameter: str) -> Floats:
+        """Derivative of the matrix with respect to a parameter of the theory, by finite differences.
+
+        Parameters
+        ----------
+        parameter : {"alpha_s", "charm", "bottom", "hard_mur2_ratio", "hard_muf2_ratio"}
+            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales. Thresholds stay fixed.
+
+        Returns
+        -------
+        ndarray, (row, flavour, node)
+
+        Raises
+        ------
+        InputError
+            If the parameter is unknown, or a step from it leaves what a theory allows.
+        """
+        return self.differences(parameter).matrix
+
+    def differences(self, parameter: str) -> Derivative:
+        """Return `derivative` with the step that was taken and the error that it shows.
+
+        A hard scale ratio is moved by 1 per cent at most, which must stay in [0.25, 4]; mu_f must not cross a
+        threshold within it.
+        """
+        return differentiated(self.theory, parameter, self._rebuilt)
+
+    def _rebuilt(self, theory: Theory) -> Floats:
+        """Return the matrix of the same points under another theory, at tight tolerance."""
+        problem = replace(self._problem, theory=theory)
+        matrix, _ = carried_matrix(
+            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TOLERANCE, threads=None
+        )
+        return matrix
+
+    def save(self, path: PathLike) -> None:
+        """Store the map, whole or not at all.
+
+        Raises
+        ------
+        StoreError
+            If it cannot be written; an old file stays then.
+        """
+        start = self.start_q2, self.start_nf
+        storing.save(path, self._problem, start, self.flavours, self.matrix, self.data)
+
+    @classmethod
+    def load(cls, path: PathLike, *, copy: bool = False) -> ForwardMap:
+        """Read a map, after checking that no bit of the file has changed.
+
+        Parameters
+        ----------
+        path : path-like
+        copy : bool
+            Read it into memory instead of mapping it; for network file systems.
+
+        Raises
+        ------
+        StoreError
+            If the file is not ours, damaged, of another kind or made by a newer release.
+        """
+        return cls(**storing.load(path, copy))
 
     def _values(self, densities: Any) -> Floats:
         """Return values (replica, flavour, node) in the order of the map."""
