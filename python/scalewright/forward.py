@@ -176,7 +176,9 @@ class ForwardMap:
             array = array[np.newaxis] if array.ndim == 2 else array
             expected = (len(self.flavours), self.grid.nodes)
             if array.ndim != 3 or array.shape[1:] != expected:
-                _check.refuse("densities", array, f"the shape must be (replica, {expected[0]}, {expected[1]})")
+                _check.refuse(
+                    "densities", array, f"the shape must be (replica, {expected[0]}, {expected[1]})"
+                )
             return array
         if densities.grid != self.grid:
             raise InputError(f"densities.grid = {densities.grid!r}: the map is for {self.grid!r}")

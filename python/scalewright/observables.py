@@ -138,7 +138,9 @@ def _points(
     try:
         arrays = np.broadcast_arrays(*given)
     except ValueError:
-        raise InputError(f"x, q2 and y have shapes {[a.shape for a in given]}: they must go together") from None
+        raise InputError(
+            f"x, q2 and y have shapes {[a.shape for a in given]}: they must go together"
+        ) from None
     if arrays[0].size == 0:
         _check.refuse("x", x, "x must hold at least one value")
     flat = [np.ravel(array) for array in arrays]

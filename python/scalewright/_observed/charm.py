@@ -112,7 +112,9 @@ def limit_rows(
             gluon = a[:, np.newaxis] * (hard + (sign * logarithm * w + t * leading) @ p_qg)
         target = sums["odd" if function == "xF3" else "even"]
         target[0], target[1] = target[0] + quark, target[1] + gluon
-    return _placed(setting, nf, negative, (sums["even"][0], sums["even"][1]), (sums["odd"][0], sums["odd"][1]))
+    return _placed(
+        setting, nf, negative, (sums["even"][0], sums["even"][1]), (sums["odd"][0], sums["odd"][1])
+    )
 
 
 def _placed(

@@ -31,7 +31,9 @@ __all__ = ["HEAVY", "at_q", "beyond_pair", "pair_rows", "suppression", "to_first
 HEAVY = (4, 5)
 
 
-def pair_rows(setting: Setting, shares: Floats, x: Floats, q2: Floats, a: Floats, quark: int, mass: float) -> Floats:
+def pair_rows(
+    setting: Setting, shares: Floats, x: Floats, q2: Floats, a: Floats, quark: int, mass: float
+) -> Floats:
     """Return the rows of a pair made by a photon on a gluon, (point, 13, node).
 
     Parameters
@@ -110,5 +112,3 @@ def suppression(subtraction: str, q2: Floats, mass: float) -> Floats:
     if subtraction != "damped":
         return np.ones_like(q2)
     return np.where(q2 > mass**2, (1.0 - mass**2 / q2) ** 2, 0.0)
-
-

@@ -65,7 +65,9 @@ def light_matrices(
     nonsinglet = {"ns+": (plain["ns+"], plus), "ns-": (plain["ns-"], minus)}
     made = {name: _shifted(c, p, t, l, nf) for name, (c, p) in nonsinglet.items()}
     # the singlet as one row of two blocks (Sigma, gluon)
-    both = [np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)]
+    both = [
+        np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)
+    ]
     singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], t, l, nf)
     n = grid.nodes
     made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
@@ -117,4 +119,6 @@ def _with_logarithms(c: list[Floats], p: list[Floats], t: float, b0: float, b1: 
                     slope = slope - factor * series[lower][power - 1]
             powers.append(slope / power)
         series.append(powers)
-    return [sum((term * t**n for n, term in enumerate(powers)), np.zeros_like(powers[0])) for powers in series]
+    return [
+        sum((term * t**n for n, term in enumerate(powers)), np.zeros_like(powers[0])) for powers in series
+    ]

@@ -82,7 +82,9 @@ def load(path: PathLike, copy: bool) -> dict[str, Any]:
     try:
         return _rebuilt(arrays, attributes)
     except (KeyError, TypeError, ValueError, InputError) as error:
-        raise StoreError(f"{shown(path)}: not a forward map that this release understands: {error}") from error
+        raise StoreError(
+            f"{shown(path)}: not a forward map that this release understands: {error}"
+        ) from error
 
 
 def _rebuilt(arrays: dict[str, Any], attributes: dict[str, Any]) -> dict[str, Any]:
@@ -99,7 +101,9 @@ def _rebuilt(arrays: dict[str, Any], attributes: dict[str, Any]) -> dict[str, An
     target_mass, subtraction = bool(attributes["target_mass"]), str(attributes["subtraction"])
     count = int(attributes["data"])
     lists = [
-        Weights(*(np.array(arrays[f"/data/{name}/{field.name}"]) for field in fields(Weights))).lists(count, 0)
+        Weights(*(np.array(arrays[f"/data/{name}/{field.name}"]) for field in fields(Weights))).lists(
+            count, 0
+        )
         for name in ("numerator", "denominator")
     ]
     return {
