@@ -8,7 +8,7 @@ transposes.
 from __future__ import annotations
 
 import numpy as np
-from scipy.integrate import quad_vec
+from scipy.integrate import cubature
 
 import scalewright as sw
 from scalewright import _core
@@ -25,21 +25,21 @@ def convolved(density, edges, x, kernels):
     breaks = sorted({u - edge for edge in edges if 0.0 < edge < u} | {u})
     _, plus, local = zip(*(kernel(np.array([0.5]), np.array([0.5])) for kernel in kernels), strict=True)
 
-    def integrand(s):
+    def integrand(points):
+        s = points[:, 0]
         t = s**4  # takes the logarithms of 1 - z away from the end
         z, y = np.exp(-t), -np.expm1(-t)
-        value = density(np.array([min(1.0, np.exp(t - u))]))[:, 0]
-        rows = []
-        for kernel, coefficients in zip(kernels, plus, strict=True):
-            regular = kernel(np.array([z]), np.array([y]))[0][0] if y > 0.0 else 0.0
-            singular = sum(c * np.log(y) ** k / y for k, c in enumerate(coefficients)) if y > 0.0 else 0.0
-            rows.append(regular * value + singular * (value - here))
-        return np.array(rows) * z * 4.0 * s**3
+        value = density(np.minimum(1.0, np.exp(t - u))).T  # (point, flavour)
+        rows = np.empty((s.size, len(kernels), value.shape[1]))
+        for place, (kernel, coefficients) in enumerate(zip(kernels, plus, strict=True)):
+            singular = sum(c * np.log(y) ** k / y for k, c in enumerate(coefficients)) * np.ones_like(y)
+            rows[:, place] = kernel(z, y)[0][:, None] * value + singular[:, None] * (value - here)
+        return rows * (z * 4.0 * s**3)[:, None, None]
 
     total, start = 0.0, 0.0
     for end in breaks:
-        part, _ = quad_vec(integrand, start, end**0.25, epsabs=1e-13, epsrel=1e-11, limit=400)
-        total, start = total + part, end**0.25
+        part = cubature(integrand, [start], [end**0.25], rtol=1e-10, atol=1e-13, max_subdivisions=2000)
+        total, start = total + part.estimate, end**0.25
     for i, (coefficients, at_one) in enumerate(zip(plus, local, strict=True)):
         left = sum(c * np.log1p(-x) ** (k + 1) / (k + 1) for k, c in enumerate(coefficients))
         total[i] += (at_one + left) * here
