@@ -15,6 +15,7 @@ from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
+from .moments import moment, sum_rule
 from .observables import structure_function
 from .operators import Operators
 from .parameters import Coupling, QuarkMasses
@@ -43,8 +44,10 @@ __all__ = [
     "evolve",
     "forward_map",
     "matching_element",
+    "moment",
     "splitting_function",
     "structure_function",
+    "sum_rule",
 ]
 
 

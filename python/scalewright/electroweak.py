@@ -72,7 +72,7 @@ class Electroweak:
     1.4051
     >>> on_shell = Electroweak.on_shell()
     >>> round(on_shell.sin2, 4), round(1 / on_shell.alpha, 2)
-    (0.2232, 132.17)
+    (0.2232, 132.1)
     """
 
     inputs: str

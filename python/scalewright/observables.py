@@ -24,7 +24,7 @@ from .electroweak import Electroweak
 from .errors import InputError
 from .theory import Theory
 
-__all__ = ["structure_function"]
+__all__ = ["at_scale", "structure_function"]
 
 
 def structure_function(
@@ -109,7 +109,7 @@ def structure_function(
     parts = []
     for place, (scale, nf) in enumerate(zip(scales.tolist(), counts.tolist(), strict=True)):
         members = np.flatnonzero(group == place)
-        values = _at_scale(densities, scale, nf)
+        values = at_scale(densities, scale, nf)
         rows = flavour_rows(point_rows(problem, members, nf), flavours)
         rows = with_target(rows, points.protons[members], flavours)
         parts.append((members, np.einsum("pfn,rfn->rp", rows, values, optimize=True)))
@@ -160,7 +160,7 @@ def _points(
     return Points.of(rows), arrays[0].shape
 
 
-def _at_scale(densities: Densities, q2: float, nf: int) -> Floats:
+def at_scale(densities: Densities, q2: float, nf: int) -> Floats:
     """Return the values at a scale, (replica, flavour, node), with every active flavour there."""
     scales, counts = np.atleast_1d(densities.q2), np.atleast_1d(densities.nf)
     near = np.abs(scales - q2) <= SAME_SCALE * q2

@@ -14,7 +14,7 @@ from .problem import Problem
 from .rows import light_rows
 from .target_mass import with_target_mass
 
-__all__ = ["nodal_weights", "point_rows"]
+__all__ = ["light_weights", "nodal_weights", "point_rows"]
 
 _CHARM = 4
 
@@ -42,7 +42,7 @@ def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
         nodal = with_target_mass(problem.grid, points.x, points.q2, factors)
     else:
         nodal = nodal_weights(problem, points.x, factors)
-    weights = _light_weights(problem, points, nf, scheme == "matched")
+    weights = light_weights(problem, points, nf, scheme == "matched")
     rows = light_rows(problem.setting, nodal, weights, a, nf)
     if scheme != "massless":
         for quark in HEAVY:
@@ -59,7 +59,7 @@ def nodal_weights(problem: Problem, x: Floats, factors: Floats) -> dict[str, Flo
     return {name: factors[:, i, np.newaxis] * at_x for i, name in enumerate(FUNCTIONS)}
 
 
-def _light_weights(problem: Problem, points: Points, nf: int, matched: bool) -> Weights:
+def light_weights(problem: Problem, points: Points, nf: int, matched: bool) -> Weights:
     """Return the couplings of what is treated as massless to the order of the theory."""
     first = neutral(points, problem.electroweak)
     without = _CHARM if matched and nf >= _CHARM else None

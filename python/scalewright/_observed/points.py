@@ -26,8 +26,10 @@ NEED_Y = ("reduced_cross_section", "d2sigma_dx_dq2", "d2sigma_dx_dy")
 _BEAMS = ("e-", "e+", "nu", "nubar")
 _TAGS = {None: 0, "": 0, "charm": 4, "bottom": 5}
 _PROTONS = {"proton": 1.0, "neutron": 0.0, "deuteron": 0.5, "isoscalar": 0.5}
-#: y may exceed 1, and a y given may differ from Q^2/(x (s - M^2)), by the rounding of its computation.
+#: y may exceed 1 by the rounding of its computation; a y that differs from Q^2/(x (s - M^2)) by more than this part
+#: is another y.
 _ROUNDING = 1e-12
+_WRONG_Y = 0.05
 
 
 @dataclass(frozen=True, eq=False)
@@ -213,9 +215,12 @@ def _inelasticity(x: float, q2: float, y: Any, s: Any, measure: str) -> tuple[fl
     """Return y and s, each from the other where it is unknown."""
     y = np.nan if y is None else float(y)
     s = np.nan if s is None else float(s)
-    if np.isnan(y) and not np.isnan(s):
+    if not np.isnan(s):
         s = _check.real("s", s, above=NUCLEON_M2, unit="GeV^2")
-        y = q2 / (x * (s - NUCLEON_M2))
+        from_s = q2 / (x * (s - NUCLEON_M2))
+        if abs(y - from_s) > _WRONG_Y * from_s:
+            _check.refuse("y", y, f"x, q2 and s say {from_s:.4g}: y must agree within 5 per cent")
+        y = from_s
     if measure not in NEED_Y:
         return y, s
     if np.isnan(y):
