@@ -21,8 +21,8 @@ from ._check import Floats
 
 __all__ = ["Electroweak"]
 
-#: Particle Data Group, recalled from memory: 1/alpha(0) and G_F in GeV^-2; masses in GeV; the effective leptonic
-#: angle (LEP and SLD, hep-ex/0509008); 1/alpha(M_Z) with five flavours, on shell.
+#: Particle Data Group, recalled from memory: 1/alpha(0) and G_F in GeV^-2; masses in GeV; the effective
+#: leptonic angle (LEP and SLD, hep-ex/0509008); 1/alpha(M_Z) with five flavours, on shell.
 ALPHA_0 = 1.0 / 137.035999
 G_FERMI = 1.1663788e-5
 Z_MASS = 91.1876
@@ -153,7 +153,9 @@ class Electroweak:
         alpha: float = ALPHA_Z,
         mixing: ArrayLike = MIXING,
     ) -> Electroweak:
-        """Return the set (G_F, M_Z, alpha(M_Z)): s2 (1 - s2) = pi alpha/(sqrt2 G_F M_Z^2), M_W^2 = M_Z^2 (1 - s2).
+        """Return the set (G_F, M_Z, alpha(M_Z)).
+
+        s2 (1 - s2) = pi alpha/(sqrt2 G_F M_Z^2) and M_W^2 = M_Z^2 (1 - s2).
 
         Parameters
         ----------

@@ -1,7 +1,8 @@
 """From input densities to predictions: one linear map for a table of points.
 
-Massless coefficient functions are matrices on the grid, computed once; a point is a row of them, combined with
-powers of a and the couplings of the quarks, and carried back to the input by the operators of its mu_f^2.
+Massless coefficient functions are matrices on the grid, computed once; a point is a row of them, combined
+with powers of a and the couplings of the quarks, and carried back to the input by the operators of its
+mu_f^2.
 """
 
 from __future__ import annotations
@@ -112,7 +113,8 @@ class ForwardMap:
         Parameters
         ----------
         parameter : {"alpha_s", "charm", "bottom", "hard_mur2_ratio", "hard_muf2_ratio"}
-            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales. Thresholds stay fixed.
+            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales. Thresholds stay
+            fixed.
 
         Returns
         -------

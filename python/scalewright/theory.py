@@ -119,8 +119,8 @@ class Theory:
         for name in ("hard_mur2_ratio", "hard_muf2_ratio"):
             set_field(self, name, _check.real(name, getattr(self, name), least=0.25, most=4.0))
         choices = {"heavy_quarks": ("massless", "massive", "matched"), "fl_counting": ("absolute", "own")}
-        for name, allowed in choices.items():
-            set_field(self, name, _check.choice(name, getattr(self, name), allowed))
+        for name, known in choices.items():
+            set_field(self, name, _check.choice(name, getattr(self, name), known))
         if self.heavy_quarks == "massive" and self.fewest != self.most:
             allowed = 'heavy_quarks="massive" needs a fixed number of flavours, such as flavours=3'
             _check.refuse("flavours", self.flavours, f'{allowed}; "matched" is for a variable one')

@@ -91,7 +91,7 @@ def _rebuilt(arrays: dict[str, Any], attributes: dict[str, Any]) -> dict[str, An
     grid = ChebyshevGrid.from_panels(np.array(arrays["/grid/edges"]), np.array(arrays["/grid/degrees"]))
     theory = Theory.from_json(str(arrays["/theory"][()]))
     electroweak = Electroweak(**json.loads(str(arrays["/electroweak"][()])))
-    columns = {}
+    columns: dict[str, Any] = {}
     for field in fields(Points):
         column = np.array(arrays[f"/points/{field.name}"])
         if field.name.startswith("is_"):
