@@ -20,7 +20,7 @@ mod nnlo_nonsinglet;
 mod nnlo_singlet;
 
 use super::kernel::Kernel;
-pub use massive::{Massive, MassiveKernel};
+pub use massive::{Massive, MassiveKernel, Onset};
 
 /// A structure function of deep inelastic scattering.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
