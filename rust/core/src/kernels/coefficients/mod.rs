@@ -9,6 +9,8 @@
 //! `*` is the convolution of the splitting functions, so that `F2` and `FL` follow from `x q` and `x g`, and `x F3`
 //! from `x (q - qbar)`. The factor nf of the gluon and of the pure singlet is in the kernels. Scale logarithms
 //! are left to those who have the matrices.
+//!
+//! Which one when: [`kernel`] for light quarks; [`Massive`] for charm and bottom with their masses, at order a.
 
 mod charged;
 mod heavy;
