@@ -75,7 +75,7 @@ def _element(theory: Theory) -> str:
 
 
 def _hard(theory: Theory) -> str:
-    ratios = show(theory.hard_mur2_ratio), show(theory.hard_muf2_ratio)
+    ratios = brief(theory.hard_mur2_ratio), brief(theory.hard_muf2_ratio)
     return f"mu_r^2/Q^2 = {ratios[0]}, mu_f^2/Q^2 = {ratios[1]} in coefficient functions"
 
 

@@ -117,6 +117,15 @@ class Electroweak:
             In charged currents alone, which share no row with neutral ones.
         mixing : array_like, (3, 3)
             Moduli |V|: rows u, c, t, columns d, s, b.
+
+        Returns
+        -------
+        Electroweak
+
+        Raises
+        ------
+        InputError
+            If a number lies outside its range.
         """
         return cls("effective", alpha, g_fermi, z_mass, w_mass, sin2, _tuples(mixing))
 
@@ -137,6 +146,15 @@ class Electroweak:
             In GeV^-2 and GeV; M_W below M_Z.
         mixing : array_like, (3, 3)
             Moduli |V|: rows u, c, t, columns d, s, b.
+
+        Returns
+        -------
+        Electroweak
+
+        Raises
+        ------
+        InputError
+            If a number lies outside its range.
         """
         z_mass = _check.real("z_mass", z_mass, above=0.0)
         w_mass = _check.real("w_mass", w_mass, above=0.0, below=z_mass)
@@ -165,6 +183,15 @@ class Electroweak:
             alpha(M_Z).
         mixing : array_like, (3, 3)
             Moduli |V|: rows u, c, t, columns d, s, b.
+
+        Returns
+        -------
+        Electroweak
+
+        Raises
+        ------
+        InputError
+            If a number lies outside its range.
         """
         product = np.pi * alpha / (np.sqrt(2.0) * g_fermi * z_mass**2)
         if not 0.0 < product < 0.25:

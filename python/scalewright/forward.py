@@ -104,7 +104,22 @@ class ForwardMap:
         return np.asarray(values.reshape(values.shape[0], -1) @ flat.T)
 
     def predict(self, densities: Densities | Floats) -> Floats:
-        """Predict each datum, (replica, datum); as `predict_rows` otherwise."""
+        """Predict each datum.
+
+        Parameters
+        ----------
+        densities : Densities or array_like
+            As for `predict_rows`.
+
+        Returns
+        -------
+        ndarray, (replica, datum)
+
+        Raises
+        ------
+        InputError
+            As `predict_rows`; or if a denominator vanishes.
+        """
         return self.data.predict(self.predict_rows(densities))
 
     def derivative(self, parameter: str) -> Floats:
@@ -130,8 +145,21 @@ class ForwardMap:
     def differences(self, parameter: str) -> Derivative:
         """Return `derivative` with the step that was taken and the error that it shows.
 
-        A hard scale ratio is moved by 1 per cent at most, which must stay in [0.25, 4]; mu_f must not cross a
-        threshold within it.
+        Parameters
+        ----------
+        parameter : str
+            As for `derivative`. A ratio is moved by 1 per cent at most, which must stay in [0.25, 4]; no mu_f
+            must cross a threshold within it.
+
+        Returns
+        -------
+        Derivative
+            matrix, step and error.
+
+        Raises
+        ------
+        InputError
+            As `derivative`.
         """
         return differentiated(self.theory, parameter, self._rebuilt)
 
@@ -145,6 +173,11 @@ class ForwardMap:
 
     def save(self, path: PathLike) -> None:
         """Store the map, whole or not at all.
+
+        Parameters
+        ----------
+        path : path-like
+            The file, HDF5 in a checked wrapping.
 
         Raises
         ------
@@ -161,8 +194,13 @@ class ForwardMap:
         Parameters
         ----------
         path : path-like
+            The file.
         copy : bool
             Read it into memory instead of mapping it; for network file systems.
+
+        Returns
+        -------
+        ForwardMap
 
         Raises
         ------

@@ -86,8 +86,8 @@ def moment(
     ----------
     measure : {"F2", "FL", "xF3"}
     n : float
-        At least 1 for xF3 and differences that vanish at small x, 2 and more otherwise, for the integral from 0
-        to exist; any number is allowed above x_min.
+        At least 1 for xF3 and differences that vanish at small x, 2 and more otherwise, for the integral
+        from 0 to exist; any number is allowed above x_min.
     q2 : float
         Q^2 in GeV^2.
     densities, theory, current, exchange, beam, polarisation, target, tagged, electroweak

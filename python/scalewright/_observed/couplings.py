@@ -1,10 +1,10 @@
 """Couplings of the quarks to the exchanged boson, for each point, as weights of q + qbar and q - qbar.
 
-A structure function is F2 = sum_q (even_q C+ (q + qbar) + odd_q C- (q - qbar)) + singlet parts with the mean
-of `even` over the active quarks, in x times densities; xF3 likewise with weights of its own. Neutral currents:
-S. Navas et al. (Particle Data Group), review "Structure functions", recalled from memory; the signs are
-derived again in the tests from helicity amplitudes. Charged currents: F2(W-) = 2x sum |V|^2 (U + Dbar),
-xF3(W-) = 2x sum |V|^2 (U - Dbar); W+ is absorbed by D and Ubar.
+A structure function is F2 = sum_q (even_q C+ (q + qbar) + odd_q C- (q - qbar)) + singlet parts with the
+mean of `even` over the active quarks, in x times densities; xF3 likewise with weights of its own. Neutral
+currents: S. Navas et al. (Particle Data Group), review "Structure functions", recalled from memory; the
+signs are derived again in the tests from helicity amplitudes. Charged currents: F2(W-) = 2x sum |V|^2 (U
++ Dbar), xF3(W-) = 2x sum |V|^2 (U - Dbar); W+ is absorbed by D and Ubar.
 """
 
 from __future__ import annotations

@@ -1,10 +1,10 @@
 """Coefficient functions of light quarks on a grid, with the logarithms of both hard scales.
 
-With t = ln(Q^2/mu_f^2), lr = ln(mu_r^2/mu_f^2) and C = sum_k a^k C_k, that a structure function does not depend on
-mu_f means d C/d t = C P + beta(a) d C/d a, beta(a) = -b0 a^2 - b1 a^3 - ...; solved order by order in
-`_with_logarithms` in a(mu_f), and re-expanded in a(mu_r) after that. Products of C and P are products of matrices
-on the grid: ratios of scales are those of the theory, so that these are computed once for each number of
-flavours.
+With t = ln(Q^2/mu_f^2), lr = ln(mu_r^2/mu_f^2) and C = sum_k a^k C_k, that a structure function does not
+depend on mu_f means d C/d t = C P + beta(a) d C/d a, beta(a) = -b0 a^2 - b1 a^3 - ...; solved order by
+order in `_with_logarithms` in a(mu_f), and re-expanded in a(mu_r) after that. Products of C and P are
+products of matrices on the grid: ratios of scales are those of the theory, so that these are computed
+once for each number of flavours.
 """
 
 from __future__ import annotations
