@@ -8,11 +8,15 @@ from __future__ import annotations
 from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities
+from .electroweak import Electroweak
 from .errors import InputError, InputWarning, RangeError, ResolutionWarning, ScalewrightError, StoreError
 from .fitting.chi_square import ChiSquare
+from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
+from .moments import moment, sum_rule
+from .observables import structure_function
 from .operators import Operators
 from .parameters import Coupling, QuarkMasses
 from .theory import Theory
@@ -23,6 +27,8 @@ __all__ = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Electroweak",
+    "ForwardMap",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -36,8 +42,12 @@ __all__ = [
     "Theory",
     "build_operators",
     "evolve",
+    "forward_map",
     "matching_element",
+    "moment",
     "splitting_function",
+    "structure_function",
+    "sum_rule",
 ]
 
 

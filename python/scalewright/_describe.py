@@ -26,6 +26,9 @@ def option_lines(theory: Theory) -> list[tuple[str, str]]:
         ("thresholds", _thresholds(theory)),
         ("scale ratio", f"mu_r^2/mu_f^2 = {brief(theory.evolution_mu2_ratio)} in the splitting functions"),
         ("A_Hg at a^2", _element(theory)),
+        ("hard scales", _hard(theory)),
+        ("heavy quarks", f"{theory.heavy_quarks} in structure functions"),
+        ("FL", _longitudinal(theory)),
     ]
 
 
@@ -69,6 +72,16 @@ def _element(theory: Theory) -> str:
     if theory.heavy_gluon_element == "exact":
         return "exact (M. Buza et al., hep-ph/9612398)"
     return "compact parametrisation (A. Vogt, hep-ph/0408244)"
+
+
+def _hard(theory: Theory) -> str:
+    ratios = brief(theory.hard_mur2_ratio), brief(theory.hard_muf2_ratio)
+    return f"mu_r^2/Q^2 = {ratios[0]}, mu_f^2/Q^2 = {ratios[1]} in coefficient functions"
+
+
+def _longitudinal(theory: Theory) -> str:
+    power = len(theory.order) - 2 + (theory.fl_counting == "own")
+    return f"up to a^{power}, {theory.fl_counting} counting; F2 and xF3 up to a^{len(theory.order) - 2}"
 
 
 _RULES = (
