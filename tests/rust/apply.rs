@@ -1,5 +1,6 @@
 //! Sets applied to densities and to one another: the flavours in and out, whatever the blocks are.
 
+#[expect(dead_code, reason = "other tests use the rest")]
 mod builds;
 #[expect(dead_code, reason = "other tests use the rest")]
 mod settings;
@@ -107,7 +108,7 @@ fn company_changes_no_bit() {
 }
 
 /// Applying the composed set is applying one after the other, also where the sets differ in what acts alike: blocks
-/// of real builds and of made-up numbers. Rounding, of values up to 1e3 for made-up numbers.
+/// of real builds and of made-up numbers. Rounding, relative to the largest value.
 #[test]
 fn composed_is_one_after_the_other() {
     let grid = coarse();
@@ -197,6 +198,10 @@ fn what_cannot_be_applied_is_refused() {
     assert!(ALL.into_iter().all(|flavour| check_flavour(flavour).is_ok()));
     let missing = Blocks::new(&["gluon<-gluon".into()], 3);
     assert!(matches!(missing, Err(Error::Argument { name: "block names", .. })), "{missing:?}");
+    for light in [0, 2, 7] {
+        let refused = Blocks::new(set.blocks.names(), light);
+        assert!(matches!(refused, Err(Error::Argument { name: "light", .. })), "{refused:?}");
+    }
     let (values, densities) = (numbers(set.values.len() * 4), [1.0, 2.0]);
     let batch = Batch {
         blocks: &set.blocks,

@@ -89,7 +89,8 @@ fn the_error_estimate_is_of_the_size_of_the_error() {
 fn the_error_of_what_is_not_finite_is_infinite() {
     let step = Step::new(0.0, 1.0, 6, &[0, 1], |_| Matrix::from_values(1, 1, vec![1.0]));
     for start in [f64::MAX, f64::NAN] {
-        assert_eq!(step.solve(&Matrix::from_values(1, 1, vec![start]), 0).error(&[0]), f64::INFINITY);
+        let error = step.solve(&Matrix::from_values(1, 1, vec![start]), 0).error(&[0]);
+        assert!(error.is_infinite(), "{start}: {error}");
     }
 }
 

@@ -17,6 +17,9 @@ use scalewright_core::thresholds::{BuildOptions, Vectors, build, evolve};
 use scalewright_core::watch::{Unwatched, Watch};
 use settings::{benchmark, close};
 
+/// A scale in GeV^2 and the number of flavours at it.
+type Scale = (f64, usize);
+
 /// Charm and bottom thresholds of the benchmark, GeV^2: squares of sqrt(2) and 4.5.
 const CHARM_Q2: f64 = 2.0;
 const BOTTOM_Q2: f64 = 20.25;
@@ -49,7 +52,7 @@ fn carried(
 fn routes_reach_what_is_asked_and_no_more() {
     let theory = variable(0);
     let top = theory.threshold_q2(6);
-    let cases: [((f64, usize), &[(f64, usize)], &[(usize, f64, f64)]); 9] = [
+    let cases: [(Scale, &[Scale], &[(usize, f64, f64)]); 9] = [
         // Nothing asked, or the start itself.
         ((1.5, 3), &[], &[(3, 1.5, 1.5)]),
         ((1.5, 3), &[(1.5, 3)], &[(3, 1.5, 1.5)]),
