@@ -19,6 +19,8 @@ use settings::{benchmark, close};
 
 /// A scale in GeV^2 and the number of flavours at it.
 type Scale = (f64, usize);
+/// What is served at one number of flavours, from the lowest to the highest scale.
+type Range = (usize, f64, f64);
 
 /// Charm and bottom thresholds of the benchmark, GeV^2: squares of sqrt(2) and 4.5.
 const CHARM_Q2: f64 = 2.0;
@@ -52,7 +54,7 @@ fn carried(
 fn routes_reach_what_is_asked_and_no_more() {
     let theory = variable(0);
     let top = theory.threshold_q2(6);
-    let cases: [(Scale, &[Scale], &[(usize, f64, f64)]); 9] = [
+    let cases: [(Scale, &[Scale], &[Range]); 9] = [
         // Nothing asked, or the start itself.
         ((1.5, 3), &[], &[(3, 1.5, 1.5)]),
         ((1.5, 3), &[(1.5, 3)], &[(3, 1.5, 1.5)]),
