@@ -27,8 +27,7 @@ def option_lines(theory: Theory) -> list[tuple[str, str]]:
         ("scale ratio", f"mu_r^2/mu_f^2 = {brief(theory.evolution_mu2_ratio)} in the splitting functions"),
         ("A_Hg at a^2", _element(theory)),
         ("hard scales", _hard(theory)),
-        ("heavy quarks", f"{theory.heavy_quarks} in structure functions"),
-        ("FL", _longitudinal(theory)),
+        ("coefficients", _coefficients(theory)),
     ]
 
 
@@ -79,9 +78,11 @@ def _hard(theory: Theory) -> str:
     return f"mu_r^2/Q^2 = {ratios[0]}, mu_f^2/Q^2 = {ratios[1]} in coefficient functions"
 
 
-def _longitudinal(theory: Theory) -> str:
-    power = len(theory.order) - 2 + (theory.fl_counting == "own")
-    return f"up to a^{power}, {theory.fl_counting} counting; F2 and xF3 up to a^{len(theory.order) - 2}"
+def _coefficients(theory: Theory) -> str:
+    power = len(theory.order) - 2
+    longitudinal = power + (theory.fl_counting == "own")
+    counting = f"F2 and xF3 up to a^{power}, FL up to a^{longitudinal} ({theory.fl_counting} counting)"
+    return f"{counting}; heavy quarks {theory.heavy_quarks}"
 
 
 _RULES = (

@@ -16,6 +16,7 @@ from . import _check
 from ._check import Floats, show
 from ._measured.combination import Combination
 from ._observed import storing
+from ._observed.accuracy import row_errors
 from ._observed.carried import carried_matrix
 from ._observed.differences import TOLERANCE, Derivative, differentiated
 from ._observed.points import Points
@@ -50,13 +51,16 @@ class ForwardMap:
         What each row is.
     data : Combination
         From rows to data.
+    steps_error : float
+        Largest relative error estimate of the steps in scale.
     """
 
     def __init__(
         self, problem: Problem, start_q2: float, start_nf: int, flavours: tuple[int, ...], matrix: Floats,
         data: Combination,
+        steps_error: float,
     ) -> None:  # fmt: skip
-        self._problem, self.data = problem, data
+        self._problem, self.data, self.steps_error = problem, data, steps_error
         self.start_q2, self.start_nf, self.flavours = start_q2, start_nf, flavours
         matrix.flags.writeable = False
         self.matrix = matrix
@@ -122,6 +126,38 @@ class ForwardMap:
         """
         return self.data.predict(self.predict_rows(densities))
 
+    def numerical_error(self, densities: Densities | Floats) -> Floats:
+        """Estimate how far `predict` is off numerically: grid, quadrature, steps in scale, rounding.
+
+        Parameters
+        ----------
+        densities : Densities or array_like
+            As for `predict_rows`.
+
+        Returns
+        -------
+        ndarray, (replica, datum)
+            Absolute; not what a further order of a would change.
+
+        Raises
+        ------
+        InputError
+            As `predict`.
+
+        Notes
+        -----
+        An estimate from the last Chebyshev coefficients of the input; how sharp it is stands in
+        `scalewright._observed.accuracy`.
+        """
+        values = self._values(densities)
+        errors = row_errors(self.grid, self.matrix, values, self.steps_error)
+        rows = self.predict_rows(values)
+        made = [
+            np.abs(self.data.tangent(row, np.diag(error))).sum(axis=1)
+            for row, error in zip(rows, errors, strict=True)
+        ]
+        return np.asarray(made)
+
     def derivative(self, parameter: str) -> Floats:
         """Derivative of the matrix with respect to a parameter of the theory, by finite differences.
 
@@ -185,7 +221,7 @@ class ForwardMap:
             If it cannot be written; an old file stays then.
         """
         start = self.start_q2, self.start_nf
-        storing.save(path, self._problem, start, self.flavours, self.matrix, self.data)
+        storing.save(path, self._problem, start, self.flavours, self.matrix, self.data, self.steps_error)
 
     @classmethod
     def load(cls, path: PathLike, *, copy: bool = False) -> ForwardMap:
@@ -315,7 +351,9 @@ def forward_map(
         problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads
     )
     flavours = operators._route.active
-    return ForwardMap(problem, operators.start_q2, operators.start_nf, flavours, matrix, data)
+    return ForwardMap(
+        problem, operators.start_q2, operators.start_nf, flavours, matrix, data, operators.error
+    )
 
 
 def _rows_and_data(points: Any) -> tuple[Points, Combination]:
