@@ -1,8 +1,8 @@
 """Pictures of measured tables beside a prediction, by Q^2.
 
-Which one when: `plot_data` shows values over many decades, all Q^2 of a table in one picture; `plot_ratio` shows
-data over prediction at one Q^2, where one per cent can be seen. As in `plot`, every function draws into the axes
-it is given, or makes new ones, and returns them; no setting of matplotlib is changed.
+Which one when: `plot_data` shows values over many decades, all Q^2 of a table in one picture; `plot_ratio`
+shows data over prediction at one Q^2, where one per cent can be seen. As in `plot`, every function draws into
+the axes it is given, or makes new ones, and returns them; no setting of matplotlib is changed.
 """
 
 from __future__ import annotations
@@ -70,7 +70,8 @@ def plot_data(
         x, up = measurements.x[points], factor**power
         ax.errorbar(
             x, up * measurements.value[points], up * sigma[points],
-            fmt="ok" if power % 2 else "sk", markersize=3, linewidth=0.8, fillstyle="none" if power % 2 else "full",
+            fmt="ok" if power % 2 else "sk", fillstyle="none" if power % 2 else "full", markersize=3,
+            linewidth=0.8,
         )  # fmt: skip
         if line is not None:
             ax.plot(x, up * line[points], color=_GREY, linewidth=1.0, zorder=0)
@@ -112,8 +113,8 @@ def plot_ratio(
     Returns
     -------
     matplotlib axes
-        Open points and thin bars: as measured, with the whole uncertainty. Full points and thick bars: after the
-        best-fit shifts of all common sources, with the uncertainty that each datum has for itself.
+        Open points and thin bars: as measured, with the whole uncertainty. Full points and thick bars: after
+        the best-fit shifts of all common sources, with the uncertainty that each datum has for itself.
 
     Raises
     ------
@@ -159,10 +160,12 @@ def data_picture(
     panels = figure.subplots(rows, _COLUMNS, sharex=True, squeeze=False)
     for q2, panel in zip(bins, panels.flat, strict=False):
         _ratio(measurements, line, moved, chosen, float(q2), panel)
-        panel.set(xlabel="", ylabel="", title="")
-        panel.text(0.04, 0.92, f"{q2:.6g} GeV$^2$", transform=panel.transAxes, va="top", fontsize=8)
+        panel.set(xlabel="", ylabel="")
+        panel.set_title(f"{q2:.6g} GeV$^2$", fontsize=9)
     for panel in panels.flat[bins.size :]:
         panel.set_axis_off()
+    for panel in panels.flat[max(bins.size - _COLUMNS, 0) :]:  # lowest of their columns
+        panel.tick_params(labelbottom=True)
     figure.supxlabel("x")
     figure.supylabel("data / prediction")
     figure.suptitle(

@@ -18,7 +18,6 @@ from scalewright.files.toml_text import toml_text
 from scalewright.files.whole import write_whole
 
 SEED = 20_000_101
-FOLDER = Path(campaign.__file__).parents[1] / "data" / "campaign"
 
 # Inverse picobarn a table; a bin is 40 per cent wide in Q^2 and 50 in x, half of what falls into it is kept.
 BIN, KEPT = 0.4 * 0.5, 0.5
@@ -152,4 +151,4 @@ def write(folder: Path) -> None:
 
 
 if __name__ == "__main__":
-    write(Path(sys.argv[1]) if len(sys.argv) > 1 else FOLDER)
+    write(Path(sys.argv[1]) if len(sys.argv) > 1 else campaign.folder())

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from importlib import resources
 from math import gamma
+from pathlib import Path
 
 import numpy as np
 
@@ -49,10 +50,14 @@ def law(grid: ChebyshevGrid) -> Densities:
     )
 
 
+def folder() -> Path:
+    """Return where the tables are: a package with a compiled module is always installed as files."""
+    return Path(str(resources.files("scalewright"))) / "data" / "campaign"
+
+
 def measured() -> Measurements:
     """Read the campaign."""
-    with resources.as_file(resources.files("scalewright") / "data" / "campaign") as folder:
-        return Measurements.read(folder / "campaign.toml")
+    return Measurements.read(folder() / "campaign.toml")
 
 
 def carried(points: Measurements, grid: ChebyshevGrid) -> ForwardMap:

@@ -1,4 +1,4 @@
-"""`scalewright predict JOB.toml`: what densities predict for measured tables, and how far that is from them."""
+"""`scalewright predict JOB.toml`: what densities predict for measured tables, and how far off."""
 
 from __future__ import annotations
 
@@ -64,7 +64,8 @@ def run(options: argparse.Namespace) -> None:
     with job.place.blame():
         predicted = _predicted(job)
         prediction = predicted.mean(axis=0)
-        chi_square = _chi_square(job, prediction)
+        reference = prediction if job.reference == "prediction" else None
+        chi_square = ChiSquare(job.measured, job.form, reference)
     _write(job, predicted, chi_square)
     report.say(f"{job.file}: {job.measured!r}, predicted")
     report.say(f"  from {job.given!r}")
@@ -72,12 +73,9 @@ def run(options: argparse.Namespace) -> None:
     report.say(f"  in {time.perf_counter() - start:.2f} s")
     for cut in job.measured.cuts:
         report.say(f"  cut {cut}")
-    if chi_square is None:
-        report.say("  no chi-square: there are data without any uncertainty")
-    else:
-        summary(chi_square, prediction, report)
-        if predicted.shape[0] > 1:
-            report.say(f"  chi-square is that of the mean of {predicted.shape[0]} replicas")
+    summary(chi_square, prediction, report)
+    if predicted.shape[0] > 1:
+        report.say(f"  chi-square is that of the mean of {predicted.shape[0]} replicas")
     _draw(job, prediction, report)
 
 
@@ -95,15 +93,6 @@ def _predicted(job: PredictJob) -> Floats:
         subtraction=job.subtraction,
     )
     return fmap.predict(given)
-
-
-def _chi_square(job: PredictJob, prediction: Floats) -> ChiSquare | None:
-    """Return chi-square, or None where a datum has no uncertainty at all."""
-    reference = prediction if job.reference == "prediction" else None
-    sigma, shifts = job.measured.nuisance(reference)
-    if ((sigma == 0.0) & ~shifts.any(axis=1)).any():
-        return None
-    return ChiSquare(job.measured, job.form, reference)
 
 
 def summary(chi_square: ChiSquare, prediction: Floats, report: Report) -> None:
@@ -133,12 +122,11 @@ def summary(chi_square: ChiSquare, prediction: Floats, report: Report) -> None:
         report.say(f"  common sources at their best fit, in standard deviations: {said}")
 
 
-def _write(job: PredictJob, predicted: Floats, chi_square: ChiSquare | None) -> None:
+def _write(job: PredictJob, predicted: Floats, chi_square: ChiSquare) -> None:
     """Write predictions beside the data, one line a datum."""
     measured = job.measured
     prediction = predicted.mean(axis=0)
-    reference = None if chi_square is None else chi_square.reference
-    sigma = np.sqrt(np.diagonal(measured.covariance(reference)))
+    sigma = np.sqrt(np.diagonal(chi_square.covariance))
     columns: dict[str, Sequence[str]] = {
         "table": [measured.tables[number] for number in measured.table_of],
         "x": _numbers(measured.x),
@@ -150,9 +138,8 @@ def _write(job: PredictJob, predicted: Floats, chi_square: ChiSquare | None) -> 
     }
     if predicted.shape[0] > 1:
         columns["spread"] = _numbers(predicted.std(axis=0, ddof=1))
-    if chi_square is not None:
-        columns["pull"] = _numbers(chi_square.pulls(prediction))
-        columns["pull after shifts"] = _numbers(chi_square.pulls(prediction, shifted=True))
+    columns["pull"] = _numbers(chi_square.pulls(prediction))
+    columns["pull after shifts"] = _numbers(chi_square.pulls(prediction, shifted=True))
     rows = tuple(zip(*columns.values(), strict=True))
     write_cells(job.file, Cells(tuple(columns), rows, job.file, tuple(range(2, len(rows) + 2))))
 
