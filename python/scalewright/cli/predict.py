@@ -13,7 +13,7 @@ from ..files.cells import Cells, write_cells
 from ..fitting.chi_square import ChiSquare
 from ..forward import forward_map
 from .jobs import PredictJob, read_predict_job
-from .report import Report
+from .report import Report, chi_square_summary
 
 NAME = "predict"
 SUMMARY = "predict measured tables from densities, as a job file says"
@@ -48,8 +48,6 @@ with job.toml:
   file = "predictions.csv"
 """
 
-_SHOWN = 8  # tables and sources; more would not fit on a screen
-
 
 def arguments(parser: argparse.ArgumentParser) -> None:
     """Describe the arguments."""
@@ -73,7 +71,7 @@ def run(options: argparse.Namespace) -> None:
     report.say(f"  in {time.perf_counter() - start:.2f} s")
     for cut in job.measured.cuts:
         report.say(f"  cut {cut}")
-    summary(chi_square, prediction, report)
+    chi_square_summary(chi_square, prediction, report)
     if predicted.shape[0] > 1:
         report.say(f"  chi-square is that of the mean of {predicted.shape[0]} replicas")
     _draw(job, prediction, report)
@@ -93,33 +91,6 @@ def _predicted(job: PredictJob) -> Floats:
         subtraction=job.subtraction,
     )
     return fmap.predict(given)
-
-
-def summary(chi_square: ChiSquare, prediction: Floats, report: Report) -> None:
-    """Print chi-square of each table and of all, and the sources that are pulled most.
-
-    Parameters
-    ----------
-    chi_square : ChiSquare
-    prediction : ndarray, (datum,)
-    report : Report
-        Where to print.
-    """
-    parts = chi_square.per_table(prediction)
-    rows = [[part.title, str(part.data), f"{part.alone:.1f}", f"{part.share:.1f}"] for part in parts[:_SHOWN]]
-    if len(parts) > _SHOWN:
-        rest = parts[_SHOWN:]
-        said = f"{len(rest)} more tables"
-        rows.append([said, str(sum(p.data for p in rest)), "", f"{sum(p.share for p in rest):.1f}"])
-    total = float(np.asarray(chi_square.value(prediction)))
-    rows.append(["all", str(prediction.size), "", f"{total:.1f}"])
-    report.table(["chi-square", "data", "alone", "share"], rows)
-    shifts = chi_square.shifts(prediction)
-    order = np.argsort(-abs(shifts))[:_SHOWN]
-    if order.size:
-        names = chi_square.names_of_sources
-        said = ", ".join(f"{names[k]} {shifts[k]:+.2f}" for k in order)
-        report.say(f"  common sources at their best fit, in standard deviations: {said}")
 
 
 def _write(job: PredictJob, predicted: Floats, chi_square: ChiSquare) -> None:
