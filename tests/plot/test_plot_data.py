@@ -1,4 +1,4 @@
-"""Pictures of data beside predictions: what is drawn is what was asked for; how it looks was looked at by eye."""
+"""Pictures of data beside predictions: what is drawn is what was asked for; looks were judged by eye."""
 
 import numpy as np
 import pytest
