@@ -1,14 +1,13 @@
-"""Text and HTML about a theory: every option, and every convention in force.
+"""What a theory says of itself: every option, and every convention in force.
 
 Knows the theory by its attributes alone, so that it stands below `theory`.
 """
 
 from __future__ import annotations
 
-import html
 from typing import TYPE_CHECKING
 
-from ._check import show, show_all
+from ._display import brief, brief_all, screen, table
 
 if TYPE_CHECKING:
     from .theory import Theory
@@ -25,39 +24,31 @@ def option_lines(theory: Theory) -> list[tuple[str, str]]:
         ("masses", _masses(theory)),
         ("flavours", _flavours(theory)),
         ("thresholds", _thresholds(theory)),
-        ("scale ratio", f"mu_r^2/mu_f^2 = {show(theory.evolution_mu2_ratio)} in the splitting functions"),
+        ("scale ratio", f"mu_r^2/mu_f^2 = {brief(theory.evolution_mu2_ratio)} in the splitting functions"),
         ("A_Hg at a^2", _element(theory)),
         ("hard scales", _hard(theory)),
-        ("heavy quarks", f"{theory.heavy_quarks} in structure functions"),
-        ("FL", _longitudinal(theory)),
+        ("coefficients", _coefficients(theory)),
     ]
 
 
 def conventions(theory: Theory) -> str:
     """Return one screen of text: options, then conventions."""
-    lines = option_lines(theory)
-    width = max(len(name) for name, _ in lines)
-    options = [f"  {name:<{width}}  {sentence}" for name, sentence in lines]
-    return "\n".join(["Theory", *options, "Conventions", *(f"  {rule}" for rule in _RULES)])
+    return f"{screen('Theory', option_lines(theory))}\n{_RULES_TEXT}"
 
 
 def theory_html(theory: Theory) -> str:
-    """Return the options as an HTML table."""
-    cells = (
-        f"<tr><th style='text-align:left'>{html.escape(name)}</th><td>{html.escape(sentence)}</td></tr>"
-        for name, sentence in option_lines(theory)
-    )
-    return f"<table><caption>Theory</caption>{''.join(cells)}</table>"
+    """Return the options as an HTML table, the conventions folded below it."""
+    return table("Theory", option_lines(theory), _RULES_TEXT)
 
 
 def _coupling(theory: Theory) -> str:
     given = theory.coupling
-    return f"alpha_s = {show(given.alpha_s)} at mu_r^2 = {show(given.q2)} GeV^2 for nf = {given.nf}"
+    return f"alpha_s = {brief(given.alpha_s)} at mu_r^2 = {brief(given.q2)} GeV^2 for nf = {given.nf}"
 
 
 def _masses(theory: Theory) -> str:
     kind = "pole masses" if theory.masses.kind == "pole" else "MS-bar masses m(m)"
-    values = (f"{name} {show(mass)}" for name, mass in zip(_HEAVY, theory.masses.values, strict=True))
+    values = (f"{name} {brief(mass)}" for name, mass in zip(_HEAVY, theory.masses.values, strict=True))
     return f"{', '.join(values)} GeV, {kind}"
 
 
@@ -71,7 +62,7 @@ def _thresholds(theory: Theory) -> str:
     crossed = range(theory.fewest - 3, theory.most - 3)
     if not crossed:
         return "none"
-    scales = show_all(theory.threshold_scales[i] for i in crossed)
+    scales = brief_all(theory.threshold_scales[i] for i in crossed)
     names = ", ".join(_HEAVY[i] for i in crossed)
     return f"mu_f^2 = {scales} GeV^2 ({names}); a scale on a threshold counts as above it"
 
@@ -83,13 +74,15 @@ def _element(theory: Theory) -> str:
 
 
 def _hard(theory: Theory) -> str:
-    ratios = show(theory.hard_mur2_ratio), show(theory.hard_muf2_ratio)
+    ratios = brief(theory.hard_mur2_ratio), brief(theory.hard_muf2_ratio)
     return f"mu_r^2/Q^2 = {ratios[0]}, mu_f^2/Q^2 = {ratios[1]} in coefficient functions"
 
 
-def _longitudinal(theory: Theory) -> str:
-    power = len(theory.order) - 2 + (theory.fl_counting == "own")
-    return f"up to a^{power}, {theory.fl_counting} counting; F2 and xF3 up to a^{len(theory.order) - 2}"
+def _coefficients(theory: Theory) -> str:
+    power = len(theory.order) - 2
+    longitudinal = power + (theory.fl_counting == "own")
+    counting = f"F2 and xF3 up to a^{power}, FL up to a^{longitudinal} ({theory.fl_counting} counting)"
+    return f"{counting}; heavy quarks {theory.heavy_quarks}"
 
 
 _RULES = (
@@ -97,7 +90,14 @@ _RULES = (
     "densities are x f(x); scales are squared, in GeV^2; flavours are PDG numbers",
     "coupling: exact solution of the renormalisation-group equation; n loops decouple with n - 1,",
     "  the upward step as published, the downward step its exact inverse",
-    "densities at a threshold: continuous at LO, a^1 logarithms at NLO, a^2 at NNLO, with alpha_s of nf + 1;",
-    "  heavy quark = heavy antiquark there unless an intrinsic density is given",
+    "densities at a threshold: continuous at LO, a^1 logarithms at NLO, a^2 at NNLO; the coupling there is",
+    "  that of nf + 1 flavours at mu_r^2 = mu_thr^2, also where mu_r differs from mu_f elsewhere",
+    "intrinsic heavy densities are matched up to a^1: there is no intrinsic matching at a^2 (NNLO);",
+    "  without one, heavy quark = heavy antiquark at the threshold",
+    "downwards at a threshold: the exact inverse of the upward step; an intrinsic heavy density (what the",
+    "  light densities do not make) goes back to the order kept in a, so that nothing is enlarged",
     "mu_r differs from mu_f: splitting functions re-expanded in a(mu_r); nf of the coupling is that of mu_f",
+    "the same bits on one kind of CPU, whatever the number of threads; 1e-12 of each other between kinds",
 )
+
+_RULES_TEXT = "\n".join(["Conventions", *(f"  {rule}" for rule in _RULES)])

@@ -1,55 +1,55 @@
-"""Densities in words: one line, one screen, one table. Printing computes nothing and never raises."""
+"""How objects show themselves: short numbers, one screen of text, one table of HTML.
+
+Messages of bad input are another matter: they show numbers to the last digit, see `_check.show`.
+"""
 
 from __future__ import annotations
 
 import html
-from typing import TYPE_CHECKING
+from collections.abc import Iterable, Sequence
 
-from ._check import show, show_all
-from .flavours import flavour_name
+import numpy as np
 
-if TYPE_CHECKING:
-    from ._questions import Questions
+Rows = Sequence[tuple[str, str]]
 
 
-def line(of: Questions) -> str:
-    """Return one line."""
-    replicas = _count(of.replicas, "replica")
-    flavours = _count(len(of.flavours), "flavour")
-    if of._one:
-        where = f"q2={show(of.q2)} GeV^2, nf={of.nf}"
-    else:
-        where = f"{_count(of.scales, 'scale')}, q2={show_all(of._q2, most=2)} GeV^2"
-    return f"Densities({replicas}, {flavours}, {where}, {of.grid.nodes} nodes)"
+def brief(value: float) -> str:
+    """Write a number with at most ten digits.
+
+    Examples
+    --------
+    >>> brief(91.1876**2), brief(1e-7), brief(100000.0)
+    ('8315.178394', '1e-07', '100000')
+    """
+    return f"{float(value):.10g}"
 
 
-def rows(of: Questions) -> list[tuple[str, str]]:
-    """Return what there is to say, as (name, value)."""
-    return [
-        ("q2", f"{show_all(of._q2)} GeV^2"),
-        ("nf", show_all(of._nf)),
-        ("replicas", str(of.replicas)),
-        ("flavours", ", ".join(flavour_name(number) for number in of.flavours)),
-        ("grid", repr(of.grid)),
-        ("values", f"x f(x), {of.values.nbytes / 1e6:.3g} MB"),
-        ("below x_min", "unknown" if of.below is None else "momentum and quark numbers known"),
-    ]
+def brief_all(values: Iterable[float], most: int = 8) -> str:
+    """Write a list of numbers, the middle left out when it is long."""
+    words = [brief(value) for value in np.asarray(list(values))]
+    return ", ".join(words if len(words) <= most else [*words[: most - 1], "...", words[-1]])
 
 
-def screen(of: Questions) -> str:
-    """Return one screen."""
-    return "\n".join(["Densities", *(f"  {name:<12}{value}" for name, value in rows(of))])
-
-
-def table(of: Questions) -> str:
-    """Return an HTML table."""
-    cells = (
-        f"<tr><th style='text-align:left'>{html.escape(name)}</th><td>{html.escape(value)}</td></tr>"
-        for name, value in rows(of)
-    )
-    return f"<table><caption>Densities</caption>{''.join(cells)}</table>"
-
-
-def _count(number: int, noun: str) -> str:
+def count(number: int, noun: str) -> str:
     """Return "1 replica", "2 replicas"."""
     return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
+
+
+def screen(title: str, rows: Rows) -> str:
+    """Return one screen: a title, then name and words in two columns."""
+    width = max(len(name) for name, _ in rows)
+    return "\n".join([title, *(f"  {name:<{width}}  {words}" for name, words in rows)])
+
+
+def table(title: str, rows: Rows, more: str = "") -> str:
+    """Return the same as an HTML table, for notebooks; `more` is text that stands folded below it."""
+    cells = (
+        f"<tr><th style='text-align:left'>{html.escape(name)}</th>"
+        f"<td style='text-align:left'>{html.escape(words)}</td></tr>"
+        for name, words in rows
+    )
+    made = f"<table><caption>{html.escape(title)}</caption>{''.join(cells)}</table>"
+    if more:
+        head, _, rest = more.partition("\n")
+        made += f"<details><summary>{html.escape(head)}</summary><pre>{html.escape(rest)}</pre></details>"
+    return made

@@ -99,7 +99,7 @@ def compose(
     second : mapping of name to ndarray, (scale, node)
         Rows of the second step.
     second_light : int
-        The same number in the second step; not less, see `_divide`.
+        The same number in the second step; not less, see `_composed.divided`.
 
     Returns
     -------

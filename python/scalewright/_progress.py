@@ -41,12 +41,15 @@ class Line:
         if not self._shown or (done < total and now - self._drawn < _EVERY_S):
             return
         self._drawn = now
+        if done >= total:  # said more than once by a build that ends in several steps
+            self._stream.write("\r\x1b[K")
+            self._stream.flush()
+            return
         share = done / total if total else 1.0
         bar = ("=" * int(_WIDTH * share)).ljust(_WIDTH, ".")
         left = (now - self._start) * (1.0 / share - 1.0) if share > 0.0 else 0.0
         text = f"{self._label} [{bar}] {done} of {total}, {left:.0f} s left"
-        end = "\r\x1b[K" if done >= total else ""
-        self._stream.write(f"\r\x1b[K{text}{end}")
+        self._stream.write(f"\r\x1b[K{text}")
         self._stream.flush()
 
 

@@ -134,7 +134,27 @@ class Questions:
         return result if asked else result[0]
 
     def scale(self, q2: float | None, nf: int | None = None) -> Self:
-        """Return the densities of one scale at hand, without copying; arguments as for `at`."""
+        """Return the densities of one scale at hand, without copying.
+
+        Parameters
+        ----------
+        q2 : float or None
+            mu_f^2 in GeV^2, equal to a scale at hand to 1e-12; None for the only one.
+        nf : int, optional
+            Picks between the two values on a threshold; by default the one above.
+
+        Returns
+        -------
+        Densities
+            Without the axis of scales.
+
+        Raises
+        ------
+        InputError
+            If `q2` is a list, or None where there are several scales.
+        RangeError
+            If the scale is not at hand.
+        """
         if q2 is not None and not _check.is_one("q2", q2):
             _check.refuse("q2", q2, "q2 must be one number")
         _, indices = self._find(q2, nf)
@@ -145,7 +165,12 @@ class Questions:
         )
 
     def combination(self, name: int | str) -> Floats:
-        """Return the nodal values of a flavour or a combination, named as for `at`.
+        """Return the nodal values of a flavour or a combination.
+
+        Parameters
+        ----------
+        name : int or str
+            PDG number or name, as for `at`.
 
         Returns
         -------

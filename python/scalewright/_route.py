@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any, TypeAlias
 import numpy as np
 
 from ._check import Floats, Integers, show, show_all
+from ._display import brief
 from .errors import RangeError
 
 if TYPE_CHECKING:
@@ -71,14 +72,14 @@ class Route:
     def start_words(self) -> str:
         """Say where it begins."""
         heavy = f", intrinsic {show_all(self.intrinsic)}" if self.intrinsic else ""
-        return f"{show(self.start_q2)} GeV^2 (nf = {self.start_nf}{heavy})"
+        return f"{brief(self.start_q2)} GeV^2 (nf = {self.start_nf}{heavy})"
 
     @property
     def end_words(self) -> str:
         """Say where it ends."""
         if self.q2.size == 1:
-            return f"{show(self.q2[0])} GeV^2 (nf = {self.nf[0]})"
-        least, most = show(self.q2.min()), show(self.q2.max())
+            return f"{brief(self.q2[0])} GeV^2 (nf = {self.nf[0]})"
+        least, most = brief(self.q2.min()), brief(self.q2.max())
         fewest, most_nf = self.nf.min(), self.nf.max()
         counts = f"{fewest}" if fewest == most_nf else f"{fewest} to {most_nf}"
         return f"{self.q2.size} scales from {least} to {most} GeV^2 (nf = {counts})"

@@ -67,7 +67,18 @@ class Below:
             )
 
     def scale(self, index: int) -> Below:
-        """Return the part of one scale; the axis of scales stays."""
+        """Return the part of one scale.
+
+        Parameters
+        ----------
+        index : int
+            Position in the axis of scales.
+
+        Returns
+        -------
+        Below
+            The axis of scales stays, of length one.
+        """
         return Below(self.momentum[index : index + 1], self.number[index : index + 1])
 
     def __eq__(self, other: object) -> bool:

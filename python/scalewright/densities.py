@@ -11,13 +11,15 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike
 
-from . import _check, _display, _lattice, _resolution, _sampling, _stored
+from . import _check, _nodal, _resolution, _stored_densities
 from . import below as _below
 from ._check import Floats, Integers
+from ._display import brief, brief_all, count, screen, table
 from ._questions import Questions
 from .below import Below
 from .files.csv import Lattice, read_lattice, write_lattice
 from .files.whole import PathLike
+from .flavours import flavour_name
 from .grid import ChebyshevGrid
 
 __all__ = ["Below", "Densities"]
@@ -138,7 +140,7 @@ class Densities(Questions):
         for flavour, function in zip(flavours, functions.values(), strict=True):
             _check.function(f"functions[{flavour}]", function)
         checked = {
-            flavour: _sampling.checked(f"functions[{flavour}]", function)
+            flavour: _nodal.checked(f"functions[{flavour}]", function)
             for flavour, function in zip(flavours, functions.values(), strict=True)
         }
         return cls._sampled(grid, _check.scale("q2", q2), nf, [checked], flavours)
@@ -185,7 +187,7 @@ class Densities(Questions):
 
         def of(flavour: int, scale: float) -> Callable[[Floats], Floats]:
             name = f"f at flavour = {flavour}, q2 = {_check.show(scale)}"
-            return _sampling.checked(name, lambda x: f(flavour, x, scale))
+            return _nodal.checked(name, lambda x: f(flavour, x, scale))
 
         return cls._sampled(grid, q2, nf, [{n: of(n, s) for n in numbers} for s in scales.tolist()], numbers)
 
@@ -201,9 +203,9 @@ class Densities(Questions):
         """Sample checked functions, one mapping a scale, and say where the grid is too coarse for them."""
         _check_grid(grid)
         one, scales, counts = _check_scales(q2, nf)
-        parts = [_sampling.sampled(grid, of_scale) for of_scale in functions]
+        parts = [_nodal.sampled(grid, of_scale) for of_scale in functions]
         values = np.stack([part[0] for part in parts])[:, np.newaxis]
-        known = _sampling.joined([part[1] for part in parts])
+        known = _nodal.joined([part[1] for part in parts])
         made = cls._of(grid, scales, counts, flavours, np.ascontiguousarray(values), known, one)
         errors = np.stack([part[2] for part in parts])[:, np.newaxis]
         _resolution.warn_where_measured(made, errors, depth=2)
@@ -244,9 +246,9 @@ class Densities(Questions):
             If `resolution` estimates an error above 1e-4.
         """
         _check_grid(grid)
-        table = read_lattice(path)
-        values = _lattice.on_nodes(str(path), table.x, table.values, grid, interpolate)
-        made = cls._of(grid, table.q2, table.nf, table.flavours, values, None, table.q2.size == 1)
+        read = read_lattice(path)
+        values = _nodal.on_nodes(str(path), read.x, read.values, grid, interpolate)
+        made = cls._of(grid, read.q2, read.nf, read.flavours, values, None, read.q2.size == 1)
         _resolution.warn_where_estimated(made, depth=1)
         return made
 
@@ -261,29 +263,44 @@ class Densities(Questions):
         copy : bool
             Read into memory instead of mapping the file: for network file systems.
 
+        Returns
+        -------
+        Densities
+            With what is known of below x_min.
+
         Raises
         ------
         StoreError
             If the file is not ours, damaged, of a newer format, or does not hold densities.
         """
-        return cls(**_stored.load(path, copy))
+        return cls(**_stored_densities.load(path, copy))
 
     # ---- ways out --------------------------------------------------------------------------------------
 
     def save(self, path: PathLike) -> None:
         """Store the densities, whole or not at all; `load` gives every bit back.
 
+        Parameters
+        ----------
+        path : path-like
+            The file, HDF5 in a checked wrapping; its folder must exist.
+
         Raises
         ------
         StoreError
             If the file cannot be written; an old one at `path` is untouched then.
         """
-        _stored.save(path, self)
+        _stored_densities.save(path, self)
 
     def to_csv(self, path: PathLike) -> None:
         """Write a table with the columns q2, nf, x, flavour, replica, value, at the nodes of the grid.
 
         Floats keep every bit. What is known of below x_min is not in the table.
+
+        Parameters
+        ----------
+        path : path-like
+            The file; its folder must exist.
 
         Raises
         ------
@@ -297,15 +314,31 @@ class Densities(Questions):
 
     def __repr__(self) -> str:
         """One line."""
-        return _display.line(self)
+        flavours, replicas = count(len(self.flavours), "flavour"), count(self.replicas, "replica")
+        if self._one:
+            where = f"q2={brief(self._q2[0])} GeV^2, nf={self.nf}"
+        else:
+            where = f"{count(self.scales, 'scale')}, q2={brief_all(self._q2, most=2)} GeV^2"
+        return f"Densities({replicas}, {flavours}, {where}, {self.grid.nodes} nodes)"
+
+    def _rows(self) -> list[tuple[str, str]]:
+        return [
+            ("q2", f"{brief_all(self._q2)} GeV^2"),
+            ("nf", _check.show_all(self._nf)),
+            ("replicas", str(self.replicas)),
+            ("flavours", ", ".join(flavour_name(number) for number in self.flavours)),
+            ("grid", repr(self.grid)),
+            ("values", f"x f(x), {self.values.nbytes / 1e6:.3g} MB"),
+            ("below x_min", "unknown" if self.below is None else "momentum and quark numbers known"),
+        ]
 
     def __str__(self) -> str:
         """One screen."""
-        return _display.screen(self)
+        return screen("Densities", self._rows())
 
     def _repr_html_(self) -> str:
         """Return a table for notebooks."""
-        return _display.table(self)
+        return table("Densities", self._rows())
 
     def __eq__(self, other: object) -> bool:
         """Say whether grid, scales, flavours and every value are the same."""

@@ -21,8 +21,8 @@ from ._check import Floats
 
 __all__ = ["Electroweak"]
 
-#: Particle Data Group, recalled from memory: 1/alpha(0) and G_F in GeV^-2; masses in GeV; the effective leptonic
-#: angle (LEP and SLD, hep-ex/0509008); 1/alpha(M_Z) with five flavours, on shell.
+#: Particle Data Group, recalled from memory: 1/alpha(0) and G_F in GeV^-2; masses in GeV; the effective
+#: leptonic angle (LEP and SLD, hep-ex/0509008); 1/alpha(M_Z) with five flavours, on shell.
 ALPHA_0 = 1.0 / 137.035999
 G_FERMI = 1.1663788e-5
 Z_MASS = 91.1876
@@ -117,6 +117,15 @@ class Electroweak:
             In charged currents alone, which share no row with neutral ones.
         mixing : array_like, (3, 3)
             Moduli |V|: rows u, c, t, columns d, s, b.
+
+        Returns
+        -------
+        Electroweak
+
+        Raises
+        ------
+        InputError
+            If a number lies outside its range.
         """
         return cls("effective", alpha, g_fermi, z_mass, w_mass, sin2, _tuples(mixing))
 
@@ -137,6 +146,15 @@ class Electroweak:
             In GeV^-2 and GeV; M_W below M_Z.
         mixing : array_like, (3, 3)
             Moduli |V|: rows u, c, t, columns d, s, b.
+
+        Returns
+        -------
+        Electroweak
+
+        Raises
+        ------
+        InputError
+            If a number lies outside its range.
         """
         z_mass = _check.real("z_mass", z_mass, above=0.0)
         w_mass = _check.real("w_mass", w_mass, above=0.0, below=z_mass)
@@ -153,7 +171,9 @@ class Electroweak:
         alpha: float = ALPHA_Z,
         mixing: ArrayLike = MIXING,
     ) -> Electroweak:
-        """Return the set (G_F, M_Z, alpha(M_Z)): s2 (1 - s2) = pi alpha/(sqrt2 G_F M_Z^2), M_W^2 = M_Z^2 (1 - s2).
+        """Return the set (G_F, M_Z, alpha(M_Z)).
+
+        s2 (1 - s2) = pi alpha/(sqrt2 G_F M_Z^2) and M_W^2 = M_Z^2 (1 - s2).
 
         Parameters
         ----------
@@ -163,6 +183,15 @@ class Electroweak:
             alpha(M_Z).
         mixing : array_like, (3, 3)
             Moduli |V|: rows u, c, t, columns d, s, b.
+
+        Returns
+        -------
+        Electroweak
+
+        Raises
+        ------
+        InputError
+            If a number lies outside its range.
         """
         product = np.pi * alpha / (np.sqrt(2.0) * g_fermi * z_mass**2)
         if not 0.0 < product < 0.25:

@@ -1,7 +1,8 @@
 """From input densities to predictions: one linear map for a table of points.
 
-Massless coefficient functions are matrices on the grid, computed once; a point is a row of them, combined with
-powers of a and the couplings of the quarks, and carried back to the input by the operators of its mu_f^2.
+Massless coefficient functions are matrices on the grid, computed once; a point is a row of them, combined
+with powers of a and the couplings of the quarks, and carried back to the input by the operators of its
+mu_f^2.
 """
 
 from __future__ import annotations
@@ -15,6 +16,7 @@ from . import _check
 from ._check import Floats, show
 from ._measured.combination import Combination
 from ._observed import storing
+from ._observed.accuracy import row_errors
 from ._observed.carried import carried_matrix
 from ._observed.differences import TOLERANCE, Derivative, differentiated
 from ._observed.points import Points
@@ -49,13 +51,16 @@ class ForwardMap:
         What each row is.
     data : Combination
         From rows to data.
+    steps_error : float
+        Largest relative error estimate of the steps in scale.
     """
 
     def __init__(
         self, problem: Problem, start_q2: float, start_nf: int, flavours: tuple[int, ...], matrix: Floats,
         data: Combination,
+        steps_error: float,
     ) -> None:  # fmt: skip
-        self._problem, self.data = problem, data
+        self._problem, self.data, self.steps_error = problem, data, steps_error
         self.start_q2, self.start_nf, self.flavours = start_q2, start_nf, flavours
         matrix.flags.writeable = False
         self.matrix = matrix
@@ -103,8 +108,55 @@ class ForwardMap:
         return np.asarray(values.reshape(values.shape[0], -1) @ flat.T)
 
     def predict(self, densities: Densities | Floats) -> Floats:
-        """Predict each datum, (replica, datum); as `predict_rows` otherwise."""
+        """Predict each datum.
+
+        Parameters
+        ----------
+        densities : Densities or array_like
+            As for `predict_rows`.
+
+        Returns
+        -------
+        ndarray, (replica, datum)
+
+        Raises
+        ------
+        InputError
+            As `predict_rows`; or if a denominator vanishes.
+        """
         return self.data.predict(self.predict_rows(densities))
+
+    def numerical_error(self, densities: Densities | Floats) -> Floats:
+        """Estimate how far `predict` is off numerically: grid, quadrature, steps in scale, rounding.
+
+        Parameters
+        ----------
+        densities : Densities or array_like
+            As for `predict_rows`.
+
+        Returns
+        -------
+        ndarray, (replica, datum)
+            Absolute; not what a further order of a would change.
+
+        Raises
+        ------
+        InputError
+            As `predict`.
+
+        Notes
+        -----
+        An estimate from the last Chebyshev coefficients of the input; how sharp it is stands in
+        `scalewright._observed.accuracy`.
+        """
+        values = self._values(densities)
+        errors = row_errors(self.grid, self.matrix, values, self.steps_error)
+        rows = self.predict_rows(values)
+        made = [
+            np.abs(self.data.tangent(row, np.diag(error))).sum(axis=1)
+            for row, error in zip(rows, errors, strict=True)
+        ]
+        return np.asarray(made)
 
     def derivative(self, parameter: str) -> Floats:
         """Derivative of the matrix with respect to a parameter of the theory, by finite differences.
@@ -112,7 +164,8 @@ class ForwardMap:
         Parameters
         ----------
         parameter : {"alpha_s", "charm", "bottom", "hard_mur2_ratio", "hard_muf2_ratio"}
-            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales. Thresholds stay fixed.
+            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales. Thresholds stay
+            fixed.
 
         Returns
         -------
@@ -128,8 +181,21 @@ class ForwardMap:
     def differences(self, parameter: str) -> Derivative:
         """Return `derivative` with the step that was taken and the error that it shows.
 
-        A hard scale ratio is moved by 1 per cent at most, which must stay in [0.25, 4]; mu_f must not cross a
-        threshold within it.
+        Parameters
+        ----------
+        parameter : str
+            As for `derivative`. A ratio is moved by 1 per cent at most, which must stay in [0.25, 4]; no mu_f
+            must cross a threshold within it.
+
+        Returns
+        -------
+        Derivative
+            matrix, step and error.
+
+        Raises
+        ------
+        InputError
+            As `derivative`.
         """
         return differentiated(self.theory, parameter, self._rebuilt)
 
@@ -144,13 +210,18 @@ class ForwardMap:
     def save(self, path: PathLike) -> None:
         """Store the map, whole or not at all.
 
+        Parameters
+        ----------
+        path : path-like
+            The file, HDF5 in a checked wrapping.
+
         Raises
         ------
         StoreError
             If it cannot be written; an old file stays then.
         """
         start = self.start_q2, self.start_nf
-        storing.save(path, self._problem, start, self.flavours, self.matrix, self.data)
+        storing.save(path, self._problem, start, self.flavours, self.matrix, self.data, self.steps_error)
 
     @classmethod
     def load(cls, path: PathLike, *, copy: bool = False) -> ForwardMap:
@@ -159,8 +230,13 @@ class ForwardMap:
         Parameters
         ----------
         path : path-like
+            The file.
         copy : bool
             Read it into memory instead of mapping it; for network file systems.
+
+        Returns
+        -------
+        ForwardMap
 
         Raises
         ------
@@ -275,7 +351,9 @@ def forward_map(
         problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads
     )
     flavours = operators._route.active
-    return ForwardMap(problem, operators.start_q2, operators.start_nf, flavours, matrix, data)
+    return ForwardMap(
+        problem, operators.start_q2, operators.start_nf, flavours, matrix, data, operators.error
+    )
 
 
 def _rows_and_data(points: Any) -> tuple[Points, Combination]:

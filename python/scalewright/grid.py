@@ -15,6 +15,7 @@ from numpy.typing import ArrayLike
 
 from . import _check
 from ._check import Floats, Integers
+from ._display import brief, count, screen, table
 
 if TYPE_CHECKING:
     from . import _core
@@ -226,7 +227,23 @@ class ChebyshevGrid:
     def __repr__(self) -> str:
         """One line."""
         panels = self.degrees.size
-        return f"ChebyshevGrid({self.nodes} nodes in {panels} panels, x_min={_check.show(self.x_min)})"
+        return f"ChebyshevGrid({self.nodes} nodes in {count(panels, 'panel')}, x_min={brief(self.x_min)})"
+
+    def _rows(self) -> list[tuple[str, str]]:
+        x = [*np.exp(-self.edges[:-1]), self.x_min]
+        panels = enumerate(self.degrees)
+        return [
+            ("nodes", f"{self.nodes}, x = {self.x[0]:.6g} to {brief(self.x_min)}"),
+            *((f"panel {i + 1}", f"x = {x[i]:.3g} to {x[i + 1]:.3g}, degree {n}") for i, n in panels),
+        ]
+
+    def __str__(self) -> str:
+        """One screen."""
+        return screen("ChebyshevGrid", self._rows())
+
+    def _repr_html_(self) -> str:
+        """Return a table, for notebooks."""
+        return table("ChebyshevGrid", self._rows())
 
 
 def _frozen(values: Floats) -> Floats:

@@ -10,8 +10,9 @@ low x                x < low_x                          logarithms of 1/x beyond
 inclusive            else                               the operator product expansion, x generic
 ==================== ================================== ==================================================
 
-L is Lambda, a hadronic scale. The boundaries are common practice, no source: arguments, and never a cut by themselves.
-The first line that holds names the regime. W^2 = m_p^2 + Q^2 (1/x - 1) and Q^2 = x y (s - m_p^2), exact.
+L is Lambda, a hadronic scale. The boundaries are common practice, no source: arguments, and never a cut by
+themselves. The first line that holds names the regime. W^2 = m_p^2 + Q^2 (1/x - 1) and Q^2 = x y (s -
+m_p^2), exact.
 """
 
 from __future__ import annotations
@@ -41,7 +42,7 @@ class Regimes:
     w2 : ndarray
         Squared mass of the final state in GeV^2.
     of_resonance, of_endpoint : ndarray
-        (1/x - 1) Q^2/Lambda^2 = (W^2 - m_p^2)/Lambda^2 and (1/x - 1) Q/Lambda; 1/x - 1 rather than 1 - x, so that
+        (1/x - 1) Q^2/Lambda^2 = (W^2 - m_p^2)/Lambda^2 and (1/x - 1) Q/Lambda; 1/x - 1 and not 1 - x, so that
         points of small x and Q^2, whose W is large, are not taken for resonances.
     """
 

@@ -2,6 +2,43 @@
 
 A table is a TOML description beside a CSV file of points; `Measurements` are one table or several. Rows are
 the points at which a theory predicts; data are what was measured: rows, or sums, ratios and averages of them.
+
+Keys of a description (those with a star may also be columns: ``[columns] s = "energy squared"``):
+
+============== =============================================================================================
+title          name of the table, unlike those of others
+points         CSV file beside the description; its first line names the columns
+measures *     reduced_cross_section, F2, FL, F1, xF3, d2sigma_dx_dq2 or d2sigma_dx_dy
+current *      neutral (default) or charged
+exchange *     photon or photon+Z (default for neutral), W (charged)
+beam *         e-, e+, nu or nubar; needless for F1, F2, FL, xF3 by photons alone
+polarisation * -1 to 1; 0 by default
+target *       proton (default), neutron, deuteron, isoscalar or { z = 26, a = 56 }; in a column "z=26 a=56"
+tagged *       charm or bottom: the current couples to this quark
+s *            GeV^2; y follows from Q^2 = x y (s - M^2)
+unit, note     text
+columns        which columns hold x, q2, value, y and label; x, q2 and value may be called so
+uncertainty    ``[[uncertainty]]``, see below
+covariance     ``[[covariance]]``, see below
+combination    each line is a datum made of several rows at its x and q2, see below
+datum          ``[[datum]]``: a line is a datum made of other lines, see below
+============== =============================================================================================
+
+An ``[[uncertainty]]`` has a ``column``; or one ``size`` for all and a ``name``; or ``up`` and ``down``,
+columns of signed shifts (``down_as = "size"``: without sign) with ``asymmetric = "mean"``, ``"larger"`` or
+``"shifted"``. ``given_in`` is ``"percent"`` or ``"value"``; ``scales_with`` is ``"nothing"`` (additive) or
+``"value"`` (multiplicative). Each datum has its own, unless ``correlated = true`` (one source in this table)
+or ``shared_as = "name"`` (one source wherever this name appears).
+
+A ``[[covariance]]`` has a ``file``, a matrix without head in the order of the data, and a ``kind``:
+``"covariance"``, with ``given_in`` and ``scales_with``; or ``"correlation"``, ``of`` one of the
+uncertainties. ``repair = "clip"`` or ``"nearest"`` mends a matrix that is not positive semi-definite, and
+`describe` says by how much.
+
+A ``[combination]`` names rows by what sets them apart, ``rows = { d = { target = "deuteron" }, p = {} }``,
+and their weights, ``numerator = { d = 1 }`` and, for a ratio, ``denominator = { p = 1 }``. A ``[[datum]]``
+has the ``label`` of the line that bears its value, and weights of other lines by their labels; a line
+without value is a row alone.
 """
 
 from __future__ import annotations
@@ -11,7 +48,6 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from numpy.random import Generator
 from numpy.typing import ArrayLike, NDArray
 
 from . import _check
@@ -244,7 +280,7 @@ class Measurements(Questions):
         return np.asarray(result, dtype=bool)
 
     def pseudo_data(
-        self, rng: Generator, truth: ArrayLike | None = None, *, replicas: int | None = None
+        self, rng: np.random.Generator, truth: ArrayLike | None = None, *, replicas: int | None = None
     ) -> PseudoData:
         """Draw what the experiments might have measured.
 
@@ -268,7 +304,7 @@ class Measurements(Questions):
         InputError
             If `rng` is no generator, or `truth` does not have one finite number a datum.
         """
-        if not isinstance(rng, Generator):
+        if not isinstance(rng, np.random.Generator):
             _check.refuse("rng", rng, "rng must be a numpy.random.Generator")
         count = 1 if replicas is None else _check.whole("replicas", replicas, least=1, most=10**9)
         centre = self.value if truth is None else truth

@@ -3,19 +3,19 @@
 All integrals run over [x_min, 1] of the grid: what lies below is not known, and `SumRule.remainder` names it.
 With a = alpha_s(mu_r)/(4 pi), for mu_r = mu_f = Q and rows of the mixing matrix of length 1:
 
-====================== ========================================================== ===================================
-name                   integral                                                   value
-====================== ========================================================== ===================================
-Adler                  int dx/(2x) (F2(nubar p) - F2(nu p))                       1 at every order
-Gross-Llewellyn Smith  int dx/(2x) (xF3(nu p) + xF3(nubar p))                     3 (1 - 4a - 16 a^2 (55/12 - nf/3))
-Bjorken                int dx (F1(nubar p) - F1(nu p)), unpolarised               1 - 8/3 a - 16 a^2 (23/6 - 8 nf/27)
-Gottfried              int dx/x (F2(p) - F2(n)), photon exchange                  1/3 if ubar = dbar, at LO
-====================== ========================================================== ===================================
+===================== ================================================ ===================================
+name                  integral                                         value
+===================== ================================================ ===================================
+Adler                 int dx/(2x) (F2(nubar p) - F2(nu p))             1 at every order
+Gross-Llewellyn Smith int dx/(2x) (xF3(nu p) + xF3(nubar p))           3 (1 - 4a - 16 a^2 (55/12 - nf/3))
+Bjorken               int dx (F1(nubar p) - F1(nu p)), unpolarised     1 - 8/3 a - 16 a^2 (23/6 - 8 nf/27)
+Gottfried             int dx/x (F2(p) - F2(n)), photon exchange        1/3 if ubar = dbar, at LO
+===================== ================================================ ===================================
 
-S. Adler, Phys. Rev. 143 (1966) 1144; D. Gross, C. Llewellyn Smith, Nucl. Phys. B14 (1969) 337; J. Bjorken, Phys.
-Rev. 163 (1967) 1767; K. Gottfried, Phys. Rev. Lett. 18 (1967) 1174; corrections of order a^2: S. Larin, J. Vermaseren,
-Phys. Lett. B259 (1991) 345, and S. Larin, F. Tkachov, J. Vermaseren, Phys. Lett. B273 (1991) 117, recalled from
-memory.
+S. Adler, Phys. Rev. 143 (1966) 1144; D. Gross, C. Llewellyn Smith, Nucl. Phys. B14 (1969) 337; J. Bjorken,
+Phys. Rev. 163 (1967) 1767; K. Gottfried, Phys. Rev. Lett. 18 (1967) 1174; corrections of order a^2: S. Larin,
+J. Vermaseren, Phys. Lett. B259 (1991) 345, and S. Larin, F. Tkachov, J. Vermaseren, Phys. Lett. B273 (1991)
+117, recalled from memory.
 """
 
 from __future__ import annotations
@@ -86,8 +86,8 @@ def moment(
     ----------
     measure : {"F2", "FL", "xF3"}
     n : float
-        At least 1 for xF3 and differences that vanish at small x, 2 and more otherwise, if the integral from 0
-        is to exist; any number is allowed above x_min.
+        At least 1 for xF3 and differences that vanish at small x, 2 and more otherwise, for the integral
+        from 0 to exist; any number is allowed above x_min.
     q2 : float
         Q^2 in GeV^2.
     densities, theory, current, exchange, beam, polarisation, target, tagged, electroweak

@@ -1,7 +1,7 @@
 """Single questions: a structure function or cross section at some points, from densities at their scales.
 
-Which one when: `structure_function` for a few values from densities that are evolved already; `forward_map` for a
-table of points and many input densities. Both use the same rows.
+Which one when: `structure_function` for a few values from densities that are evolved already; `forward_map`
+for a table of points and many input densities. Both use the same rows.
 """
 
 from __future__ import annotations

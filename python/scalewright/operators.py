@@ -6,7 +6,6 @@ composed serves the scales it holds.
 
 from __future__ import annotations
 
-import html
 import threading
 from collections.abc import Iterator
 from typing import Any, TypeAlias
@@ -17,6 +16,7 @@ from numpy.typing import ArrayLike
 from . import _check, _composed
 from ._carry import Task, matched, thread_count
 from ._check import Floats, Integers, show_all
+from ._display import screen, table
 from ._route import Held, Live, Route, Source
 from .densities import Densities
 from .errors import InputError
@@ -188,15 +188,19 @@ class Operators:
         q2: Scales = None,
         nf: Scales = None,
         flavours: ArrayLike | None = None,
+        out: Floats | None = None,
         threads: int | None = None,
         missing: str = "error",
     ) -> Iterator[Densities]:
-        """Carry densities to other scales, one at a time: memory does not grow with their number.
+        """Carry densities to other scales, a few at a time: memory does not grow with their number.
 
         Parameters
         ----------
         densities, q2, nf, flavours, threads, missing
             As for `apply`.
+        out : ndarray, (k, replica, flavour, node), optional
+            Where to write, k scales at a time, again and again: what was yielded before is overwritten. Saves
+            the time to fetch fresh memory for every scale.
 
         Yields
         ------
@@ -209,8 +213,7 @@ class Operators:
             As `apply`, before the first scale.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
-        parts = (task.one(index).run() for index in range(task.q2.size))
-        return (part.scale(None) for part in parts)
+        return (one for part, place in task.parts(out) for one in part.run_apart(place))
 
     def _task(
         self,
@@ -306,9 +309,9 @@ class Operators:
         StoreError
             If it cannot be written; an old file stays then.
         """
-        from . import _operator_files
+        from . import _stored_operators
 
-        _operator_files.save(path, self.held())
+        _stored_operators.save(path, self.held())
 
     @staticmethod
     def load(path: PathLike, copy: bool = False) -> Operators:
@@ -331,9 +334,9 @@ class Operators:
         StoreError
             If the file is not ours, damaged, of another kind or made by a newer release.
         """
-        from . import _operator_files
+        from . import _stored_operators
 
-        return _operator_files.load(path, copy)
+        return _stored_operators.load(path, copy)
 
     def __reduce__(self) -> tuple[Any, ...]:
         """Pickle as arrays."""
@@ -379,18 +382,14 @@ class Operators:
             ("from", self._route.start_words),
             ("to", f"{self._route.end_words}; {kind}"),
             ("grid", repr(self._grid)),
-            ("blocks", f"{len(names)} of {nodes} x {nodes} a scale: {show_all(names, 6)}".replace("'", "")),
+            ("blocks", f"{len(names)} of {nodes} x {nodes} a scale: {show_all(names, 4)}".replace("'", "")),
             ("steps", f"{self.steps}, largest relative error estimate {self.error:.1e}"),
         ]
 
     def __str__(self) -> str:
         """One screen."""
-        return "\n".join(["Operators", *(f"  {name:<7} {words}" for name, words in self._lines())])
+        return screen("Operators", self._lines())
 
     def _repr_html_(self) -> str:
         """Return a table, for notebooks."""
-        cells = (
-            f"<tr><th style='text-align:left'>{name}</th><td>{html.escape(words)}</td></tr>"
-            for name, words in self._lines()
-        )
-        return f"<table><caption>Operators</caption>{''.join(cells)}</table>"
+        return table("Operators", self._lines())

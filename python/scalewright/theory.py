@@ -19,6 +19,7 @@ from numpy.typing import ArrayLike
 from . import _check
 from ._check import Floats, Integers
 from ._describe import conventions, theory_html
+from ._display import brief
 from .errors import InputError
 from .parameters import Coupling, QuarkMasses, set_field
 
@@ -72,7 +73,7 @@ class Theory:
     --------
     >>> theory = Theory(order="NLO", flavours=4)
     >>> theory
-    Theory(order='NLO', alpha_s=0.118 at 8315.178393760001 GeV^2 for nf = 5, flavours=4)
+    Theory(order='NLO', alpha_s=0.118 at 8315.178394 GeV^2 for nf = 5, flavours=4)
     >>> theory.nf_at([1.0, 100.0])
     array([4, 4])
     >>> theory == Theory.from_json(theory.to_json())
@@ -119,8 +120,8 @@ class Theory:
         for name in ("hard_mur2_ratio", "hard_muf2_ratio"):
             set_field(self, name, _check.real(name, getattr(self, name), least=0.25, most=4.0))
         choices = {"heavy_quarks": ("massless", "massive", "matched"), "fl_counting": ("absolute", "own")}
-        for name, allowed in choices.items():
-            set_field(self, name, _check.choice(name, getattr(self, name), allowed))
+        for name, known in choices.items():
+            set_field(self, name, _check.choice(name, getattr(self, name), known))
         if self.heavy_quarks == "massive" and self.fewest != self.most:
             allowed = 'heavy_quarks="massive" needs a fixed number of flavours, such as flavours=3'
             _check.refuse("flavours", self.flavours, f'{allowed}; "matched" is for a variable one')
@@ -192,7 +193,22 @@ class Theory:
         return self._count(q2, 1.0)
 
     def start_nf(self, q2: float) -> int:
-        """Number of flavours of an input at `q2` (GeV^2) that names none: that of `nf_at`."""
+        """Number of flavours of an input that names none: that of `nf_at`.
+
+        Parameters
+        ----------
+        q2 : float
+            Scale of the input in GeV^2. A scale equal to a threshold counts as above it.
+
+        Returns
+        -------
+        int
+
+        Raises
+        ------
+        InputError
+            If the scale is not one positive, finite number.
+        """
         return int(self.nf_at(_check.scale("start_q2", q2)))
 
     def _count(self, q2: ArrayLike, ratio: float) -> Integers:
@@ -276,6 +292,10 @@ class Theory:
         where : str
             Such as "[theory]", for messages.
 
+        Returns
+        -------
+        Theory
+
         Raises
         ------
         InputError
@@ -299,6 +319,15 @@ class Theory:
     def from_json(cls, text: str) -> Theory:
         """Read a theory from the text that `to_json` writes.
 
+        Parameters
+        ----------
+        text : str
+            JSON; options that are missing take their defaults.
+
+        Returns
+        -------
+        Theory
+
         Raises
         ------
         InputError
@@ -317,7 +346,7 @@ class Theory:
     def __repr__(self) -> str:
         """One line."""
         coupling = self.coupling
-        value = f"alpha_s={_check.show(coupling.alpha_s)} at {_check.show(coupling.q2)} GeV^2"
+        value = f"alpha_s={brief(coupling.alpha_s)} at {brief(coupling.q2)} GeV^2"
         return f"Theory(order={self.order!r}, {value} for nf = {coupling.nf}, flavours={self.flavours})"
 
     def __str__(self) -> str:
@@ -325,7 +354,7 @@ class Theory:
         return self.describe()
 
     def _repr_html_(self) -> str:
-        """Return the options as a table, for notebooks."""
+        """Return options and conventions, for notebooks."""
         return theory_html(self)
 
     def __getstate__(self) -> dict[str, Any]:

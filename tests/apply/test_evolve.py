@@ -9,7 +9,7 @@ from apply.toy import D_V, U_V, functions, moment, momentum
 def test_without_operators_the_same_comes_out(theory, ops, many):
     direct, whole = sw.evolve(theory, many, ops.q2), ops.apply(many)
     assert direct.flavours == whole.flavours
-    # both solve the same equation to 1e-9 a step, in other ways
+    # both solve the same equation to 1e-8 a step, in other ways
     np.testing.assert_allclose(direct.values, whole.values, rtol=0, atol=1e-7 * abs(whole.values).max())
     assert direct.below is None
 

@@ -57,7 +57,7 @@ def test_rows_are_those_of_the_core(theory, grid):
     expected = dict(zip(whole._source.flow_names, whole._all()[1][0], strict=True))
     assert rows.keys() == expected.keys()
     for name, row in rows.items():
-        # each step within its tolerance of 1e-9
+        # both within the tolerance of the steps, 1e-8
         np.testing.assert_allclose(
-            row[0], expected[name], rtol=0, atol=1e-8 * max(abs(expected[name]).max(), 1e-8)
+            row[0], expected[name], rtol=0, atol=2e-8 * max(abs(expected[name]).max(), 1e-8)
         )

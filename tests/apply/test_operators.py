@@ -28,7 +28,7 @@ def test_two_steps_are_one(halves, ops, many):
     np.testing.assert_array_equal(both.q2, second.q2)
     evolved, whole = both.apply(many), ops.apply(many, q2=second.q2)
     assert evolved.flavours == whole.flavours
-    close(evolved.values, whole.values, 1e-8)  # each step within its tolerance of 1e-9
+    close(evolved.values, whole.values, 2e-8)  # both within the tolerance of the steps, 1e-8
     in_turn = second.apply(first.apply(many).scale(None))
     close(evolved.values, in_turn.values, 1e-12)  # the same products in another order
 

@@ -10,6 +10,7 @@ import sys
 import time
 
 import pytest
+from files.children import keep_writing
 from scalewright.errors import StoreError
 from scalewright.files import whole
 from scalewright.files.whole import map_whole, read_whole, write_whole
@@ -183,25 +184,26 @@ def test_a_killed_writer_leaves_a_whole_file(tmp_path):
     assert os.listdir(tmp_path) == ["a"]
 
 
-def keep_writing(path, byte):
-    for _ in range(40):
-        write_whole(path, bytes([byte]) * 100_000)
-
-
 def test_racing_writers_never_mix(tmp_path):
-    target = tmp_path / "a"
-    write_whole(target, b"0" * 100_000)
+    """Three write, one reads until it has seen each of the three ten times: no clock, no number of cores."""
+    target, size = tmp_path / "a", 100_000
+    write_whole(target, b"0" * size)
     start = multiprocessing.get_context("spawn")
-    writers = [start.Process(target=keep_writing, args=(target, byte)) for byte in b"123"]
+    stop = start.Event()
+    writers = [start.Process(target=keep_writing, args=(target, byte, size, stop)) for byte in b"123"]
     for writer in writers:
         writer.start()
-    reads = 0
-    while any(writer.is_alive() for writer in writers) or reads < 10:
-        data = read_whole(target)
-        assert len(data) == 100_000
-        assert len(set(data)) == 1
-        reads += 1
-    for writer in writers:
-        writer.join()
+    seen = dict.fromkeys(b"0123", 0)
+    try:
+        while min(seen[byte] for byte in b"123") < 10:
+            data = read_whole(target)
+            assert len(data) == size
+            assert len(set(data)) == 1
+            seen[data[0]] += 1
+            assert all(writer.is_alive() for writer in writers)
+    finally:
+        stop.set()
+        for writer in writers:
+            writer.join()
     assert [writer.exitcode for writer in writers] == [0, 0, 0]
     assert os.listdir(tmp_path) == ["a"]

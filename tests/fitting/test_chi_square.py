@@ -56,7 +56,8 @@ def test_a_tiny_example_by_hand_in_exact_arithmetic():
     # residuals (0.1, 0.1): chi-square = 2/3, best shift = 2/3, log det C = ln(3e-4).
     measured = Measurements.from_columns(
         {"title": "A", "measures": "F2", "exchange": "photon",
-         "uncertainty": [{"column": "stat", **VALUE}, {"name": "o", "size": 0.1, "correlated": True, **VALUE}]},
+         "uncertainty": [{"column": "stat", **VALUE},
+                         {"name": "o", "size": 0.1, "correlated": True, **VALUE}]},
         {"x": [0.1, 0.2], "q2": [10, 10], "value": [1.1, 0.6], "stat": [0.1, 0.1]},
     )  # fmt: skip
     for form in ("covariance", "nuisance"):
@@ -85,7 +86,7 @@ def test_against_thirty_digits(form):
 
 @pytest.mark.parametrize("form", ["covariance", "nuisance"])
 def test_the_nuisance_parameters_are_at_their_minimum(form):
-    # scipy solves the least-squares problem of the nuisance form: data and penalties as one list of residuals.
+    # scipy solves the least-squares problem of the nuisance form: data and penalties as one list.
     from scipy.optimize import lsq_linear
 
     measured = table(5, matrix=True)

@@ -24,9 +24,10 @@ def constant(chi2):
 
 
 def test_data_as_reference_bias_a_fit_and_its_own_prediction_does_not():
-    # G. D'Agostini, Nucl. Instrum. Meth. A346 (1994) 306, as in arXiv:0912.2276 section 2: two data d1, d2 with
-    # equal own errors s and a common normalisation error f: the fit with the data as reference gives
-    # mean / (1 + f^2 (d1 - d2)^2 / (2 s^2)), below both data; with a common reference it gives the mean.
+    # G. D'Agostini, Nucl. Instrum. Meth. A346 (1994) 306, as in arXiv:0912.2276 section 2 (recalled from
+    # memory): two data d1, d2 with equal own errors s and a common normalisation error f. The fit with the
+    # data as reference gives mean / (1 + f^2 (d1 - d2)^2 / (2 s^2)), below both; with one reference for both
+    # it gives the mean.
     first, second, own, norm = 8.5, 8.0, 0.17, 10.0
     measured = two_data(first, second, own, norm)
     mean = 0.5 * (first + second)

@@ -136,3 +136,15 @@ def test_arrays_of_a_grid_cannot_be_changed(grid):
 def test_repr_names_nodes_panels_and_x_min():
     text = repr(ChebyshevGrid.from_panels([0, 1, 9], [12, 16]))
     assert text.startswith("ChebyshevGrid(28 nodes in 2 panels, x_min=0.0001234")
+
+
+def test_one_screen_and_one_table_name_each_panel():
+    grid = ChebyshevGrid.from_panels([0, 1, 9], [12, 16])
+    lines = str(grid).splitlines()
+    assert lines[0] == "ChebyshevGrid"
+    assert lines[2:] == [
+        "  panel 1  x = 1 to 0.368, degree 12",
+        "  panel 2  x = 0.368 to 0.000123, degree 16",
+    ]
+    assert grid._repr_html_().count("<tr>") == len(lines) - 1
+    assert repr(ChebyshevGrid.from_panels([0, 9], [16])).startswith("ChebyshevGrid(16 nodes in 1 panel, ")

@@ -27,22 +27,23 @@ KERNELS_KNOW = {"numerics", "colour", "coupling::masses::MassKind"}
 
 PYTHON_LAYERS = (
     ("errors",),
-    ("_check",),
+    ("_check", "_display"),
     ("_progress",),
     ("files",),
     ("flavours", "parameters", "below", "kernels", "_route", "_flows", "_describe"),
-    ("theory", "grid", "_divide"),
-    ("_lattice", "_resolution"),
-    ("_display", "_sampling", "_stored", "_sums"),
+    ("theory", "grid"),
+    ("_resolution",),
+    ("_nodal", "_stored_densities", "_sums"),
     ("_questions",),
     ("densities",),
-    ("_carry", "_composed", "_operator_files"),
+    ("_carry", "_composed", "_stored_operators"),
     ("operators",),
     ("build",),
     ("_measured",),
-    ("electroweak", "kinematics", "measurements"),
+    ("measurements",),
+    ("electroweak", "kinematics"),
     ("_observed",),
-    ("forward", "observables"),
+    ("observables", "forward"),
     ("moments",),
     ("fitting",),
     ("plot",),
@@ -50,7 +51,7 @@ PYTHON_LAYERS = (
     ("cli",),
 )
 # Against the direction, with the reason: reading a file makes the object.
-LATE = {("_operator_files", "operators")}
+LATE = {("_stored_operators", "operators")}
 SLOW_IMPORTS = {"scipy", "matplotlib", "h5py"}
 
 RUST_SOURCES = sources(CORE, ".rs")

@@ -15,6 +15,8 @@ PUBLIC = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Electroweak",
+    "ForwardMap",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -28,8 +30,12 @@ PUBLIC = [
     "Theory",
     "build_operators",
     "evolve",
+    "forward_map",
     "matching_element",
+    "moment",
     "splitting_function",
+    "structure_function",
+    "sum_rule",
 ]
 # Loaded when something needs them, not before; the core comes with the first object that needs it.
 NOT_AT_IMPORT = ["scipy", "matplotlib", "h5py", "scalewright.cli", "scalewright.plot"]

@@ -1,42 +1,8 @@
-"""Small made-up tables, as files and as columns."""
+"""Small made-up measurements, as files and as columns."""
 
 import pytest
+from measurements.tables import CSV, STAT, TOML
 from scalewright import Measurements
-
-TOML = """\
-title    = "Run 1, positrons"
-points   = "run1.csv"
-measures = "reduced_cross_section"
-current  = "neutral"
-beam     = "e+"
-target   = "proton"
-s        = 101124.0
-unit     = "1"
-
-[columns]
-x = "x"
-q2 = "Q2"
-value = "sigma"
-
-[[uncertainty]]
-column = "stat"
-given_in = "percent"
-scales_with = "nothing"
-
-[[uncertainty]]
-column = "energy scale"
-given_in = "percent"
-scales_with = "value"
-shared_as = "calorimeter"
-"""
-CSV = """\
-x,Q2,sigma,stat,energy scale,remark
-0.001,12,1.25,2.0,1.0,first
-0.01,12.0,0.80,1.5,-0.5,"second, quoted"
-0.1,120,0.50,4,0.25,
-"""
-
-STAT = {"column": "stat", "given_in": "value", "scales_with": "nothing"}
 
 
 @pytest.fixture

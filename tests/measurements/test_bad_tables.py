@@ -4,8 +4,7 @@ import re
 
 import numpy as np
 import pytest
-from measurements.combined import DESCRIPTION, POINTS, RATIO
-from measurements.conftest import CSV, TOML
+from measurements.tables import CSV, DESCRIPTION, POINTS, RATIO, TOML
 from scalewright import InputError, Measurements, StoreError
 
 NOTHING = {"given_in": "value", "scales_with": "nothing"}
@@ -16,7 +15,8 @@ EYE = np.eye(3)
 
 #: Part of the description, part of the points, and what is said.
 FILES = [
-    (("current  =", "curent  ="), None, '{toml}: curent: unknown key; did you mean "current"? (known: title, '),
+    (("current  =", "curent  ="), None,
+     '{toml}: curent: unknown key; did you mean "current"? (known: title, '),
     (('title    = "Run 1, positrons"', ""), None, "{toml}: title: missing"),
     (('points   = "run1.csv"', ""), None, "{toml}: points: missing"),
     (('"reduced_cross_section"', '"reduced"'), None,
@@ -29,7 +29,8 @@ FILES = [
     (('"proton"', '"protom"'), None, '{toml}: target = \'protom\': must be one of "proton", "neutron", '
      '"deuteron", "isoscalar", or z and a with 0 <= z <= a; did you mean "proton"?'),
     (('"proton"', "{ z = 3, a = 2 }"), None, "{toml}: target = {'z': 3, 'a': 2}: must be one of"),
-    (("101124.0", "-5"), None, "{toml}: s = -5: s must lie above the squared mass of a nucleon, 0.8804 GeV^2"),
+    (("101124.0", "-5"), None,
+     "{toml}: s = -5: s must lie above the squared mass of a nucleon, 0.8804 GeV^2"),
     (("101124.0", '"high"'), None, "{toml}: s = 'high': must be a finite number"),
     (("s        = 101124.0", ""), None, "{csv}: line 2: reduced_cross_section needs s, or a y column"),
     (("101124.0", "101124.0\npolarisation = 1.5"), None,
@@ -40,7 +41,8 @@ FILES = [
     (('x = "x"', 'z = "x"'), None, "{toml}: [columns] z: unknown key (known: x, q2, value, y, label, "),
     (('x = "x"', 's = "x"'), None, "{toml}: s: given both for all lines and as column 'x'"),
     (('"percent"', '"per cent"'), None,
-     '{toml}: [uncertainty 1] given_in = \'per cent\': must be one of "percent", "value"; did you mean "percent"?'),
+     '{toml}: [uncertainty 1] given_in = \'per cent\': must be one of "percent", "value"; '
+     'did you mean "percent"?'),
     (('scales_with = "nothing"', ""), None, "{toml}: [uncertainty 1] scales_with: missing"),
     (('column = "stat"', 'column = "sta"'), None,
      "{toml}: [uncertainty 1] column: {csv}: no column 'sta': there are 'x', 'Q2', 'sigma', 'stat', "
@@ -81,8 +83,10 @@ def test_a_mistake_in_a_file_is_named(run, description, points, message):
 #: Changes of a table of columns: points, matrices, description; and what is said.
 COLUMNS = [
     ({"y": [0.5, 0.5, 0.5]}, (), {"columns": {"y": "y"}, "s": 1e4},
-     "points: line 1, column y: 0.5, but x, q2 and s say 0.0100009: y must be q2/(x (s - M^2)) within 5 per cent"),
-    ({"y": [1.5, 0.5, 0.5]}, (), {"columns": {"y": "y"}}, "points: line 1, column y: 1.5: y must lie in (0, 1]"),
+     "points: line 1, column y: 0.5, but x, q2 and s say 0.0100009: "
+     "y must be q2/(x (s - M^2)) within 5 per cent"),
+    ({"y": [1.5, 0.5, 0.5]}, (), {"columns": {"y": "y"}},
+     "points: line 1, column y: 1.5: y must lie in (0, 1]"),
     ({"stat": [0.1, 0.0, 0.1]}, (), {}, "points: line 2: the datum has no uncertainty at all"),
     ({}, (), {"uncertainty": []}, "points: line 1: the datum has no uncertainty at all"),
     ({"value": [1.0, 0.0, 2.0]}, (), {"uncertainty": [STAT | {"scales_with": "value"}]},
@@ -93,7 +97,8 @@ COLUMNS = [
      "description: [uncertainty 1] name: missing: a size without column needs a name"),
     ({}, (), {"uncertainty": [{"name": "a", "size": "x", **NOTHING}]},
      "description: [uncertainty 1] size = 'x': must be a finite number"),
-    ({}, (), {"uncertainty": [STAT | {"down": "stat"}]}, "description: [uncertainty 1] down: goes with up only"),
+    ({}, (), {"uncertainty": [STAT | {"down": "stat"}]},
+     "description: [uncertainty 1] down: goes with up only"),
     ({}, (), {"uncertainty": [{"up": "stat", "down": "stat", **NOTHING}]},
      'description: [uncertainty 1] down: every shift down is positive, as are those up: write the sign, or '
      'down_as = "size"'),
@@ -109,9 +114,9 @@ COLUMNS = [
     ({}, [[[1.0, 2.0], [3.0]]], {"covariance": [COVARIANCE]}, "matrices[0]"),
     ({}, [EYE * [1, -1, 1]], {"covariance": [COVARIANCE]},
      "matrix 1: row 2: variance -1: a variance must not be negative"),
-    ({}, [EYE + [[0, 0.1, 0], [0, 0, 0], [0, 0, 0]]], {"covariance": [COVARIANCE]},
+    ({}, [np.add(EYE, [[0, 0.1, 0], [0, 0, 0], [0, 0, 0]])], {"covariance": [COVARIANCE]},
      "matrix 1: row 1, column 2: 0.1 and 0: must be symmetric"),
-    ({}, [EYE + [[0, 1.5, 0], [1.5, 0, 0], [0, 0, 0]]], {"covariance": [COVARIANCE]},
+    ({}, [np.add(EYE, [[0, 1.5, 0], [1.5, 0, 0], [0, 0, 0]])], {"covariance": [COVARIANCE]},
      "matrix 1: row 1: correlation 1.5 with row 2: must lie in [-1, 1]"),
     ({}, [[[1, 1, 0], [1, 0, 0], [0, 0, 1]]], {"covariance": [COVARIANCE]},
      "matrix 1: row 2: covariance 1 with row 1, but no variance"),
@@ -130,7 +135,8 @@ COLUMNS = [
      "points: line 2: matrix 1 scales with the value, which is 0"),
     ({}, (), {"combination": RATIO | {"numerator": {"e": 1.0}}},
      "description: [combination] numerator: no row 'e'"),
-    ({}, (), {"combination": RATIO | {"denominator": {}}}, "description: [combination] rows: 'p' stands in no sum"),
+    ({}, (), {"combination": RATIO | {"denominator": {}}},
+     "description: [combination] rows: 'p' stands in no sum"),
     ({}, (), {"combination": RATIO | {"numerator": {}}},
      "description: [combination] numerator = {}: must be weights by row, { name = 1.0 }"),
     ({}, (), {"combination": RATIO | {"numerator": {"d": "1"}}},
@@ -208,7 +214,8 @@ def test_a_mistake_in_a_matrix_file_is_named(run, text, message):
     run.with_name("m.csv").write_text(text)
     run.write_text(
         TOML
-        + '\n[[covariance]]\nfile = "m.csv"\nkind = "covariance"\ngiven_in = "value"\nscales_with = "nothing"\n'
+        + '\n[[covariance]]\nfile = "m.csv"\nkind = "covariance"\n'
+        + 'given_in = "value"\nscales_with = "nothing"\n'
     )
     with pytest.raises(InputError, match=message):
         Measurements.read(run)

@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from measurements.combined import DESCRIPTION, POINTS, RATIO
+from measurements.tables import DESCRIPTION, POINTS, RATIO
 from scalewright import InputError, Measurements
 from scalewright._measured.combination import Combination
 

@@ -5,8 +5,8 @@ import pytest
 from scalewright import InputError, Measurements
 from scalewright._measured.correlated import Correlated, repaired
 
-# Correlations that cannot be: 1 goes with 2 and with 3, but 2 goes against 3. Its eigenvalues are 1.9, 1.9 and
-# 1 - 2 * 0.9 = -0.8, the last on (1, -1, -1).
+# Correlations that cannot be: 1 goes with 2 and with 3, but 2 goes against 3. Its eigenvalues are 1.9, 1.9
+# and 1 - 2 * 0.9 = -0.8, the last on (1, -1, -1).
 BROKEN = np.array([[1.0, 0.9, 0.9], [0.9, 1.0, -0.9], [0.9, -0.9, 1.0]])
 
 
@@ -15,7 +15,8 @@ def test_a_covariance_file_is_added(run):
     bare = Measurements.read(run).covariance()
     with run.open("a") as file:
         file.write(
-            '\n[[covariance]]\nfile = "run1.m.csv"\nkind = "covariance"\ngiven_in = "value"\nscales_with = "nothing"\n'
+            '\n[[covariance]]\nfile = "run1.m.csv"\nkind = "covariance"\n'
+            'given_in = "value"\nscales_with = "nothing"\n'
         )
     added = np.array([[1e-4, 2e-5, 0], [2e-5, 4e-4, 0], [0, 0, 9e-4]])
     np.testing.assert_allclose(Measurements.read(run).covariance(), bare + added, rtol=1e-13, atol=1e-18)
@@ -43,8 +44,11 @@ def test_a_correlation_takes_the_place_of_its_uncertainty(make):
 
 
 def test_a_broken_matrix_is_refused_by_naming_its_rows(make):
-    with pytest.raises(InputError, match=r"matrix 1: not positive semi-definite: the smallest eigenvalue of the "
-                       r"correlations is -0\.8, mostly of rows 1, 2, 3; repair = \"clip\" or \"nearest\""):  # fmt: skip
+    message = (
+        r"matrix 1: not positive semi-definite: the smallest eigenvalue of the correlations is -0\.8, "
+        r"mostly of rows 1, 2, 3; repair = \"clip\" or \"nearest\""
+    )
+    with pytest.raises(InputError, match=message):
         make(None, [BROKEN], covariance=[{"kind": "correlation", "of": "stat"}])
 
 

@@ -5,6 +5,7 @@ import warnings
 
 import numpy as np
 import pytest
+from measurements.tables import STAT
 from scalewright import InputWarning, Measurements
 from scalewright._measured.rows import Nucleus
 
@@ -99,7 +100,7 @@ def test_a_data_frame_is_a_mapping_of_columns():
             return {"x": (0.1,), "q2": np.array([10]), "value": [1.0], "stat": [np.float32(0.5)]}
 
     description = {"title": "A", "measures": "F2", "exchange": "photon",
-                   "uncertainty": [{"column": "stat", "given_in": "value", "scales_with": "nothing"}]}  # fmt: skip
+                   "uncertainty": [STAT]}  # fmt: skip
     assert Measurements.from_columns(description, Frame()).covariance().tolist() == [[0.25]]
 
 

@@ -5,9 +5,12 @@ import tomllib
 
 import numpy as np
 import pytest
-from measurements.combined import DESCRIPTION, POINTS, RATIO
+from measurements.tables import DESCRIPTION, POINTS, RATIO
 from scalewright import InputError, Measurements, StoreError
 from scalewright.files.toml_text import toml_text
+
+PERCENT = {"given_in": "percent", "scales_with": "value"}
+VALUE = {"given_in": "value", "scales_with": "nothing"}
 
 
 def same(a, b):
@@ -54,8 +57,8 @@ def test_random_tables_with_everything_come_back(make, tmp_path):
                 {"column": "stat", **kind},
                 {"column": "a", "shared_as": "k", **kind},
                 {"name": "s", "up": "up", "down": "down", "asymmetric": "shifted", **kind},
-                {"name": "lumi", "size": 1.5, "correlated": True, "given_in": "percent", "scales_with": "value"}],
-            covariance=[{"kind": "covariance", **kind}, {"kind": "correlation", "of": "stat", "repair": "clip"}],
+                {"name": "lumi", "size": 1.5, "correlated": True, **PERCENT}],
+            covariance=[{"kind": "covariance", **kind}, {"kind": "correlation", "of": "stat"}],
             combination=RATIO if trial % 3 == 0 else None,
         )  # fmt: skip
         table.write(tmp_path / "t.toml")
@@ -89,7 +92,7 @@ def test_other_values_keep_the_errors_they_should(make, tmp_path):
         uncertainty=[
             {"column": "stat", "given_in": "percent", "scales_with": "nothing"},
             {"name": "v", "column": "stat", "given_in": "value", "scales_with": "value", "shared_as": "k"},
-            {"up": "up", "down": "down", "asymmetric": "shifted", "given_in": "value", "scales_with": "nothing"},
+            {"up": "up", "down": "down", "asymmetric": "shifted", **VALUE},
             {"name": "lumi", "size": 3.0, "given_in": "percent", "scales_with": "value", "correlated": True}],
         covariance=[{"kind": "covariance", "given_in": "percent", "scales_with": "nothing"}],
     )  # fmt: skip

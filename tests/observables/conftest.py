@@ -1,7 +1,6 @@
 """Grid and input that the tests of observables share."""
 
 import pytest
-
 import scalewright as sw
 from observables import direct
 

@@ -1,17 +1,16 @@
-"""Structure functions by adaptive quadrature (scipy) of coefficient functions on densities: no matrix anywhere.
+"""Structure functions by adaptive quadrature of coefficient functions on densities: no matrix anywhere.
 
-The densities are the evolved ones, as functions of x by the polynomials of the grid; the coefficient functions come
-point by point. What is tested with it is everything between: matrices, powers of a, couplings, operators'
-transposes.
+The densities are the evolved ones, as functions of x by the polynomials of the grid; the coefficient
+functions come point by point. What is tested with it is everything between: matrices, powers of a, couplings,
+transposes of operators.
 """
 
 from __future__ import annotations
 
 import numpy as np
-from scipy.integrate import cubature
-
 import scalewright as sw
 from scalewright import _core
+from scipy.integrate import cubature
 
 
 def convolved(density, edges, x, kernels):

@@ -1,12 +1,9 @@
 """Couplings: against helicity amplitudes at LO, and every measure against direct quadrature at NNLO."""
 
-from types import SimpleNamespace
-
 import numpy as np
 import pytest
-from observables import direct
-
 import scalewright as sw
+from observables import direct
 
 CHARGE = np.array([-1, 2, -1, 2, -1, 2]) / 3
 ISOSPIN = np.array([-1, 1, -1, 1, -1, 1]) / 2
@@ -21,8 +18,8 @@ def handed(charge, isospin, sin2):
 def of_amplitudes(beam, helicity, y, q2, quarks, antiquarks, electroweak):
     """Return Y+ times the reduced cross section of x q, x qbar: squared amplitudes of pure helicities.
 
-    Like helicities scatter isotropically, unlike ones with (1-y)^2; an antiparticle of helicity +1 has the coupling
-    of the particle of helicity -1.
+    Like helicities scatter isotropically, unlike ones with (1-y)^2; an antiparticle of helicity +1 has the
+    coupling of the particle of helicity -1.
     """
     eta = electroweak.interference * q2 / (q2 + electroweak.z_mass**2)
     lepton_left = (helicity < 0) == (beam == "e-")
@@ -87,7 +84,8 @@ def test_charged_current_is_the_sum_of_isotropic_and_suppressed_quarks(grid, sta
     }
     reduced = sw.structure_function("reduced_cross_section", **common)
     assert reduced[0] == pytest.approx(expected, rel=1e-12)
-    # d2sigma/dx dQ2 = (1 -+ P) G_F^2/(2 pi x) (M_W^2/(Q^2 + M_W^2))^2 sigma_r; neutrinos: one helicity, no average
+    # d2sigma/dx dQ2 = (1 -+ P) G_F^2/(2 pi x) (M_W^2/(Q^2 + M_W^2))^2 sigma_r; neutrinos: one helicity, no
+    # average
     strength = electroweak.g_fermi**2 * (electroweak.w_mass**2 / (q2 + electroweak.w_mass**2)) ** 2
     spin = {"e-": -0.4, "e+": 0.4}.get(beam, 0.0)
     factor = {"e-": 1 - spin, "e+": 1 + spin}.get(beam, 2.0)

@@ -1,4 +1,4 @@
-"""The map as an object: data of rows, storing, derivatives, memory, and the same answer as single questions."""
+"""The map as an object: data of rows, storing, derivatives, memory, and agreement with single questions."""
 
 import tracemalloc
 from dataclasses import replace
@@ -6,7 +6,6 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
-
 import scalewright as sw
 
 DESCRIPTION = {
@@ -100,7 +99,7 @@ def test_a_damaged_map_is_named(fmap, tmp_path):
     data = bytearray(path.read_bytes())
     data[len(data) // 2] ^= 1
     path.write_bytes(data)
-    with pytest.raises(sw.StoreError, match="map.h5"):
+    with pytest.raises(sw.StoreError, match=r"map\.h5"):
         sw.ForwardMap.load(path)
 
 

@@ -5,10 +5,9 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
+import scalewright as sw
 from kernels.second_writing.coefficients_massive import massive_gluon, z_max
 from scipy.integrate import quad
-
-import scalewright as sw
 
 X = np.array([1e-4, 1e-2, 0.1])
 
@@ -75,7 +74,8 @@ def test_matched_tends_to_massless_like_a_power_of_the_mass(grid, start, case, s
 
     massless, f2 = of(case["measure"], "massless", 1.2), of("F2", "massless", 1.2)
     misses = [np.abs(of(case["measure"], "matched", mass) - massless) / f2 for mass in (1.2, 0.6)]
-    # m^2/Q^2 = 1.4e-4 times logarithms of 1/x and Q^2/m^2, and a quarter of it at half the mass, logarithms apart
+    # m^2/Q^2 = 1.4e-4 times logarithms of 1/x and Q^2/m^2, and a quarter of it at half the mass, logarithms
+    # apart
     assert misses[0].max() < 5e-3
     assert (misses[1] < 0.36 * misses[0]).all()
 
@@ -123,5 +123,7 @@ def test_charged_charm_at_order_zero_is_slow_rescaling(grid, start, q2):
 
 
 def test_massive_with_a_variable_number_of_flavours_is_refused():
-    with pytest.raises(sw.InputError, match='flavours = .3, 5.: heavy_quarks="massive" needs a fixed number'):
+    with pytest.raises(
+        sw.InputError, match=r'flavours = .3, 5.: heavy_quarks="massive" needs a fixed number'
+    ):
         sw.Theory(heavy_quarks="massive")

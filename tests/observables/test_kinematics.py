@@ -2,7 +2,6 @@
 
 import numpy as np
 import pytest
-
 import scalewright as sw
 from scalewright import kinematics
 

@@ -4,9 +4,8 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
-from observables import direct
-
 import scalewright as sw
+from observables import direct
 
 CHARGES2 = np.array([1, 4, 1, 4, 1, 4]) / 9
 POINTS = [(2e-5, 4.0), (1e-3, 3.0), (0.03, 10.0), (0.2, 400.0), (0.5, 4e4), (0.85, 30.0)]

@@ -4,9 +4,8 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
-from observables import direct
-
 import scalewright as sw
+from observables import direct
 
 CASES = [
     {"measure": "F2", "exchange": "photon"},
@@ -52,8 +51,9 @@ def test_shifts_of_scales_are_one_order_higher(grid, case, order, ratios):
     if silent:
         assert (small == 0.0).all()
         return
-    # F2 and xF3 at NLO know mu_r through a(mu_r) C_1, as does FL. Halving alpha_s halves the shift `power` times; what
-    # is one order higher still shows at some x, the more so where the leading term nearly vanishes: the median counts
+    # F2 and xF3 at NLO know mu_r through a(mu_r) C_1, as does FL. Halving alpha_s halves the shift `power`
+    # times; what is one order higher still shows at some x, the more so where the leading term nearly
+    # vanishes: the median counts
     falls = np.log2(small / smaller)
     assert abs(np.median(falls) - power) < 0.15
 
@@ -90,5 +90,5 @@ def test_operators_reach_the_scales_of_all_ratios(grid, start):
 def test_a_coupling_too_large_is_refused_by_name(grid):
     theory = sw.Theory(hard_mur2_ratio=0.25)
     rows = SimpleNamespace(x=[0.1, 0.1], q2=[40.0, 1.2], measure="F2", exchange="photon", place=("a", "b"))
-    with pytest.raises(sw.RangeError, match="^b: "):
+    with pytest.raises(sw.RangeError, match=r"^b: "):
         sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)

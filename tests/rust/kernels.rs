@@ -2,6 +2,8 @@
 
 #[path = "kernels/coefficients.rs"]
 mod coefficients;
+#[path = "kernels/massive.rs"]
+mod massive;
 #[path = "kernels/matching.rs"]
 mod matching;
 #[path = "kernels/moments.rs"]

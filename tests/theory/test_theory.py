@@ -94,10 +94,29 @@ def test_coupling_changes_flavours_where_the_factorisation_scale_crosses():
 def test_texts_name_every_option(theory):
     assert "\n" not in repr(theory)
     assert str(theory) == theory.describe()
-    for word in (theory.order, "alpha_s", "GeV", "loops", "MS-bar", "a_Hg", "mu_r^2/mu_f^2"):
+    for word in (theory.order, "alpha_s", "GeV", "loops", "MS-bar", "a_Hg", "mu_r^2/mu_f^2", "mu_f^2/Q^2"):
         assert word.lower() in theory.describe().lower()
-    assert theory._repr_html_().count("<tr>") == 8
+    assert theory._repr_html_().count("<tr>") == 10
     assert len(theory.describe().splitlines()) <= 24
+    assert "exact inverse" in theory._repr_html_()  # the conventions are there, folded
+
+
+def test_the_description_says_what_surprises():
+    said = " ".join(Theory(evolution_mu2_ratio=2.0).describe().split())
+    for convention in (
+        "the coupling there is that of nf + 1 flavours at mu_r^2 = mu_thr^2, also where mu_r differs",
+        "there is no intrinsic matching at a^2 (NNLO)",
+        "downwards at a threshold: the exact inverse of the upward step; an intrinsic heavy density",
+        "the same bits on one kind of CPU, whatever the number of threads; 1e-12 of each other between kinds",
+    ):
+        assert convention in said
+
+
+def test_numbers_are_shown_short_and_kept_exact():
+    theory = Theory(masses=QuarkMasses(charm=1.27, bottom=4.18))
+    assert theory.threshold_scales[1] == 4.18**2 == 17.472399999999997
+    assert "17.4724 GeV^2" in theory.describe()
+    assert repr(theory.coupling) == "Coupling(alpha_s=0.118, q2=8315.178393760001, nf=5)"
 
 
 def test_options_from_a_table_are_checked_with_their_path():

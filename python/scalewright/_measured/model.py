@@ -9,7 +9,6 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 import numpy as np
-from numpy.random import Generator
 
 from .._check import Floats
 from .correlated import Correlated
@@ -89,7 +88,7 @@ def nuisance(tables: Sequence[Table], reference: Floats) -> tuple[Floats, Floats
     return np.sqrt(variance), np.concatenate(columns, axis=1)
 
 
-def pseudo_data(tables: Sequence[Table], rng: Generator, truth: Floats, replicas: int) -> Floats:
+def pseudo_data(tables: Sequence[Table], rng: np.random.Generator, truth: Floats, replicas: int) -> Floats:
     """Return (replica, datum): (truth + additive shifts) times the product of (1 + multiplicative ones)."""
     names = shared_sources(tables)
     drawn = dict(zip(names, rng.standard_normal((len(names), replicas, 1)), strict=True))
@@ -106,7 +105,7 @@ def pseudo_data(tables: Sequence[Table], rng: Generator, truth: Floats, replicas
 
 
 def _draws(
-    part: Uncertainty | Correlated, drawn: dict[str, Floats], rng: Generator, shape: tuple[int, int]
+    part: Uncertainty | Correlated, drawn: dict[str, Floats], rng: np.random.Generator, shape: tuple[int, int]
 ) -> Floats:
     """Return unit normal numbers, (replica, datum) or (replica, 1), correlated as the part says."""
     if isinstance(part, Correlated):

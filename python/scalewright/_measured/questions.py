@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import html
 from collections.abc import Sequence
 from functools import cached_property
 
@@ -134,6 +135,9 @@ class Questions:
 
     def __str__(self) -> str:
         return self.describe()
+
+    def _repr_html_(self) -> str:
+        return f"<pre>{html.escape(self.describe())}</pre>"
 
 
 def _fixed(parts: Sequence[Floats]) -> Floats:

@@ -1,7 +1,7 @@
 """Charm made singly by a W, with its mass, at order a; and what is beyond it where charm is active.
 
-T. Gottschalk, Phys. Rev. D 23 (1981) 56; M. Glueck, S. Kretzer, E. Reya, hep-ph/9603304. At order a^0 it is slow
-rescaling: with lambda = Q^2/(Q^2 + m^2) and xi = x/lambda, per mixing element and for D -> c
+T. Gottschalk, Phys. Rev. D 23 (1981) 56; M. Glueck, S. Kretzer, E. Reya, hep-ph/9603304. At order a^0 it is
+slow rescaling: with lambda = Q^2/(Q^2 + m^2) and xi = x/lambda, per mixing element and for D -> c
 
     F2/2 = xi D(xi),   FL/2 = (1 - lambda) xi D(xi),   x F3/2 = lambda xi D(xi);
 
@@ -12,6 +12,7 @@ t (P_qq * D + P_qg/(2 nf) * g) with the same three factors.
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from .._check import Floats
 from .couplings import mixing_pairs
@@ -20,6 +21,8 @@ from .light import splitting
 from .measures import FUNCTIONS
 from .pullback import GLUON, MINUS, PLUS
 from .rows import Setting
+
+Booleans = NDArray[np.bool_]
 
 __all__ = ["limit_rows", "single_rows"]
 
@@ -32,7 +35,7 @@ def single_rows(
     a: Floats,
     nf: int,
     mass: float,
-    negative: Floats,
+    negative: Booleans,
 ) -> Floats:
     """Return the rows of a single charm quark or antiquark, (point, 13, node).
 
@@ -85,14 +88,20 @@ def single_rows(
 
 
 def limit_rows(
-    setting: Setting, nodal: dict[str, Floats], q2: Floats, a: Floats, nf: int, mass: float, negative: Floats
+    setting: Setting,
+    nodal: dict[str, Floats],
+    q2: Floats,
+    a: Floats,
+    nf: int,
+    mass: float,
+    negative: Booleans,
 ) -> Floats:
     """Return what `single_rows` tends to for Q^2 >> m^2, (point, 13, node).
 
     Notes
     -----
-    F2/2: D + a (C_q * D + (C_g/nf + ln(Q^2/m^2) P_qg/(2 nf)) * g), xF3/2 with C_3 and -ln(Q^2/m^2) P_qg/(2 nf) alone,
-    FL/2 with C_L; and the logarithms of mu_f of the light side.
+    F2/2: D + a (C_q * D + (C_g/nf + ln(Q^2/m^2) P_qg/(2 nf)) * g), xF3/2 with C_3 and -ln(Q^2/m^2) P_qg/(2
+    nf) alone, FL/2 with C_L; and the logarithms of mu_f of the light side.
     """
     grid, t = setting.grid, -float(np.log(setting.muf2_ratio))
     p_qq, p_qg = splitting(grid, 0, "ns+", nf), splitting(grid, 0, "qg", nf) / (2.0 * nf)
@@ -118,7 +127,7 @@ def limit_rows(
 
 
 def _placed(
-    setting: Setting, nf: int, negative: Floats, even: tuple[Floats, Floats], odd: tuple[Floats, Floats]
+    setting: Setting, nf: int, negative: Booleans, even: tuple[Floats, Floats], odd: tuple[Floats, Floats]
 ) -> Floats:
     """Return rows (point, 13, node) from those on D and gluon; `odd` is xF3, which changes sign with W-."""
     rows = np.zeros((negative.size, 13, setting.grid.nodes))

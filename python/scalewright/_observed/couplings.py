@@ -1,10 +1,10 @@
 """Couplings of the quarks to the exchanged boson, for each point, as weights of q + qbar and q - qbar.
 
-A structure function is F2 = sum_q (even_q C+ (q + qbar) + odd_q C- (q - qbar)) + singlet parts with the mean of
-`even` over the active quarks, in x times densities; xF3 likewise with weights of its own. Neutral currents:
-S. Navas et al. (Particle Data Group), review "Structure functions", recalled from memory; the signs are derived
-again in the tests from helicity amplitudes. Charged currents: F2(W-) = 2x sum |V|^2 (U + Dbar),
-xF3(W-) = 2x sum |V|^2 (U - Dbar); W+ is absorbed by D and Ubar.
+A structure function is F2 = sum_q (even_q C+ (q + qbar) + odd_q C- (q - qbar)) + singlet parts with the
+mean of `even` over the active quarks, in x times densities; xF3 likewise with weights of its own. Neutral
+currents: S. Navas et al. (Particle Data Group), review "Structure functions", recalled from memory; the
+signs are derived again in the tests from helicity amplitudes. Charged currents: F2(W-) = 2x sum |V|^2 (U
++ Dbar), xF3(W-) = 2x sum |V|^2 (U - Dbar); W+ is absorbed by D and Ubar.
 """
 
 from __future__ import annotations
@@ -143,7 +143,7 @@ def mixing_pairs(electroweak: Electroweak, nf: int, tag: int | None) -> Floats:
     keep = (ups <= nf)[:, None] & (downs <= nf)[None, :]
     if tag is not None:
         keep &= (ups == tag)[:, None] | (downs == tag)[None, :]
-    return electroweak.mixing2 * keep
+    return np.asarray(electroweak.mixing2 * keep)
 
 
 def propagator_w(q2: Floats, electroweak: Electroweak) -> Floats:
@@ -155,4 +155,4 @@ def propagator_w(q2: Floats, electroweak: Electroweak) -> Floats:
 def _tagged(points: Points) -> Floats:
     """Return 1 where a quark counts, (point, quark): all of them, or the tagged one."""
     quarks = np.arange(1, 7)
-    return ((points.tag[:, None] == 0) | (points.tag[:, None] == quarks)).astype(float)
+    return np.asarray((points.tag[:, None] == 0) | (points.tag[:, None] == quarks), dtype=float)

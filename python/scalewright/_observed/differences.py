@@ -1,28 +1,28 @@
 """Derivatives of a map by central differences in three steps, with the error that they show.
 
-A first form: the map is rebuilt at tight tolerance for six values of the parameter, and the differences at steps
-h, 2h, 4h are combined so that the error falls like h^6. Thresholds stay where they are, so that masses enter by
-logarithms and coefficient functions alone.
+A first form: the map is rebuilt at tight tolerance for six values of the parameter, and the differences at
+steps h, 2h, 4h are combined so that the error falls like h^6. Thresholds stay where they are, so that
+masses enter by logarithms and coefficient functions alone.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 
 from .. import _check
 from .._check import Floats
-from ..parameters import Coupling, QuarkMasses
+from ..parameters import Coupling
 from ..theory import Theory
 
 __all__ = ["PARAMETERS", "Derivative", "differentiated"]
 
 PARAMETERS = ("alpha_s", "charm", "bottom", "hard_mur2_ratio", "hard_muf2_ratio")
-#: Smallest step, as a part of the parameter: of 1e-3, 2.5e-3, 5e-3 and 1e-2 the one whose error showed smallest on an
-#: NNLO map of F2 (the curve is flat: a factor 3 between the middle two).
+#: Smallest step, as a part of the parameter: of 1e-3, 2.5e-3, 5e-3 and 1e-2 the one whose error showed
+#: smallest on an NNLO map of F2 (the curve is flat: a factor 3 between the middle two).
 _STEP = 2.5e-3
 #: Relative error of the steps in scale while differences are taken.
 TOLERANCE = 1e-12
@@ -95,6 +95,7 @@ def _moved(theory: Theory, parameter: str, value: float) -> Theory:
         given: Coupling = theory.coupling
         return replace(fixed, coupling=Coupling(value, q2=given.q2, nf=given.nf))
     if parameter in ("charm", "bottom"):
-        masses: QuarkMasses = replace(theory.masses, **{parameter: value})
-        return replace(fixed, masses=masses)
-    return replace(fixed, **{parameter: value})  # type: ignore[arg-type]
+        masses: Any = {parameter: value}
+        return replace(fixed, masses=replace(theory.masses, **masses))
+    ratio: Any = {parameter: value}
+    return replace(fixed, **ratio)

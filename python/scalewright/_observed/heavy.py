@@ -1,14 +1,16 @@
 """Heavy quarks in structure functions: made with their mass, or matched to massless ones.
 
-Which one when: with heavy_quarks="massive" the quarks above a fixed nf are made by a photon on a gluon, or charm by
-a W on a light quark or gluon, at order a. With "matched" (FONLL-A: S. Forte, E. Laenen, P. Nason, J. Rojo,
-arXiv:1001.2312, eqs. (13)-(15) and section 4) the same massive part stands beside what is beyond it,
+Which one when: with heavy_quarks="massive" the quarks above a fixed nf are made by a photon on a gluon, or
+charm by a W on a light quark or gluon, at order a. With "matched" (FONLL-A: S. Forte, E. Laenen, P. Nason,
+J. Rojo, arXiv:1001.2312, eqs. (13)-(15) and section 4) the same massive part stands beside what is beyond
+it,
 
     F = F(massive) + D (F(massless, nf + 1) - F(massless limit of massive)),
 
-all with the densities and the coupling of the nf at hand, which is right to the order a that the massive part has.
-Massless heavy parts go to order a here, whatever the order of the light ones. The charged current is treated by the
-same formula, which the paper does not write out. Photon couplings alone are massive: parts with a Z stay massless.
+all with the densities and the coupling of the nf at hand, which is right to the order a that the massive
+part has. Massless heavy parts go to order a here, whatever the order of the light ones. The charged current
+is treated by the same formula, which the paper does not write out. Photon couplings alone are massive:
+parts with a Z stay massless.
 """
 
 from __future__ import annotations
@@ -61,7 +63,7 @@ def pair_rows(
 def beyond_pair(
     setting: Setting, nodal: Mapping[str, Floats], q2: Floats, a: Floats, nf: int, quark: int, mass: float
 ) -> Floats:
-    """Return massless rows of the photon's coupling to a heavy quark less the massless limit of the massive ones.
+    """Return massless rows of a photon coupled to a heavy quark less the massless limit of the massive ones.
 
     Parameters
     ----------

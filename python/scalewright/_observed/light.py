@@ -1,9 +1,10 @@
 """Coefficient functions of light quarks on a grid, with the logarithms of both hard scales.
 
-With t = ln(Q^2/mu_f^2), l = ln(mu_r^2/mu_f^2) and C = sum_k a(mu_r)^k C_k, that a structure function does not depend
-on mu_f means d C/d t = C P + beta(a) d C/d a, beta(a) = -b0 a^2 - b1 a^3 - ...; solved order by order in
-`_with_logarithms` and re-expanded in a(mu_r) after that. Products of C and P are products of matrices on the grid:
-ratios of scales are those of the theory, so that these are computed once for each number of flavours.
+With t = ln(Q^2/mu_f^2), lr = ln(mu_r^2/mu_f^2) and C = sum_k a^k C_k, that a structure function does not
+depend on mu_f means d C/d t = C P + beta(a) d C/d a, beta(a) = -b0 a^2 - b1 a^3 - ...; solved order by
+order in `_with_logarithms` in a(mu_f), and re-expanded in a(mu_r) after that. Products of C and P are
+products of matrices on the grid: ratios of scales are those of the theory, so that these are computed
+once for each number of flavours.
 """
 
 from __future__ import annotations
@@ -23,7 +24,10 @@ HIGHEST = {"F2": 2, "FL": 3, "xF3": 2}
 
 
 def beta_coefficients(nf: int) -> tuple[float, float]:
-    """Return b0, b1 of d a/d ln mu^2 = -b0 a^2 - b1 a^3 (W. Caswell, PRL 33 (1974) 244; D. Jones, NP B75 (1974) 531)."""
+    """Return b0, b1 of d a/d ln mu^2 = -b0 a^2 - b1 a^3.
+
+    W. Caswell, Phys. Rev. Lett. 33 (1974) 244; D. Jones, Nucl. Phys. B75 (1974) 531.
+    """
     return 11.0 - 2.0 / 3.0 * nf, 102.0 - 38.0 / 3.0 * nf
 
 
@@ -59,16 +63,16 @@ def light_matrices(
     dict
         Name of the coefficient -> (power of a, node, node), acting on nodal values of x f(x).
     """
-    t, l = -float(np.log(muf2_ratio)), float(np.log(mur2_ratio / muf2_ratio))
+    t, lr = -float(np.log(muf2_ratio)), float(np.log(mur2_ratio / muf2_ratio))
     plain = {name: [_plain(grid, k, function, name, nf) for k in range(highest + 1)] for name in COEFFICIENTS}
     plus, minus = ([splitting(grid, k, name, nf) for k in range(highest)] for name in ("ns+", "ns-"))
     nonsinglet = {"ns+": (plain["ns+"], plus), "ns-": (plain["ns-"], minus)}
-    made = {name: _shifted(c, p, t, l, nf) for name, (c, p) in nonsinglet.items()}
+    made = {name: _shifted(c, p, t, lr, nf) for name, (c, p) in nonsinglet.items()}
     # the singlet as one row of two blocks (Sigma, gluon)
     both = [
         np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)
     ]
-    singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], t, l, nf)
+    singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], t, lr, nf)
     n = grid.nodes
     made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
     made["gluon"] = [c[:, n:] for c in singlet]
@@ -88,16 +92,16 @@ def _singlet(grid: ChebyshevGrid, order: int, nf: int) -> Floats:
     return np.block([[part["ns+"] + part["pure singlet"], part["qg"]], [part["gq"], part["gg"]]])
 
 
-def _shifted(c: list[Floats], p: list[Floats], t: float, l: float, nf: int) -> list[Floats]:
+def _shifted(c: list[Floats], p: list[Floats], t: float, lr: float, nf: int) -> list[Floats]:
     """Return coefficients at mu_f and mu_r from those at Q."""
     b0, b1 = beta_coefficients(nf)
     moved = _with_logarithms(c, p, t, b0, b1)
-    # a(mu_f) = a + b0 l a^2 + (b1 l + b0^2 l^2) a^3 with a = a(mu_r)
+    # a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3 with a = a(mu_r)
     result = list(moved)
     if len(moved) > 2:
-        result[2] = moved[2] + b0 * l * moved[1]
+        result[2] = moved[2] + b0 * lr * moved[1]
     if len(moved) > 3:
-        result[3] = moved[3] + 2.0 * b0 * l * moved[2] + (b1 * l + (b0 * l) ** 2) * moved[1]
+        result[3] = moved[3] + 2.0 * b0 * lr * moved[2] + (b1 * lr + (b0 * lr) ** 2) * moved[1]
     return result
 
 

@@ -16,8 +16,8 @@ d2sigma/dx dQ2         neutral: 2 pi alpha^2/(x Q^4) (Z+ F2 - y^2 FL -+ Y- xF3) 
 d2sigma/dx dy          x (s - M^2) = Q^2/y times d2sigma/dx dQ2                       pb
 ====================== ============================================================== ========
 
-W = (M_W^2/(Q^2 + M_W^2))^2. Source: S. Navas et al. (Particle Data Group), review "Structure functions", recalled
-from memory; the reduced cross sections are common practice. Structure functions are per nucleon.
+W = (M_W^2/(Q^2 + M_W^2))^2. Source: S. Navas et al. (Particle Data Group), review "Structure functions",
+recalled from memory; the reduced cross sections are common practice. Structure functions are per nucleon.
 """
 
 from __future__ import annotations

@@ -1,8 +1,9 @@
-"""All rows of points that share a number of flavours: light quarks, heavy quarks, in the scheme of the theory."""
+"""All rows of points that share a number of flavours: light and heavy quarks, in the scheme of the theory."""
 
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from .._check import Floats, Integers
 from .charm import limit_rows, single_rows
@@ -52,7 +53,7 @@ def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
 
 
 def nodal_weights(problem: Problem, x: Floats, factors: Floats) -> dict[str, Floats]:
-    """Return the weights of structure functions at nodes, (point, node) each; nothing where x is 1 or more."""
+    """Return the weights of structure functions at nodes, (point, node) each; none where x is 1 or more."""
     inside = x < 1.0
     at_x = np.zeros((x.size, problem.grid.nodes))
     at_x[inside] = problem.grid.cardinals(x[inside])
@@ -76,9 +77,9 @@ def photon_share(quark: int) -> float:
     return (1.0 if quark % 2 else 4.0) / 9.0
 
 
-def _couples(points: Points, quark: int) -> np.ndarray[tuple[int, ...], np.dtype[np.bool_]]:
+def _couples(points: Points, quark: int) -> NDArray[np.bool_]:
     """Say where a neutral boson may couple to this quark: it, or no quark, is tagged."""
-    return points.is_neutral & ((points.tag == 0) | (points.tag == quark))
+    return np.asarray(points.is_neutral & ((points.tag == 0) | (points.tag == quark)))
 
 
 def _add_pairs(

@@ -26,8 +26,8 @@ NEED_Y = ("reduced_cross_section", "d2sigma_dx_dq2", "d2sigma_dx_dy")
 _BEAMS = ("e-", "e+", "nu", "nubar")
 _TAGS = {None: 0, "": 0, "charm": 4, "bottom": 5}
 _PROTONS = {"proton": 1.0, "neutron": 0.0, "deuteron": 0.5, "isoscalar": 0.5}
-#: y may exceed 1 by the rounding of its computation; a y that differs from Q^2/(x (s - M^2)) by more than this part
-#: is another y.
+#: y may exceed 1 by the rounding of its computation; a y that differs from Q^2/(x (s - M^2)) by more than
+#: this part is another y.
 _ROUNDING = 1e-12
 _WRONG_Y = 0.05
 
@@ -90,7 +90,7 @@ class Points:
 
     @property
     def sign(self) -> Floats:
-        """+1 for e+ and nubar, whose xF3 enters cross sections with a minus sign; -1 for e- and nu, (point,)."""
+        """+1 for e+ and nubar, whose xF3 enters cross sections with a minus sign, else -1, (point,)."""
         return np.array([1.0 if beam in ("e+", "nubar") else -1.0 for beam in self.beam])
 
     @classmethod
@@ -115,9 +115,12 @@ class Points:
         if not lists:
             raise InputError("points: there must be at least one")
         x, q2, y, s, polarisation, measure, beam, is_charged, is_photon, tag, protons, target = lists
-        real = [np.asarray(values, dtype=float) for values in (x, q2, y, s, polarisation)]
         return cls(
-            *real,
+            _real(x),
+            _real(q2),
+            _real(y),
+            _real(s),
+            _real(polarisation),
             tuple(measure),
             tuple(beam),
             np.asarray(is_charged, dtype=bool),
@@ -131,13 +134,11 @@ class Points:
     def part(self, chosen: Any) -> Points:
         """Return some of the points, by their indices."""
         numbers = np.atleast_1d(np.asarray(chosen))
-        values = {field.name: getattr(self, field.name) for field in fields(self)}
-        return Points(
-            **{
-                name: value[numbers] if isinstance(value, np.ndarray) else tuple(value[n] for n in numbers)
-                for name, value in values.items()
-            }
-        )
+        columns: dict[str, Any] = {}
+        for field in fields(self):
+            value = getattr(self, field.name)
+            columns[field.name] = value[numbers] if isinstance(value, np.ndarray) else _picked(value, numbers)
+        return Points(**columns)
 
     def refuse_outside(self, grid: ChebyshevGrid) -> None:
         """Raise a `RangeError` that names the first point with x below the grid."""
@@ -161,6 +162,14 @@ _DEFAULTS: dict[str, object] = {
     "target": "proton",
     "tagged": None,
 }
+
+
+def _real(values: list[Any]) -> Floats:
+    return np.asarray(values, dtype=np.float64)
+
+
+def _picked(values: tuple[str, ...], numbers: NDArray[Any]) -> tuple[str, ...]:
+    return tuple(values[number] for number in numbers)
 
 
 def _attribute(rows: Any, name: str) -> Any:

@@ -31,13 +31,14 @@ def save(
     flavours: tuple[int, ...],
     matrix: Floats,
     data: Combination,
+    steps_error: float,
 ) -> None:
     """Store a map, whole or not at all.
 
     Parameters
     ----------
     path : path-like
-    problem, start, flavours, matrix, data
+    problem, start, flavours, matrix, data, steps_error
         As `ForwardMap` holds them; `start` is (start_q2, start_nf).
 
     Raises
@@ -66,6 +67,7 @@ def save(
         "target_mass": int(problem.target_mass),
         "subtraction": problem.subtraction,
         "data": data.data,
+        "steps_error": steps_error,
     }
     hdf5.write(path, KIND, arrays, attributes)
 
@@ -91,7 +93,7 @@ def _rebuilt(arrays: dict[str, Any], attributes: dict[str, Any]) -> dict[str, An
     grid = ChebyshevGrid.from_panels(np.array(arrays["/grid/edges"]), np.array(arrays["/grid/degrees"]))
     theory = Theory.from_json(str(arrays["/theory"][()]))
     electroweak = Electroweak(**json.loads(str(arrays["/electroweak"][()])))
-    columns = {}
+    columns: dict[str, Any] = {}
     for field in fields(Points):
         column = np.array(arrays[f"/points/{field.name}"])
         if field.name.startswith("is_"):
@@ -113,4 +115,5 @@ def _rebuilt(arrays: dict[str, Any], attributes: dict[str, Any]) -> dict[str, An
         "flavours": tuple(int(f) for f in arrays["/flavours"]),
         "matrix": np.asarray(arrays["/matrix"]),
         "data": Combination(lists[0], lists[1], len(points)),
+        "steps_error": float(attributes["steps_error"]),
     }

@@ -1,7 +1,7 @@
 """Target mass in the form of the operator product expansion, as weights of nodal values.
 
-I. Schienbein et al., arXiv:0709.1775, eqs. (22)-(24), after H. Georgi, H. Politzer, Phys. Rev. D 14 (1976) 1829. With
-r^2 = 1 + 4 x^2 M^2/Q^2, xi = 2x/(1 + r), mu = M^2/Q^2,
+I. Schienbein et al., arXiv:0709.1775, eqs. (22)-(24), after H. Georgi, H. Politzer, Phys. Rev. D 14 (1976)
+1829. With r^2 = 1 + 4 x^2 M^2/Q^2, xi = 2x/(1 + r), mu = M^2/Q^2,
 
     F2  = x^2/(xi^2 r^3) F2(xi) + 6 mu x^3/r^4 h2 + 12 mu^2 x^4/r^5 g2,
     FL  = x^2/(xi^2 r) FL(xi) + 4 mu x^3/r^2 h2 + 8 mu^2 x^4/r^3 g2         (r^2 F2 - 2x F1 of the paper),

@@ -7,9 +7,10 @@ import time
 
 import numpy as np
 
-from .._check import show, show_all
+from .._display import brief
 from ..build import build_operators
 from ..densities import Densities
+from ..flavours import flavour_name
 from .jobs import EvolveJob, read_evolve_job, write_densities
 from .report import Report
 
@@ -80,6 +81,6 @@ def _summary(evolved: Densities, report: Report) -> None:
     momentum = evolved.momentum(part="above").mean(axis=1)
     q2, nf = np.atleast_1d(evolved.q2), np.atleast_1d(evolved.nf)
     places = range(q2.size) if q2.size <= 8 else (0, 1, 2, q2.size - 3, q2.size - 2, q2.size - 1)
-    rows = [[show(q2[i]), str(nf[i]), f"{momentum[i]:.6f}"] for i in places]
+    rows = [[brief(q2[i]), str(nf[i]), f"{momentum[i]:.6f}"] for i in places]
     report.table(["q2 (GeV^2)", "nf", "momentum above x_min"], rows)
-    report.say(f"  flavours {show_all(evolved.flavours, 13)}")
+    report.say(f"  flavours {', '.join(flavour_name(number) for number in evolved.flavours)}")

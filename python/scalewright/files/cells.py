@@ -66,8 +66,8 @@ class Cells:
 
     def _number(self, entry: str, row: int, column: str) -> float:
         try:
-            # Python takes 1_000 for a number; a table that says so was not written for us
-            number = float("" if "_" in entry else entry)
+            # Python takes 1_000 and the digits of other scripts for numbers; such a table was not meant so
+            number = float("" if "_" in entry or not entry.isascii() else entry)
         except ValueError:
             self.refuse(row, column, f"{show(entry)} is not a number")
         if not np.isfinite(number):

@@ -10,7 +10,6 @@ import contextlib
 import errno
 import mmap
 import os
-import secrets
 import stat
 import time
 from collections.abc import Iterator
@@ -186,7 +185,7 @@ def _create(folder: str, stem: str) -> tuple[int, str]:
     """Create and lock a temporary file that no other writer takes for an abandoned one."""
     flags = os.O_WRONLY | os.O_CREAT | os.O_EXCL | getattr(os, "O_BINARY", 0)
     while True:
-        temporary = os.path.join(folder, stem + secrets.token_hex(_SUFFIX_DIGITS // 2))
+        temporary = os.path.join(folder, stem + os.urandom(_SUFFIX_DIGITS // 2).hex())
         try:
             descriptor = os.open(temporary, flags, 0o666)
         except FileExistsError:

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -96,17 +97,21 @@ class ChiSquare:
         self.measurements = measurements
         self.reference = measurements.reference(reference)
         self._theory = _theory(theory, len(measurements))
-        self._sigma, self._shifts = measurements.nuisance(self.reference)
         self._whitening = self._factorised()
+
+    @cached_property
+    def _nuisance(self) -> tuple[Floats, Floats]:
+        """Independent errors and shifts by sources, made when asked for: a matrix takes an eigensystem."""
+        return self.measurements.nuisance(self.reference)
 
     def _factorised(self) -> Whitening:
         if self.form == "covariance":
             return Cholesky(self.covariance)
-        shifts = self._shifts
+        sigma, shifts = self._nuisance
         if self._theory is not None:
             values, vectors = np.linalg.eigh(self._theory)
             shifts = np.concatenate([shifts, vectors * np.sqrt(np.clip(values, 0.0, None))], axis=1)
-        return LowRank(self._sigma, shifts)
+        return LowRank(sigma, shifts)
 
     @property
     def covariance(self) -> Floats:
@@ -214,8 +219,9 @@ class ChiSquare:
             _check.refuse("shifted", shifted, "shifted must be True or False")
         if not shifted:
             return difference / np.sqrt(np.diagonal(self.covariance))
-        left = difference - self.shifts(prediction) @ self._shifts.T
-        return left / np.where(self._sigma > 0.0, self._sigma, np.nan)
+        sigma, shifts = self._nuisance
+        left = difference - self.shifts(prediction) @ shifts.T
+        return left / np.where(sigma > 0.0, sigma, np.nan)
 
     def shifts(self, prediction: ArrayLike) -> Floats:
         """Best fit of each nuisance parameter.
@@ -234,7 +240,7 @@ class ChiSquare:
         InputError
             As for `value`.
         """
-        return self._weighted(prediction) @ self._shifts
+        return self._weighted(prediction) @ self._nuisance[1]
 
     def per_table(self, prediction: ArrayLike) -> tuple[TablePart, ...]:
         """Chi-square of each table.
@@ -300,6 +306,10 @@ class ChiSquare:
             _check.refuse("prediction", prediction, "prediction must be one, (datum,)")
         current = self.with_reference(prediction)
         return float(np.asarray(current.value(prediction))) + current.log_determinant
+
+    def __repr__(self) -> str:
+        theory = "" if self._theory is None else ", with theory covariance"
+        return f"ChiSquare({self.measurements!r}, {self.form!r}{theory})"
 
     def _difference(self, prediction: ArrayLike) -> Floats:
         array = _check.real_array("prediction", prediction)

@@ -4,7 +4,7 @@ use crate::arrays::{copied, count, handed_over, slice};
 use crate::detached;
 use crate::errors::input;
 use crate::grid::Grid;
-use crate::kernels::{Parts, channel, parts};
+use crate::kernels::{Parts, channel, distances, parts};
 use numpy::{PyArrayDyn, PyReadonlyArray1};
 use pyo3::prelude::*;
 use scalewright_core::convolution::{coefficients_on, kernels_on, massive_rows as core_rows};
@@ -82,6 +82,7 @@ pub fn massive_coefficient<'py>(
     py: Python<'py>,
     what: &str,
     w: PyReadonlyArray1<'_, f64>,
+    one_minus_w: PyReadonlyArray1<'_, f64>,
     q2: f64,
     mass: f64,
 ) -> PyResult<Parts<'py>> {
@@ -92,7 +93,8 @@ pub fn massive_coefficient<'py>(
         }
     }
     let kernel = what.at(q2, mass);
-    let values: Vec<f64> = slice(py, "w", &w)?.iter().map(|w| kernel.regular(&Logarithms::at(-w.ln()))).collect();
+    let values: Vec<f64> =
+        distances(py, &w, &one_minus_w)?.into_iter().map(|t| kernel.regular(&Logarithms::at(t))).collect();
     Ok((copied(py, &values), copied(py, &kernel.plus), kernel.local))
 }
 

@@ -83,18 +83,21 @@ pub fn parts<'py>(
     z: &PyReadonlyArray1<'_, f64>,
     one_minus_z: &PyReadonlyArray1<'_, f64>,
 ) -> PyResult<Parts<'py>> {
+    let values: Vec<f64> =
+        distances(py, z, one_minus_z)?.into_iter().map(|t| kernel.regular(&Point::at(t), nf)).collect();
+    Ok((copied(py, &values), copied(py, &kernel.plus(nf)), kernel.local(nf)))
+}
+
+/// `ln(1/z)` from z and 1 - z.
+pub fn distances(
+    py: Python<'_>,
+    z: &PyReadonlyArray1<'_, f64>,
+    one_minus_z: &PyReadonlyArray1<'_, f64>,
+) -> PyResult<Vec<f64>> {
     let (z, one_minus_z) = (slice(py, "z", z)?, slice(py, "one_minus_z", one_minus_z)?);
     if z.len() != one_minus_z.len() {
         return Err(input(py, format!("z has {} entries, one_minus_z {}: equal numbers", z.len(), one_minus_z.len())));
     }
-    let values: Vec<f64> = z
-        .iter()
-        .zip(one_minus_z)
-        .map(|(&z, &rest)| {
-            // The smaller of the two is the one that holds all digits.
-            let t = if z < 0.5 { -z.ln() } else { -(-rest).ln_1p() };
-            kernel.regular(&Point::at(t), nf)
-        })
-        .collect();
-    Ok((copied(py, &values), copied(py, &kernel.plus(nf)), kernel.local(nf)))
+    // The smaller of the two is the one that holds all digits.
+    Ok(z.iter().zip(one_minus_z).map(|(&z, &rest)| if z < 0.5 { -z.ln() } else { -(-rest).ln_1p() }).collect())
 }

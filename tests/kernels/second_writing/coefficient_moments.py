@@ -9,7 +9,8 @@ Soft-gluon and 1/z constants of a^2: E. Zijlstra, W. van Neerven, Nucl. Phys. B3
 from __future__ import annotations
 
 from kernels.second_writing.anomalous_dimensions import harmonic_sum
-from kernels.second_writing.parts import CA, CF, TR, ZETA2, ZETA3
+from kernels.second_writing.parts import CA, CF, TR, ZETA2, ZETA3, Array, log_one_minus_z, log_z
+from kernels.second_writing.polylogs import li2
 
 
 def quark_nlo(sf: str, n: int) -> float:
@@ -62,3 +63,11 @@ INVERSE_F2 = 344 / 27 - 16 / 3 * ZETA2
 """Factor of nf CF/z (pure singlet) and nf CA/z (gluon) in F2 at a^2."""
 INVERSE_FL = -16 / 9
 """The same in FL."""
+
+
+def pure_singlet_fl(z: Array, y: Array) -> Array:
+    """Exact pure singlet part of FL at a^2, one flavour: the same source."""
+    lz, l1 = log_z(z, y), log_one_minus_z(z, y)
+    total = 3 * (1 - 2 * z - 2 * z**2) * y * l1 + 9 * z**2 * (li2(z, y) + lz**2 - ZETA2)
+    total += 9 * z * (1 - z - 2 * z**2) * lz - 9 * z**2 * y - y**3
+    return 16 * CF / (9 * z) * total

@@ -14,8 +14,8 @@ from __future__ import annotations
 from collections.abc import Callable
 
 import numpy as np
-from kernels.second_writing import coefficients_nnlo_2000 as older
-from kernels.second_writing.coefficients_nnlo_2000 import Table, evaluate
+from kernels.second_writing import coefficients_older_fits as older
+from kernels.second_writing.coefficients_older_fits import Table, evaluate
 from kernels.second_writing.parts import ZERO, Array, Parts, log_one_minus_z, log_z
 
 Shape = Callable[[Array, Array], Array]

@@ -4,10 +4,10 @@
 //! panel, not at a node; the quadrature is graded towards it, so that a threshold like `(1-w)^(1/2)` and
 //! logarithms do not limit the accuracy.
 
-use super::points::stretch_points;
+use super::points::{graded_points, threshold_points};
 use crate::error::{Error, Result};
 use crate::grid::Grid;
-use crate::kernels::coefficients::{Massive, MassiveKernel};
+use crate::kernels::coefficients::{Massive, MassiveKernel, Onset};
 use crate::numerics::endpoint::Logarithms;
 use crate::watch::Watch;
 use rayon::prelude::*;
@@ -18,7 +18,7 @@ use rayon::prelude::*;
 ///
 /// # Errors
 /// [`Error::OutOfRange`] where the lowest momentum fraction needed lies below `x_min`, [`Error::Argument`] where
-/// an argument is not positive or x exceeds 1, [`Error::Shape`] where there are not as many `q2` as `x`,
+/// an argument is not positive and finite, [`Error::Shape`] where there are not as many `q2` as `x`,
 /// [`Error::Interrupted`].
 pub fn massive_rows(
     grid: &Grid,
@@ -95,7 +95,7 @@ fn add_own(grid: &Grid, kernel: &MassiveKernel, u: f64, to: f64, panel: usize, l
         of_here += coefficient * super::matrices::left_to_subtract(to, k);
     }
     let mut cardinals = vec![0.0; local.len()];
-    for (t, weight) in stretch_points(0.0, to, grid.degrees()[panel]) {
+    for (t, weight) in points(grid, kernel, panel, 0.0, to) {
         let w = Logarithms::at(t);
         let (regular, plus) = (weight * w.z * kernel.regular(&w), weight * w.z * plus_part(kernel, &w));
         grid.panel(panel).cardinals(u - t, &mut cardinals);
@@ -108,7 +108,7 @@ fn add_own(grid: &Grid, kernel: &MassiveKernel, u: f64, to: f64, panel: usize, l
 
 fn add_other(grid: &Grid, kernel: &MassiveKernel, u: f64, range: (f64, f64), panel: usize, local: &mut [f64]) {
     let mut cardinals = vec![0.0; local.len()];
-    for (t, weight) in stretch_points(range.0, range.1, grid.degrees()[panel]) {
+    for (t, weight) in points(grid, kernel, panel, range.0, range.1) {
         let w = Logarithms::at(t);
         let value = weight * w.z * (kernel.regular(&w) + plus_part(kernel, &w));
         grid.panel(panel).cardinals(u - t, &mut cardinals);
@@ -118,5 +118,14 @@ fn add_other(grid: &Grid, kernel: &MassiveKernel, u: f64, range: (f64, f64), pan
 
 /// `sum_k plus_k ln^k(1-w)/(1-w)`.
 fn plus_part(kernel: &MassiveKernel, w: &Logarithms) -> f64 {
-    kernel.plus.iter().rev().fold(0.0, |sum, coefficient| sum * w.ln_1mz + coefficient) / w.one_minus_z
+    kernel.plus.iter().rev().fold(0.0, |sum, coefficient| sum * w.ln_1mz() + coefficient) / w.one_minus_z
+}
+
+/// Quadrature of a panel in t, as the kernel begins.
+fn points(grid: &Grid, kernel: &MassiveKernel, panel: usize, from: f64, to: f64) -> Vec<(f64, f64)> {
+    let (length, degree) = (grid.edges()[panel + 1] - grid.edges()[panel], grid.degrees()[panel]);
+    match kernel.onset {
+        Onset::Root(distance) => threshold_points(from, to, (length, degree), distance),
+        Onset::Logarithms(distance) => graded_points(from, to, degree, distance),
+    }
 }

@@ -75,7 +75,7 @@ impl Point {
     }
 }
 
-/// One z with its logarithms alone, for formulas that need no more and are asked at many points.
+/// One z from `t = ln(1/z)` and no more than that, for formulas that are asked at many points.
 #[derive(Debug, Clone, Copy)]
 pub struct Logarithms {
     /// `z`
@@ -84,15 +84,19 @@ pub struct Logarithms {
     pub one_minus_z: f64,
     /// `ln z`
     pub ln_z: f64,
-    /// `ln(1-z)`
-    pub ln_1mz: f64,
 }
 
 impl Logarithms {
     /// The point `z = e^-t`, for t > 0.
     pub fn at(t: f64) -> Self {
-        let (z, one_minus_z) = ((-t).exp(), -(-t).exp_m1());
-        let ln_1mz = if z < 0.5 { (-z).ln_1p() } else { one_minus_z.ln() };
-        Self { z, one_minus_z, ln_z: -t, ln_1mz }
+        let one_minus_z = -(-t).exp_m1();
+        // Below 1/2 the difference would lose digits of z, above it none.
+        let z = if one_minus_z < 0.5 { 1.0 - one_minus_z } else { (-t).exp() };
+        Self { z, one_minus_z, ln_z: -t }
+    }
+
+    /// `ln(1-z)`
+    pub fn ln_1mz(&self) -> f64 {
+        if self.z < 0.5 { (-self.z).ln_1p() } else { self.one_minus_z.ln() }
     }
 }

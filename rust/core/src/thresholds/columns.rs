@@ -4,11 +4,9 @@
 //! families of their own. Each matrix has one row a node and a last row: what has flowed below `x_min` (all of the
 //! momentum in that of the gluon, each flavour's own number elsewhere).
 
-use crate::evolution::{Sector, Stretch, StretchSolution, place};
+use crate::evolution::{CHARM, Sector, Stretch, StretchSolution, place};
 use crate::numerics::blocks::Matrix;
 
-/// First heavy flavour number.
-const CHARM: usize = 4;
 /// Gluon, light sum, charm, bottom, top.
 const CHANNELS: usize = 5;
 const GLUON: usize = 0;

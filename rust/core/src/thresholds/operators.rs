@@ -54,7 +54,7 @@ fn finish(
     error: f64,
     watch: &Stage,
 ) -> Result<Evolution> {
-    let families = inputs.families(&prepared);
+    let families = inputs.families(|one, other| prepared.same(one, other));
     let tasks: Vec<(Family, usize)> =
         families.iter().flat_map(|&family| (0..grid.panels()).map(move |panel| (family, panel))).collect();
     let chunks: Vec<Chunk> = tasks

@@ -1,6 +1,6 @@
 //! A route made ready: equations factored along every leg, matching at every crossing.
 
-use super::columns::{Columns, LegColumns};
+use super::columns::{Columns, Family, LegColumns};
 use super::crossing::Crossing;
 use super::inputs::Inputs;
 use super::route::{Entry, Route};
@@ -15,6 +15,9 @@ use std::collections::BTreeMap;
 
 /// How many times the degree of the steps is raised before a build gives up.
 const MOST_REFINEMENTS: u32 = 3;
+/// Powers a and b of the quark densities `x^a (1-x)^b` on which steps are judged, sea-like and valence-like; the gluon
+/// that goes with both is sea-like.
+const PROBES: [(f64, i32); 2] = [(-0.2, 6), (0.6, 3)];
 
 /// What is to be built.
 pub struct BuildOptions {
@@ -102,6 +105,38 @@ impl Prepared {
         Ok(legs)
     }
 
+    /// Error estimate of the steps: smooth densities of every family are carried along the route.
+    ///
+    /// Unit columns would tell little: the error of the steps lies in what is rough in x, of which a density has next
+    /// to nothing.
+    fn probe(&self, theory: &Theory, grid: &Grid, inputs: &Inputs) -> Result<f64> {
+        // Nearer to x = 1 values fall over decades, and no accuracy relative to them is promised.
+        const LARGEST_X: f64 = 0.9;
+        let judged: Vec<usize> = (0..grid.nodes()).filter(|&i| grid.u()[i] >= -LARGEST_X.ln()).collect();
+        let errors = inputs
+            .families(|one, other| self.same(one, other))
+            .par_iter()
+            .map(|&family| {
+                let mut start = Columns::new(family, inputs.light, grid.nodes() + 1, PROBES.len());
+                let shape = |(power, fall): (f64, i32), u: f64| (-power * u).exp() * (-(-u).exp_m1()).powi(fall);
+                for (column, quark) in PROBES.into_iter().enumerate() {
+                    for (i, &u) in grid.u().iter().enumerate() {
+                        start.light_mut().row_mut(i)[column] = shape(quark, u);
+                        if family == Family::Plus {
+                            start.gluon_mut().row_mut(i)[column] = 2.0 * shape(PROBES[0], u);
+                        }
+                    }
+                }
+                for flavour in &inputs.heavy {
+                    start.set_heavy(*flavour, start.empty());
+                }
+                let legs = self.carry(theory, &start, 0)?;
+                Ok(legs.iter().map(|leg| leg.error(&judged)).fold(0.0, f64::max))
+            })
+            .collect::<Result<Vec<f64>>>()?;
+        Ok(errors.into_iter().fold(0.0, f64::max))
+    }
+
     /// Whether two sectors evolve alike on every leg.
     pub fn same(&self, one: Sector, other: Sector) -> bool {
         self.stretches.iter().all(|stretch| stretch.same(one, other))
@@ -130,8 +165,8 @@ pub fn prepare(
     loop {
         let plan = Plan { tolerance: options.tolerance, refinement };
         let prepared = Prepared::new(theory, grid, &kernels, options, &plan, watch)?;
-        let inputs = Inputs::of(&prepared, options);
-        let error = inputs.probe(theory, grid, &prepared)?;
+        let inputs = Inputs::of(&prepared.route, options.start_nf, &options.intrinsic);
+        let error = prepared.probe(theory, grid, &inputs)?;
         if error <= options.tolerance {
             return Ok((prepared, inputs, error));
         }

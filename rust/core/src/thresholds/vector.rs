@@ -4,14 +4,13 @@ use super::columns::{Columns, Family, LegColumns};
 use super::inputs::Inputs;
 use super::prepared::{BuildOptions, prepare, scale};
 use crate::error::Result;
+use crate::evolution::GLUON;
 use crate::grid::Grid;
 use crate::numerics::blocks::Matrix;
 use crate::theory::Theory;
 use crate::watch::Watch;
 use rayon::prelude::*;
 
-/// PDG number of the gluon.
-const GLUON: i64 = 21;
 /// Replicas carried together.
 const PIECE: usize = 32;
 /// Every family.

@@ -9,7 +9,7 @@
 //! regular, written so that nothing cancels at either end or for small `m^2/Q^2`. Below `D = 1 - lambda z` and
 //! `k = lambda/(1 - lambda) = Q^2/m^2`, so that `D = (1 - lambda)(1 + k (1-z))`.
 
-use super::massive::MassiveKernel;
+use super::massive::{MassiveKernel, Onset};
 use crate::colour::{CF, TR};
 use crate::numerics::endpoint::Logarithms;
 use crate::numerics::polylog::{ZETA2, li2_with_complement};
@@ -35,7 +35,12 @@ impl Single {
 
     /// A gluon kernel.
     pub fn smooth(self, function: fn(&Self, &Logarithms) -> f64) -> MassiveKernel {
-        MassiveKernel::smooth(1.0 / self.lambda, move |z| function(&self, z))
+        self.kernel(move |z| function(&self, z))
+    }
+
+    fn kernel(self, regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static) -> MassiveKernel {
+        // D vanishes where z = 1/lambda.
+        MassiveKernel::smooth(1.0 / self.lambda, Onset::Logarithms(-self.ln_lambda), regular)
     }
 
     fn denominator(&self, z: &Logarithms) -> f64 {
@@ -70,7 +75,7 @@ impl Single {
     /// `lambda C_3`
     pub fn f3_gluon(&self, z: &Logarithms) -> f64 {
         let (lambda, rest) = (self.lambda, self.rest);
-        let logarithms = 2.0 * z.ln_1mz - self.ln_lambda - self.ln_rest - 2.0 * (self.k * z.one_minus_z).ln_1p();
+        let logarithms = 2.0 * z.ln_1mz() - self.ln_lambda - self.ln_rest - 2.0 * (self.k * z.one_minus_z).ln_1p();
         let smooth = 2.0 * rest * z.z * z.one_minus_z;
         let logarithm = rest * z.z * self.mass_logarithm(z) * (2.0 * lambda * z.z - 2.0 * z.one_minus_z);
         2.0 * lambda * (splitting(z) * logarithms + smooth + logarithm)
@@ -78,7 +83,7 @@ impl Single {
 
     /// `P_qg` times its logarithms in F1 and F2; those of D cancel.
     fn collinear(&self, z: &Logarithms) -> f64 {
-        splitting(z) * (2.0 * (z.ln_1mz - z.ln_z) - self.ln_rest - self.ln_lambda)
+        splitting(z) * (2.0 * (z.ln_1mz() - z.ln_z) - self.ln_rest - self.ln_lambda)
     }
 }
 
@@ -108,7 +113,7 @@ impl Single {
     }
 
     fn quark(self, regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static) -> MassiveKernel {
-        MassiveKernel::smooth(1.0 / self.lambda, move |z| 2.0 * CF * regular(z))
+        self.kernel(move |z| 2.0 * CF * regular(z))
     }
 
     /// Plus distributions of `factor` times what F1, F2 and F3 share, `B_1 = -2` at z = 1 included.
@@ -121,7 +126,7 @@ impl Single {
     fn common(self, z: &Logarithms) -> f64 {
         let (y, d) = (z.one_minus_z, self.denominator(z));
         let square = 1.0 + z.z * z.z;
-        (1.0 + z.z) * (self.ln_lambda + self.ln_rest - 2.0 * z.ln_1mz) - square * (z.ln_z + (self.k * y).ln_1p()) / y
+        (1.0 + z.z) * (self.ln_lambda + self.ln_rest - 2.0 * z.ln_1mz()) - square * (z.ln_z + (self.k * y).ln_1p()) / y
             + 0.5 * y / (d * d)
     }
 

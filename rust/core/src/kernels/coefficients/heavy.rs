@@ -10,7 +10,7 @@
 //! `beta^2 = 1 - 4 r z/(1-z)`, `L = ln((1+beta)/(1-beta))`. In `w = z/zmax` it is `K(w) = zmax C(zmax w)`, and near
 //! threshold everything is written in `1 - w`, so that no digit is lost there.
 
-use super::massive::MassiveKernel;
+use super::massive::{MassiveKernel, Onset};
 use crate::numerics::endpoint::Logarithms;
 
 /// One `Q^2/m^2`.
@@ -38,7 +38,9 @@ impl Pair {
     }
 
     pub fn kernel(self, function: fn(&Self, &Logarithms) -> f64) -> MassiveKernel {
-        MassiveKernel::smooth(1.0 / self.z_max, move |w| self.z_max * function(&self, w))
+        // beta is infinite where w = 1 + 4 r.
+        let onset = Onset::Root((4.0 * self.r).ln_1p().sqrt());
+        MassiveKernel::smooth(1.0 / self.z_max, onset, move |w| self.z_max * function(&self, w))
     }
 
     pub fn f2(&self, w: &Logarithms) -> f64 {

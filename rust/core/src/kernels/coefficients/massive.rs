@@ -74,6 +74,15 @@ impl Massive {
     }
 }
 
+/// How a kernel begins at w = 1, in `t = ln(1/w)`: what a quadrature has to know.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub enum Onset {
+    /// Analytic in `t^(1/2)`; the nearest singularity is at i times this distance.
+    Root(f64),
+    /// Logarithms at t = 0, and a singularity at minus this distance.
+    Logarithms(f64),
+}
+
 /// A kernel in w at one `Q^2/m^2`: an ordinary function, plus distributions and a local part.
 pub struct MassiveKernel {
     /// `chi = rescaling * x`.
@@ -82,13 +91,19 @@ pub struct MassiveKernel {
     pub plus: Vec<f64>,
     /// Coefficient of `delta(1-w)`.
     pub local: f64,
+    /// How it begins at w = 1.
+    pub onset: Onset,
     regular: Box<dyn Fn(&Logarithms) -> f64 + Send + Sync>,
 }
 
 impl MassiveKernel {
     /// A kernel that is nothing but an ordinary function.
-    pub(super) fn smooth(rescaling: f64, regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static) -> Self {
-        Self { rescaling, plus: vec![], local: 0.0, regular: Box::new(regular) }
+    pub(super) fn smooth(
+        rescaling: f64,
+        onset: Onset,
+        regular: impl Fn(&Logarithms) -> f64 + Send + Sync + 'static,
+    ) -> Self {
+        Self { rescaling, plus: vec![], local: 0.0, onset, regular: Box::new(regular) }
     }
 
     /// The same with plus distributions and a local part.

@@ -9,6 +9,8 @@
 //! `*` is the convolution of the splitting functions, so that `F2` and `FL` follow from `x q` and `x g`, and `x F3`
 //! from `x (q - qbar)`. The factor nf of the gluon and of the pure singlet is in the kernels. Scale logarithms
 //! are left to those who have the matrices.
+//!
+//! Which one when: [`kernel`] for light quarks; [`Massive`] for charm and bottom with their masses, at order a.
 
 mod charged;
 mod heavy;
@@ -20,7 +22,7 @@ mod nnlo_nonsinglet;
 mod nnlo_singlet;
 
 use super::kernel::Kernel;
-pub use massive::{Massive, MassiveKernel};
+pub use massive::{Massive, MassiveKernel, Onset};
 
 /// A structure function of deep inelastic scattering.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
