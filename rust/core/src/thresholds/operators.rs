@@ -114,7 +114,8 @@ impl Evolution {
     /// Blocks `(scale, block, node, node)` and flows `(scale, flow, node)` at any scales of the route.
     ///
     /// # Errors
-    /// [`Error::OutOfRange`] for a scale that is not on the route; [`Error::Interrupted`].
+    /// [`crate::error::Error::OutOfRange`] for a scale that is not on the route;
+    /// [`crate::error::Error::Interrupted`].
     pub fn values(&self, asked: &[(f64, usize)], watch: &dyn Watch) -> Result<(Vec<f64>, Vec<f64>)> {
         let n = self.nodes;
         let (block, flow) = (self.names.len() * n * n, self.flow_names.len() * n);
