@@ -1,6 +1,7 @@
 """`scalewright predict`: jobs that work give what Python gives, the others are named by file, key and row."""
 
 import csv
+import os
 
 import numpy as np
 import pytest
@@ -90,7 +91,8 @@ def test_a_job_gives_what_python_gives(run, tmp_path, start, write):
     assert {row["table"] for row in rows} == {"Run 1, positrons"}
     chi_square = sw.ChiSquare(table)
     np.testing.assert_array_equal(column(rows, "pull"), chi_square.pulls(predicted[0]))
-    assert f"{chi_square.value(predicted[0]):.1f}" in done.stdout.splitlines()[-2]
+    total = next(line for line in done.stdout.splitlines() if line.startswith("  all"))
+    assert total.split() == ["all", "4", f"{chi_square.value(predicted[0]):.1f}"]
     assert done.stderr == ""
     assert len(done.stdout.splitlines()) < 24
 
@@ -176,6 +178,18 @@ def test_a_picture_is_drawn_where_it_is_asked_for(run, tmp_path, write):
     done = run("predict", "job.toml")
     assert (tmp_path / "out.png").read_bytes().startswith(b"\x89PNG")
     assert "out.png" in done.stdout
+
+
+def test_without_matplotlib_a_picture_is_refused_before_any_work(run, tmp_path, write):
+    (tmp_path / "sitecustomize.py").write_text(
+        "import importlib.util as u; f = u.find_spec\n"
+        "u.find_spec = lambda name, *a: None if name == 'matplotlib' else f(name, *a)"
+    )
+    write(('file = "out.csv"', 'file = "out.csv"\npicture = "out.png"'))
+    path = os.pathsep.join([str(tmp_path), os.environ.get("PYTHONPATH", "")])
+    done = run("predict", "job.toml", status=1, env=os.environ | {"PYTHONPATH": path})
+    assert "job.toml: [output] picture: matplotlib is not installed (pip install" in done.stderr
+    assert not (tmp_path / "out.csv").exists()
 
 
 WRONG = {

@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 import time
 from collections.abc import Sequence
+from importlib.util import find_spec
 
 import numpy as np
 
@@ -58,6 +59,9 @@ def run(options: argparse.Namespace) -> None:
     """Read the job, predict, write the result, print what was found."""
     report = Report(options.quiet)
     job = read_predict_job(options.job)
+    if job.picture is not None and find_spec("matplotlib") is None:
+        where = job.place.section("output").where("picture")
+        raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
     start = time.perf_counter()
     with job.place.blame():
         predicted = _predicted(job)
