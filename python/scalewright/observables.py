@@ -142,7 +142,7 @@ def _points(
             f"x, q2 and y have shapes {[a.shape for a in given]}: they must go together"
         ) from None
     if arrays[0].size == 0:
-        _check.refuse("x", x, "x must hold at least one value")
+        raise InputError("x, q2, y: there must be at least one value")
     flat = [np.ravel(array) for array in arrays]
     rows = SimpleNamespace(
         x=flat[0],
