@@ -142,7 +142,7 @@ def _points(
             f"x, q2 and y have shapes {[a.shape for a in given]}: they must go together"
         ) from None
     if arrays[0].size == 0:
-        _check.refuse("x", x, "x must hold at least one value")
+        raise InputError("x, q2, y: there must be at least one value")
     flat = [np.ravel(array) for array in arrays]
     rows = SimpleNamespace(
         x=flat[0],
@@ -166,7 +166,9 @@ def at_scale(densities: Densities, q2: float, nf: int) -> Floats:
     near = np.abs(scales - q2) <= SAME_SCALE * q2
     if not near.any():
         held = _check.show_all(scales.tolist())
-        raise InputError(f"densities hold {held} GeV^2 and not mu_f^2 = {show(q2)}: evolve them to it")
+        raise InputError(
+            f"densities.q2 = {held}: the points need mu_f^2 = {show(q2)} GeV^2: evolve them to it"
+        )
     same = np.flatnonzero(near & (counts == nf))
     if same.size == 0:
         found = int(counts[np.flatnonzero(near)[0]])
