@@ -36,6 +36,8 @@ MIXING = (
     (0.22487, 0.97349, 0.04183),
     (0.00858, 0.04111, 0.999118),
 )
+#: Where the inputs may lie, in GeV^-2 and GeV: wide, but no other unit (common practice, no source).
+_LIMITS = {"g_fermi": (1e-6, 1e-4), "z_mass": (10.0, 1000.0), "w_mass": (10.0, 1000.0)}
 #: The rows of a unitary matrix have length 1; printed and measured entries miss it by no more than this
 #: (common practice, no source).
 _UNITARY = 0.01
@@ -85,8 +87,9 @@ class Electroweak:
 
     def __post_init__(self) -> None:
         _check.choice("inputs", self.inputs, ("effective", "on shell", "running"))
-        for name, most in (("alpha", 0.1), ("g_fermi", 1.0), ("z_mass", 1e4), ("w_mass", 1e4)):
-            object.__setattr__(self, name, _check.real(name, getattr(self, name), above=0.0, most=most))
+        object.__setattr__(self, "alpha", _check.real("alpha", self.alpha, above=0.0, most=1.0))
+        for name in _LIMITS:
+            object.__setattr__(self, name, _limited(name, getattr(self, name)))
         object.__setattr__(self, "sin2", _check.real("sin2", self.sin2, above=0.0, below=1.0))
         moduli = _check.real_array("mixing", self.mixing, shape=(3, 3))
         _check.refuse_where("mixing", moduli, (moduli < 0.0) | (moduli > 1.0), "|V| must lie in [0, 1]")
@@ -156,8 +159,8 @@ class Electroweak:
         InputError
             If a number lies outside its range.
         """
-        z_mass = _check.real("z_mass", z_mass, above=0.0)
-        w_mass = _check.real("w_mass", w_mass, above=0.0, below=z_mass)
+        g_fermi, z_mass = _limited("g_fermi", g_fermi), _limited("z_mass", z_mass)
+        w_mass = _check.real("w_mass", w_mass, least=_LIMITS["w_mass"][0], below=z_mass)
         sin2 = 1.0 - (w_mass / z_mass) ** 2
         alpha = np.sqrt(2.0) * g_fermi * w_mass**2 * sin2 / np.pi
         return cls("on shell", float(alpha), g_fermi, z_mass, w_mass, sin2, _tuples(mixing))
@@ -193,6 +196,8 @@ class Electroweak:
         InputError
             If a number lies outside its range.
         """
+        g_fermi, z_mass = _limited("g_fermi", g_fermi), _limited("z_mass", z_mass)
+        alpha = _check.real("alpha", alpha, above=0.0, most=1.0)
         product = np.pi * alpha / (np.sqrt(2.0) * g_fermi * z_mass**2)
         if not 0.0 < product < 0.25:
             _check.refuse("pi alpha/(sqrt2 g_fermi z_mass^2)", product, "must lie in (0, 0.25)")
@@ -219,6 +224,12 @@ class Electroweak:
             f"1/alpha = {1.0 / self.alpha:.7g}, G_F = {self.g_fermi:.8g} GeV^-2, "
             f"M_Z = {self.z_mass:.7g} GeV, M_W = {self.w_mass:.7g} GeV; Born level"
         )
+
+
+def _limited(name: str, value: object) -> float:
+    """Return an input within its limits."""
+    least, most = _LIMITS[name]
+    return _check.real(name, value, least=least, most=most)
 
 
 def _tuples(mixing: ArrayLike) -> tuple[tuple[float, float, float], ...]:

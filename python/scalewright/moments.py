@@ -87,7 +87,7 @@ def moment(
     measure : {"F2", "FL", "xF3"}
     n : float
         At least 1 for xF3 and differences that vanish at small x, 2 and more otherwise, for the integral
-        from 0 to exist; any number is allowed above x_min.
+        from 0 to exist; from 0 to 100 is allowed.
     q2 : float
         Q^2 in GeV^2.
     densities, theory, current, exchange, beam, polarisation, target, tagged, electroweak
@@ -115,7 +115,7 @@ def moment(
     True
     """
     _check.choice("measure", measure, FUNCTIONS)
-    n = _check.real("n", n)
+    n = _check.real("n", n, least=0.0, most=100.0)
     q2 = _check.scale("q2", q2)
     if not isinstance(densities, Densities):
         _check.refuse("densities", densities, f"densities must be Densities, not {type(densities).__name__}")

@@ -166,7 +166,9 @@ def at_scale(densities: Densities, q2: float, nf: int) -> Floats:
     near = np.abs(scales - q2) <= SAME_SCALE * q2
     if not near.any():
         held = _check.show_all(scales.tolist())
-        raise InputError(f"densities hold {held} GeV^2 and not mu_f^2 = {show(q2)}: evolve them to it")
+        raise InputError(
+            f"densities.q2 = {held}: the points need mu_f^2 = {show(q2)} GeV^2: evolve them to it"
+        )
     same = np.flatnonzero(near & (counts == nf))
     if same.size == 0:
         found = int(counts[np.flatnonzero(near)[0]])

@@ -4,7 +4,6 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
-
 import scalewright as sw
 
 FLAVOURS = 7

@@ -230,7 +230,7 @@ def test_densities_at_another_scale_or_nf_are_refused(grid, start):
     evolved = sw.evolve(theory, start, [10.0])
     common = {"x": 0.1, "theory": theory, "exchange": "photon"}
     with pytest.raises(
-        sw.InputError, match=r"densities hold 10 GeV\^2 and not mu_f\^2 = 20: evolve them to it"
+        sw.InputError, match=r"densities.q2 = 10: the points need mu_f\^2 = 20 GeV\^2: evolve them to it"
     ):
         sw.structure_function("F2", q2=20.0, densities=evolved, **common)
     three = sw.evolve(replace(theory, flavours=3), start, [10.0])

@@ -1,4 +1,4 @@
-"""How far a prediction may be off numerically: what the last two Chebyshev coefficients of each panel make of it.
+"""How far a prediction may be off numerically: what the last Chebyshev coefficients of each panel make of it.
 
 A density that a panel resolves has coefficients which fall geometrically. Taking away the last, and the
 last two, of every panel changes a row by what stands below; the parts of single flavours and panels are
@@ -23,10 +23,10 @@ __all__ = ["row_errors"]
 
 #: On what is found; see above.
 _FACTOR = 2.0
-#: Rounding of products of matrices, relative to the sum of absolute terms: of the size of the differences seen
-#: between grids where nothing else is left (2e-13, measured).
+#: Rounding of products of matrices, relative to the sum of absolute terms: of the size of the differences
+#: seen between grids where nothing else is left (2e-13, measured).
 _ROUNDING = 2e-13
-#: The estimate of the steps in scale is that of the solver's own check, which was found 1000 times and more too large
+#: The estimate of the steps in scale is that of the solver's own check, found 1000 times and more too large
 #: for predictions (5e-9 quoted, 8e-13 true at most, of 120 predictions at two starts).
 _STEPS = 1e-3
 

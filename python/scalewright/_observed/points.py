@@ -30,6 +30,8 @@ _PROTONS = {"proton": 1.0, "neutron": 0.0, "deuteron": 0.5, "isoscalar": 0.5}
 #: this part is another y.
 _ROUNDING = 1e-12
 _WRONG_Y = 0.05
+#: Below it 1/y means nothing (far below any experiment).
+_LEAST_Y = 1e-12
 
 
 @dataclass(frozen=True, eq=False)
@@ -211,7 +213,7 @@ def _checked(given: dict[str, Any]) -> tuple[Any, ...]:
     _check.choice("beam", beam, _BEAMS if is_charged else _BEAMS[:2])
     if beam.startswith("nu") and polarisation != 0.0:
         _check.refuse("polarisation", polarisation, "a neutrino has one helicity; leave it out")
-    if given["tagged"] not in _TAGS:
+    if not isinstance(given["tagged"], str | None) or given["tagged"] not in _TAGS:
         _check.choice("tagged", given["tagged"], ("charm", "bottom"))
     y, s = _inelasticity(x, q2, given["y"], given["s"], measure)
     protons, target = _target(given["target"])
@@ -222,8 +224,7 @@ def _checked(given: dict[str, Any]) -> tuple[Any, ...]:
 
 def _inelasticity(x: float, q2: float, y: Any, s: Any, measure: str) -> tuple[float, float]:
     """Return y and s, each from the other where it is unknown."""
-    y = np.nan if y is None else float(y)
-    s = np.nan if s is None else float(s)
+    y, s = _known("y", y), _known("s", s)
     if not np.isnan(s):
         s = _check.real("s", s, above=NUCLEON_M2, unit="GeV^2")
         from_s = q2 / (x * (s - NUCLEON_M2))
@@ -231,12 +232,19 @@ def _inelasticity(x: float, q2: float, y: Any, s: Any, measure: str) -> tuple[fl
             _check.refuse("y", y, f"x, q2 and s say {from_s:.4g}: y must agree within 5 per cent")
         y = from_s
     if measure not in NEED_Y:
-        return y, s
+        return (y if 0.0 < y <= 1.0 else np.nan), s
     if np.isnan(y):
         raise InputError(f"{measure} needs y, or s")
-    if not 0.0 < y <= 1.0 + _ROUNDING:
+    if not _LEAST_Y <= y <= 1.0 + _ROUNDING:
         _check.refuse("y", y, "y = Q^2/(x (s - M^2)) must lie in (0, 1]")
     return y, s
+
+
+def _known(name: str, value: Any) -> float:
+    """Return a number, nan where there is none."""
+    if value is None or (isinstance(value, float) and np.isnan(value)):
+        return float("nan")
+    return _check.real(name, value)
 
 
 def _target(given: Any) -> tuple[float, str]:

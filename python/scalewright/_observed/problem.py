@@ -122,4 +122,5 @@ class Problem:
             )
 
     def _lowest(self) -> str:
-        return self.points.place[int(np.argmin(self.points.q2))]
+        row = int(np.argmin(self.points.q2))
+        return f"{self.points.place[row]}: q2 = {show(self.points.q2[row])}"
