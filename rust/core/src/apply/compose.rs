@@ -134,6 +134,6 @@ fn between(set: &Set, light: usize, output: Channel, input: Channel) -> Option<M
 }
 
 fn scaled(mut matrix: Matrix, factor: f64) -> Matrix {
-    matrix.values_mut().iter_mut().for_each(|value| *value *= factor);
+    matrix.scale(factor);
     matrix
 }

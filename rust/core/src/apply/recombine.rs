@@ -1,5 +1,6 @@
 //! Flavours (PDG numbers) into the combinations that evolve alone, and back.
 
+use crate::coupling::{FEWEST, MOST};
 use crate::error::{Error, Result};
 use crate::evolution::{CHARM, GLUON, HEAVY_NAMES};
 
@@ -8,7 +9,7 @@ use crate::evolution::{CHARM, GLUON, HEAVY_NAMES};
 /// # Errors
 /// [`Error::Argument`] for another number.
 pub fn check_flavour(flavour: i64) -> Result<()> {
-    if flavour == GLUON || (1..=6).contains(&flavour.abs()) {
+    if flavour == GLUON || (1..=6).contains(&flavour.unsigned_abs()) {
         return Ok(());
     }
     Err(Error::Argument {
@@ -69,8 +70,15 @@ impl Blocks {
     /// Reads the names of a set.
     ///
     /// # Errors
-    /// [`Error::Argument`] where the blocks that every set has are missing.
+    /// [`Error::Argument`] where the blocks that every set has are missing, or `light` is not 3 to 6.
     pub fn new(names: &[String], light: usize) -> Result<Self> {
+        if !(FEWEST..=MOST).contains(&light) {
+            return Err(Error::Argument {
+                name: "light",
+                value: light.to_string(),
+                allowed: "it must be 3 to 6".into(),
+            });
+        }
         let blocks = Self { names: names.to_vec(), light };
         for needed in ["gluon<-gluon", "gluon<-light+", "light+<-gluon", "light+<-light+", "ns+"] {
             if blocks.position(needed).is_none() {

@@ -123,7 +123,7 @@ impl StretchSolution {
     }
 }
 
-/// How finely stretches are cut.
+/// How accurate the steps of a stretch are to be: their number follows from its length alone, their degree from both.
 #[derive(Debug, Clone, Copy)]
 pub struct Plan {
     /// Relative accuracy wanted.
