@@ -97,6 +97,24 @@ def test_a_job_gives_what_python_gives(run, tmp_path, start, write):
     assert len(done.stdout.splitlines()) < 24
 
 
+def test_the_numerical_error_stands_beside_the_prediction(run, tmp_path, start, write):
+    write()
+    done = run("predict", "job.toml")
+    table = sw.Measurements.read(tmp_path / "run1.toml")
+    theory = sw.Theory(order="NLO", coupling=sw.Coupling(0.118, q2=8315.18, nf=5))
+    fine = sw.ChebyshevGrid(x_min=1e-4, resolution="fine")
+    fmap = sw.forward_map(theory, fine, start_q2=1.5, start_nf=3, points=table)
+    functions = {flavour: lambda x: 0.1 * x**-0.1 * (1 - x) ** 6 for flavour in (1, -1, -2, 3, -3)}
+    functions |= {21: lambda x: 2.0 * x**-0.1 * (1 - x) ** 5, 2: lambda x: 2.0 * x**0.5 * (1 - x) ** 3}
+    better = fmap.predict(sw.Densities.sample(fine, q2=1.5, nf=3, functions=functions))[0]
+    rows = result(tmp_path / "out.csv")
+    error = column(rows, "numerical error")
+    # the same input on the fine grid, taken for exact
+    assert (abs(column(rows, "prediction") - better) <= error).all()
+    assert (error < 1e-6 * column(rows, "prediction")).all()
+    assert "numerical errors at most" in done.stdout
+
+
 def test_pulls_are_differences_over_uncertainties(run, tmp_path, write):
     write()
     run("predict", "job.toml", "--quiet")

@@ -10,6 +10,7 @@ from importlib.util import find_spec
 import numpy as np
 
 from .._check import Floats
+from ..densities import Densities
 from ..files.cells import Cells, write_cells
 from ..fitting.chi_square import ChiSquare
 from ..forward import forward_map
@@ -64,15 +65,17 @@ def run(options: argparse.Namespace) -> None:
         raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
     start = time.perf_counter()
     with job.place.blame():
-        predicted = _predicted(job)
+        predicted, error = _predicted(job)
         prediction = predicted.mean(axis=0)
         reference = prediction if job.reference == "prediction" else None
         chi_square = ChiSquare(job.measured, job.form, reference)
-    _write(job, predicted, chi_square)
+    _write(job, predicted, error, chi_square)
     report.say(f"{job.file}: {job.measured!r}, predicted")
     report.say(f"  from {job.given!r}")
     report.say(f"  with {job.theory!r}")
     report.say(f"  in {time.perf_counter() - start:.2f} s")
+    part = float((error / np.sqrt(np.diagonal(chi_square.covariance))).max())
+    report.say(f"  numerical errors at most {part:.1g} of the uncertainty of a datum")
     for cut in job.measured.cuts:
         report.say(f"  cut {cut}")
     chi_square_summary(chi_square, prediction, report)
@@ -81,23 +84,26 @@ def run(options: argparse.Namespace) -> None:
     _draw(job, prediction, report)
 
 
-def _predicted(job: PredictJob) -> Floats:
-    """Return predictions, (replica, datum)."""
+def _predicted(job: PredictJob) -> tuple[Floats, Floats]:
+    """Return predictions, (replica, datum), and the numerical error of their mean, (datum,)."""
     given = job.given
+    q2, nf = float(np.ravel(given.q2)[0]), int(np.ravel(given.nf)[0])
     fmap = forward_map(
         job.theory,
         given.grid,
-        start_q2=float(np.ravel(given.q2)[0]),
-        start_nf=int(np.ravel(given.nf)[0]),
+        start_q2=q2,
+        start_nf=nf,
         points=job.measured,
         electroweak=job.electroweak,
         target_mass=job.target_mass,
         subtraction=job.subtraction,
     )
-    return fmap.predict(given)
+    values = given.values.reshape(-1, *given.values.shape[-2:]).mean(axis=0)
+    mean = Densities(given.grid, q2=q2, nf=nf, flavours=given.flavours, values=values)
+    return fmap.predict(given), fmap.numerical_error(mean)[0]
 
 
-def _write(job: PredictJob, predicted: Floats, chi_square: ChiSquare) -> None:
+def _write(job: PredictJob, predicted: Floats, error: Floats, chi_square: ChiSquare) -> None:
     """Write predictions beside the data, one line a datum."""
     measured = job.measured
     prediction = predicted.mean(axis=0)
@@ -110,6 +116,7 @@ def _write(job: PredictJob, predicted: Floats, chi_square: ChiSquare) -> None:
         "value": _numbers(measured.value),
         "uncertainty": _numbers(sigma),
         "prediction": _numbers(prediction),
+        "numerical error": _numbers(error),
     }
     if predicted.shape[0] > 1:
         columns["spread"] = _numbers(predicted.std(axis=0, ddof=1))
