@@ -149,6 +149,19 @@ class Shape(ABC):
         """
         return Restricted(self, fixed, tied or {}, bounds or {}, priors or {}, start or {})
 
+    def solved(self, parameters: ArrayLike) -> dict[str, float]:
+        """Return what sum rules determine, as name -> value.
+
+        Parameters
+        ----------
+        parameters : array_like, (parameter,)
+
+        Returns
+        -------
+        dict
+        """
+        return {}
+
     @property
     def _shape(self) -> tuple[int, int]:
         return len(self.flavours), self.grid.nodes
@@ -247,6 +260,10 @@ class Restricted(Shape):
     def below(self, parameters: ArrayLike) -> tuple[float, Floats] | None:
         """Return momentum and numbers of the six quarks below x_min, or None where they are unknown."""
         return self.shape.below(self.full(parameters))
+
+    def solved(self, parameters: ArrayLike) -> dict[str, float]:
+        """Return what sum rules determine, as name -> value."""
+        return self.shape.solved(self.full(parameters))
 
     def _known(self, option: str, name: object) -> int:
         """Return the place of a parameter."""
