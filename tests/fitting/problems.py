@@ -34,7 +34,7 @@ class Rows:
         return (8 * (at[1] - at[-1]) - (at[2] - at[-2])) / (12 * step)
 
     def predict(self, values):
-        return np.tensordot(np.atleast_3d(values), self.matrix, axes=([-2, -1], [1, 2]))
+        return np.tensordot(np.asarray(values), self.matrix, axes=([-2, -1], [1, 2]))
 
 
 @cache

@@ -172,7 +172,7 @@ class Problem:
     # ---- residuals -------------------------------------------------------------------------------------
 
     def residuals(self, parameters: Floats, shift: Floats | None = None) -> Floats:
-        """Return residuals of data, then of priors; `shift`, (datum,), is added to those of the data."""
+        """Return residuals of data, then of priors, (residual,); `shift`, of the same shape, is added."""
         with np.errstate(over="ignore", invalid="ignore"):  # a far step; what is not finite is not taken
             values, moved = self.values(parameters), self._moved(parameters)
             if self._whitened is not None:
@@ -182,9 +182,8 @@ class Problem:
             else:
                 source, chi2 = self._parts()
                 result = chi2.residuals(source.data(source.rows(values, moved)))
-        if shift is not None:
-            result = result + shift
-        return np.concatenate([result, self._pulls(parameters)])
+        whole = np.concatenate([result, self._pulls(parameters)])
+        return whole if shift is None else whole + shift
 
     def jacobian(self, parameters: Floats) -> Floats:
         """Return the derivative of `residuals`, (residual, parameter)."""

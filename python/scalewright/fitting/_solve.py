@@ -142,8 +142,8 @@ def solve(
     start : ndarray, (parameter,)
     held : mapping, optional
         Places of parameters that do not move -> values.
-    shift : ndarray, (datum,), optional
-        Added to the residuals of the data.
+    shift : ndarray, (residual,), optional
+        Added to the residuals.
     evaluations : int, optional
         Of residuals, at most; by default 100 a parameter.
     callback : callable, optional
