@@ -9,7 +9,7 @@ from functools import cache
 import numpy as np
 import scalewright as sw
 from fitting.laws import power_law
-from scalewright.fitting.shapes import PowerLaw, Term
+from scalewright.fitting.shapes import FunctionShape, PowerLaw, Term
 
 X_MIN, START_Q2 = 1e-3, 2.0
 GRID = sw.ChebyshevGrid.from_panels([0.0, 0.7, 2.5, -np.log(X_MIN)], [8, 8, 8])
@@ -92,6 +92,21 @@ def linear_shape():
     shape = power_law(degree=1, grid=GRID)
     powers = [name for name in shape.names if not name.split(".")[1].startswith("c")]
     return shape.restricted(fixed=powers)
+
+
+def quick_shape():
+    """Return a linear shape that costs little: three functions of all flavours with coefficients."""
+    return FunctionShape(GRID, FLAVOURS, _sum, [1.0, 0.5, 0.2], names=["a", "b", "c"], jacobian=_parts)
+
+
+def _parts(x, p):
+    weights = np.array([[3, 1, 0.2, 2, 0.2, 0.1, 0.1], [1, 0, 1, 0, 1, 0.5, 0.5], [0, 1, -1, 2, -1, 0, 0]])
+    functions = [x**0.2 * (1 - x) ** 5, x**-0.1 * (1 - x) ** 7, x**0.6 * (1 - x) ** 3]
+    return np.stack([np.outer(w, f) for w, f in zip(weights, functions, strict=True)])
+
+
+def _sum(x, p):
+    return np.tensordot(p, _parts(x, p), axes=1)
 
 
 def bent_shape():

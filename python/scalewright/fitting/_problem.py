@@ -187,17 +187,18 @@ class Problem:
 
     def jacobian(self, parameters: Floats) -> Floats:
         """Return the derivative of `residuals`, (residual, parameter)."""
-        values, moved = self.values(parameters), self._moved(parameters)
-        count = len(self.shape.names)
+        moved, count = self._moved(parameters), len(self.shape.names)
         by_shape = self.shape.jacobian(parameters[:count])[:, self._order]
-        along: Floats = np.ascontiguousarray(by_shape.reshape(count, values.size).T)
+        along: Floats = np.ascontiguousarray(by_shape.reshape(count, -1).T)
         maps = self._whitened if self._whitened is not None else self._parts()[0].maps
         columns: Floats = maps[0] @ along
         for change, one in zip(moved, maps[1:], strict=True):
             if change != 0.0:
                 columns = columns + change * (one @ along)
-        by_theory = [(one @ values)[:, None] for one in maps[1:]]
-        whole = np.concatenate([columns, *by_theory], axis=1)
+        whole = columns
+        if self._whitened is None or moved.size:
+            values = self.values(parameters)
+            whole = np.concatenate([columns, *((one @ values)[:, None] for one in maps[1:])], axis=1)
         if self._whitened is None:
             source, chi2 = self._parts()
             whole = chi2.whiten(source.tangent(source.rows(values, moved), whole))

@@ -29,6 +29,8 @@ CONVERGED = 1e-6
 
 #: Distance from a bound, in units of a parameter's own effect, within which a push puts it on the bound.
 _NEAR = 1e-3
+#: Chi-square within this of the minimum puts parameters within 1e-10 of their errors: no further steps.
+_THERE = 1e-20
 _POLISH = 20
 _HALVINGS = 8
 #: Chi-square is known to some roundings only.
@@ -99,6 +101,7 @@ class _Counted:
     residual_calls: int = 0
     jacobian_calls: int = 0
     best: tuple[float, Floats] | None = field(default=None)
+    last: tuple[Floats, Floats] | None = field(default=None)  # where the last Jacobian was, and what it was
 
     def whole(self, moving: Floats) -> Floats:
         """Return all parameters."""
@@ -122,7 +125,16 @@ class _Counted:
                 self.callback(self.jacobian_calls, self.best[0], self.whole(self.best[1]))
             except StopIteration:
                 raise _Stop from None
-        return np.ascontiguousarray(self.problem.jacobian(self.whole(moving))[:, self.moving])
+        whole = self.problem.jacobian(self.whole(moving))
+        self.last = (np.array(moving), whole)
+        return np.ascontiguousarray(whole[:, self.moving])
+
+    def known(self, moving: Floats) -> Floats:
+        """Return the Jacobian by all parameters, computed again only if the last one was elsewhere."""
+        if self.last is None or (self.last[0] != moving).any():
+            self.jacobian(moving)
+        assert self.last is not None
+        return self.last[1]
 
 
 def solve(
@@ -169,8 +181,7 @@ def solve(
     )
     at_low, at_high = np.zeros(base.size, dtype=bool), np.zeros(base.size, dtype=bool)
     at_low[moving], at_high[moving] = low, high
-    whole = counted.whole(now)
-    full = problem.jacobian(whole)
+    whole, full = counted.whole(now), counted.known(now)
     return Solution(
         whole, residuals, full, at_low, at_high, is_held, distance, stopped,
         counted.residual_calls, counted.jacobian_calls,
@@ -206,7 +217,7 @@ def _polished(
     counted: _Counted, now: Floats, low: Floats, high: Floats, steps: int
 ) -> tuple[Floats, Any, Any, Floats, float]:
     """Put on bounds what presses against them, and take Gauss-Newton steps with the others."""
-    residuals, jacobian = counted.residuals(now), counted.jacobian(now)
+    residuals, jacobian = counted.residuals(now), counted.known(now)[:, counted.moving]
     last = np.inf
     for step in range(steps + 1):
         snapped, at_low, at_high = _pressed(now, low, high, residuals, jacobian)
@@ -217,7 +228,7 @@ def _polished(
         free = ~(at_low | at_high)
         move, distance = _linear_step(residuals, jacobian, free)
         total = float(residuals @ residuals)
-        if step == steps or distance == 0.0 or (distance < CONVERGED and distance > _GAIN * last):
+        if step == steps or distance < _THERE or (distance < CONVERGED and distance > _GAIN * last):
             break
         last = distance
         better = _shorter(counted, now, move, low, high, total)
