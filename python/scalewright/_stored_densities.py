@@ -13,6 +13,7 @@ name                    content
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -32,7 +33,12 @@ def save(path: PathLike, of: Questions) -> None:
     """Store densities, whole or not at all."""
     from .files import hdf5
 
-    arrays: dict[str, np.ndarray[Any, Any]] = {
+    hdf5.write(path, "densities", *arrays(of))
+
+
+def arrays(of: Questions) -> tuple[dict[str, np.ndarray[Any, Any]], dict[str, str | int | float]]:
+    """Return densities as named arrays and attributes."""
+    found: dict[str, np.ndarray[Any, Any]] = {
         "/grid/edges": of._grid.edges,
         "/grid/degrees": of._grid.degrees,
         "/grid/x": of._grid.x,
@@ -42,17 +48,23 @@ def save(path: PathLike, of: Questions) -> None:
         "/values": of._values,
     }
     if of._below is not None:
-        arrays["/below/momentum"] = of._below.momentum
-        arrays["/below/number"] = of._below.number
+        found["/below/momentum"] = of._below.momentum
+        found["/below/number"] = of._below.number
     # A single scale that is not a list is told from a list of one
-    hdf5.write(path, "densities", arrays, {"one_scale": int(of._one), "units": _UNITS})
+    return found, {"one_scale": int(of._one), "units": _UNITS}
 
 
 def load(path: PathLike, copy: bool) -> dict[str, Any]:
     """Return the arguments of `Densities` from a stored file."""
     from .files import hdf5
 
-    arrays, attributes = hdf5.read(path, "densities", copy=copy)
+    return arguments(path, *hdf5.read(path, "densities", copy=copy))
+
+
+def arguments(
+    path: PathLike, arrays: Mapping[str, np.ndarray[Any, Any]], attributes: Mapping[str, str | int | float]
+) -> dict[str, Any]:
+    """Return the arguments of `Densities` from named arrays and attributes; `path` is for messages."""
     try:
         one = bool(attributes["one_scale"])
         known = None

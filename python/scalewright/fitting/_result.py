@@ -1,0 +1,377 @@
+"""What a fit found, and how far it can be trusted, in numbers and in words."""
+
+from __future__ import annotations
+
+import html
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from .. import _check
+from .._check import Floats, show
+from ..densities import Densities
+from ..errors import InputError
+from ..flavours import combination
+from ._curvature import curvature
+from ._problem import Problem
+from ._solve import BLIND, Solution, scaled, solve
+
+__all__ = ["BlindDirection", "FitResult", "Profile"]
+
+#: Parts of a direction that are shown.
+_SHOWN = 0.1
+
+Rebuild = Callable[[Mapping[str, float]], Problem]
+
+
+@dataclass(frozen=True, eq=False)
+class BlindDirection:
+    """A direction of the parameters along which the data do not change.
+
+    Parameters
+    ----------
+    singular_value : float
+        In parts of the largest, parameters in units of their own effect.
+    parameters : dict
+        Name -> part, the largest 1.
+    values : ndarray, (flavour, node)
+        How x f(x) changes along it, in the order of the shape, the largest change 1 (or all 0).
+    """
+
+    singular_value: float
+    parameters: dict[str, float]
+    values: Floats
+
+    def __str__(self) -> str:
+        parts = [f"{part:+.3g} {name}" for name, part in self.parameters.items() if abs(part) >= _SHOWN]
+        return f"{' '.join(parts)} (singular value {self.singular_value:.1e})"
+
+
+@dataclass(frozen=True, eq=False)
+class Profile:
+    """Chi-square against one parameter, all others fitted again.
+
+    Parameters
+    ----------
+    name : str
+    values, chi2 : ndarray, (point,)
+        Chi-square of data and priors.
+    parameters : ndarray, (point, parameter)
+    converged : ndarray of bool, (point,)
+    """
+
+    name: str
+    values: Floats
+    chi2: Floats
+    parameters: Floats
+    converged: Any
+
+
+class FitResult:
+    """What a fit found; made by `scalewright.fitting.least_squares.fit`.
+
+    Attributes
+    ----------
+    names : tuple of str
+        Parameters of the shape, then of the theory.
+    parameters : ndarray, (parameter,)
+    chi2, chi2_priors : float
+        Of the data, and of the priors.
+    data : int
+        Number of data.
+    converged : bool
+        Whether this is a minimum: a linear step would lower chi-square by less than 1e-6.
+    distance : float
+        By how much it would.
+    at_bounds : dict
+        Name -> "lower" or "upper", of parameters that press against a bound.
+    calls : dict
+        How often residuals and Jacobian were computed.
+    rebuilt : int
+        How often the map was built anew for other theory parameters.
+    delta_chi2 : float
+        Rise of chi-square that uncertainties stand for.
+    """
+
+    def __init__(
+        self, problem: Problem, solution: Solution, delta_chi2: float, rebuilt: int, rebuild: Rebuild | None
+    ) -> None:
+        self._problem, self._solution, self._rebuild = problem, solution, rebuild
+        self.names, self.parameters = problem.names, solution.parameters
+        self.delta_chi2, self.rebuilt = delta_chi2, rebuilt
+        self.data = problem.count
+        squares = solution.residuals**2
+        self.chi2, self.chi2_priors = float(squares[: self.data].sum()), float(squares[self.data :].sum())
+        self.converged, self.distance = solution.converged, solution.distance
+        self.calls = {"residuals": solution.residual_calls, "jacobian": solution.jacobian_calls}
+        sides = (("lower", solution.at_low), ("upper", solution.at_high))
+        self.at_bounds = {self.names[place]: side for side, at in sides for place in np.flatnonzero(at)}
+        for array in (self.parameters,):
+            array.flags.writeable = False
+
+    # ---- values ----------------------------------------------------------------------------------------
+
+    def value(self, name: str) -> float:
+        """Return the value of a parameter."""
+        return float(self.parameters[self._place(name)])
+
+    def error(self, name: str) -> float:
+        """Return the uncertainty of a parameter; nan on a bound or where there is no covariance."""
+        return float(self.errors[self._place(name)])
+
+    @cached_property
+    def densities(self) -> Densities:
+        """Densities at the start, one replica."""
+        problem = self._problem
+        return problem.shape.densities(self._of_shape(self.parameters), q2=problem.q2, nf=problem.nf)
+
+    @cached_property
+    def prediction(self) -> Floats:
+        """The data predicted, (datum,)."""
+        return self._problem.prediction(self.parameters)
+
+    # ---- uncertainties ---------------------------------------------------------------------------------
+
+    @property
+    def gradient(self) -> Floats:
+        """Derivative of chi-square of data and priors, (parameter,)."""
+        return 2.0 * (self._solution.jacobian.T @ self._solution.residuals)
+
+    @cached_property
+    def singular_values(self) -> Floats:
+        """Singular values of the derivative of the residuals, free parameters in units of their effect."""
+        return scaled(self._solution.jacobian[:, self._solution.free])[1]
+
+    @cached_property
+    def linear_covariance(self) -> Floats | None:
+        """As `covariance`, but the inverse of J^T J: second derivatives of the predictions left out."""
+        if not self.converged or self._unseen(self._solution.jacobian):
+            return None
+        return self._of_free(self._axes, self._solution.free)
+
+    @cached_property
+    def covariance(self) -> Floats | None:
+        """Covariance of the parameters, (parameter, parameter), or None where there is none.
+
+        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`. Rows and columns of
+        parameters on a bound are 0: the covariance is that of the others with these where they are. None if
+        the search has not ended at a minimum, or if neither data nor priors see some direction.
+        """
+        if self.linear_covariance is None or self._curvature is None:
+            return None
+        values, vectors, _ = self._curvature
+        return self._of_free(self._axes @ (vectors / np.sqrt(values)), self._solution.free)
+
+    @cached_property
+    def _axes(self) -> Floats:
+        """Axes of the linear error ellipsoid of the free parameters, (free, axis)."""
+        free = self._solution.free
+        if not free.size:
+            return np.zeros((0, 0))
+        _, values, right, size = scaled(self._solution.jacobian[:, free])
+        return np.asarray((right / values[:, None] / size).T)
+
+    @cached_property
+    def _curvature(self) -> tuple[Floats, Floats, int] | None:
+        """Eigensystem of the second derivatives along `_axes`, or None if chi-square falls somewhere.
+
+        Third, the number of axes along which they did not settle, and are taken as linear.
+        """
+        free, problem = self._solution.free, self._problem
+        axes = np.zeros((len(self.names), free.size))
+        axes[free] = self._axes
+
+        def gradient(parameters: Floats) -> Floats:
+            return np.asarray(problem.jacobian(parameters).T @ problem.residuals(parameters))
+
+        room = np.minimum(self.parameters - problem.low, problem.high - self.parameters)
+        matrix, unsettled = curvature(gradient, self.parameters, axes, room)
+        values, vectors = np.linalg.eigh(matrix)
+        return None if (values <= 0.0).any() else (values, vectors, unsettled)
+
+    def _of_free(self, root: Floats, free: Any) -> Floats:
+        result = np.zeros((len(self.names), len(self.names)))
+        result[np.ix_(free, free)] = self.delta_chi2 * root @ root.T
+        return result
+
+    @cached_property
+    def errors(self) -> Floats:
+        """Uncertainties of the parameters, (parameter,); nan on a bound or where there is no covariance."""
+        result = np.full(len(self.names), np.nan)
+        if self.covariance is not None:
+            free = self._solution.free
+            result[free] = np.sqrt(np.diagonal(self.covariance)[free])
+        return result
+
+    @cached_property
+    def blind(self) -> tuple[BlindDirection, ...]:
+        """Directions that the data do not see, whether priors do or not."""
+        return self._unseen(self._solution.jacobian[: self.data])
+
+    def error_of(self, x: ArrayLike, flavour: int | str) -> Floats:
+        """Uncertainty of x f(x) at the start, to first order.
+
+        Parameters
+        ----------
+        x : array_like
+            In [x_min, 1].
+        flavour : int or str
+            PDG number or name of a combination.
+
+        Returns
+        -------
+        ndarray
+            Of the shape of `x`.
+
+        Raises
+        ------
+        InputError
+            If there is no covariance, or a flavour or x is wrong.
+        """
+        shape = self._problem.shape
+        root = self._root()[: len(shape.names)]
+        active = range(1, max(self._problem.nf, *map(abs, set(shape.flavours) - {21}), 1) + 1)
+        weights = combination(flavour, active)
+        jacobian = shape.jacobian(self._of_shape(self.parameters))
+        for number in weights:
+            if number not in shape.flavours:
+                _check.refuse("flavour", flavour, f"the shape has no flavour {number}")
+        along = sum(weight * jacobian[:, shape.flavours.index(n)] for n, weight in weights.items())
+        changes = np.atleast_2d(self._problem.shape.grid.interpolate(root.T @ along, np.ravel(x)))
+        result: Floats = np.linalg.norm(changes, axis=0).reshape(np.shape(x))[()]
+        return result
+
+    def eigenvectors(self) -> Densities:
+        """Densities at the ends of the axes of the error ellipsoid.
+
+        Returns
+        -------
+        Densities
+            1 + 2 n replicas: the best fit; then plus and minus of each of n independent directions, by which
+            chi-square rises by `delta_chi2` to second order, the least known first.
+
+        Raises
+        ------
+        InputError
+            If there is no covariance, or an end lies beyond a bound.
+        """
+        root = self._root()
+        ends = [self.parameters, *(self.parameters + sign * r for r in root.T for sign in (1.0, -1.0))]
+        for name, low, high in zip(self.names, self._problem.low, self._problem.high, strict=True):
+            place = self._place(name)
+            for end in ends:
+                if not low <= end[place] <= high:
+                    limits = f"an end of the ellipsoid lies beyond [{show(float(low))}, {show(float(high))}]"
+                    _check.refuse(name, float(end[place]), limits)
+        shape = self._problem.shape
+        sets = np.stack([self._of_shape(end) for end in ends])
+        return shape.densities(sets, q2=self._problem.q2, nf=self._problem.nf)
+
+    def profile(self, name: str, values: ArrayLike) -> Profile:
+        """Fit again with one parameter held at each of some values.
+
+        Parameters
+        ----------
+        name : str
+            The parameter; with one of the theory the map is built anew if the fit could.
+        values : array_like, (point,)
+
+        Returns
+        -------
+        Profile
+
+        Raises
+        ------
+        InputError
+            If the name is unknown or a value lies outside the bounds.
+        """
+        place, points = self._place(name), _check.real_array("values", values, ndim=1)
+        low, high = self._problem.low[place], self._problem.high[place]
+        limits = f"{name} must lie in [{show(float(low))}, {show(float(high))}]"
+        _check.refuse_where("values", points, (points < low) | (points > high), limits)
+        found = [self._held(place, float(point)) for point in points]
+        return Profile(
+            name, points, np.array([one.total for one in found]),
+            np.array([one.parameters for one in found]), np.array([one.converged for one in found]),
+        )  # fmt: skip
+
+    def _held(self, place: int, value: float) -> Solution:
+        """Fit with one parameter held."""
+        problem = self._problem
+        if self._rebuild is not None and place >= len(problem.shape.names):
+            at = dict(zip(problem.reference, self.parameters[len(problem.shape.names) :], strict=True))
+            at[self.names[place]] = value
+            problem = self._rebuild({key: float(number) for key, number in at.items()})
+        return solve(problem, self.parameters, held={place: value})
+
+    def _root(self) -> Floats:
+        """Return R with R R^T = covariance, (parameter, direction), the longest direction first."""
+        covariance = self.covariance
+        if covariance is None:
+            raise InputError(f"there is no covariance: {'; '.join(self.status)}")
+        size = np.sqrt(np.diagonal(covariance))
+        size = np.where(size > 0.0, size, 1.0)
+        values, vectors = np.linalg.eigh(covariance / np.outer(size, size))
+        kept = np.argsort(-values)[: self._solution.free.size]
+        return np.asarray(size[:, None] * vectors[:, kept] * np.sqrt(np.maximum(values[kept], 0.0)))
+
+    def _unseen(self, jacobian: Floats) -> tuple[BlindDirection, ...]:
+        """Return directions of the free parameters along which residuals do not change."""
+        free = self._solution.free
+        if not free.size:
+            return ()
+        part = jacobian[:, free]
+        part = np.concatenate([part, np.zeros((max(0, free.size - len(part)), free.size))])
+        _, values, right, size = scaled(part)
+        top = values[0] if values[0] > 0.0 else 1.0
+        found = [
+            self._direction(free, right[j] / size, float(values[j] / top))
+            for j in np.flatnonzero(values <= BLIND * top)
+        ]
+        return tuple(found[::-1])
+
+    def _direction(self, free: Any, along: Floats, singular: float) -> BlindDirection:
+        whole = np.zeros(len(self.names))
+        whole[free] = along / along[np.argmax(abs(along))]
+        shape = self._problem.shape
+        by = shape.jacobian(self._of_shape(self.parameters))
+        change = np.tensordot(whole[: len(shape.names)], by, axes=(0, 0))
+        largest = abs(change).max()
+        parts = {name: float(part) for name, part in zip(self.names, whole, strict=True) if part != 0.0}
+        return BlindDirection(singular, parts, change / largest if largest > 0.0 else change)
+
+    def _of_shape(self, parameters: Floats) -> Floats:
+        return parameters[: len(self._problem.shape.names)]
+
+    def _place(self, name: object) -> int:
+        if not isinstance(name, str) or name not in self.names:
+            known = f"there are {_check.show_all(self.names)}{_check.nearest(name, self.names)}"
+            _check.refuse("name", name, f"no parameter of this name; {known}")
+        return self.names.index(name)
+
+    # ---- in words --------------------------------------------------------------------------------------
+
+    @property
+    def status(self) -> tuple[str, ...]:
+        """What is to be known about the fit, one sentence a line; the first says whether it converged."""
+        from ._words import status
+
+        return status(self, self._problem, self._solution)
+
+    def __repr__(self) -> str:
+        """One line."""
+        state = "" if self.converged else ", not converged"
+        return f"FitResult({len(self.names)} parameters, chi2={self.chi2:.6g} for {self.data} data{state})"
+
+    def __str__(self) -> str:
+        """One screen."""
+        from ._words import screen
+
+        return screen(self)
+
+    def _repr_html_(self) -> str:
+        return f"<pre>{html.escape(str(self))}</pre>"

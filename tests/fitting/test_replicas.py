@@ -1,0 +1,477 @@
+"""Replicas: against Hessian and binomial counts; equal bits whatever the engine, a kill, a cut journal."""
+
+import multiprocessing
+import os
+import pathlib
+import signal
+import subprocess
+import sys
+from concurrent.futures import Executor, Future, ProcessPoolExecutor, ThreadPoolExecutor
+from dataclasses import replace
+
+import numpy as np
+import pytest
+import scalewright as sw
+from fitting import children
+from fitting.laws import network
+from fitting.problems import (
+    FLAVOURS,
+    GRID,
+    START_Q2,
+    bent_shape,
+    fmap,
+    linear_shape,
+    measured,
+    quick_shape,
+    truth,
+)
+from scalewright import InputError, ScalewrightError, StoreError
+from scalewright.fitting import _journal, _parcel
+from scalewright.fitting._problem import Problem
+from scalewright.fitting._solve import solve
+from scalewright.fitting.least_squares import fit
+from scalewright.fitting.replicas import fit_replicas
+from scalewright.fitting.shapes import FunctionShape, Network
+from scipy import stats
+
+COUNT = 24
+
+
+def bent_problem():
+    """Return map, chi-square and shape of a fit that is not linear."""
+    shape = bent_shape()
+    return fmap(), sw.ChiSquare(measured(truth(shape), seed=1, size=0.002, common=0.001)), shape
+
+
+def replicas_of(problem, replicas=COUNT, seed=7, **options):
+    return fit_replicas(*problem, replicas=replicas, seed=seed, **options)
+
+
+@pytest.fixture(scope="module")
+def serial():
+    return replicas_of(bent_problem(), workers=1)
+
+
+def assert_same_bits(one, other):
+    for name in ("index", "parameters", "chi2", "chi2_data", "weights"):
+        np.testing.assert_array_equal(getattr(one, name), getattr(other, name), err_msg=name)
+    assert one.densities == other.densities
+    assert one.failed == other.failed
+
+
+# ---- statistics ----------------------------------------------------------------------------------------
+
+
+@pytest.fixture(scope="module")
+def linear():
+    shape = linear_shape()
+    chi2 = sw.ChiSquare(measured(truth(shape), seed=3))
+    return fit(fmap(), chi2, shape), replicas_of((fmap(), chi2, shape), replicas=600, workers=1)
+
+
+def test_replicas_of_a_linear_fit_spread_as_the_hessian_says(linear):
+    result, ensemble = linear
+    n, covariance = ensemble.replicas, result.covariance
+    assert n == 600
+    errors = np.sqrt(np.diagonal(covariance))
+    away = (ensemble.parameters.mean(axis=0) - result.parameters) / errors
+    assert abs(away).max() < 4 / np.sqrt(n)
+    sampled = np.cov(ensemble.parameters.T)
+    # variance of an element of a sampled Gaussian covariance (Wishart): (C_ii C_jj + C_ij^2)/(n - 1)
+    size = np.sqrt((np.outer(errors**2, errors**2) + covariance**2) / (n - 1))
+    assert (abs(sampled - covariance) / size).max() < 4
+    x = np.array([0.01, 0.1, 0.4])
+    for flavour in ("g", "u_v", "sea"):
+        spread = ensemble.std(ensemble.at(x, flavour))
+        assert (abs(spread.value - result.error_of(x, flavour)) < 4 * spread.error).all()
+
+
+def test_priors_are_drawn_like_data():
+    shape = linear_shape()
+    chi2, name = sw.ChiSquare(measured(truth(shape), seed=3)), shape.names[0]
+    tight = {name: (1.0, fit(fmap(), chi2, shape).error(name) / 3)}
+    result = fit(fmap(), chi2, shape, priors=tight)
+    ensemble = replicas_of((fmap(), chi2, shape), replicas=200, workers=1, priors=tight)
+    spread = ensemble.std(name)
+    assert abs(spread.value - result.error(name)) < 4 * spread.error
+
+
+def test_intervals_of_pseudo_experiments_cover_the_truth():
+    shape, chi2_values, covered = linear_shape(), [], []
+    exact = sw.ChiSquare(measured(truth(shape)))
+    problem = Problem(fmap(), exact, shape)
+    experiments = 300
+    for number in range(experiments):
+        rng = np.random.default_rng(np.random.SeedSequence(11, spawn_key=(number,)))
+        pseudo = exact.measurements.pseudo_data(rng).values
+        solution = solve(problem, problem.start, shift=exact.whiten(pseudo - exact.measurements.value))
+        errors = np.sqrt(np.diagonal(np.linalg.inv(solution.jacobian.T @ solution.jacobian)))
+        covered.append(abs(solution.parameters - shape.start) < errors)
+        chi2_values.append(solution.total)
+    within = np.mean(covered, axis=0)
+    # 68.27 per cent within three binomial standard deviations, for each of the parameters
+    assert (abs(within - 0.6827) < 3 * np.sqrt(0.6827 * 0.3173 / experiments)).all(), within
+    freedom = len(exact.measurements) - len(shape.names)
+    assert stats.kstest(chi2_values, stats.chi2(freedom).cdf).pvalue > 1e-3
+
+
+def test_intervals_of_ensembles_cover_the_truth():
+    shape = quick_shape()
+    exact, covered, experiments = sw.ChiSquare(measured(truth(shape))), 0, 80
+    for number in range(experiments):
+        rng = np.random.default_rng(np.random.SeedSequence(12, spawn_key=(number,)))
+        drawn = exact.measurements.with_values(exact.measurements.pseudo_data(rng).values)
+        ensemble = replicas_of((fmap(), sw.ChiSquare(drawn), shape), replicas=20, seed=number, workers=1)
+        gluon = ensemble.at(0.1, "g")
+        centre, spread = ensemble.mean(gluon), ensemble.std(gluon)
+        law = shape.densities(shape.start, q2=START_Q2, nf=3).at(None, 0.1, "g")
+        covered += abs(centre.value - law[0]) < spread.value
+    # twenty replicas: mean and deviation of so few cover 66 per cent (Student), the binomial spread is 5
+    assert abs(covered / experiments - 0.6827) < 3 * np.sqrt(0.6827 * 0.3173 / experiments)
+
+
+# ---- (seed, i) alone -----------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("workers", [2, 4])
+def test_bits_do_not_depend_on_the_number_of_workers(serial, workers):
+    assert_same_bits(serial, replicas_of(bent_problem(), workers=workers))
+
+
+def test_bits_do_not_depend_on_chunks_engines_or_the_number_of_replicas(serial):
+    with ThreadPoolExecutor(2) as threads:
+        assert_same_bits(serial, replicas_of(bent_problem(), executor=threads, chunk=5))
+    fewer = replicas_of(bent_problem(), replicas=5, workers=1)
+    np.testing.assert_array_equal(fewer.parameters, serial.parameters[:5])
+    other = replicas_of(bent_problem(), replicas=5, seed=8, workers=1)
+    assert not np.isin(other.parameters, serial.parameters).any()
+
+
+def test_the_global_generator_is_neither_used_nor_moved(serial):
+    np.random.seed(1)
+    before = np.random.get_state()[1].copy()
+    assert_same_bits(serial, replicas_of(bent_problem(), workers=1))
+    np.testing.assert_array_equal(np.random.get_state()[1], before)
+
+
+def test_a_parcel_is_mapped_and_gives_the_same(tmp_path):
+    content = {"a": np.arange(1000.0), "b": [np.eye(3), "text"]}
+    with _parcel.Parcel(content) as parcel:
+        for ticket in (parcel.ticket, replace(parcel.with_bytes(), name="other")):
+            found = _parcel.content(ticket)
+            np.testing.assert_array_equal(found["a"], content["a"])
+            np.testing.assert_array_equal(found["b"][0], np.eye(3))
+            assert not found["a"].flags.writeable
+        path = pathlib.Path(parcel.ticket.path)
+    assert not path.exists()
+    assert isinstance(_parcel.content(replace(parcel.ticket, name="gone")), _parcel.Missing)
+
+
+class Elsewhere(Executor):
+    """An engine whose workers do not see our files, and come and go."""
+
+    def __init__(self):
+        self.with_bytes = 0
+
+    def submit(self, fn, ticket, indices):
+        _parcel._opened.clear()
+        self.with_bytes += ticket.data is not None
+        future = Future()
+        future.set_result(fn(replace(ticket, path="/nowhere/parcel"), indices))
+        return future
+
+
+def test_workers_that_do_not_see_our_files_get_the_bytes(serial):
+    engine = Elsewhere()
+    assert_same_bits(serial, replicas_of(bent_problem(), executor=engine, workers=2, chunk=4))
+    assert engine.with_bytes == 6  # one for each chunk, as every one met a new worker
+
+
+# ---- kills ---------------------------------------------------------------------------------------------
+
+
+def function_problem(function):
+    shape = FunctionShape(GRID, FLAVOURS, function, [2.0, -0.1, 0.5], names=["norm", "power", "ratio"])
+    return fmap(), sw.ChiSquare(measured(truth(shape), seed=2)), shape
+
+
+def test_a_killed_worker_costs_nothing_but_time(tmp_path, monkeypatch):
+    monkeypatch.setenv("SCALEWRIGHT_TEST_PARENT", str(os.getpid()))
+    expected = replicas_of(function_problem(children.fragile), replicas=12, workers=1)
+    for engine in (None, lambda: ProcessPoolExecutor(1, mp_context=multiprocessing.get_context("spawn"))):
+        mark = tmp_path / "mark"
+        mark.touch()
+        monkeypatch.setenv("SCALEWRIGHT_TEST_MARK", str(mark))
+        found = replicas_of(function_problem(children.fragile), replicas=12, workers=1 if engine else 2,
+                            executor=engine, chunk=3)  # fmt: skip
+        assert not mark.exists()  # a worker was killed
+        assert_same_bits(expected, found)
+
+
+def test_workers_that_always_die_are_an_error_that_names_the_replicas(monkeypatch):
+    monkeypatch.setenv("SCALEWRIGHT_TEST_PARENT", str(os.getpid()))
+    with pytest.raises(ScalewrightError, match=r"workers died 3 times without a result.* with replicas 0, 1"):
+        replicas_of(function_problem(children.deadly), replicas=4, workers=2, chunk=1)
+    assert multiprocessing.active_children() == []
+
+
+def test_an_engine_of_the_users_that_breaks_is_named(monkeypatch):
+    monkeypatch.setenv("SCALEWRIGHT_TEST_PARENT", str(os.getpid()))
+    context = multiprocessing.get_context("spawn")
+    with (
+        ProcessPoolExecutor(1, mp_context=context) as engine,
+        pytest.raises(ScalewrightError, match=r"ProcessPoolExecutor takes no more work.*give a function"),
+    ):
+        replicas_of(function_problem(children.deadly), replicas=4, executor=engine)
+
+
+class Silent(Executor):
+    def submit(self, fn, *args):
+        return Future()
+
+
+def test_a_silent_engine_is_named():
+    with pytest.raises(
+        ScalewrightError, match=r"Silent: no result within 0\.1 s while computing replicas 0, 1"
+    ):
+        replicas_of(bent_problem(), replicas=2, executor=Silent(), limit=0.1)
+
+
+def test_an_interrupt_leaves_no_process_behind():
+    def stop(done, total):
+        if done:
+            raise KeyboardInterrupt
+
+    with pytest.raises(KeyboardInterrupt):
+        replicas_of(bent_problem(), replicas=200, workers=2, chunk=1, progress=stop)
+    assert multiprocessing.active_children() == []
+
+
+# ---- the journal ---------------------------------------------------------------------------------------
+
+
+@pytest.mark.skipif(not hasattr(signal, "SIGKILL"), reason="this system cannot kill")
+@pytest.mark.parametrize("after", [1, 13])
+def test_a_killed_run_goes_on_where_it_stopped(serial, tmp_path, after):
+    journal, tests = tmp_path / "run.journal", pathlib.Path(__file__).parents[1]
+    child = subprocess.run(
+        [sys.executable, "-m", "fitting.children", str(journal), str(after)], cwd=tests, check=False,
+        capture_output=True, timeout=100,
+    )  # fmt: skip
+    assert child.returncode == -signal.SIGKILL, child.stderr
+    seen = []
+    found = replicas_of(bent_problem(), workers=1, journal=journal, progress=lambda *p: seen.append(p[0]))
+    assert seen == list(range(after, COUNT + 1))  # what was done is not done again
+    assert_same_bits(serial, found)
+
+
+@pytest.fixture(scope="module")
+def written(tmp_path_factory):
+    path = tmp_path_factory.mktemp("journal") / "run.journal"
+    replicas_of(bent_problem(), workers=1, journal=path)
+    return path.read_bytes()
+
+
+def resumed(tmp_path, data, replicas=COUNT):
+    path, seen = tmp_path / "cut.journal", []
+    path.write_bytes(data)
+    found = replicas_of(
+        bent_problem(), workers=1, journal=path, progress=lambda *p: seen.append(p[0]), replicas=replicas
+    )
+    return found, seen[0]
+
+
+@pytest.mark.parametrize("part", [0.0, 0.001, 0.02, 0.3, 0.5, 0.77, 0.9, 0.999, 1.0])
+def test_a_journal_cut_anywhere_is_taken_up_to_its_last_whole_record(serial, written, tmp_path, part):
+    found, known = resumed(tmp_path, written[: int(part * len(written))])
+    assert_same_bits(serial, found)
+    assert known < COUNT or part == 1.0
+    assert (tmp_path / "cut.journal").read_bytes() == written
+
+
+def test_every_cut_gives_whole_records_only(written, tmp_path):
+    # the reader alone, at every length: what it takes are the first of the records that were written
+    complete = list(_journal._records(written))
+    for length in range(len(written)):
+        found = list(_journal._records(written[:length]))
+        assert found == complete[: len(found)]
+        assert len(found) == sum(end <= length for end, _ in complete)
+
+
+def test_a_damaged_record_and_what_follows_is_computed_again(serial, written, tmp_path):
+    flipped = bytearray(written)
+    flipped[int(0.8 * len(written))] ^= 0x10
+    found, known = resumed(tmp_path, bytes(flipped))
+    assert known < COUNT
+    assert_same_bits(serial, found)
+
+
+def test_a_full_journal_is_not_computed_again_and_can_be_extended(serial, written, tmp_path):
+    found, known = resumed(tmp_path, written)
+    assert known == COUNT
+    assert_same_bits(serial, found)
+    more, known = resumed(tmp_path, written, replicas=COUNT + 2)
+    assert (known, more.replicas) == (COUNT, COUNT + 2)
+    fewer, _ = resumed(tmp_path, written, replicas=3)
+    np.testing.assert_array_equal(fewer.parameters, serial.parameters[:3])
+
+
+def test_a_journal_of_another_fit_is_refused_and_kept(written, tmp_path):
+    path = tmp_path / "run.journal"
+    path.write_bytes(written)
+    the_map, chi2, shape = bent_problem()
+    other = sw.ChiSquare(chi2.measurements.with_values(chi2.measurements.value + 0.01))
+    cases = {
+        "seed": lambda: replicas_of(bent_problem(), seed=8, workers=1, journal=path),
+        "values": lambda: replicas_of((the_map, other, shape), workers=1, journal=path, start=shape.start),
+        "names": lambda: replicas_of(
+            (the_map, chi2, shape.restricted(fixed=["g.fall"])), workers=1, journal=path),
+        "priors": lambda: replicas_of(bent_problem(), workers=1, journal=path, priors={"g.fall": (5, 1)}),
+        "evaluations": lambda: replicas_of(bent_problem(), workers=1, journal=path, evaluations=500),
+    }  # fmt: skip
+    for name, run in cases.items():
+        with pytest.raises(StoreError, match="this journal is of another fit"):
+            run()
+        assert path.read_bytes() == written, name
+
+
+def test_a_file_that_is_no_journal_is_refused_and_kept(tmp_path):
+    path = tmp_path / "notes.txt"
+    path.write_text("dear diary")
+    with pytest.raises(StoreError, match="not a journal of scalewright"):
+        replicas_of(bent_problem(), replicas=2, workers=1, journal=path)
+    assert path.read_text() == "dear diary"
+    with pytest.raises(StoreError, match="cannot be opened"):
+        replicas_of(bent_problem(), replicas=2, workers=1, journal=tmp_path)
+
+
+def test_two_runs_do_not_share_a_journal(written, tmp_path):
+    pytest.importorskip("fcntl")
+    path = tmp_path / "run.journal"
+    path.write_bytes(written)
+    fit_described = _journal.json.loads(next(_journal._records(written))[1])
+    with (
+        _journal.Journal(path, fit_described),
+        pytest.raises(StoreError, match="another run writes to this journal"),
+    ):
+        replicas_of(bent_problem(), workers=1, journal=path)
+
+
+def test_a_full_disk_loses_nothing_that_was_written(serial, tmp_path, monkeypatch):
+    path, write, left = tmp_path / "run.journal", os.write, [8]
+
+    def full(descriptor, data):
+        if left[0] == 0:
+            raise OSError(28, "No space left on device")
+        left[0] -= 1
+        # the last write is cut short, as a full disk does
+        return write(descriptor, data if left[0] else data[: len(data) // 2])
+
+    monkeypatch.setattr(_journal.os, "write", full)
+    with pytest.raises(StoreError, match="no space left on device; the 6 replicas written before are safe"):
+        replicas_of(bent_problem(), workers=1, journal=path)
+    monkeypatch.undo()
+    seen = []
+    found = replicas_of(bent_problem(), workers=1, journal=path, progress=lambda *p: seen.append(p[0]))
+    assert seen[0] == 6
+    assert_same_bits(serial, found)
+
+
+# ---- what fails, and what is refused -------------------------------------------------------------------
+
+
+def test_failed_fits_are_listed_and_left_out(monkeypatch, tmp_path):
+    monkeypatch.setenv("SCALEWRIGHT_TEST_LIMIT", "1e9")
+    problem = function_problem(children.moody)
+    all_of_them = replicas_of(problem, replicas=40, workers=1)
+    limit = float(np.quantile(all_of_them.parameter("norm"), 0.8))
+    monkeypatch.setenv("SCALEWRIGHT_TEST_LIMIT", str(limit))
+    # started from the same place, not from a best fit that might have failed itself
+    start = all_of_them.parameters.min(axis=0)
+    ensemble = replicas_of(problem, replicas=40, workers=1, start=start, journal=tmp_path / "j")
+    assert 0 < len(ensemble.failed) < 40
+    assert ensemble.replicas == 40 - len(ensemble.failed)
+    assert not set(ensemble.failed) & set(ensemble.index.tolist())
+    assert all("too many gluons" in reason for reason in ensemble.failed.values())
+    assert (ensemble.parameter("norm") <= limit).all()
+    assert "WARNING" in str(ensemble)
+    again = replicas_of(problem, replicas=40, workers=1, start=start, journal=tmp_path / "j")
+    assert_same_bits(ensemble, again)
+
+
+def test_a_fit_that_does_not_converge_is_a_failed_one():
+    the_map, chi2, shape = bent_problem()
+    with pytest.raises(
+        ScalewrightError, match="all 3 replicas failed; replica 0: not converged: stopped after"
+    ):
+        replicas_of((the_map, chi2, shape), replicas=3, workers=1, start=shape.start + 0.3, evaluations=1)
+
+
+def flexible():
+    powers = {"g": (-0.1, 5), "u_v": (0.7, 3), "d_v": (0.7, 4), "ubar": (-0.1, 7), "dbar": (-0.1, 7)}
+    shape = Network(GRID, powers, nf=3, hidden=[6], relations=["s = 0.5*dbar", "sbar = s"], momentum="g",
+                    numbers={"u_v": 2, "d_v": 1})  # fmt: skip
+    bent = bent_shape()
+    return fmap(), sw.ChiSquare(measured(truth(bent), seed=6, size=0.01)), shape
+
+
+def test_a_flexible_shape_is_stopped_before_it_learns_the_noise():
+    the_map, chi2, shape = flexible()
+    assert len(shape.names) > 32  # more parameters than data
+    with pytest.raises(InputError, match="parameters for 32 data"):
+        replicas_of((the_map, chi2, shape), replicas=2, workers=1)
+    ensemble = replicas_of((the_map, chi2, shape), replicas=8, workers=1, validation=0.3, evaluations=60)
+    assert ensemble.replicas == 8
+    at_start = chi2.value(the_map.predict(shape(shape.start)[order(shape)]))
+    # the law is found: far better than the start, for data of which a third was not fitted
+    assert np.median(ensemble.chi2_data) < 0.2 * at_start
+    np.testing.assert_allclose(ensemble.densities.momentum(), 1.0, atol=1e-12)
+    assert_same_bits(
+        ensemble,
+        replicas_of((the_map, chi2, shape), replicas=8, workers=1, validation=0.3, evaluations=60, chunk=3),
+    )
+
+
+def order(shape):
+    return [shape.flavours.index(flavour) for flavour in fmap().flavours]
+
+
+def test_what_cannot_be_sent_is_refused():
+    problem = function_problem(lambda x, p: children.law(x, p))
+    with pytest.raises(InputError, match=r"cannot be sent to other processes.*workers=1"):
+        replicas_of(problem, replicas=2, workers=2)
+    assert replicas_of(problem, replicas=2, workers=1).replicas == 2
+
+
+WRONG = {
+    "replicas": ({"replicas": 0}, "replicas must be from 1"),
+    "seed": ({"seed": -1}, "seed must be at least 0"),
+    "seed text": ({"seed": "x"}, "seed must be a whole number"),
+    "workers": ({"workers": 0}, "workers must be from 1"),
+    "chunk": ({"chunk": 0}, "chunk must be at least 1"),
+    "limit": ({"limit": 0}, "limit must lie in"),
+    "validation": ({"validation": 1.0}, r"validation must lie in \[0, 0.9\]"),
+    "patience": ({"patience": 0}, "patience must be at least 1"),
+    "executor": ({"executor": 3}, "executor must be an Executor"),
+    "executor made": ({"executor": lambda: 3}, "must return a concurrent.futures.Executor"),
+    "start": ({"start": [1.0]}, "the shape of start"),
+    "progress": ({"progress": 3}, "progress must be"),
+    "prior": ({"priors": {"x": (1, 1)}}, "no free parameter"),
+}
+
+
+@pytest.mark.parametrize("name", WRONG)
+def test_what_is_wrong_is_refused_with_the_reason(name):
+    options, words = WRONG[name]
+    with pytest.raises(InputError, match=words):
+        replicas_of(bent_problem(), **({"replicas": 2, "workers": 1} | options))
+
+
+def test_chi_square_must_know_its_measurements():
+    with pytest.raises(InputError, match="chi2 must be a ChiSquare"):
+        fit_replicas(fmap(), None, network(), replicas=1, seed=1)
+
+
+def test_the_scale_of_the_densities_is_that_of_the_map(serial):
+    assert serial.densities.q2 == START_Q2
+    assert serial.densities.nf == 3
