@@ -132,7 +132,7 @@ def fit_replicas(
     if not isinstance(chi2, ChiSquare):
         _check.refuse("chi2", chi2, f"chi2 must be a ChiSquare, not {type(chi2).__name__}")
     stopping = Stopping.of(validation, patience)
-    problem = Problem(fmap, chi2, shape, theory, priors)
+    problem = Problem(fmap, chi2, shape, theory, priors, compressed=stopping is None)
     if stopping is None:
         problem.check_enough()
     begin = starting(problem, start)
@@ -172,7 +172,7 @@ class _Work:
         rng = np.random.default_rng(np.random.SeedSequence(self.seed, spawn_key=(index,)))
         measured, problem = self._chi2.measurements, self._problem
         pseudo = measured.pseudo_data(rng)
-        moved = self._chi2.whiten(pseudo.values - measured.value)
+        moved = problem.shift(self._chi2.whiten(pseudo.values - measured.value))
         shift = np.concatenate([moved, -rng.normal(size=len(problem.priors))])
         try:
             if self._stopping is None:
@@ -183,7 +183,7 @@ class _Work:
                 at, steps = found.parameters, found.jacobian_calls
             else:
                 at, steps, reason = self._stopping.fitted(problem, self.begin, shift, rng, self._evaluations)
-            own, data = problem.residuals(at, shift), problem.residuals(at)[: problem.count]
+            own, data = problem.residuals(at, shift), problem.residuals(at)[: problem.rows]
             chi2, chi2_data = float(own @ own), float(data @ data)
             if not np.isfinite(chi2):
                 reason = reason or "chi-square is not finite"
