@@ -9,7 +9,11 @@ from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities
 from .errors import InputError, InputWarning, RangeError, ResolutionWarning, ScalewrightError, StoreError
+from .fitting import shapes as shapes
 from .fitting.chi_square import ChiSquare
+from .fitting.ensemble import Ensemble
+from .fitting.least_squares import fit
+from .fitting.replicas import fit_replicas
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
@@ -23,6 +27,7 @@ __all__ = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Ensemble",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -36,6 +41,8 @@ __all__ = [
     "Theory",
     "build_operators",
     "evolve",
+    "fit",
+    "fit_replicas",
     "matching_element",
     "splitting_function",
 ]

@@ -237,7 +237,8 @@ def _signatures():
                     yield f"{name}.{method}", attribute
 
 
-#: Tested elsewhere: files in tests/files, tests/measurements and tests/densities, operators in tests/apply.
+#: Tested elsewhere: files in tests/files, tests/measurements and tests/densities, operators in tests/apply,
+#: fits and ensembles in tests/fitting.
 ELSEWHERE = (
     "Measurements.read",
     "Measurements.write",
@@ -246,6 +247,8 @@ ELSEWHERE = (
     "Densities.save",
     "Densities.to_csv",
     "Operators",
+    "Ensemble",
+    "fit",
 )
 #: Methods that take nothing.
 NOTHING = (

@@ -15,6 +15,7 @@ PUBLIC = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Ensemble",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -28,6 +29,8 @@ PUBLIC = [
     "Theory",
     "build_operators",
     "evolve",
+    "fit",
+    "fit_replicas",
     "matching_element",
     "splitting_function",
 ]

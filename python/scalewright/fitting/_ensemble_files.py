@@ -1,4 +1,6 @@
-"""Ensembles in a stored file: the densities as in `scalewright._stored_densities`, and beside them
+"""Ensembles in a stored file: which array is where, besides the densities.
+
+Those are as in `scalewright._stored_densities`.
 
 ============================ ======================================
 name                         content

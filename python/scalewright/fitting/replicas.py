@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from contextlib import closing
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -19,7 +19,6 @@ from .._progress import Progress, watcher
 from ..errors import ScalewrightError
 from ..files.whole import PathLike
 from ._journal import Journal, Outcome
-from ._pool import Engine, computed, processors
 from ._problem import Map, Problem, Theory
 from ._shape import Shape
 from ._solve import solve
@@ -27,6 +26,9 @@ from ._stopping import Stopping
 from .chi_square import ChiSquare
 from .ensemble import Ensemble
 from .least_squares import starting
+
+if TYPE_CHECKING:
+    from ._pool import Engine
 
 __all__ = ["fit_replicas"]
 
@@ -214,6 +216,8 @@ def _all(
     options: dict[str, Any],
 ) -> dict[int, Outcome]:  # fmt: skip
     """Return all replicas: those known, and those computed now."""
+    from ._pool import computed  # only here: it loads the machinery of processes
+
     found = {index: outcome for index, outcome in known.items() if index < count}
     missing = [index for index in range(count) if index not in found]
     if report is not None:
@@ -250,6 +254,8 @@ def _gathered(problem: Problem, outcomes: list[Outcome], seed: int) -> Ensemble:
 
 def _workers(executor: Engine, workers: int | None) -> int:
     """Return how many workers there are, or are thought to be."""
+    from ._pool import processors
+
     if executor is not None and not callable(executor) and not hasattr(executor, "submit"):
         _check.refuse("executor", executor, "executor must be an Executor, or a function that makes one")
     if workers is not None:
