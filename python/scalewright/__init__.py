@@ -10,7 +10,11 @@ from .build import build_operators, evolve
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError, InputWarning, RangeError, ResolutionWarning, ScalewrightError, StoreError
+from .fitting import shapes as shapes
 from .fitting.chi_square import ChiSquare
+from .fitting.ensemble import Ensemble
+from .fitting.least_squares import fit
+from .fitting.replicas import fit_replicas
 from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
@@ -28,6 +32,7 @@ __all__ = [
     "Coupling",
     "Densities",
     "Electroweak",
+    "Ensemble",
     "ForwardMap",
     "InputError",
     "InputWarning",
@@ -42,6 +47,8 @@ __all__ = [
     "Theory",
     "build_operators",
     "evolve",
+    "fit",
+    "fit_replicas",
     "forward_map",
     "matching_element",
     "moment",

@@ -334,7 +334,8 @@ def _signatures():
                     yield f"{name}.{method}", attribute
 
 
-#: Tested elsewhere: files in tests/files, tests/measurements and tests/densities, operators in tests/apply.
+#: Tested elsewhere: files in tests/files, tests/measurements and tests/densities, operators in tests/apply,
+#: fits and ensembles in tests/fitting.
 ELSEWHERE = (
     "Measurements.read",
     "Measurements.write",
@@ -345,6 +346,8 @@ ELSEWHERE = (
     "ForwardMap.load",
     "ForwardMap.save",
     "Operators",
+    "Ensemble",
+    "fit",
 )
 #: Methods that take nothing.
 NOTHING = (

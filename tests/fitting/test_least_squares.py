@@ -135,6 +135,29 @@ def test_the_jacobian_of_the_problem_is_exact():
             assert abs(jacobian[:, place] - by_hand).max() < 1e-9 * size, problem.names[place]
 
 
+@pytest.mark.parametrize("count", [40, 80])
+def test_fewer_residuals_have_the_same_sum_of_squares(count):
+    shape, the_map = bent_shape(), fmap(count_q2=count)
+    chi2 = chi_square(truth(shape, the_map), seed=3)
+    few, all_of_them = (
+        Problem(the_map, chi2, shape, {"alpha_s": ALPHA_S}, compressed=c) for c in (True, False)
+    )
+    assert all_of_them.rows == few.count == 8 * count
+    assert few.rows < 0.8 * few.count
+    moved = chi2.whiten(np.random.default_rng(1).normal(size=few.count) * 0.02)
+    p = few.start + 0.01
+    for shift in (None, moved):
+        one, other = (
+            problem.residuals(p, None if shift is None else problem.shift(shift))
+            for problem in (few, all_of_them)
+        )
+        # directions of 1e-15 are left out, where whitened predictions are of order 100
+        assert one @ one == pytest.approx(other @ other, rel=1e-11)
+        gradients = (few.jacobian(p).T @ one, all_of_them.jacobian(p).T @ other)
+        size = np.linalg.norm(all_of_them.jacobian(p), axis=0) * np.linalg.norm(other)
+        np.testing.assert_allclose(gradients[0] / size, gradients[1] / size, atol=1e-11)
+
+
 def test_ratios_of_rows_are_fitted_too():
     shape, rational = bent_shape(), Rows(ALPHA_S, *points())
     rational.data = Combination([[(i, 1.0)] for i in range(16)], [[(i + 16, 1.0)] for i in range(16)], 32)

@@ -104,7 +104,9 @@ def test_intervals_of_pseudo_experiments_cover_the_truth():
     for number in range(experiments):
         rng = np.random.default_rng(np.random.SeedSequence(11, spawn_key=(number,)))
         pseudo = exact.measurements.pseudo_data(rng).values
-        solution = solve(problem, problem.start, shift=exact.whiten(pseudo - exact.measurements.value))
+        solution = solve(
+            problem, problem.start, shift=problem.shift(exact.whiten(pseudo - exact.measurements.value))
+        )
         errors = np.sqrt(np.diagonal(np.linalg.inv(solution.jacobian.T @ solution.jacobian)))
         covered.append(abs(solution.parameters - shape.start) < errors)
         chi2_values.append(solution.total)

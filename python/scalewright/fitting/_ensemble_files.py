@@ -1,6 +1,6 @@
-"""Ensembles in a stored file.
+"""Ensembles in a stored file: which array is where, besides the densities.
 
-The densities as in `scalewright._stored_densities`, and beside them
+Those are as in `scalewright._stored_densities`.
 
 ============================ ======================================
 name                         content

@@ -19,6 +19,7 @@ from ..errors import InputError
 from ..flavours import flavour_name
 from ..grid import ChebyshevGrid
 from ._shape import Shape, prior
+from ._space import Space, product
 
 __all__ = ["Distance", "Map", "Problem", "Theory"]
 
@@ -71,10 +72,10 @@ class _Rows:
 
     def rows(self, values: Floats, moved: Floats) -> Floats:
         """Predict rows from x f(x), (flavour x node), and theory parameters counted from the map's."""
-        result = self.maps[0] @ values
+        result = product(self.maps[0], values)
         for change, one in zip(moved, self.maps[1:], strict=True):
-            result = result + change * (one @ values)
-        return np.asarray(result)
+            result = result + change * product(one, values)
+        return result
 
     def data(self, rows: Floats) -> Floats:
         """Combine rows into data."""
@@ -100,11 +101,18 @@ class Problem:
         Theory parameters, or those with the values that the map was built with.
     priors : mapping
         Name -> (value, standard deviation), besides those of the shape.
+    compressed : bool
+        Whether residuals of the data may be replaced by fewer with the same sum of squares.
 
     Raises
     ------
     InputError
         If the parts do not fit each other.
+
+    Attributes
+    ----------
+    count, rows : int
+        Number of data, and of the residuals they make; those of the priors come after them.
     """
 
     def __init__(
@@ -114,6 +122,8 @@ class Problem:
         shape: Shape,
         theory: Theory = (),
         priors: Mapping[str, tuple[float, float]] | None = None,
+        *,
+        compressed: bool = True,
     ) -> None:
         if not isinstance(shape, Shape):
             _check.refuse("shape", shape, "shape must be a Shape: see scalewright.fitting.shapes")
@@ -124,13 +134,16 @@ class Problem:
         self._chi2: Distance | None = chi2
         at_zero = np.zeros(len(fmap.matrix))
         self._whitened: list[Floats] | None = None
+        self._space: Space | None = None
         if self._source.is_linear:
             self.offset = chi2.residuals(self._source.data(at_zero))
             along = (self._source.tangent(at_zero, one) for one in self._source.maps)
             self._whitened = [chi2.whiten(one) for one in along]
-            self.count = int(self.offset.size)
+            self.rows = self.count = int(self.offset.size)
+            if compressed:
+                self._compress()
         else:
-            self.count = int(self._source.combination.data)
+            self.rows = self.count = int(self._source.combination.data)
         self._lay_parameters(priors or {})
 
     def _lay_parameters(self, priors: Mapping[str, tuple[float, float]]) -> None:
@@ -151,6 +164,21 @@ class Problem:
         self._prior_place = [self.names.index(name) for name in both]
         self._prior_value = np.array([pair[0] for pair in both.values()])
         self._prior_width = np.array([pair[1] for pair in both.values()])
+
+    def _compress(self) -> None:
+        """Keep of the residuals what any density can move, and the length of the rest."""
+        assert self._whitened is not None
+        space = Space.of(self._whitened, self.offset)
+        if space is not None:
+            self._space, self.offset = space, space.projected(None)
+            self._whitened = space.maps
+            self.rows = self.offset.size
+
+    def shift(self, whitened: Floats) -> Floats:
+        """Return what moved data, whitened (datum,), add to the residuals of the data, (row,)."""
+        if self._space is None:
+            return whitened
+        return self._space.projected(whitened) - self.offset
 
     def compact(self) -> Problem:
         """Return a copy without what only predictions need, for other processes."""
@@ -176,9 +204,9 @@ class Problem:
         with np.errstate(over="ignore", invalid="ignore"):  # a far step; what is not finite is not taken
             values, moved = self.values(parameters), self._moved(parameters)
             if self._whitened is not None:
-                result = self.offset - self._whitened[0] @ values
+                result = self.offset - product(self._whitened[0], values)
                 for change, one in zip(moved, self._whitened[1:], strict=True):
-                    result = result - change * (one @ values)
+                    result = result - change * product(one, values)
             else:
                 source, chi2 = self._parts()
                 result = chi2.residuals(source.data(source.rows(values, moved)))
@@ -188,17 +216,16 @@ class Problem:
     def jacobian(self, parameters: Floats) -> Floats:
         """Return the derivative of `residuals`, (residual, parameter)."""
         moved, count = self._moved(parameters), len(self.shape.names)
-        by_shape = self.shape.jacobian(parameters[:count])[:, self._order]
-        along: Floats = np.ascontiguousarray(by_shape.reshape(count, -1).T)
+        along = self.shape.jacobian(parameters[:count])[:, self._order].reshape(count, -1)
         maps = self._whitened if self._whitened is not None else self._parts()[0].maps
-        columns: Floats = maps[0] @ along
+        columns = product(maps[0], along)
         for change, one in zip(moved, maps[1:], strict=True):
             if change != 0.0:
-                columns = columns + change * (one @ along)
+                columns = columns + change * product(one, along)
         whole = columns
         if self._whitened is None or moved.size:
             values = self.values(parameters)
-            whole = np.concatenate([columns, *((one @ values)[:, None] for one in maps[1:])], axis=1)
+            whole = np.concatenate([columns, *(product(one, values)[:, None] for one in maps[1:])], axis=1)
         if self._whitened is None:
             source, chi2 = self._parts()
             whole = chi2.whiten(source.tangent(source.rows(values, moved), whole))

@@ -105,7 +105,10 @@ class FitResult:
         self.delta_chi2, self.rebuilt = delta_chi2, rebuilt
         self.data = problem.count
         squares = solution.residuals**2
-        self.chi2, self.chi2_priors = float(squares[: self.data].sum()), float(squares[self.data :].sum())
+        self.chi2, self.chi2_priors = (
+            float(squares[: problem.rows].sum()),
+            float(squares[problem.rows :].sum()),
+        )
         self.converged, self.distance = solution.converged, solution.distance
         self.calls = {"residuals": solution.residual_calls, "jacobian": solution.jacobian_calls}
         sides = (("lower", solution.at_low), ("upper", solution.at_high))
@@ -210,7 +213,7 @@ class FitResult:
     @cached_property
     def blind(self) -> tuple[BlindDirection, ...]:
         """Directions that the data do not see, whether priors do or not."""
-        return self._unseen(self._solution.jacobian[: self.data])
+        return self._unseen(self._solution.jacobian[: self._problem.rows])
 
     def error_of(self, x: ArrayLike, flavour: int | str) -> Floats:
         """Uncertainty of x f(x) at the start, to first order.

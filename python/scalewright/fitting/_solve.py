@@ -1,7 +1,7 @@
 """Least squares within bounds, and how far from the minimum it ended.
 
 scipy's trust-region method (M. Branch, T. Coleman, Y. Li, SIAM J. Sci. Comput. 21 (1999) 1) keeps to the
-inside of the bounds; afterwards parameters that press against a bound are put on it, and Gauss-Newton steps
+inside of the bounds; afterwards parameters that press against a bound are put on it, and damped linear steps
 bring the others to the minimum. That it is one is judged here, not taken from the method's own report.
 """
 
@@ -31,13 +31,16 @@ CONVERGED = 1e-6
 _NEAR = 1e-3
 #: Chi-square within this of the minimum puts parameters within 1e-10 of their errors: no further steps.
 _THERE = 1e-20
-_POLISH = 20
-_HALVINGS = 8
+#: Damping, added to squares of singular values between 0 and about the number of parameters.
+_FIRST, _LEAST, _MOST = 1e-6, 1e-8, 1e6
 #: Chi-square is known to some roundings only.
 _ROUNDING = 1e-14
 #: Steps that no longer gain this factor, at a distance that counts for a minimum, have reached rounding.
 _GAIN = 0.9
-_SCIPY_TOLERANCE = 1e-10
+#: Where scipy hands over: it creeps along curved valleys, in which damped steps do better.
+_SCIPY_TOLERANCE = 1e-8
+#: Evaluations that are left for steps of our own, even where the search has used what was allowed.
+_AT_LEAST = 10
 
 
 @dataclass
@@ -166,46 +169,46 @@ def solve(
     Solution
     """
     base = np.array(start)
-    for place, value in (held or {}).items():
-        base[place] = value
+    for index, value in (held or {}).items():
+        base[index] = value
     is_held = np.zeros(base.size, dtype=bool)
     is_held[list(held or {})] = True
     moving = np.flatnonzero(~is_held)
     counted = _Counted(problem, base, moving, shift, callback)
+    budget = 100 * moving.size if evaluations is None else evaluations
     stopped, now = "", base[moving]
     if moving.size:
-        stopped, now = _search(counted, problem, moving, evaluations)
+        stopped, now = _search(counted, problem, moving, budget)
     counted.callback = None
-    now, low, high, residuals, distance = _polished(
-        counted, now, problem.low[moving], problem.high[moving], 0 if stopped else _POLISH
-    )
+    rest = counted.residual_calls if stopped else max(budget, counted.residual_calls + _AT_LEAST)
+    place, later = _finished(counted, now, problem.low[moving], problem.high[moving], rest)
     at_low, at_high = np.zeros(base.size, dtype=bool), np.zeros(base.size, dtype=bool)
-    at_low[moving], at_high[moving] = low, high
-    whole, full = counted.whole(now), counted.known(now)
+    at_low[moving], at_high[moving] = place.at_low, place.at_high
     return Solution(
-        whole, residuals, full, at_low, at_high, is_held, distance, stopped,
-        counted.residual_calls, counted.jacobian_calls,
+        counted.whole(place.now), place.residuals, counted.known(place.now), at_low, at_high, is_held,
+        place.distance, stopped or later, counted.residual_calls, counted.jacobian_calls,
     )  # fmt: skip
 
 
-def _search(
-    counted: _Counted, problem: Problem, moving: Integers, evaluations: int | None
-) -> tuple[str, Floats]:
+def _search(counted: _Counted, problem: Problem, moving: Integers, budget: int) -> tuple[str, Floats]:
     """Let scipy find the minimum; return why it ended early, and where it is."""
     from scipy.optimize import least_squares  # type: ignore[import-untyped]
 
-    most = 100 * moving.size if evaluations is None else evaluations
     try:
         found = least_squares(
             counted.residuals, counted.base[moving], counted.jacobian,
             bounds=(problem.low[moving], problem.high[moving]), method="trf", x_scale="jac",
-            ftol=_SCIPY_TOLERANCE, xtol=_SCIPY_TOLERANCE, gtol=None, max_nfev=most,
+            ftol=_SCIPY_TOLERANCE, xtol=_SCIPY_TOLERANCE, gtol=None, max_nfev=budget,
         )  # fmt: skip
     except _Stop:
         return "stopped by the callback", _best(counted)
     if found.status == 0:
-        return f"stopped after {counted.residual_calls} evaluations", _best(counted)
+        return _stopped_after(counted), _best(counted)
     return "", np.asarray(found.x)
+
+
+def _stopped_after(counted: _Counted) -> str:
+    return f"stopped after {counted.residual_calls} evaluations"
 
 
 def _best(counted: _Counted) -> Floats:
@@ -213,30 +216,66 @@ def _best(counted: _Counted) -> Floats:
     return counted.best[1]
 
 
-def _polished(
-    counted: _Counted, now: Floats, low: Floats, high: Floats, steps: int
-) -> tuple[Floats, Any, Any, Floats, float]:
-    """Put on bounds what presses against them, and take Gauss-Newton steps with the others."""
-    residuals, jacobian = counted.residuals(now), counted.known(now)[:, counted.moving]
-    last = np.inf
-    for step in range(steps + 1):
-        snapped, at_low, at_high = _pressed(now, low, high, residuals, jacobian)
-        if (snapped != now).any():
-            now = snapped
-            residuals, jacobian = counted.residuals(now), counted.jacobian(now)
-            snapped, at_low, at_high = _pressed(now, low, high, residuals, jacobian)
-        free = ~(at_low | at_high)
-        move, distance = _linear_step(residuals, jacobian, free)
-        total = float(residuals @ residuals)
-        if step == steps or distance < _THERE or (distance < CONVERGED and distance > _GAIN * last):
-            break
-        last = distance
-        better = _shorter(counted, now, move, low, high, total)
-        if better is None:
-            break
-        now, residuals = better
-        jacobian = counted.jacobian(now)
-    return now, at_low, at_high, residuals, distance
+@dataclass
+class _Place:
+    """Where the search stands, and what is seen from there."""
+
+    now: Floats
+    residuals: Floats
+    jacobian: Floats
+    at_low: Any
+    at_high: Any
+    move: Callable[[float], Floats]
+    distance: float
+
+    @property
+    def total(self) -> float:
+        return float(self.residuals @ self.residuals)
+
+
+def _finished(counted: _Counted, now: Floats, low: Floats, high: Floats, budget: int) -> tuple[_Place, str]:
+    """Put on bounds what presses against them, and take damped linear steps with the others.
+
+    Damping as H. Nielsen, Damping parameter in Marquardt's method, Technical University of Denmark 1999.
+    """
+    place = _seen(counted, now, low, high, counted.residuals(now))
+    damping, growth, last = 0.0, 2.0, np.inf
+    while place.distance >= _THERE:
+        if place.distance < CONVERGED and place.distance > _GAIN * last:
+            return place, ""
+        if counted.residual_calls >= budget:
+            return place, _stopped_after(counted)
+        there = np.clip(place.now + place.move(damping), low, high)
+        residuals = counted.residuals(there)
+        with np.errstate(over="ignore", invalid="ignore"):
+            here = float(residuals @ residuals)
+        # near the minimum chi-square says nothing any more; further away it must fall
+        slack = _ROUNDING * place.total if place.distance < CONVERGED else 0.0
+        if np.isfinite(here) and (here < place.total or here <= place.total + slack):
+            expected = place.total - float(
+                ((place.residuals + place.jacobian @ (there - place.now)) ** 2).sum()
+            )
+            gain = min(max((place.total - here) / expected, 0.0), 1.0) if expected > 0.0 else 0.0
+            damping *= max(0.1, 1.0 - (2.0 * gain - 1.0) ** 3)
+            damping, growth, last = (damping if damping > _LEAST else 0.0), 2.0, place.distance
+            place = _seen(counted, there, low, high, residuals)
+        else:
+            damping, growth = (damping * growth if damping > 0.0 else _FIRST), 2.0 * growth
+            if damping > _MOST:
+                return place, ""
+    return place, ""
+
+
+def _seen(counted: _Counted, now: Floats, low: Floats, high: Floats, residuals: Floats) -> _Place:
+    """Look at a place: what presses on a bound goes there, and the linear problem of the others is solved."""
+    jacobian = counted.known(now)[:, counted.moving]
+    snapped, at_low, at_high = _pressed(now, low, high, residuals, jacobian)
+    if (snapped != now).any():
+        now = snapped
+        residuals, jacobian = counted.residuals(now), counted.known(now)[:, counted.moving]
+        _, at_low, at_high = _pressed(now, low, high, residuals, jacobian)
+    move, distance = _linear(residuals, jacobian, ~(at_low | at_high))
+    return _Place(now, residuals, jacobian, at_low, at_high, move, distance)
 
 
 def _pressed(
@@ -251,15 +290,19 @@ def _pressed(
     return np.where(at_low, low, np.where(at_high, high, now)), at_low, at_high
 
 
-def _linear_step(residuals: Floats, jacobian: Floats, free: Any) -> tuple[Floats, float]:
-    """Return the Gauss-Newton step along what is seen, and by how much it would lower chi-square."""
-    move = np.zeros(jacobian.shape[1])
+def _linear(residuals: Floats, jacobian: Floats, free: Any) -> tuple[Callable[[float], Floats], float]:
+    """Return the step along what is seen for any damping, and by how much that of none lowers chi-square."""
     if not free.any():
-        return move, 0.0
+        return lambda damping: np.zeros(free.size), 0.0
     left, values, right, size = scaled(jacobian[:, free])
     seen = values > BLIND * values[0] if values[0] > 0.0 else np.zeros(values.size, dtype=bool)
     along = left[:, seen].T @ residuals
-    move[free] = -(right[seen].T @ (along / values[seen])) / size
+
+    def move(damping: float) -> Floats:
+        result = np.zeros(free.size)
+        result[free] = -(right[seen].T @ (along * values[seen] / (values[seen] ** 2 + damping))) / size
+        return result
+
     return move, float(along @ along)
 
 
@@ -269,19 +312,3 @@ def scaled(jacobian: Floats) -> tuple[Floats, Floats, Floats, Floats]:
     size = np.where(size > 0.0, size, 1.0)
     left, values, right = np.linalg.svd(jacobian / size, full_matrices=False)
     return left, values, right, size
-
-
-def _shorter(
-    counted: _Counted, now: Floats, move: Floats, low: Floats, high: Floats, total: float
-) -> tuple[Floats, Floats] | None:
-    """Return the first point along a step, halved as often as need be, that does not raise chi-square."""
-    for halving in range(_HALVINGS):
-        there = np.clip(now + move / 2.0**halving, low, high)
-        if (there == now).all():
-            return None
-        residuals = counted.residuals(there)
-        with np.errstate(over="ignore"):
-            here = float(residuals @ residuals)
-        if np.isfinite(here) and here <= total * (1.0 + _ROUNDING):
-            return there, residuals
-    return None

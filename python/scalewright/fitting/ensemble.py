@@ -296,7 +296,7 @@ class Ensemble:
         Parameters
         ----------
         operators : Operators
-        **options
+        options
             As for `Operators.apply`.
 
         Returns

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from contextlib import closing
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -19,7 +19,6 @@ from .._progress import Progress, watcher
 from ..errors import ScalewrightError
 from ..files.whole import PathLike
 from ._journal import Journal, Outcome
-from ._pool import Engine, computed, processors
 from ._problem import Map, Problem, Theory
 from ._shape import Shape
 from ._solve import solve
@@ -27,6 +26,9 @@ from ._stopping import Stopping
 from .chi_square import ChiSquare
 from .ensemble import Ensemble
 from .least_squares import starting
+
+if TYPE_CHECKING:
+    from ._pool import Engine
 
 __all__ = ["fit_replicas"]
 
@@ -132,7 +134,7 @@ def fit_replicas(
     if not isinstance(chi2, ChiSquare):
         _check.refuse("chi2", chi2, f"chi2 must be a ChiSquare, not {type(chi2).__name__}")
     stopping = Stopping.of(validation, patience)
-    problem = Problem(fmap, chi2, shape, theory, priors)
+    problem = Problem(fmap, chi2, shape, theory, priors, compressed=stopping is None)
     if stopping is None:
         problem.check_enough()
     begin = starting(problem, start)
@@ -172,7 +174,7 @@ class _Work:
         rng = np.random.default_rng(np.random.SeedSequence(self.seed, spawn_key=(index,)))
         measured, problem = self._chi2.measurements, self._problem
         pseudo = measured.pseudo_data(rng)
-        moved = self._chi2.whiten(pseudo.values - measured.value)
+        moved = problem.shift(self._chi2.whiten(pseudo.values - measured.value))
         shift = np.concatenate([moved, -rng.normal(size=len(problem.priors))])
         try:
             if self._stopping is None:
@@ -183,7 +185,7 @@ class _Work:
                 at, steps = found.parameters, found.jacobian_calls
             else:
                 at, steps, reason = self._stopping.fitted(problem, self.begin, shift, rng, self._evaluations)
-            own, data = problem.residuals(at, shift), problem.residuals(at)[: problem.count]
+            own, data = problem.residuals(at, shift), problem.residuals(at)[: problem.rows]
             chi2, chi2_data = float(own @ own), float(data @ data)
             if not np.isfinite(chi2):
                 reason = reason or "chi-square is not finite"
@@ -214,6 +216,8 @@ def _all(
     options: dict[str, Any],
 ) -> dict[int, Outcome]:  # fmt: skip
     """Return all replicas: those known, and those computed now."""
+    from ._pool import computed  # only here: it loads the machinery of processes
+
     found = {index: outcome for index, outcome in known.items() if index < count}
     missing = [index for index in range(count) if index not in found]
     if report is not None:
@@ -250,6 +254,8 @@ def _gathered(problem: Problem, outcomes: list[Outcome], seed: int) -> Ensemble:
 
 def _workers(executor: Engine, workers: int | None) -> int:
     """Return how many workers there are, or are thought to be."""
+    from ._pool import processors
+
     if executor is not None and not callable(executor) and not hasattr(executor, "submit"):
         _check.refuse("executor", executor, "executor must be an Executor, or a function that makes one")
     if workers is not None:
