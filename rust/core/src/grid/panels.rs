@@ -34,7 +34,7 @@ impl Resolution {
     fn panels(self) -> (&'static [f64], &'static [usize]) {
         match self {
             Self::Standard => (&[0.0, 0.107, 0.90, 6.47], &[14, 19, 21, 17]),
-            Self::Fine => (&[0.0, 0.03, 0.3, 1.2, 6.47], &[12, 22, 22, 28, 24]),
+            Self::Fine => (&[0.0, 0.02, 0.25, 1.2, 6.47], &[12, 22, 22, 28, 24]),
         }
     }
 }
