@@ -370,8 +370,9 @@ class Ensemble:
             lines.append(f"  weighted: {self.effective_replicas:.1f} are effective")
         if self.negative:
             lines.append(f"  {self.negative} pseudo-data were negative, and kept")
-        if self.data and np.isfinite(self.chi2).all():
-            lines.append(f"  mean chi-square {self.weights @ self.chi2:.5g} for {self.data} data")
+        for what, values in (("pseudo-data", self.chi2), ("the data", self.chi2_data)):
+            if self.data and np.isfinite(values).all():
+                lines.append(f"  mean chi-square {self.weights @ values:.5g} to {what}, for {self.data} data")
         if self.replicas >= 2 and self.weights.max() < 1.0:
             size = max([10, *(len(name) for name in self.names)])
             for name in self.names[:40]:
