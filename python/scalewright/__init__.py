@@ -8,15 +8,19 @@ from __future__ import annotations
 from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities
+from .electroweak import Electroweak
 from .errors import InputError, InputWarning, RangeError, ResolutionWarning, ScalewrightError, StoreError
 from .fitting import shapes as shapes
 from .fitting.chi_square import ChiSquare
 from .fitting.ensemble import Ensemble
 from .fitting.least_squares import fit
 from .fitting.replicas import fit_replicas
+from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
 from .kernels import SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
+from .moments import moment, sum_rule
+from .observables import structure_function
 from .operators import Operators
 from .parameters import Coupling, QuarkMasses
 from .theory import Theory
@@ -27,7 +31,9 @@ __all__ = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Electroweak",
     "Ensemble",
+    "ForwardMap",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -43,8 +49,12 @@ __all__ = [
     "evolve",
     "fit",
     "fit_replicas",
+    "forward_map",
     "matching_element",
+    "moment",
     "splitting_function",
+    "structure_function",
+    "sum_rule",
 ]
 
 

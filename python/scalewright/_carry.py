@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import math
 import os
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -14,6 +16,9 @@ from .below import Below
 from .densities import Densities
 from .errors import InputError
 from .grid import ChebyshevGrid
+
+#: Bytes of results that a stream makes at once: combinations of flavours are formed once for as many scales.
+PART = 130_000_000
 
 
 def thread_count(threads: int | None) -> int:
@@ -163,10 +168,25 @@ class Task:
     made: tuple[int, ...]
     threads: int
 
-    def one(self, index: int) -> Task:
-        """Return the part of one scale."""
-        part = slice(index, index + 1)
-        return replace(self, q2=self.q2[part], nf=self.nf[part])
+    def parts(self, out: Floats | None) -> list[tuple[Task, Floats | None]]:
+        """Return parts of a few scales, each with its place: as many as `out` holds, or `PART` bytes."""
+        shape = (self.given.shape[0], len(self.made), self.grid.nodes)
+        if out is None:
+            together = max(1, PART // max(8 * math.prod(shape), 1))
+        else:
+            together = np.shape(out)[0] if np.ndim(out) == 4 else 0
+            place(out, (max(together, 1), *shape), self.given)
+        parts: list[tuple[Task, Floats | None]] = []
+        for first in range(0, self.q2.size, together):
+            part = slice(first, first + together)
+            task = replace(self, q2=self.q2[part], nf=self.nf[part])
+            parts.append((task, None if out is None else out[: task.q2.size]))
+        return parts
+
+    def run_apart(self, out: Floats | None) -> Iterator[Densities]:
+        """Apply, and return the result scale by scale."""
+        result = self.run(out)
+        return (result.scale(q2, nf) for q2, nf in zip(self.q2.tolist(), self.nf.tolist(), strict=True))
 
     def run(self, out: object = None, at_hand: tuple[Floats, Floats] | None = None) -> Densities:
         """Apply; `at_hand` are blocks and flows of the task, if they are."""

@@ -16,10 +16,15 @@ __all__ = [
     "Theory",
     "apply",
     "build",
+    "coefficient_function",
+    "coefficient_matrix",
     "compose",
     "evolve",
+    "massive_coefficient",
+    "massive_rows",
     "matching_element",
     "splitting_function",
+    "splitting_matrix",
 ]
 
 @final
@@ -159,3 +164,39 @@ def matching_element(
     z: NDArray[np.float64],
     one_minus_z: NDArray[np.float64],
 ) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+
+# light quarks, the coefficient of a^order at mu_r = mu_f = Q, order 0 to 2, of FL to 3
+# structure_function: "F2", "FL", "xF3"; coefficient: "ns+", "ns-", "pure singlet", "gluon"
+def coefficient_function(
+    order: int,
+    structure_function: str,
+    coefficient: str,
+    nf: int,
+    z: NDArray[np.float64],
+    one_minus_z: NDArray[np.float64],
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+
+# heavy quarks, the coefficient of a at mu_r = mu_f = Q; what is one of
+# - "F2 gluon", "FL gluon": a pair made by a photon, for charge one;
+# - "charged F2 gluon", "charged FL gluon", "charged F3 gluon": F2/2, FL/2, x F3/2 of a single charm quark
+#   made by a W, for a mixing element of one;
+# - "charged F2 quark", "charged FL quark", "charged F3 quark": the same from the light quark, beyond
+#   xi q(xi) times 1, 1 - lambda, lambda, with xi = x/lambda, lambda = Q^2/(Q^2 + m^2).
+# The kernel in w, 0 < w < 1, of the rows below: F(x) = int_chi^1 dw K(w) G(chi/w), G(x) = x g(x) or x q(x);
+# chi = x (1 + 4 m^2/Q^2) for a pair, x (1 + m^2/Q^2) for a single quark
+def massive_coefficient(
+    what: str, w: NDArray[np.float64], one_minus_w: NDArray[np.float64], q2: float, mass: float
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]: ...
+
+# (node, node), made once a grid and kept: nodal values of x (P * f)(x), or of a part of F2, FL, xF3, from
+# those of x f(x)
+def splitting_matrix(grid: Grid, order: int, channel: str, nf: int) -> NDArray[np.float64]: ...
+def coefficient_matrix(
+    grid: Grid, order: int, structure_function: str, coefficient: str, nf: int
+) -> NDArray[np.float64]: ...
+
+# (point, node): from nodal values of the gluon or of the light quark to the contribution at each point; x and
+# q2 (point,), mass in GeV. RangeError where chi < x_min; zero where chi >= 1
+def massive_rows(
+    grid: Grid, what: str, x: NDArray[np.float64], q2: NDArray[np.float64], mass: float
+) -> NDArray[np.float64]: ...

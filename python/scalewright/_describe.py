@@ -26,6 +26,8 @@ def option_lines(theory: Theory) -> list[tuple[str, str]]:
         ("thresholds", _thresholds(theory)),
         ("scale ratio", f"mu_r^2/mu_f^2 = {brief(theory.evolution_mu2_ratio)} in the splitting functions"),
         ("A_Hg at a^2", _element(theory)),
+        ("hard scales", _hard(theory)),
+        ("coefficients", _coefficients(theory)),
     ]
 
 
@@ -69,6 +71,18 @@ def _element(theory: Theory) -> str:
     if theory.heavy_gluon_element == "exact":
         return "exact (M. Buza et al., hep-ph/9612398)"
     return "compact parametrisation (A. Vogt, hep-ph/0408244)"
+
+
+def _hard(theory: Theory) -> str:
+    ratios = brief(theory.hard_mur2_ratio), brief(theory.hard_muf2_ratio)
+    return f"mu_r^2/Q^2 = {ratios[0]}, mu_f^2/Q^2 = {ratios[1]} in coefficient functions"
+
+
+def _coefficients(theory: Theory) -> str:
+    power = len(theory.order) - 2
+    longitudinal = power + (theory.fl_counting == "own")
+    counting = f"F2 and xF3 up to a^{power}, FL up to a^{longitudinal} ({theory.fl_counting} counting)"
+    return f"{counting}; heavy quarks {theory.heavy_quarks}"
 
 
 _RULES = (

@@ -188,15 +188,19 @@ class Operators:
         q2: Scales = None,
         nf: Scales = None,
         flavours: ArrayLike | None = None,
+        out: Floats | None = None,
         threads: int | None = None,
         missing: str = "error",
     ) -> Iterator[Densities]:
-        """Carry densities to other scales, one at a time: memory does not grow with their number.
+        """Carry densities to other scales, a few at a time: memory does not grow with their number.
 
         Parameters
         ----------
         densities, q2, nf, flavours, threads, missing
             As for `apply`.
+        out : ndarray, (k, replica, flavour, node), optional
+            Where to write, k scales at a time, again and again: what was yielded before is overwritten. Saves
+            the time to fetch fresh memory for every scale.
 
         Yields
         ------
@@ -209,8 +213,7 @@ class Operators:
             As `apply`, before the first scale.
         """
         task = self._task(densities, q2, nf, flavours, threads, missing)
-        parts = (task.one(index).run() for index in range(task.q2.size))
-        return (part.scale(None) for part in parts)
+        return (one for part, place in task.parts(out) for one in part.run_apart(place))
 
     def _task(
         self,

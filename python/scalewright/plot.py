@@ -85,7 +85,7 @@ def plot_densities(
     >>> ax.get_xlabel()
     'x'
     """
-    ax = _axes(ax)
+    ax = new_axes(ax)
     points = _points(densities, x)
     factors = _factors(scale_by, flavours)
     q2 = float(np.ravel(densities.q2)[0]) if q2 is None and densities.scales == 1 else q2
@@ -135,7 +135,7 @@ def plot_against_q2(
     ImportError
         If matplotlib is not installed.
     """
-    ax = _axes(ax)
+    ax = new_axes(ax)
     _densities(densities)
     points = np.atleast_1d(_check.x_values("x", x))
     q2, nf = np.atleast_1d(densities.q2), np.atleast_1d(densities.nf)
@@ -164,12 +164,9 @@ def demo_picture(start: Densities, evolved: Densities, path: str | os.PathLike[s
     """
     import io
 
-    from matplotlib.figure import Figure
-
     from .files.whole import write_whole
 
-    # No window and no global state: a figure of its own, so that it works without a screen.
-    figure = Figure(figsize=(11.0, 4.6), layout="constrained")
+    figure = new_figure(11.0, 4.6)
     left, right = figure.subplots(1, 2)
     names, factors = ("u_v", "d_v", "sea", "g"), (1.0, 1.0, 0.1, 0.1)
     x = np.geomspace(1e-4, 0.99, _POINTS)
@@ -183,8 +180,23 @@ def demo_picture(start: Densities, evolved: Densities, path: str | os.PathLike[s
     write_whole(path, image.getvalue())
 
 
-def _axes(ax: Any) -> Any:
-    """Return the axes to draw into."""
+def new_figure(width: float, height: float) -> Any:
+    """Return a figure without window and global state, sides in inches: it works without a screen.
+
+    Raises
+    ------
+    ImportError
+        If matplotlib is not installed.
+    """
+    try:
+        from matplotlib.figure import Figure
+    except ImportError as error:
+        raise ImportError("pictures need matplotlib: pip install 'scalewright[plot]'") from error
+    return Figure(figsize=(width, height), layout="constrained")
+
+
+def new_axes(ax: Any) -> Any:
+    """Return the axes to draw into: those given, or new ones; `ImportError` without matplotlib."""
     try:
         from matplotlib.axes import Axes
     except ImportError as error:

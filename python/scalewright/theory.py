@@ -56,6 +56,13 @@ class Theory:
         Loops of the running coupling, 1 to 5; by default one more than k of `order`.
     heavy_gluon_element : {"exact", "compact"}
         A_Hg at a^2: the exact expression, or the compact parametrisation of A. Vogt, hep-ph/0408244.
+    hard_mur2_ratio, hard_muf2_ratio : float
+        mu_r^2/Q^2 and mu_f^2/Q^2 in coefficient functions, each in [0.25, 4].
+    heavy_quarks : {"massless", "massive", "matched"}
+        In structure functions: active quarks without mass; quarks above a fixed number of flavours made in
+        pairs, with their mass, at order a; or both matched (S. Forte et al., arXiv:1001.2312).
+    fl_counting : {"absolute", "own"}
+        FL up to the same power of a as F2, or one more.
 
     Raises
     ------
@@ -82,6 +89,10 @@ class Theory:
     evolution_mu2_ratio: float = 1.0
     running_loops: int | None = None
     heavy_gluon_element: str = "exact"
+    hard_mur2_ratio: float = 1.0
+    hard_muf2_ratio: float = 1.0
+    heavy_quarks: str = "massless"
+    fl_counting: str = "absolute"
 
     def __post_init__(self) -> None:
         set_field(self, "order", _check.choice("order", self.order, ORDERS[::-1]))
@@ -102,6 +113,18 @@ class Theory:
         element = _check.choice("heavy_gluon_element", self.heavy_gluon_element, ("exact", "compact"))
         set_field(self, "heavy_gluon_element", element)
         self._check_thresholds()
+        self._check_hard()
+
+    def _check_hard(self) -> None:
+        """Check what structure functions are told."""
+        for name in ("hard_mur2_ratio", "hard_muf2_ratio"):
+            set_field(self, name, _check.real(name, getattr(self, name), least=0.25, most=4.0))
+        choices = {"heavy_quarks": ("massless", "massive", "matched"), "fl_counting": ("absolute", "own")}
+        for name, known in choices.items():
+            set_field(self, name, _check.choice(name, getattr(self, name), known))
+        if self.heavy_quarks == "massive" and self.fewest != self.most:
+            allowed = 'heavy_quarks="massive" needs a fixed number of flavours, such as flavours=3'
+            _check.refuse("flavours", self.flavours, f'{allowed}; "matched" is for a variable one')
 
     def _check_thresholds(self) -> None:
         """Bring ratios and scales into their stored form; refuse both at once and scales that do not rise."""

@@ -232,3 +232,12 @@ def test_threads_of_the_environment_must_be_a_number(ops, many, monkeypatch):
     monkeypatch.setenv("SCALEWRIGHT_THREADS", "many")
     with pytest.raises(sw.InputError, match="SCALEWRIGHT_THREADS = 'many': the environment variable must be"):
         ops.apply(many)
+
+
+def test_a_stream_into_one_place_gives_the_same(ops, many):
+    apart = [part.values.copy() for part in ops.stream(many)]
+    shape = (2, *apart[0].shape)
+    together = [part.values.copy() for part in ops.stream(many, out=np.empty(shape))]
+    np.testing.assert_array_equal(np.stack(together), np.stack(apart))
+    with pytest.raises(sw.InputError, match="out must have the shape"):
+        ops.stream(many, out=np.empty(shape[1:]))

@@ -56,7 +56,7 @@ def test_import_does_not_bring(module):
 
 def test_import_raises_no_warning():
     done = subprocess.run(
-        [sys.executable, "-W", "error", "-c", "import scalewright, scalewright.plot"],
+        [sys.executable, "-W", "error", "-c", "import scalewright, scalewright.plot, scalewright.plot_data"],
         capture_output=True,
         text=True,
         check=False,

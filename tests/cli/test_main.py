@@ -3,6 +3,7 @@
 import os
 import signal
 import subprocess
+import sys
 import time
 
 import pytest
@@ -87,16 +88,22 @@ def test_a_reader_that_leaves_early_is_no_error(tmp_path, start):
     assert said == ""
 
 
+READY = "import sys; from scalewright.cli.main import main; print('ready', flush=True); sys.exit(main())"
+
+
 def test_an_interrupt_ends_in_one_line(tmp_path):
-    child = subprocess.Popen(
-        [*COMMAND, "demo", "--replicas", "300000", "--out", "demo"],
+    with subprocess.Popen(
+        [sys.executable, "-c", READY, "demo", "--replicas", "300000", "--out", "demo"],
         cwd=tmp_path,
         stdout=subprocess.PIPE,
         stderr=subprocess.PIPE,
-    )
-    time.sleep(2.0)  # within the drawing of the replicas, which takes much longer
-    child.send_signal(signal.SIGINT)
-    out, said = child.communicate(timeout=60)
+        # a shell that runs the tests in the background hands down interrupts as ignored
+        preexec_fn=lambda: signal.signal(signal.SIGINT, signal.SIG_DFL),
+    ) as child:
+        assert child.stdout.readline() == b"ready\n"
+        time.sleep(1.0)  # into the work, which takes much longer
+        child.send_signal(signal.SIGINT)
+        out, said = child.communicate(timeout=60)
     assert child.returncode == 1, (out, said)
     assert said.decode() == "scalewright: interrupted\n"
     assert not (tmp_path / "demo" / "demo.h5").exists()

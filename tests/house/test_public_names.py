@@ -15,7 +15,9 @@ PUBLIC = [
     "ChiSquare",
     "Coupling",
     "Densities",
+    "Electroweak",
     "Ensemble",
+    "ForwardMap",
     "InputError",
     "InputWarning",
     "Measurements",
@@ -31,8 +33,12 @@ PUBLIC = [
     "evolve",
     "fit",
     "fit_replicas",
+    "forward_map",
     "matching_element",
+    "moment",
     "splitting_function",
+    "structure_function",
+    "sum_rule",
 ]
 # Loaded when something needs them, not before; the core comes with the first object that needs it.
 NOT_AT_IMPORT = ["scipy", "matplotlib", "h5py", "scalewright.cli", "scalewright.plot"]

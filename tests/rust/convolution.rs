@@ -1,5 +1,8 @@
 //! Convolution matrices: conservation laws, and quadrature by another rule.
 
+#[path = "convolution/coefficients.rs"]
+mod coefficients;
+
 use scalewright_core::convolution::{KernelSet, kernels_on};
 use scalewright_core::grid::{Grid, Resolution};
 use scalewright_core::kernels::splitting::Channel;

@@ -1,5 +1,9 @@
 //! Kernels and what they are computed from, against results of other origin.
 
+#[path = "kernels/coefficients.rs"]
+mod coefficients;
+#[path = "kernels/massive.rs"]
+mod massive;
 #[path = "kernels/matching.rs"]
 mod matching;
 #[path = "kernels/moments.rs"]

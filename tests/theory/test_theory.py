@@ -94,9 +94,9 @@ def test_coupling_changes_flavours_where_the_factorisation_scale_crosses():
 def test_texts_name_every_option(theory):
     assert "\n" not in repr(theory)
     assert str(theory) == theory.describe()
-    for word in (theory.order, "alpha_s", "GeV", "loops", "MS-bar", "a_Hg", "mu_r^2/mu_f^2"):
+    for word in (theory.order, "alpha_s", "GeV", "loops", "MS-bar", "a_Hg", "mu_r^2/mu_f^2", "mu_f^2/Q^2"):
         assert word.lower() in theory.describe().lower()
-    assert theory._repr_html_().count("<tr>") == 8
+    assert theory._repr_html_().count("<tr>") == 10
     assert len(theory.describe().splitlines()) <= 24
     assert "exact inverse" in theory._repr_html_()  # the conventions are there, folded
 

@@ -1,4 +1,4 @@
-"""`scalewright demo`: the main job end to end, on the published benchmark."""
+"""`scalewright demo`: the main job end to end, on the published benchmark and a made-up measurement."""
 
 from __future__ import annotations
 
@@ -15,13 +15,14 @@ from ..build import build_operators
 from ..densities import Densities
 from ..errors import StoreError
 from ..files.whole import reason
+from ..fitting.chi_square import ChiSquare
 from ..grid import ChebyshevGrid
-from . import benchmark
+from . import benchmark, campaign
 from .benchmark import Comparison
-from .report import Report, size
+from .report import Report, chi_square_summary, size
 
 NAME = "demo"
-SUMMARY = "compare with the published benchmark, then evolve replicas around its input"
+SUMMARY = "compare with the published benchmark, evolve replicas around its input, predict a measurement"
 EXAMPLE = "example:\n  scalewright demo --out demo --replicas 1000"
 
 SEED = 1
@@ -65,6 +66,8 @@ def run(options: argparse.Namespace) -> None:
     report.say()
     report.say(f"{place}: {evolved!r}, {size(os.path.getsize(place))}")
     _picture(many, evolved, options.out, report)
+    report.say()
+    _campaign(options.out, report)
 
 
 def _count(text: str) -> int:
@@ -142,6 +145,27 @@ def _summary(evolved: Densities, report: Report) -> None:
         mean, spread = values.mean(axis=0), values.std(axis=0, ddof=1)
         rows.append([name, *(f"{m:.4g} +- {s:.1g}" for m, s in zip(mean, spread, strict=True))])
     report.table(["", *(f"x = {x:g}" for x in points)], rows)
+
+
+def _campaign(folder: str, report: Report) -> None:
+    """Predict the made-up campaign from the law it was drawn from; print how far the data are from it."""
+    measured, grid = campaign.measured(), ChebyshevGrid(x_min=1e-5)
+    start = time.perf_counter()
+    prediction = campaign.carried(measured, grid).predict(campaign.law(grid))[0]
+    taken = time.perf_counter() - start
+    report.say(
+        f"A made-up measurement, {len(measured)} cross sections, NNLO: chi-square of the law behind it"
+    )
+    report.say(f"  predicted in {taken:.3f} s")
+    # the truth is known, so multiplicative errors are taken relative to it
+    chi_square_summary(ChiSquare(measured, reference=prediction), prediction, report)
+    if find_spec("matplotlib") is None:
+        return
+    from .. import plot_data
+
+    place = os.path.join(folder, "campaign.png")
+    plot_data.data_picture(measured, prediction, place)
+    report.say(f"{place}: {measured.tables[0]}, data over prediction")
 
 
 def _picture(start: Densities, evolved: Densities, folder: str, report: Report) -> None:

@@ -3,25 +3,36 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 
 from .. import _check
-from .._check import Floats, refuse
+from .._check import Floats, refuse, show
 from ..densities import Densities
+from ..electroweak import Electroweak
 from ..errors import InputError, StoreError
 from ..files import toml
 from ..files.csv import Lattice, write_lattice
 from ..files.toml import Section
 from ..files.whole import PathLike
 from ..grid import ChebyshevGrid
+from ..measurements import Measurements
 from ..theory import Theory
 
 _STORED = (".h5", ".hdf5")
 _TABLE = ".csv"
+_PICTURE = ".png"
+
+# Each set of electroweak inputs and the numbers that it may be given.
+_COMMON = ("z_mass", "g_fermi", "mixing")
+_ELECTROWEAK: dict[str, tuple[Callable[..., Electroweak], tuple[str, ...]]] = {
+    "effective": (Electroweak.effective, (*_COMMON, "sin2", "alpha", "w_mass")),
+    "on shell": (Electroweak.on_shell, (*_COMMON, "w_mass")),
+    "running": (Electroweak.running, (*_COMMON, "alpha")),
+}
 
 # The smallest x of a grid is exp(-u) of its last edge and may miss the number that was typed by its rounding.
 _ROUNDING = 1e-13
@@ -95,12 +106,161 @@ def read_evolve_job(path: PathLike) -> EvolveJob:
     return EvolveJob(top, theory, given, missing, intrinsic, q2, nf, file, x)
 
 
+@dataclass(frozen=True)
+class PredictJob:
+    """What `scalewright predict` is told.
+
+    Attributes
+    ----------
+    place
+        The job file, for messages.
+    theory, electroweak
+        What is assumed.
+    given
+        Densities of one scale, where the map starts.
+    measured
+        The data, after cuts.
+    target_mass, subtraction
+        As for `forward_map`.
+    form, reference
+        Of chi-square; `reference` is "data" or "prediction".
+    file
+        The result.
+    picture
+        Where to draw, or None.
+    """
+
+    place: Section
+    theory: Theory
+    electroweak: Electroweak
+    given: Densities
+    measured: Measurements
+    target_mass: bool
+    subtraction: str
+    form: str
+    reference: str
+    file: str
+    picture: str | None
+
+
+def read_predict_job(path: PathLike) -> PredictJob:
+    """Read a job of `scalewright predict`, the densities and the tables it names.
+
+    Parameters
+    ----------
+    path
+        The job, TOML.
+
+    Raises
+    ------
+    InputError
+        If a key is unknown, missing or wrong, or a table is; file and key, or line and column, are named.
+    StoreError
+        If the job or a file that it names cannot be read.
+    """
+    top = toml.load(path).only(
+        "theory", "electroweak", "grid", "input", "data", "prediction", "chi_square", "output"
+    )
+    theory = Theory.from_dict(top.get("theory"), top.section("theory").where())
+    source = top.section("input").only("file", "q2", "nf", "interpolate", "missing")
+    data = top.section("data").only("file", "cut")
+    prediction = top.section("prediction", {}).only("target_mass", "subtraction")
+    chi_square = top.section("chi_square", {}).only("form", "reference")
+    output = top.section("output").only("file", "picture")
+    file = _result(path, output, "file", _TABLE)
+    picture = None if output.get("picture", None) is None else _result(path, output, "picture", _PICTURE)
+    with prediction.blame():
+        how = prediction.get("subtraction", "damped")
+        subtraction = _check.choice("subtraction", how, ("damped", "chi", "plain"))
+    with chi_square.blame():
+        form = _check.choice("form", chi_square.get("form", "covariance"), ("covariance", "nuisance"))
+        held = chi_square.get("reference", "data")
+        reference = _check.choice("reference", held, ("data", "prediction"))
+    target_mass = _yes_or_no(prediction, "target_mass")
+    electroweak = _electroweak(top.section("electroweak", {}))
+    given = _whole(_given(path, top, source), source)
+    measured = _measured(path, data)
+    return PredictJob(
+        top, theory, electroweak, given, measured, target_mass, subtraction, form, reference, file, picture
+    )
+
+
+def _result(path: PathLike, output: Section, key: str, ending: str) -> str:
+    """Return the name of a file to be written; refuse one that cannot be before any work is done."""
+    file = toml.beside(path, output.text(key))
+    if os.path.splitext(file)[1].lower() != ending:
+        with output.blame():
+            refuse(key, file, f"must end in {ending}")
+    _refuse_no_folder(output, key, file)
+    return file
+
+
+def _electroweak(section: Section) -> Electroweak:
+    """Return the named set of inputs, with the numbers that are given."""
+    with section.blame():
+        name = _check.choice("inputs", section.get("inputs", "effective"), tuple(_ELECTROWEAK))
+    make, known = _ELECTROWEAK[name]
+    section.only("inputs", *known)
+    numbers = {key: section.get(key) for key in known if section.get(key, None) is not None}
+    with section.blame():
+        return make(**numbers)
+
+
+def _measured(path: PathLike, data: Section) -> Measurements:
+    """Read the tables and cut them."""
+    names = data.get("file")
+    names = [names] if isinstance(names, str) else names
+    if not isinstance(names, list) or not names or not all(isinstance(name, str) and name for name in names):
+        what = "must be the name of a description, or a list of them"
+        raise InputError(f"{data.where('file')} = {show(names)}: {what}")
+    parts = [Measurements.read(toml.beside(path, name)) for name in names]
+    with data.blame("file"):
+        measured = Measurements.join(parts)
+    cut = data.section("cut", {}).only("x", "q2", "w2", "y")
+    ranges = {key: cut.get(key) for key in ("x", "q2", "w2", "y") if cut.get(key, None) is not None}
+    with cut.blame():
+        return measured.cut(**{key: _range(value) for key, value in ranges.items()})
+
+
+def _range(value: Any) -> Any:
+    """Return least and most as `Measurements.cut` has them: TOML has no word for an open end but inf."""
+    if not isinstance(value, list):
+        return value
+    return tuple(None if isinstance(v, float) and np.isinf(v) else v for v in value)
+
+
+def _whole(given: Densities, source: Section) -> Densities:
+    """Return the densities with every active flavour, those that are missing 0 if the job says so."""
+    with source.blame():
+        missing = _check.choice("missing", source.get("missing", "error"), ("error", "zero"))
+    nf = int(np.ravel(given.nf)[0])
+    absent = [flavour for flavour in (*range(-nf, 0), *range(1, nf + 1), 21) if flavour not in given.flavours]
+    if missing == "error" or not absent:
+        return given
+    shape = (given.replicas, len(absent), given.grid.nodes)
+    values = np.concatenate([given.values.reshape(-1, *given.values.shape[-2:]), np.zeros(shape)], axis=1)
+    q2 = float(np.ravel(given.q2)[0])
+    return Densities(given.grid, q2=q2, nf=nf, flavours=(*given.flavours, *absent), values=values)
+
+
+def _yes_or_no(section: Section, key: str) -> bool:
+    """Return true or false, false where nothing is said."""
+    value = section.get(key, False)
+    if not isinstance(value, bool):
+        raise InputError(f"{section.where(key)} = {value!r}: must be true or false")
+    return value
+
+
+def _refuse_no_folder(output: Section, key: str, file: str) -> None:
+    if not os.path.isdir(os.path.dirname(file) or "."):
+        raise StoreError(f"{output.where(key)} = {file!r}: the folder does not exist")
+
+
 def _points(output: Section, file: str) -> Floats | None:
     """Return the x of a table; refuse a result that cannot be written before any work is done."""
     with output.blame():
         kind = _kind("file", file)
-        if not os.path.isdir(os.path.dirname(file) or "."):
-            raise StoreError(f"{output.where('file')} = {file!r}: the folder does not exist")
+        _refuse_no_folder(output, "file", file)
         x = output.get("x", None)
         if x is None:
             return None
@@ -129,10 +289,7 @@ def _given(path: PathLike, top: Section, source: Section) -> Densities:
         section = top.section("grid", {}).only("x_min", "resolution")
         with section.blame():
             grid = ChebyshevGrid(section.get("x_min", 1e-7), section.get("resolution", "standard"))
-        interpolate = source.get("interpolate", False)
-        if not isinstance(interpolate, bool):
-            raise InputError(f"{source.where('interpolate')} = {interpolate!r}: must be true or false")
-        densities = Densities.from_csv(file, grid, interpolate=interpolate)
+        densities = Densities.from_csv(file, grid, interpolate=_yes_or_no(source, "interpolate"))
     with source.blame():
         q2 = source.get("q2", None)
         return densities.scale(None if q2 is None else _check.scale("q2", q2), source.get("nf", None))

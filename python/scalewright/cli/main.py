@@ -14,9 +14,9 @@ from collections.abc import Sequence
 from typing import TextIO
 
 from ..errors import InputError, RangeError, ResolutionWarning, ScalewrightError
-from . import demo, evolve, info
+from . import demo, evolve, info, predict
 
-COMMANDS = (demo, evolve, info)
+COMMANDS = (demo, evolve, predict, info)
 COULD_NOT, ASKED_WRONGLY = 1, 2
 
 
@@ -59,7 +59,7 @@ def _parser() -> argparse.ArgumentParser:
     """Describe the command line."""
     parser = argparse.ArgumentParser(
         prog="scalewright",
-        description="Evolution of parton densities, LO to NNLO, across quark thresholds.",
+        description="Evolution of parton densities and predictions from them, LO to NNLO, across thresholds.",
         epilog="example: scalewright demo",
         allow_abbrev=False,
     )

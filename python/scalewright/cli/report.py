@@ -4,7 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+import numpy as np
+
+from .._check import Floats
 from .._progress import Line
+from ..fitting.chi_square import ChiSquare
+
+_SHOWN = 8  # tables and sources: more would not fit on a screen
 
 
 class Report:
@@ -53,6 +59,34 @@ def table(head: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
         ).rstrip()
         for line in lines
     )
+
+
+def chi_square_summary(chi_square: ChiSquare, prediction: Floats, report: Report) -> None:
+    """Print chi-square of each table and of all, and the sources that are pulled most.
+
+    Parameters
+    ----------
+    chi_square : ChiSquare
+    prediction : ndarray, (datum,)
+    report : Report
+        Where to print.
+    """
+    parts = chi_square.per_table(prediction)
+    rows = [[part.title, str(part.data), f"{part.alone:.1f}", f"{part.share:.1f}"] for part in parts[:_SHOWN]]
+    if len(parts) > _SHOWN:
+        rest = parts[_SHOWN:]
+        said = f"{len(rest)} more tables"
+        rows.append([said, str(sum(p.data for p in rest)), "", f"{sum(p.share for p in rest):.1f}"])
+    total = float(np.asarray(chi_square.value(prediction)))
+    rows.append(["all", str(prediction.size), "", f"{total:.1f}"])
+    report.table(["chi-square", "data", "alone", "share"], rows)
+    shifts = chi_square.shifts(prediction)
+    order = np.argsort(-abs(shifts))[:_SHOWN]
+    if order.size:
+        names = chi_square.names_of_sources
+        report.say("  common sources at their best fit, in standard deviations:")
+        words = [f"{names[k]} {shifts[k]:+.2f}" for k in order]
+        report.say("\n".join(f"    {'; '.join(words[k : k + 3])}" for k in range(0, len(words), 3)))
 
 
 def size(count: int) -> str:

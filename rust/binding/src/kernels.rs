@@ -10,7 +10,7 @@ use scalewright_core::kernels::splitting::{self, Channel};
 use scalewright_core::numerics::endpoint::Point;
 
 /// Regular values, plus coefficients, local part.
-type Parts<'py> = (Bound<'py, PyArray1<f64>>, Bound<'py, PyArray1<f64>>, f64);
+pub type Parts<'py> = (Bound<'py, PyArray1<f64>>, Bound<'py, PyArray1<f64>>, f64);
 
 /// The channel of a name.
 pub fn channel(py: Python<'_>, name: &str) -> PyResult<Channel> {
@@ -75,25 +75,29 @@ pub fn matching_element<'py>(
     parts(py, &matching::kernel(order, element, kind, form)[power], 0.0, &z, &one_minus_z)
 }
 
-fn parts<'py>(
+/// The three parts of a kernel at z.
+pub fn parts<'py>(
     py: Python<'py>,
     kernel: &Kernel,
     nf: f64,
     z: &PyReadonlyArray1<'_, f64>,
     one_minus_z: &PyReadonlyArray1<'_, f64>,
 ) -> PyResult<Parts<'py>> {
+    let values: Vec<f64> =
+        distances(py, z, one_minus_z)?.into_iter().map(|t| kernel.regular(&Point::at(t), nf)).collect();
+    Ok((copied(py, &values), copied(py, &kernel.plus(nf)), kernel.local(nf)))
+}
+
+/// `ln(1/z)` from z and 1 - z.
+pub fn distances(
+    py: Python<'_>,
+    z: &PyReadonlyArray1<'_, f64>,
+    one_minus_z: &PyReadonlyArray1<'_, f64>,
+) -> PyResult<Vec<f64>> {
     let (z, one_minus_z) = (slice(py, "z", z)?, slice(py, "one_minus_z", one_minus_z)?);
     if z.len() != one_minus_z.len() {
         return Err(input(py, format!("z has {} entries, one_minus_z {}: equal numbers", z.len(), one_minus_z.len())));
     }
-    let values: Vec<f64> = z
-        .iter()
-        .zip(one_minus_z)
-        .map(|(&z, &rest)| {
-            // The smaller of the two is the one that holds all digits.
-            let t = if z < 0.5 { -z.ln() } else { -(-rest).ln_1p() };
-            kernel.regular(&Point::at(t), nf)
-        })
-        .collect();
-    Ok((copied(py, &values), copied(py, &kernel.plus(nf)), kernel.local(nf)))
+    // The smaller of the two is the one that holds all digits.
+    Ok(z.iter().zip(one_minus_z).map(|(&z, &rest)| if z < 0.5 { -z.ln() } else { -(-rest).ln_1p() }).collect())
 }

@@ -1,6 +1,7 @@
 //! The border between the core and Python: arrays, handles, errors and nothing else.
 
 mod arrays;
+mod coefficients;
 mod detached;
 mod errors;
 mod grid;
@@ -13,6 +14,10 @@ use pyo3::prelude::*;
 /// The compiled core.
 #[pymodule(gil_used = false)]
 mod _core {
+    #[pymodule_export]
+    use crate::coefficients::{
+        coefficient_function, coefficient_matrix, massive_coefficient, massive_rows, splitting_matrix,
+    };
     #[pymodule_export]
     use crate::grid::Grid;
     #[pymodule_export]

@@ -6,6 +6,7 @@
 
 use super::recombine::{Blocks, Channel};
 use crate::error::Result;
+use crate::evolution::CHARM;
 use crate::numerics::blocks::{Matrix, multiply_add};
 
 /// A set at one scale: what its blocks are called, and one matrix a block.
@@ -61,7 +62,7 @@ pub fn compose(first: &Set, second: &[Set]) -> Result<Composed> {
 
 /// Every channel of a set with this number of light flavours.
 fn channels(light: usize) -> Vec<Channel> {
-    let heavy = (light + 1).max(4)..=6;
+    let heavy = (light + 1).max(CHARM)..=6;
     let plus = [Channel::Gluon, Channel::LightPlus].into_iter().chain(heavy.clone().map(Channel::HeavyPlus));
     plus.chain([Channel::LightMinus]).chain(heavy.map(Channel::HeavyMinus)).collect()
 }
@@ -133,6 +134,6 @@ fn between(set: &Set, light: usize, output: Channel, input: Channel) -> Option<M
 }
 
 fn scaled(mut matrix: Matrix, factor: f64) -> Matrix {
-    matrix.values_mut().iter_mut().for_each(|value| *value *= factor);
+    matrix.scale(factor);
     matrix
 }

@@ -1,16 +1,15 @@
 //! Flavours (PDG numbers) into the combinations that evolve alone, and back.
 
+use crate::coupling::{FEWEST, MOST};
 use crate::error::{Error, Result};
-
-/// PDG number of the gluon.
-pub const GLUON: i64 = 21;
+use crate::evolution::{CHARM, GLUON, HEAVY_NAMES};
 
 /// Accepts 21 and the quarks +-1 .. +-6.
 ///
 /// # Errors
 /// [`Error::Argument`] for another number.
 pub fn check_flavour(flavour: i64) -> Result<()> {
-    if flavour == GLUON || (1..=6).contains(&flavour.abs()) {
+    if flavour == GLUON || (1..=6).contains(&flavour.unsigned_abs()) {
         return Ok(());
     }
     Err(Error::Argument {
@@ -27,9 +26,6 @@ pub struct Blocks {
     /// Number of flavours that act alike.
     pub light: usize,
 }
-
-/// Names of the heavy flavours 4, 5, 6.
-const HEAVY_NAMES: [&str; 3] = ["charm", "bottom", "top"];
 
 /// A combination of densities on which blocks act.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -57,8 +53,8 @@ impl Channel {
             Self::Gluon => "gluon".into(),
             Self::LightPlus => "light+".into(),
             Self::LightMinus => "light-".into(),
-            Self::HeavyPlus(flavour) => format!("{}+", HEAVY_NAMES[flavour - 4]),
-            Self::HeavyMinus(flavour) => format!("{}-", HEAVY_NAMES[flavour - 4]),
+            Self::HeavyPlus(flavour) => format!("{}+", HEAVY_NAMES[flavour - CHARM]),
+            Self::HeavyMinus(flavour) => format!("{}-", HEAVY_NAMES[flavour - CHARM]),
             Self::DifferencePlus(_) => "ns+".into(),
             Self::DifferenceMinus(_) => "ns-".into(),
         }
@@ -74,8 +70,15 @@ impl Blocks {
     /// Reads the names of a set.
     ///
     /// # Errors
-    /// [`Error::Argument`] where the blocks that every set has are missing.
+    /// [`Error::Argument`] where the blocks that every set has are missing, or `light` is not 3 to 6.
     pub fn new(names: &[String], light: usize) -> Result<Self> {
+        if !(FEWEST..=MOST).contains(&light) {
+            return Err(Error::Argument {
+                name: "light",
+                value: light.to_string(),
+                allowed: "it must be 3 to 6".into(),
+            });
+        }
         let blocks = Self { names: names.to_vec(), light };
         for needed in ["gluon<-gluon", "gluon<-light+", "light+<-gluon", "light+<-light+", "ns+"] {
             if blocks.position(needed).is_none() {
@@ -115,7 +118,7 @@ impl Blocks {
 
     /// The input channels that act on an output.
     pub fn inputs(&self, output: Channel) -> Vec<(Channel, usize)> {
-        let heavy = (self.light + 1).max(4)..=6;
+        let heavy = (self.light + 1).max(CHARM)..=6;
         let candidates: Vec<Channel> = if output.is_plus() {
             [Channel::Gluon, Channel::LightPlus].into_iter().chain(heavy.map(Channel::HeavyPlus)).collect()
         } else {
@@ -158,7 +161,7 @@ impl Recombination {
         let light = blocks.light;
         // Differences add up to zero, so that of the last light flavour is not carried.
         let differences = || 1..light;
-        let heavy = || (light + 1).max(4)..=6;
+        let heavy = || (light + 1).max(CHARM)..=6;
         let channels: Vec<Channel> = [Channel::Gluon, Channel::LightPlus, Channel::LightMinus]
             .into_iter()
             .chain(heavy().map(Channel::HeavyPlus))
@@ -206,11 +209,10 @@ fn weight_in(channel: Channel, flavour: i64, light: usize) -> f64 {
     let sign = if channel.is_plus() { 1.0 } else { flavour.signum() as f64 };
     let off_mean = |own: usize| f64::from(own == quark) - 1.0 / light as f64;
     sign * match channel {
-        Channel::Gluon => 0.0,
         Channel::LightPlus | Channel::LightMinus => f64::from(quark <= light),
         Channel::HeavyPlus(own) | Channel::HeavyMinus(own) => f64::from(own == quark),
         Channel::DifferencePlus(own) | Channel::DifferenceMinus(own) if quark <= light => off_mean(own),
-        Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => 0.0,
+        Channel::Gluon | Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => 0.0,
     }
 }
 

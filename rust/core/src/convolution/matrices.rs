@@ -202,7 +202,7 @@ fn add_plus_rows(
 
 /// What [`add_plus_rows`] leaves to subtract for t beyond the node's own panel, which reaches to `extent`:
 /// `- int_0^z dz' ln^k(1-z')/(1-z')` with `z = e^-extent`, a multiple of F at the node.
-fn left_to_subtract(extent: f64, k: usize) -> f64 {
+pub(super) fn left_to_subtract(extent: f64, k: usize) -> f64 {
     let power = i32::try_from(k + 1).unwrap_or(i32::MAX);
     (-(-extent).exp_m1()).ln().powi(power) / f64::from(power)
 }

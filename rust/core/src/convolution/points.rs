@@ -16,6 +16,8 @@ const LONGEST: f64 = 2.5;
 /// Points of a sub-interval beyond those which the degree of the panel asks for. With the ratio 1/4 a logarithm
 /// converges like `3^(-2n)`. Found by doubling all numbers of points: see `tests/rust/convolution.rs`.
 const MARGIN: usize = 16;
+/// The same in the square root of t.
+const THRESHOLD_MARGIN: usize = 10;
 
 /// One stretch of quadrature points, all of whose `x/z` lie in one panel.
 pub(super) struct Stretch {
@@ -96,6 +98,11 @@ fn points_beyond(grid: &Grid, i: usize) -> Vec<(f64, f64)> {
 
 /// Points and weights in t, graded towards zero, for functions with logarithms at t = 0 times a polynomial.
 pub(super) fn stretch_points(from: f64, to: f64, degree: usize) -> Vec<(f64, f64)> {
+    graded_points(from, to, degree, to.max(LONGEST))
+}
+
+/// The same for functions that go on growing like 1/t down to t = `scale`.
+pub(super) fn graded_points(from: f64, to: f64, degree: usize, scale: f64) -> Vec<(f64, f64)> {
     let mut points = Vec::new();
     let mut upper = to;
     while upper > from {
@@ -104,7 +111,7 @@ pub(super) fn stretch_points(from: f64, to: f64, degree: usize) -> Vec<(f64, f64
         let lower = if upper * RATIO <= 1.5 * floor { from } else { upper * RATIO };
         let lower = lower.max(upper - LONGEST);
         let lower = if lower - from < 0.1 * (upper - lower) { from } else { lower };
-        let rule = rule(points_needed(lower, upper, to, degree));
+        let rule = rule(points_needed(lower, upper, to, degree, scale));
         let (middle, half) = (0.5 * (lower + upper), 0.5 * (upper - lower));
         points.extend(rule.nodes.iter().zip(&rule.weights).map(|(x, w)| (middle + half * x, half * w)));
         upper = lower;
@@ -112,11 +119,35 @@ pub(super) fn stretch_points(from: f64, to: f64, degree: usize) -> Vec<(f64, f64
     points
 }
 
+/// Points and weights in t for functions of `tau = t^(1/2)` that are analytic but for `tau = +-i distance`: graded in tau
+/// towards that distance. The panel is given by its length and degree.
+pub(super) fn threshold_points(from: f64, to: f64, panel: (f64, usize), distance: f64) -> Vec<(f64, f64)> {
+    let (from, (length, degree)) = (from.sqrt(), panel);
+    let mut points = Vec::new();
+    let mut upper = to.sqrt();
+    while upper > from {
+        let lower = if upper <= 1.5 * distance { from } else { upper * RATIO };
+        let lower = lower.max((upper * upper - LONGEST).max(0.0).sqrt());
+        let lower = if lower - from < 0.1 * (upper - lower) { from } else { lower };
+        let share = (upper * upper - lower * lower) / length;
+        // Twice the degree of the panel, in tau.
+        let needed = THRESHOLD_MARGIN as f64 + degree as f64 * share.sqrt();
+        let rule = rule(needed.round() as usize);
+        let (middle, half) = (0.5 * (lower + upper), 0.5 * (upper - lower));
+        points.extend(rule.nodes.iter().zip(&rule.weights).map(|(x, w)| {
+            let tau = middle + half * x;
+            (tau * tau, 2.0 * tau * half * w)
+        }));
+        upper = lower;
+    }
+    points
+}
+
 /// Fewer points where the sub-interval, and with it its share of the integral and of the polynomial, is small.
-fn points_needed(lower: f64, upper: f64, whole: f64, degree: usize) -> usize {
-    let share = (upper - lower) / whole.max(LONGEST);
-    let logarithm = MARGIN as f64 + 0.5 * share.ln();
-    let polynomial = 0.5 * degree as f64 * share.sqrt();
+fn points_needed(lower: f64, upper: f64, whole: f64, degree: usize, scale: f64) -> usize {
+    let length = upper - lower;
+    let logarithm = MARGIN as f64 + 0.5 * (length / scale).min(1.0).ln();
+    let polynomial = 0.5 * degree as f64 * (length / whole.max(LONGEST)).sqrt();
     (logarithm + polynomial).round().max(4.0) as usize
 }
 

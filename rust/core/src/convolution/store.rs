@@ -1,15 +1,16 @@
-//! Matrices kept for the life of the process, one set for each grid.
+//! Splitting functions and matching on a grid, one set for each grid.
 
+use super::formulas::{at_nf, convolve};
+use super::kept::Kept;
 use super::matrices::{Convolved, Functions, integrate};
 use crate::error::Result;
 use crate::grid::Grid;
 use crate::kernels::kernel::Kernel;
 use crate::kernels::matching::{self, Element, HeavyGluonForm, MassKind};
 use crate::kernels::splitting::{self, Channel};
-use crate::numerics::endpoint::Point;
 use crate::watch::Watch;
 use std::collections::HashMap;
-use std::sync::{Arc, Mutex, OnceLock, PoisonError};
+use std::sync::Arc;
 
 /// Orders of matching: a^1 and a^2.
 const MATCHING_ORDERS: [usize; 2] = [1, 2];
@@ -28,7 +29,7 @@ pub struct KernelSet {
 impl KernelSet {
     /// The splitting function of `a^(order+1)` for nf flavours; zero for an order that is not known.
     pub fn splitting(&self, order: usize, channel: Channel, nf: f64) -> Convolved {
-        self.at_nf(self.splitting.get(&(order, channel)).map_or(&[], Vec::as_slice), nf)
+        at_nf(self.splitting.get(&(order, channel)).map_or(&[], Vec::as_slice), nf, self.nodes)
     }
 
     /// Whether that splitting function vanishes for every nf.
@@ -49,16 +50,8 @@ impl KernelSet {
         let mut sum = Convolved::zeros(self.nodes);
         if let Some(powers) = self.matching.get(&(order, element, kind, form)) {
             for (power, terms) in powers.iter().enumerate() {
-                sum.add_scaled(log.powi(power as i32), &self.at_nf(terms, nl));
+                sum.add_scaled(log.powi(power as i32), &at_nf(terms, nl, self.nodes));
             }
-        }
-        sum
-    }
-
-    fn at_nf(&self, terms: &[Convolved], nf: f64) -> Convolved {
-        let mut sum = Convolved::zeros(self.nodes);
-        for (power, term) in terms.iter().enumerate() {
-            sum.add_scaled(nf.powi(power as i32), term);
         }
         sum
     }
@@ -69,17 +62,8 @@ impl KernelSet {
 /// # Errors
 /// [`crate::error::Error::Interrupted`] where the watch says stop.
 pub fn kernels_on(grid: &Grid, watch: &dyn Watch) -> Result<Arc<KernelSet>> {
-    type Key = (Vec<u64>, Vec<usize>);
-    static SETS: OnceLock<Mutex<HashMap<Key, Arc<KernelSet>>>> = OnceLock::new();
-    let key = (grid.edges().iter().map(|edge| edge.to_bits()).collect(), grid.degrees().to_vec());
-    let sets = SETS.get_or_init(Mutex::default);
-    if let Some(set) = sets.lock().unwrap_or_else(PoisonError::into_inner).get(&key) {
-        return Ok(Arc::clone(set));
-    }
-    // Computed outside the lock: two threads that ask at once may both compute, and get the same bits.
-    let set = Arc::new(compute(grid, watch)?);
-    sets.lock().unwrap_or_else(PoisonError::into_inner).insert(key, Arc::clone(&set));
-    Ok(set)
+    static SETS: Kept<KernelSet> = Kept::new();
+    SETS.of(grid, || compute(grid, watch))
 }
 
 /// A user's own kernel, its regular part given at [`super::quadrature_z`].
@@ -106,17 +90,13 @@ fn compute(grid: &Grid, watch: &dyn Watch) -> Result<KernelSet> {
         .filter(|(_, powers)| !powers.iter().all(Kernel::is_zero))
         .collect();
 
-    let mut formulas = Formulas::default();
     let of_matching = matching.iter().flat_map(|(_, powers)| powers);
-    for kernel in splitting.iter().map(|(_, kernel)| kernel).chain(of_matching) {
-        formulas.collect(kernel);
-    }
-    let parts = integrate(grid, &Functions::Formulas(&formulas.regular), formulas.plus, watch)?;
-
-    let assemble = |kernel: &Kernel| formulas.assemble(kernel, &parts, grid.nodes());
+    let kernels = splitting.iter().map(|(_, kernel)| kernel).chain(of_matching);
+    let mut matrices = convolve(grid, kernels, watch)?.into_iter();
+    let mut next = || matrices.next().unwrap_or_default();
     Ok(KernelSet {
-        splitting: splitting.iter().map(|(key, kernel)| (*key, assemble(kernel))).collect(),
-        matching: matching.iter().map(|(key, powers)| (*key, powers.each_ref().map(assemble))).collect(),
+        splitting: splitting.iter().map(|(key, _)| (*key, next())).collect(),
+        matching: matching.iter().map(|(key, _)| (*key, std::array::from_fn(|_| next()))).collect(),
         nodes: grid.nodes(),
     })
 }
@@ -129,45 +109,4 @@ fn matching_keys() -> impl Iterator<Item = MatchingKey> {
             })
         })
     })
-}
-
-/// The distinct regular functions of many kernels, and how many plus distributions they need.
-#[derive(Default)]
-struct Formulas {
-    regular: Vec<fn(&Point) -> f64>,
-    index: HashMap<usize, usize>,
-    plus: usize,
-}
-
-impl Formulas {
-    fn collect(&mut self, kernel: &Kernel) {
-        for term in &kernel.terms {
-            self.plus = self.plus.max(term.plus.len());
-            if let Some(formula) = term.regular {
-                // Two kernels that name the same function share its integrals; were two functions merged by the
-                // compiler they would have the same values.
-                self.index.entry(formula as usize).or_insert_with(|| {
-                    self.regular.push(formula);
-                    self.regular.len() - 1
-                });
-            }
-        }
-    }
-
-    fn assemble(&self, kernel: &Kernel, parts: &[Convolved], nodes: usize) -> Vec<Convolved> {
-        kernel
-            .terms
-            .iter()
-            .map(|term| {
-                let mut sum = term
-                    .regular
-                    .map_or_else(|| Convolved::zeros(nodes), |formula| parts[self.index[&(formula as usize)]].clone());
-                for (k, &coefficient) in term.plus.iter().enumerate() {
-                    sum.add_scaled(coefficient, &parts[self.regular.len() + k]);
-                }
-                sum.add_scaled(term.local, &Convolved::identity(nodes));
-                sum
-            })
-            .collect()
-    }
 }

@@ -78,8 +78,9 @@ impl FixedFlavour {
                 || further.iter().any(|own| channels.contains(&own.channel))
         };
         let (quark, valence) = (sum(&plus, &pure), sum(&minus, &sea));
+        // The last row is the number below `x_min`.
         let one =
-            |terms: &[Convolved]| terms.iter().map(|term| with_number(&term.matrix, &term.number_below)).collect();
+            |terms: &[Convolved]| terms.iter().map(|term| term.matrix.with_last_row(&term.number_below)).collect();
         Self {
             singlet: (0..orders).map(|k| pair(&gg[k], &gq[k], &qg[k], &quark[k], offsets)).collect(),
             ns_plus: one(&plus),
@@ -197,15 +198,4 @@ fn scatter(row: &mut [f64], values: &[f64], component: usize, offsets: &[usize])
     for (i, value) in values.iter().enumerate() {
         row[place(offsets, component, i)] = *value;
     }
-}
-
-/// A non-singlet kernel and the row of number below `x_min`.
-fn with_number(matrix: &Matrix, number: &[f64]) -> Matrix {
-    let n = matrix.rows();
-    let mut all = Matrix::zeros(n + 1, n + 1);
-    for i in 0..n {
-        all.row_mut(i)[..n].copy_from_slice(matrix.row(i));
-    }
-    all.row_mut(n)[..n].copy_from_slice(number);
-    all
 }

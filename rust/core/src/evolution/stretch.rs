@@ -48,7 +48,7 @@ impl Stretch {
         let representative: HashMap<_, _> =
             sectors.iter().map(|&sector| (sector, equations.representative(sector))).collect();
         let distinct = sectors.into_iter().filter(|sector| representative[sector] == *sector);
-        let count = plan.steps(to - from);
+        let count = Plan::steps(to - from);
         let tasks: Vec<(Sector, usize)> = distinct.flat_map(|sector| (0..count).map(move |i| (sector, i))).collect();
         let factored: Vec<Step> = tasks
             .par_iter()
@@ -123,7 +123,7 @@ impl StretchSolution {
     }
 }
 
-/// How finely stretches are cut.
+/// How accurate the steps of a stretch are to be: their number follows from its length alone, their degree from both.
 #[derive(Debug, Clone, Copy)]
 pub struct Plan {
     /// Relative accuracy wanted.
@@ -134,7 +134,7 @@ pub struct Plan {
 
 impl Plan {
     /// Number of steps for a stretch of this length in `ln a`; none for a length of zero.
-    fn steps(&self, length: f64) -> usize {
+    fn steps(length: f64) -> usize {
         if length == 0.0 {
             return 0;
         }

@@ -75,6 +75,18 @@ impl Matrix {
         Self::from_values(rows, cols, self.data)
     }
 
+    /// The same with one more row and column: `last` as the row, zeros as the column.
+    #[must_use]
+    pub fn with_last_row(&self, last: &[f64]) -> Self {
+        debug_assert_eq!(last.len(), self.cols);
+        let mut larger = Self::zeros(self.rows + 1, self.cols + 1);
+        for i in 0..self.rows {
+            larger.row_mut(i)[..self.cols].copy_from_slice(self.row(i));
+        }
+        larger.row_mut(self.rows)[..self.cols].copy_from_slice(last);
+        larger
+    }
+
     /// Adds `factor * other`, of the same shape.
     pub fn add_scaled(&mut self, factor: f64, other: &Self) {
         debug_assert_eq!((self.rows, self.cols), (other.rows, other.cols));

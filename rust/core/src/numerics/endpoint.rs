@@ -74,3 +74,29 @@ impl Point {
         }
     }
 }
+
+/// One z from `t = ln(1/z)` and no more than that, for formulas that are asked at many points.
+#[derive(Debug, Clone, Copy)]
+pub struct Logarithms {
+    /// `z`
+    pub z: f64,
+    /// `1 - z`
+    pub one_minus_z: f64,
+    /// `ln z`
+    pub ln_z: f64,
+}
+
+impl Logarithms {
+    /// The point `z = e^-t`, for t > 0.
+    pub fn at(t: f64) -> Self {
+        let one_minus_z = -(-t).exp_m1();
+        // Below 1/2 the difference would lose digits of z, above it none.
+        let z = if one_minus_z < 0.5 { 1.0 - one_minus_z } else { (-t).exp() };
+        Self { z, one_minus_z, ln_z: -t }
+    }
+
+    /// `ln(1-z)`
+    pub fn ln_1mz(&self) -> f64 {
+        if self.z < 0.5 { (-self.z).ln_1p() } else { self.one_minus_z.ln() }
+    }
+}

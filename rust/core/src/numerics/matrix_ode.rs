@@ -79,7 +79,7 @@ impl Step {
                 }
             }
         }
-        let values = solution.iter().flat_map(super::blocks::Matrix::values).copied().collect();
+        let values = solution.iter().flat_map(Matrix::values).copied().collect();
         Dense { nodes: self.nodes.clone(), values: Matrix::from_values(m + 1, rows * cols, values), rows, cols }
     }
 
@@ -138,7 +138,8 @@ impl Dense {
 
     /// Estimated error of each entry of some rows relative to its largest value over the step, the largest of all.
     ///
-    /// The first Chebyshev coefficient in s that is left out, from the last two kept, which fall geometrically.
+    /// The first Chebyshev coefficient in s that is left out, from the last two kept, which fall geometrically;
+    /// infinite where the solution or its coefficients are not finite.
     pub fn error(&self, rows: &[usize]) -> f64 {
         let degree = self.nodes.points().len() - 1;
         let mut series = vec![0.0; degree + 1];
@@ -148,6 +149,10 @@ impl Dense {
             let largest = series.iter().fold(0.0_f64, |most, value| most.max(value.abs()));
             let falling = coefficients(&series);
             let (before, last) = (falling[degree - 1].abs(), falling[degree].abs());
+            // The largest of some values would pass over what is not a number.
+            if !falling.iter().all(|coefficient| coefficient.is_finite()) {
+                return f64::INFINITY;
+            }
             if largest > 0.0 {
                 worst = worst.max(last * if last < before { last / before } else { 1.0 } / largest);
             }

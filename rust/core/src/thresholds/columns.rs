@@ -4,15 +4,15 @@
 //! families of their own. Each matrix has one row a node and a last row: what has flowed below `x_min` (all of the
 //! momentum in that of the gluon, each flavour's own number elsewhere).
 
-use crate::evolution::{Sector, Stretch, StretchSolution, place};
+use crate::evolution::{CHARM, Sector, Stretch, StretchSolution, place};
 use crate::numerics::blocks::Matrix;
 
-/// First heavy flavour number.
-const CHARM: usize = 4;
 /// Gluon, light sum, charm, bottom, top.
 const CHANNELS: usize = 5;
-const GLUON: usize = 0;
-const LIGHT: usize = 1;
+/// Their places.
+const GLUON_PLACE: usize = 0;
+const LIGHT_PLACE: usize = 1;
+const CHARM_PLACE: usize = 2;
 
 /// What kind of combination the columns belong to.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -40,48 +40,48 @@ impl Columns {
     /// Columns with nothing in them: `rows` with the last one for what flows below `x_min`.
     pub fn new(family: Family, light: usize, rows: usize, cols: usize) -> Self {
         let mut channels = [const { None }; CHANNELS];
-        channels[LIGHT] = Some(Matrix::zeros(rows, cols));
+        channels[LIGHT_PLACE] = Some(Matrix::zeros(rows, cols));
         if family == Family::Plus {
-            channels[GLUON] = Some(Matrix::zeros(rows, cols));
+            channels[GLUON_PLACE] = Some(Matrix::zeros(rows, cols));
         }
         Self { family, light, channels }
     }
 
-    /// The gluon. Only the plus family has one.
+    /// The gluon. Only the plus family has one; to others their light sum stands in, and nobody asks.
     pub fn gluon(&self) -> &Matrix {
-        self.channels[GLUON].as_ref().unwrap_or(self.light_sum())
+        self.channels[GLUON_PLACE].as_ref().unwrap_or(self.light_sum())
     }
 
-    /// The gluon. Only the plus family has one.
+    /// The gluon. Only the plus family has one; to others their light sum stands in, and nobody asks.
     pub fn gluon_mut(&mut self) -> &mut Matrix {
-        let place = if self.family == Family::Plus { GLUON } else { LIGHT };
+        let place = if self.family == Family::Plus { GLUON_PLACE } else { LIGHT_PLACE };
         self.channel_mut(place)
     }
 
     /// The sum of the light flavours; for a non-singlet family the only content.
     pub fn light_sum(&self) -> &Matrix {
-        // Set by the constructor and never removed.
-        self.channels[LIGHT].as_ref().expect("every family holds the light channel")
+        // Set by the constructors and never removed.
+        self.channels[LIGHT_PLACE].as_ref().expect("every family holds the light channel")
     }
 
     /// The sum of the light flavours; for a non-singlet family the only content.
     pub fn light_mut(&mut self) -> &mut Matrix {
-        self.channel_mut(LIGHT)
+        self.channel_mut(LIGHT_PLACE)
     }
 
     /// A flavour that is heavier than the light ones.
     pub fn heavy(&self, flavour: usize) -> Option<&Matrix> {
-        self.channels[flavour - CHARM + 2].as_ref()
+        self.channels[flavour - CHARM + CHARM_PLACE].as_ref()
     }
 
     /// A flavour that is heavier than the light ones.
     pub fn heavy_mut(&mut self, flavour: usize) -> Option<&mut Matrix> {
-        self.channels[flavour - CHARM + 2].as_mut()
+        self.channels[flavour - CHARM + CHARM_PLACE].as_mut()
     }
 
     /// Puts a heavy flavour in its place.
     pub fn set_heavy(&mut self, flavour: usize, values: Matrix) {
-        self.channels[flavour - CHARM + 2] = Some(values);
+        self.channels[flavour - CHARM + CHARM_PLACE] = Some(values);
     }
 
     /// The lightest flavour that is held by itself.
@@ -120,6 +120,7 @@ impl Columns {
     }
 
     fn channel_mut(&mut self, channel: usize) -> &mut Matrix {
+        // Asked for the light channel, or the gluon of the plus family: set by the constructors and never removed.
         self.channels[channel].as_mut().expect("every family holds the light channel, plus the gluon")
     }
 }
@@ -187,13 +188,13 @@ impl LegColumns {
     fn by_flavour(&self, sum: Matrix, deviations: Vec<(usize, Matrix)>) -> Columns {
         let mut columns = self.inactive();
         if matches!(columns.family, Family::NsPlus | Family::NsMinus) {
-            columns.channels[LIGHT] = Some(sum);
+            columns.channels[LIGHT_PLACE] = Some(sum);
             return columns;
         }
         let mut average = sum;
         if columns.family == Family::Plus {
             let (gluon, quarks) = unpack(&average, &self.offsets);
-            columns.channels[GLUON] = Some(gluon);
+            columns.channels[GLUON_PLACE] = Some(gluon);
             average = quarks;
         }
         for (_, deviation) in &deviations {
@@ -205,7 +206,7 @@ impl LegColumns {
             columns.set_heavy(flavour, heavy);
         }
         average.scale(columns.light as f64);
-        columns.channels[LIGHT] = Some(average);
+        columns.channels[LIGHT_PLACE] = Some(average);
         if columns.family == Family::Plus {
             columns.gather_momentum();
         }
@@ -215,8 +216,8 @@ impl LegColumns {
     /// What does not evolve on this leg: heavy flavours that are not active.
     fn inactive(&self) -> Columns {
         let mut channels = [const { None }; CHANNELS];
-        for (place, channel) in self.start.channels.iter().enumerate().skip(LIGHT + 1) {
-            if place + CHARM - LIGHT - 1 > self.nf {
+        for (place, channel) in self.start.channels.iter().enumerate().skip(CHARM_PLACE) {
+            if place - CHARM_PLACE + CHARM > self.nf {
                 channels[place].clone_from(channel);
             }
         }

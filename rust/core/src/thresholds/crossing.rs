@@ -53,19 +53,21 @@ impl Crossing {
             }
             sum
         };
-        let momentum = |name: Element| with_row(&element(name), |kernel| &kernel.momentum_below);
-        let both = |name: Element| Both {
-            momentum: momentum(name),
-            number: with_row(&element(name), |kernel| &kernel.number_below),
+        let momentum = |kernel: &Convolved| kernel.matrix.with_last_row(&kernel.momentum_below);
+        let number = |kernel: &Convolved| kernel.matrix.with_last_row(&kernel.number_below);
+        let one = |name: Element| momentum(&element(name));
+        let both = |name: Element| {
+            let kernel = element(name);
+            Both { momentum: momentum(&kernel), number: number(&kernel) }
         };
         Ok(Self {
             nf,
             quark: both(Element::LightQuark),
-            gluon_gluon: momentum(Element::GluonGluon),
-            gluon_quark: momentum(Element::GluonQuark),
-            gluon_heavy: momentum(Element::GluonHeavy),
-            heavy_gluon: momentum(Element::HeavyGluon),
-            heavy_quark: momentum(Element::HeavyQuark),
+            gluon_gluon: one(Element::GluonGluon),
+            gluon_quark: one(Element::GluonQuark),
+            gluon_heavy: one(Element::GluonHeavy),
+            heavy_gluon: one(Element::HeavyGluon),
+            heavy_quark: one(Element::HeavyQuark),
             heavy_heavy: both(Element::HeavyHeavy),
         })
     }
@@ -172,15 +174,4 @@ fn shrink(target: &mut Matrix, element: &Matrix) {
     sum.add_scaled(1.0, element);
     let (rows, cols) = (target.rows(), target.cols());
     Factors::of(&sum).solve(target.part_mut(0..rows, 0..cols));
-}
-
-/// A kernel with one more row and column: what it sends below `x_min`, and nothing back.
-fn with_row(kernel: &Convolved, row: impl Fn(&Convolved) -> &Vec<f64>) -> Matrix {
-    let n = kernel.matrix.rows();
-    let mut all = Matrix::zeros(n + 1, n + 1);
-    for i in 0..n {
-        all.row_mut(i)[..n].copy_from_slice(kernel.matrix.row(i));
-    }
-    all.row_mut(n)[..n].copy_from_slice(row(kernel));
-    all
 }

@@ -1,19 +1,10 @@
 //! What the input of a route consists of: which families and channels there are, and what they are called.
 
 use super::columns::{Columns, Family};
-use super::prepared::{BuildOptions, Prepared};
-use crate::error::Result;
-use crate::evolution::Sector;
+use super::route::Route;
+use crate::evolution::{CHARM, HEAVY_NAMES, Sector};
 use crate::grid::Grid;
 use crate::numerics::blocks::Matrix;
-use crate::theory::Theory;
-use rayon::prelude::*;
-
-/// Powers a and b of the quark densities `x^a (1-x)^b` on which steps are judged, sea-like and valence-like; the gluon
-/// that goes with both is sea-like.
-const PROBES: [(f64, i32); 2] = [(-0.2, 6), (0.6, 3)];
-/// Names of the heavy flavours 4, 5, 6.
-const HEAVY_NAMES: [&str; 3] = ["charm", "bottom", "top"];
 
 /// A density that is asked for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -50,24 +41,26 @@ pub struct Inputs {
 }
 
 impl Inputs {
-    pub fn of(prepared: &Prepared, options: &BuildOptions) -> Self {
-        let light = prepared.route.light;
-        let mut heavy: Vec<usize> = (light + 1..=options.start_nf).chain(options.intrinsic.iter().copied()).collect();
+    pub fn of(route: &Route, start_nf: usize, intrinsic: &[usize]) -> Self {
+        let light = route.light;
+        let mut heavy: Vec<usize> = (light + 1..=start_nf).chain(intrinsic.iter().copied()).collect();
         heavy.sort_unstable();
         heavy.dedup();
-        let mut heavy_out: Vec<usize> = (light + 1..=prepared.route.most).chain(heavy.iter().copied()).collect();
+        let mut heavy_out: Vec<usize> = (light + 1..=route.most).chain(heavy.iter().copied()).collect();
         heavy_out.sort_unstable();
         heavy_out.dedup();
         Self { light, heavy, heavy_out }
     }
 
     /// Families whose operators differ from those of another.
-    pub fn families(&self, prepared: &Prepared) -> Vec<Family> {
+    ///
+    /// `same` says whether two sectors evolve alike along the whole route.
+    pub fn families(&self, same: impl Fn(Sector, Sector) -> bool) -> Vec<Family> {
         let mut families = vec![Family::Plus, Family::NsPlus];
-        if !prepared.same(Sector::NsMinus, Sector::NsPlus) {
+        if !same(Sector::NsMinus, Sector::NsPlus) {
             families.push(Family::NsMinus);
         }
-        if !prepared.same(Sector::Valence, Sector::NsMinus) || !self.heavy.is_empty() {
+        if !same(Sector::Valence, Sector::NsMinus) || !self.heavy.is_empty() {
             families.push(Family::Minus);
         }
         families
@@ -76,7 +69,7 @@ impl Inputs {
     /// Names of the input channels of a family.
     fn channels(&self, family: Family) -> Vec<String> {
         let heavy = |sign: &str| -> Vec<String> {
-            self.heavy.iter().map(|flavour| format!("{}{sign}", HEAVY_NAMES[flavour - 4])).collect()
+            self.heavy.iter().map(|flavour| format!("{}{sign}", HEAVY_NAMES[flavour - CHARM])).collect()
         };
         match family {
             Family::Plus => [vec!["gluon".into(), "light+".into()], heavy("+")].concat(),
@@ -142,38 +135,6 @@ impl Inputs {
             .collect()
     }
 
-    /// Error estimate of the steps: smooth densities of every family are carried along the route.
-    ///
-    /// Unit columns would tell little: the error of the steps lies in what is rough in x, of which a density has next
-    /// to nothing.
-    pub fn probe(&self, theory: &Theory, grid: &Grid, prepared: &Prepared) -> Result<f64> {
-        // Nearer to x = 1 values fall over decades, and no accuracy relative to them is promised.
-        const LARGEST_X: f64 = 0.9;
-        let judged: Vec<usize> = (0..grid.nodes()).filter(|&i| grid.u()[i] >= -LARGEST_X.ln()).collect();
-        let errors = self
-            .families(prepared)
-            .par_iter()
-            .map(|&family| {
-                let mut start = Columns::new(family, self.light, grid.nodes() + 1, PROBES.len());
-                let shape = |(power, fall): (f64, i32), u: f64| (-power * u).exp() * (-(-u).exp_m1()).powi(fall);
-                for (column, quark) in PROBES.into_iter().enumerate() {
-                    for (i, &u) in grid.u().iter().enumerate() {
-                        start.light_mut().row_mut(i)[column] = shape(quark, u);
-                        if family == Family::Plus {
-                            start.gluon_mut().row_mut(i)[column] = 2.0 * shape(PROBES[0], u);
-                        }
-                    }
-                }
-                for flavour in &self.heavy {
-                    start.set_heavy(*flavour, start.empty());
-                }
-                let legs = prepared.carry(theory, &start, 0)?;
-                Ok(legs.iter().map(|leg| leg.error(&judged)).fold(0.0, f64::max))
-            })
-            .collect::<Result<Vec<f64>>>()?;
-        Ok(errors.into_iter().fold(0.0, f64::max))
-    }
-
     /// Unit columns of the nodes that a panel owns, one set for each input channel.
     pub fn start(&self, family: Family, grid: &Grid, panel: usize) -> (Vec<(usize, usize)>, Columns) {
         let owned = grid.owned(panel);
@@ -205,7 +166,7 @@ fn output_name(output: Output, family: Family) -> String {
     match output {
         Output::Gluon => "gluon".into(),
         Output::Light => format!("light{sign}"),
-        Output::Heavy(flavour) => format!("{}{sign}", HEAVY_NAMES[flavour - 4]),
+        Output::Heavy(flavour) => format!("{}{sign}", HEAVY_NAMES[flavour - CHARM]),
     }
 }
 

@@ -4,10 +4,11 @@ mod columns;
 mod crossing;
 mod inputs;
 mod operators;
+mod options;
 mod prepared;
 mod route;
 mod vector;
 
 pub use operators::{Evolution, build};
-pub use prepared::BuildOptions;
+pub use options::BuildOptions;
 pub use vector::{Vectors, evolve};

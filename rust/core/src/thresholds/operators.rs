@@ -2,7 +2,8 @@
 
 use super::columns::{Columns, Family, LegColumns};
 use super::inputs::{Inputs, Layout, Output};
-use super::prepared::{BuildOptions, Prepared, prepare, scale};
+use super::options::BuildOptions;
+use super::prepared::{Prepared, prepare, scale};
 use super::route::Route;
 use crate::error::Result;
 use crate::grid::Grid;
@@ -38,8 +39,13 @@ struct Chunk {
 /// Builds the set.
 ///
 /// # Errors
-/// [`crate::error::Error::Tolerance`] where the steps do not reach the tolerance; those of the running coupling;
-/// [`crate::error::Error::Interrupted`].
+/// [`Error::Argument`] and [`Error::Shape`] for options that are not allowed; [`Error::Tolerance`] where the steps do
+/// not reach the tolerance; those of the running coupling; [`Error::Interrupted`].
+///
+/// [`Error::Argument`]: crate::error::Error::Argument
+/// [`Error::Shape`]: crate::error::Error::Shape
+/// [`Error::Tolerance`]: crate::error::Error::Tolerance
+/// [`Error::Interrupted`]: crate::error::Error::Interrupted
 pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn Watch) -> Result<Evolution> {
     let (prepared, inputs, error) = prepare(theory, grid, options, &Stage::new(watch, 0, 2))?;
     finish(theory, grid, prepared, &inputs, error, &Stage::new(watch, 1, 2))
@@ -54,7 +60,7 @@ fn finish(
     error: f64,
     watch: &Stage,
 ) -> Result<Evolution> {
-    let families = inputs.families(&prepared);
+    let families = inputs.families(|one, other| prepared.same(one, other));
     let tasks: Vec<(Family, usize)> =
         families.iter().flat_map(|&family| (0..grid.panels()).map(move |panel| (family, panel))).collect();
     let chunks: Vec<Chunk> = tasks
@@ -114,7 +120,7 @@ impl Evolution {
     /// Blocks `(scale, block, node, node)` and flows `(scale, flow, node)` at any scales of the route.
     ///
     /// # Errors
-    /// [`Error::OutOfRange`] for a scale that is not on the route; [`Error::Interrupted`].
+    /// [`crate::error::Error::OutOfRange`] for a scale that is not on the route; [`crate::error::Error::Interrupted`].
     pub fn values(&self, asked: &[(f64, usize)], watch: &dyn Watch) -> Result<(Vec<f64>, Vec<f64>)> {
         let n = self.nodes;
         let (block, flow) = (self.names.len() * n * n, self.flow_names.len() * n);

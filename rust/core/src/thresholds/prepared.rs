@@ -1,12 +1,13 @@
 //! A route made ready: equations factored along every leg, matching at every crossing.
 
-use super::columns::{Columns, LegColumns};
+use super::columns::{Columns, Family, LegColumns};
 use super::crossing::Crossing;
 use super::inputs::Inputs;
+use super::options::BuildOptions;
 use super::route::{Entry, Route};
 use crate::convolution::{KernelSet, kernels_on};
 use crate::error::{Error, Result};
-use crate::evolution::{FixedFlavour, FurtherKernel, Plan, Sector, Stretch};
+use crate::evolution::{FixedFlavour, Plan, Sector, Stretch};
 use crate::grid::Grid;
 use crate::theory::Theory;
 use crate::watch::Watch;
@@ -15,22 +16,9 @@ use std::collections::BTreeMap;
 
 /// How many times the degree of the steps is raised before a build gives up.
 const MOST_REFINEMENTS: u32 = 3;
-
-/// What is to be built.
-pub struct BuildOptions {
-    /// Scale of the input, GeV^2.
-    pub start_q2: f64,
-    /// Number of flavours of the input.
-    pub start_nf: usize,
-    /// Scales in GeV^2, with the number of flavours at each.
-    pub asked: Vec<(f64, usize)>,
-    /// Heavy flavours above `start_nf` that the input may hold.
-    pub intrinsic: Vec<usize>,
-    /// Relative accuracy of the steps.
-    pub tolerance: f64,
-    /// Kernels of the user.
-    pub further: Vec<FurtherKernel>,
-}
+/// Powers a and b of the quark densities `x^a (1-x)^b` on which steps are judged, sea-like and valence-like; the gluon
+/// that goes with both is sea-like.
+const PROBES: [(f64, i32); 2] = [(-0.2, 6), (0.6, 3)];
 
 /// Everything that serves all columns of a route.
 pub struct Prepared {
@@ -102,6 +90,41 @@ impl Prepared {
         Ok(legs)
     }
 
+    /// Error estimate of the steps and the nf where it is largest: smooth densities of every family are carried along
+    /// the route.
+    ///
+    /// Unit columns would tell little: the error of the steps lies in what is rough in x, of which a density has next
+    /// to nothing.
+    fn probe(&self, theory: &Theory, grid: &Grid, inputs: &Inputs) -> Result<(f64, usize)> {
+        // Nearer to x = 1 values fall over decades, and no accuracy relative to them is promised.
+        const LARGEST_X: f64 = 0.9;
+        let judged: Vec<usize> = (0..grid.nodes()).filter(|&i| grid.u()[i] >= -LARGEST_X.ln()).collect();
+        let errors = inputs
+            .families(|one, other| self.same(one, other))
+            .par_iter()
+            .map(|&family| {
+                let mut start = Columns::new(family, inputs.light, grid.nodes() + 1, PROBES.len());
+                let shape = |(power, fall): (f64, i32), u: f64| (-power * u).exp() * (-(-u).exp_m1()).powi(fall);
+                for (column, quark) in PROBES.into_iter().enumerate() {
+                    for (i, &u) in grid.u().iter().enumerate() {
+                        start.light_mut().row_mut(i)[column] = shape(quark, u);
+                        if family == Family::Plus {
+                            start.gluon_mut().row_mut(i)[column] = 2.0 * shape(PROBES[0], u);
+                        }
+                    }
+                }
+                for flavour in &inputs.heavy {
+                    start.set_heavy(*flavour, start.empty());
+                }
+                let legs = self.carry(theory, &start, 0)?;
+                Ok(legs.iter().map(|leg| leg.error(&judged)).collect())
+            })
+            .collect::<Result<Vec<Vec<f64>>>>()?;
+        let legs = self.route.legs.iter().enumerate();
+        let of_legs = legs.map(|(index, leg)| (errors.iter().map(|family| family[index]).fold(0.0, f64::max), leg.nf));
+        Ok(of_legs.fold((0.0, 0), |worst, leg| if leg.0 > worst.0 { leg } else { worst }))
+    }
+
     /// Whether two sectors evolve alike on every leg.
     pub fn same(&self, one: Sector, other: Sector) -> bool {
         self.stretches.iter().all(|stretch| stretch.same(one, other))
@@ -119,24 +142,29 @@ pub fn scale(theory: &Theory, q2: f64, nf: usize) -> Result<f64> {
 }
 
 /// Factors the equations of a route finely enough for the tolerance; also returns the error reached.
+///
+/// # Errors
+/// [`Error::Argument`] and [`Error::Shape`] for options that are not allowed; [`Error::Tolerance`] where the steps do
+/// not reach the tolerance; those of the running coupling; [`Error::Interrupted`].
 pub fn prepare(
     theory: &Theory,
     grid: &Grid,
     options: &BuildOptions,
     watch: &dyn Watch,
 ) -> Result<(Prepared, Inputs, f64)> {
+    options.check(grid)?;
     let kernels = kernels_on(grid, watch)?;
     let mut refinement = 0;
     loop {
         let plan = Plan { tolerance: options.tolerance, refinement };
         let prepared = Prepared::new(theory, grid, &kernels, options, &plan, watch)?;
-        let inputs = Inputs::of(&prepared, options);
-        let error = inputs.probe(theory, grid, &prepared)?;
+        let inputs = Inputs::of(&prepared.route, options.start_nf, &options.intrinsic);
+        let (error, nf) = prepared.probe(theory, grid, &inputs)?;
         if error <= options.tolerance {
             return Ok((prepared, inputs, error));
         }
         if refinement == MOST_REFINEMENTS {
-            let (nf, tolerance, steps) = (options.start_nf, options.tolerance, prepared.steps());
+            let (tolerance, steps) = (options.tolerance, prepared.steps());
             return Err(Error::Tolerance { nf, reached: error, tolerance, steps });
         }
         refinement += 1;

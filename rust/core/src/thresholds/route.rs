@@ -27,7 +27,7 @@ pub struct Leg {
 pub enum Entry {
     /// From the input.
     Start,
-    /// From another leg of the same scale, by a change of nf by one.
+    /// From a leg that holds the same scale, by a change of nf by one.
     Crossing {
         /// Index of that leg.
         from_leg: usize,
@@ -86,11 +86,12 @@ impl Route {
     }
 
     fn crossing(&self, from_nf: usize, q2: f64) -> Entry {
+        // The threshold is among the targets of the legs at `from_nf`, which were entered before: one always serves it.
         let from_leg = self.serving(q2, from_nf).unwrap_or_default();
         Entry::Crossing { from_leg }
     }
 
-    /// The leg that holds a scale.
+    /// The first leg that holds a scale, if any does.
     fn serving(&self, q2: f64, nf: usize) -> Option<usize> {
         self.legs.iter().position(|leg| leg.nf == nf && leg.holds(q2))
     }

@@ -2,16 +2,16 @@
 
 use super::columns::{Columns, Family, LegColumns};
 use super::inputs::Inputs;
-use super::prepared::{BuildOptions, prepare, scale};
+use super::options::BuildOptions;
+use super::prepared::{prepare, scale};
 use crate::error::Result;
+use crate::evolution::GLUON;
 use crate::grid::Grid;
 use crate::numerics::blocks::Matrix;
 use crate::theory::Theory;
 use crate::watch::Watch;
 use rayon::prelude::*;
 
-/// PDG number of the gluon.
-const GLUON: i64 = 21;
 /// Replicas carried together.
 const PIECE: usize = 32;
 /// Every family.
@@ -19,7 +19,7 @@ const FAMILIES: [Family; 4] = [Family::Plus, Family::Minus, Family::NsPlus, Fami
 
 /// Densities by flavour (PDG numbers).
 pub struct Vectors<'a> {
-    /// Flavours of the input.
+    /// Flavours of the input; heavy ones above `start_nf` that [`BuildOptions::intrinsic`] does not name are left out.
     pub in_flavours: &'a [i64],
     /// `(replica, flavour, node)`.
     pub values: &'a [f64],

@@ -1,0 +1,128 @@
+"""Coefficient functions of light quarks on a grid, with the logarithms of both hard scales.
+
+With t = ln(Q^2/mu_f^2), lr = ln(mu_r^2/mu_f^2) and C = sum_k a^k C_k, that a structure function does not
+depend on mu_f means d C/d t = C P + beta(a) d C/d a, beta(a) = -b0 a^2 - b1 a^3 - ...; solved order by
+order in `_with_logarithms` in a(mu_f), and re-expanded in a(mu_r) after that. Products of C and P are
+products of matrices on the grid: ratios of scales are those of the theory, so that these are computed
+once for each number of flavours.
+"""
+
+from __future__ import annotations
+
+from functools import lru_cache
+
+import numpy as np
+
+from .._check import Floats
+from ..grid import ChebyshevGrid
+
+__all__ = ["COEFFICIENTS", "beta_coefficients", "light_matrices", "splitting"]
+
+COEFFICIENTS = ("ns+", "ns-", "pure singlet", "gluon")
+#: The highest power of a known of each structure function.
+HIGHEST = {"F2": 2, "FL": 3, "xF3": 2}
+
+
+def beta_coefficients(nf: int) -> tuple[float, float]:
+    """Return b0, b1 of d a/d ln mu^2 = -b0 a^2 - b1 a^3.
+
+    W. Caswell, Phys. Rev. Lett. 33 (1974) 244; D. Jones, Nucl. Phys. B75 (1974) 531.
+    """
+    return 11.0 - 2.0 / 3.0 * nf, 102.0 - 38.0 / 3.0 * nf
+
+
+@lru_cache(maxsize=512)
+def splitting(grid: ChebyshevGrid, order: int, channel: str, nf: int) -> Floats:
+    """Return the matrix (node, node) of a splitting function; see `scalewright.kernels` for the channels."""
+    from .. import _core
+
+    return _core.splitting_matrix(grid.handle(), order, channel, nf)
+
+
+@lru_cache(maxsize=64)
+def light_matrices(
+    grid: ChebyshevGrid, function: str, highest: int, nf: int, mur2_ratio: float, muf2_ratio: float
+) -> dict[str, Floats]:
+    """Return the coefficients of a(mu_r)^k, k = 0 to `highest`, as matrices.
+
+    Parameters
+    ----------
+    grid : ChebyshevGrid
+        Where x lives.
+    function : {"F2", "FL", "xF3"}
+        The structure function.
+    highest : int
+        Highest power of a.
+    nf : int
+        Number of active flavours.
+    mur2_ratio, muf2_ratio : float
+        mu_r^2/Q^2 and mu_f^2/Q^2.
+
+    Returns
+    -------
+    dict
+        Name of the coefficient -> (power of a, node, node), acting on nodal values of x f(x).
+    """
+    t, lr = -float(np.log(muf2_ratio)), float(np.log(mur2_ratio / muf2_ratio))
+    plain = {name: [_plain(grid, k, function, name, nf) for k in range(highest + 1)] for name in COEFFICIENTS}
+    plus, minus = ([splitting(grid, k, name, nf) for k in range(highest)] for name in ("ns+", "ns-"))
+    nonsinglet = {"ns+": (plain["ns+"], plus), "ns-": (plain["ns-"], minus)}
+    made = {name: _shifted(c, p, t, lr, nf) for name, (c, p) in nonsinglet.items()}
+    # the singlet as one row of two blocks (Sigma, gluon)
+    both = [
+        np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)
+    ]
+    singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], t, lr, nf)
+    n = grid.nodes
+    made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
+    made["gluon"] = [c[:, n:] for c in singlet]
+    return {name: np.stack(made[name]) for name in COEFFICIENTS}
+
+
+def _plain(grid: ChebyshevGrid, order: int, function: str, name: str, nf: int) -> Floats:
+    """Return the coefficient of a^order at mu_r = mu_f = Q."""
+    from .. import _core
+
+    return _core.coefficient_matrix(grid.handle(), order, function, name, nf)
+
+
+def _singlet(grid: ChebyshevGrid, order: int, nf: int) -> Floats:
+    """Return the splitting functions of (Sigma, gluon) as one matrix."""
+    part = {name: splitting(grid, order, name, nf) for name in ("ns+", "pure singlet", "qg", "gq", "gg")}
+    return np.block([[part["ns+"] + part["pure singlet"], part["qg"]], [part["gq"], part["gg"]]])
+
+
+def _shifted(c: list[Floats], p: list[Floats], t: float, lr: float, nf: int) -> list[Floats]:
+    """Return coefficients at mu_f and mu_r from those at Q."""
+    b0, b1 = beta_coefficients(nf)
+    moved = _with_logarithms(c, p, t, b0, b1)
+    # a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3 with a = a(mu_r)
+    result = list(moved)
+    if len(moved) > 2:
+        result[2] = moved[2] + b0 * lr * moved[1]
+    if len(moved) > 3:
+        result[3] = moved[3] + 2.0 * b0 * lr * moved[2] + (b1 * lr + (b0 * lr) ** 2) * moved[1]
+    return result
+
+
+def _with_logarithms(c: list[Floats], p: list[Floats], t: float, b0: float, b1: float) -> list[Floats]:
+    """Return the coefficients as series in a(mu_f), polynomials in t evaluated at t.
+
+    d C_k/d t = sum_j C_(k-1-j) P_j - (k-1) b0 C_(k-1) - (k-2) b1 C_(k-2).
+    """
+    series: list[list[Floats]] = []
+    for k, start in enumerate(c):
+        powers = [start]
+        for power in range(1, k + 1):
+            slope = np.zeros_like(start)
+            for j in range(k):
+                if power - 1 < len(series[k - 1 - j]):
+                    slope = slope + series[k - 1 - j][power - 1] @ p[j]
+            for lower, factor in ((k - 1, (k - 1) * b0), (k - 2, (k - 2) * b1)):
+                if lower >= 1 and power - 1 < len(series[lower]):
+                    slope = slope - factor * series[lower][power - 1]
+            powers.append(slope / power)
+        series.append(powers)
+    return [
+        sum((term * t**n for n, term in enumerate(powers)), np.zeros_like(powers[0])) for powers in series
+    ]

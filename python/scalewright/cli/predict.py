@@ -1,0 +1,141 @@
+"""`scalewright predict JOB.toml`: what densities predict for measured tables, and how far off."""
+
+from __future__ import annotations
+
+import argparse
+import time
+from collections.abc import Sequence
+from importlib.util import find_spec
+
+import numpy as np
+
+from .._check import Floats
+from ..densities import Densities
+from ..files.cells import Cells, write_cells
+from ..fitting.chi_square import ChiSquare
+from ..forward import forward_map
+from .jobs import PredictJob, read_predict_job
+from .report import Report, chi_square_summary
+
+NAME = "predict"
+SUMMARY = "predict measured tables from densities, as a job file says"
+EXAMPLE = """example:
+  scalewright predict job.toml
+
+with job.toml:
+  [theory]
+  order = "NNLO"                      # "NLO", "LO"
+  flavours = [3, 5]                   # fewest and most; one number: fixed
+  coupling = { alpha_s = 0.118, q2 = 8315.18, nf = 5 }
+  heavy_quarks = "massless"           # "massive", "matched"
+
+  [electroweak]
+  inputs = "effective"                # "on shell", "running"
+
+  [grid]
+  x_min = 1e-5
+
+  [input]
+  file = "start.csv"                  # columns q2, nf, x, flavour, replica, value; or a stored .h5
+  interpolate = true                  # the x of the table are not the nodes of the grid
+
+  [data]
+  file = "run1.toml"                  # a description of measured points, or a list of them
+  cut = { q2 = [3.5, inf] }           # also x, w2, y: least and most
+
+  [chi_square]
+  reference = "data"                  # "prediction": what multiplicative errors multiply
+
+  [output]
+  file = "predictions.csv"
+"""
+
+
+def arguments(parser: argparse.ArgumentParser) -> None:
+    """Describe the arguments."""
+    parser.add_argument("job", metavar="JOB.toml", help="the job; file names in it are relative to it")
+
+
+def run(options: argparse.Namespace) -> None:
+    """Read the job, predict, write the result, print what was found."""
+    report = Report(options.quiet)
+    job = read_predict_job(options.job)
+    if job.picture is not None and find_spec("matplotlib") is None:
+        where = job.place.section("output").where("picture")
+        raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
+    start = time.perf_counter()
+    with job.place.blame():
+        predicted, error = _predicted(job)
+        prediction = predicted.mean(axis=0)
+        reference = prediction if job.reference == "prediction" else None
+        chi_square = ChiSquare(job.measured, job.form, reference)
+    _write(job, predicted, error, chi_square)
+    report.say(f"{job.file}: {job.measured!r}, predicted")
+    report.say(f"  from {job.given!r}")
+    report.say(f"  with {job.theory!r}")
+    report.say(f"  in {time.perf_counter() - start:.2f} s")
+    part = float((error / np.sqrt(np.diagonal(chi_square.covariance))).max())
+    report.say(f"  numerical errors at most {part:.1g} of the uncertainty of a datum")
+    for cut in job.measured.cuts:
+        report.say(f"  cut {cut}")
+    chi_square_summary(chi_square, prediction, report)
+    if predicted.shape[0] > 1:
+        report.say(f"  chi-square is that of the mean of {predicted.shape[0]} replicas")
+    _draw(job, prediction, report)
+
+
+def _predicted(job: PredictJob) -> tuple[Floats, Floats]:
+    """Return predictions, (replica, datum), and the numerical error of their mean, (datum,)."""
+    given = job.given
+    q2, nf = float(np.ravel(given.q2)[0]), int(np.ravel(given.nf)[0])
+    fmap = forward_map(
+        job.theory,
+        given.grid,
+        start_q2=q2,
+        start_nf=nf,
+        points=job.measured,
+        electroweak=job.electroweak,
+        target_mass=job.target_mass,
+        subtraction=job.subtraction,
+    )
+    values = given.values.reshape(-1, *given.values.shape[-2:]).mean(axis=0)
+    mean = Densities(given.grid, q2=q2, nf=nf, flavours=given.flavours, values=values)
+    return fmap.predict(given), fmap.numerical_error(mean)[0]
+
+
+def _write(job: PredictJob, predicted: Floats, error: Floats, chi_square: ChiSquare) -> None:
+    """Write predictions beside the data, one line a datum."""
+    measured = job.measured
+    prediction = predicted.mean(axis=0)
+    sigma = np.sqrt(np.diagonal(chi_square.covariance))
+    columns: dict[str, Sequence[str]] = {
+        "table": [measured.tables[number] for number in measured.table_of],
+        "x": _numbers(measured.x),
+        "q2": _numbers(measured.q2),
+        "y": _numbers(measured.y),
+        "value": _numbers(measured.value),
+        "uncertainty": _numbers(sigma),
+        "prediction": _numbers(prediction),
+        "numerical error": _numbers(error),
+    }
+    if predicted.shape[0] > 1:
+        columns["spread"] = _numbers(predicted.std(axis=0, ddof=1))
+    columns["pull"] = _numbers(chi_square.pulls(prediction))
+    columns["pull after shifts"] = _numbers(chi_square.pulls(prediction, shifted=True))
+    rows = tuple(zip(*columns.values(), strict=True))
+    write_cells(job.file, Cells(tuple(columns), rows, job.file, tuple(range(2, len(rows) + 2))))
+
+
+def _numbers(values: Floats) -> list[str]:
+    """Return numbers with every bit, nothing where there is none."""
+    return ["" if np.isnan(value) else repr(value) for value in values.tolist()]
+
+
+def _draw(job: PredictJob, prediction: Floats, report: Report) -> None:
+    """Draw, where the job asks for it."""
+    if job.picture is None:
+        return
+    from .. import plot_data
+
+    plot_data.data_picture(job.measured, prediction, job.picture)
+    report.say(f"{job.picture}: data over prediction by Q^2")

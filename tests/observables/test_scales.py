@@ -1,0 +1,94 @@
+"""Scale logarithms: predictions at other mu_r and mu_f differ by one order more than is kept."""
+
+from types import SimpleNamespace
+
+import numpy as np
+import pytest
+import scalewright as sw
+from observables import direct
+
+CASES = [
+    {"measure": "F2", "exchange": "photon"},
+    {"measure": "FL", "exchange": "photon"},
+    {"measure": "xF3", "beam": "e-"},
+    {"measure": "F2", "current": "charged", "beam": "nu"},
+    {"measure": "FL", "current": "charged", "beam": "nubar"},
+    {"measure": "xF3", "current": "charged", "beam": "nubar"},
+]
+X, Q2 = np.array([1e-3, 0.03, 0.4]), 100.0
+
+
+def shift(grid, case, order, alpha, ratios, counting="absolute"):
+    """Return the change of predictions with the ratios of scales; the input is given at Q^2."""
+    flavours = 3 if counting == "own" else 4
+    theory = {
+        "order": order, "flavours": flavours, "coupling": sw.Coupling(alpha, q2=Q2, nf=flavours),
+        "fl_counting": counting,
+    }  # fmt: skip
+    rows = SimpleNamespace(x=X, q2=Q2 * np.ones(3), **case)
+    start = direct.start(grid, q2=Q2, nf=flavours)
+    if flavours == 4:  # charm as strange
+        values = np.concatenate([start.values, start.values[:, -2:]], axis=1)
+        start = sw.Densities(grid, q2=Q2, nf=4, flavours=(*start.flavours, 4, -4), values=values)
+    maps = [
+        sw.forward_map(
+            sw.Theory(hard_mur2_ratio=mur, hard_muf2_ratio=muf, **theory),
+            grid, start_q2=Q2, start_nf=flavours, points=rows, tolerance=1e-12,
+        )
+        for mur, muf in ((1.0, 1.0), ratios)
+    ]  # fmt: skip
+    return maps[1].predict(start)[0] - maps[0].predict(start)[0]
+
+
+@pytest.mark.parametrize("ratios", [(2.0, 1.0), (1.0, 3.0), (4.0, 0.25), (0.5, 2.0)])
+@pytest.mark.parametrize("case", CASES)
+@pytest.mark.parametrize("order", ["LO", "NLO", "NNLO"])
+def test_shifts_of_scales_are_one_order_higher(grid, case, order, ratios):
+    # LO F2 does not know mu_r, and FL begins at a: nothing changes there
+    power = ["LO", "NLO", "NNLO"].index(order) + 1
+    small, smaller = (np.abs(shift(grid, case, order, alpha, ratios)) for alpha in (0.004, 0.002))
+    silent = order == "LO" and (case["measure"] == "FL" or ratios[1] == 1.0)
+    if silent:
+        assert (small == 0.0).all()
+        return
+    # F2 and xF3 at NLO know mu_r through a(mu_r) C_1, as does FL. Halving alpha_s halves the shift `power`
+    # times; what is one order higher still shows at some x, the more so where the leading term nearly
+    # vanishes: the median counts
+    falls = np.log2(small / smaller)
+    assert abs(np.median(falls) - power) < 0.15
+
+
+@pytest.mark.parametrize("ratios", [(2.0, 1.0), (1.0, 3.0), (0.5, 2.0)])
+@pytest.mark.parametrize("order", ["LO", "NLO", "NNLO"])
+def test_own_counting_of_fl_has_one_order_more(grid, order, ratios):
+    power = ["LO", "NLO", "NNLO"].index(order) + 2
+    # at the larger alpha_s rounding does not show at a^4 yet
+    shifts = [np.abs(shift(grid, CASES[1], order, alpha, ratios, "own")) for alpha in (0.02, 0.01)]
+    assert abs(np.median(np.log2(shifts[0] / shifts[1])) - power) < 0.4
+
+
+def test_own_counting_at_a3_is_refused_beside_photons_with_three_flavours(grid):
+    theory = sw.Theory(flavours=(3, 5), fl_counting="own")
+    rows = SimpleNamespace(x=[0.1, 0.1], q2=[1.6, 50.0], measure="FL", exchange="photon")
+    with pytest.raises(sw.InputError, match=r"point 1: FL at a\^3 .* nf = 3, and not for nf = 5"):
+        sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
+
+
+def test_operators_reach_the_scales_of_all_ratios(grid, start):
+    # mu_f^2 down to 0.9 GeV^2, below the input at 1.5 and its charm threshold
+    theory = sw.Theory(order="NLO", hard_muf2_ratio=0.25)
+    rows = SimpleNamespace(x=[0.1, 0.1], q2=[3.6, 40.0], measure="F2", exchange="photon")
+    fmap = sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
+    evolved = sw.evolve(theory, start, [0.9, 10.0])
+    value = sw.structure_function(
+        "F2", x=[0.1, 0.1], q2=[3.6, 40.0], densities=evolved, theory=theory, exchange="photon"
+    )
+    # tolerance of the steps in scale, 1e-9 each way
+    np.testing.assert_allclose(fmap.predict(start), value, rtol=1e-8)
+
+
+def test_a_coupling_too_large_is_refused_by_name(grid):
+    theory = sw.Theory(hard_mur2_ratio=0.25)
+    rows = SimpleNamespace(x=[0.1, 0.1], q2=[40.0, 1.2], measure="F2", exchange="photon", place=("a", "b"))
+    with pytest.raises(sw.RangeError, match=r"^b: "):
+        sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
