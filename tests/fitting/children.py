@@ -43,7 +43,7 @@ def moody(x, p):
 def run_and_die(journal, after):
     """Fit replicas, and be killed once so many are done."""
     from fitting.problems import fmap
-    from fitting.test_replicas import bent_problem, replicas_of
+    from fitting.runs import bent_problem, replicas_of
 
     def watch(done, total):
         if done >= after:

@@ -139,3 +139,8 @@ def truth(shape, the_map=None):
     the_map = fmap() if the_map is None else the_map
     order = [shape.flavours.index(f) for f in the_map.flavours]
     return np.tensordot(the_map.matrix, shape(shape.start)[order], axes=2)
+
+
+def chi_square(values, seed=None, **options):
+    """Return chi-square of such measurements."""
+    return sw.ChiSquare(measured(values, seed=seed, **options))

@@ -226,9 +226,13 @@ def _dismiss(engine: Executor) -> None:
     """End an engine without waiting for its tasks."""
     processes = list((getattr(engine, "_processes", None) or {}).values())
     engine.shutdown(wait=False, cancel_futures=True)
-    for process in processes:  # those of our own pool would first finish what they are at
+    # Workers would first finish what they are at. When one is lost the engine itself ends the others, and it
+    # alone knows which of them still live: a signal to a process that is gone could meet another one.
+    for process in processes:
         with contextlib.suppress(Exception):
-            process.terminate()
+            if process.is_alive():
+                process.terminate()
+                break
     for process in processes:
         with contextlib.suppress(Exception):
             process.join(5.0)

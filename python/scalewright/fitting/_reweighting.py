@@ -9,12 +9,13 @@ differ; common practice is divided, so that the method must be named.
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats
 from ..errors import InputError
 
-__all__ = ["METHODS", "effective", "reweighted"]
+__all__ = ["METHODS", "effective", "normalised", "reweighted"]
 
 METHODS = ("Giele-Keller", "1012.0836")
 
@@ -51,6 +52,19 @@ def reweighted(weights: Floats, chi2: Floats, method: str, data: int | None) -> 
         raise InputError("chi2 is 0 for every replica: no weights follow from it")
     found = weights * np.exp(np.minimum(logarithm - top, 0.0))
     return np.asarray(found / found.sum())
+
+
+def normalised(given: ArrayLike | None, count: int) -> Floats:
+    """Return weights of sum 1."""
+    if given is None:
+        return np.full(count, 1.0 / count)
+    weights = _check.real_array("weights", given, shape=(count,))
+    _check.refuse_where("weights", weights, weights < 0.0, "weights must not be negative")
+    if not weights.any():
+        _check.refuse("weights", weights, "weights must not all be 0")
+    total = weights.sum()
+    # those that are normalised keep their bits
+    return weights if abs(total - 1.0) < 1e-12 else weights / total
 
 
 def effective(weights: Floats) -> float:

@@ -92,7 +92,7 @@ class Ensemble:
         self.densities, self.names = densities, tuple(names)
         given = np.zeros((count, 0)) if parameters is None else parameters
         self.parameters = _frozen(_check.real_array("parameters", given, shape=(count, len(self.names))))
-        self.weights = _frozen(_weights(weights, count))
+        self.weights = _frozen(_reweighting.normalised(weights, count))
         numbers = np.arange(count) if index is None else _check.whole_array("index", index, ndim=1)
         if numbers.size != count:
             _check.refuse("index", numbers, f"there must be {count}, one a replica")
@@ -370,8 +370,9 @@ class Ensemble:
             lines.append(f"  weighted: {self.effective_replicas:.1f} are effective")
         if self.negative:
             lines.append(f"  {self.negative} pseudo-data were negative, and kept")
-        if self.data and np.isfinite(self.chi2).all():
-            lines.append(f"  mean chi-square {self.weights @ self.chi2:.5g} for {self.data} data")
+        for what, values in (("pseudo-data", self.chi2), ("the data", self.chi2_data)):
+            if self.data and np.isfinite(values).all():
+                lines.append(f"  mean chi-square {self.weights @ values:.5g} to {what}, for {self.data} data")
         if self.replicas >= 2 and self.weights.max() < 1.0:
             size = max([10, *(len(name) for name in self.names)])
             for name in self.names[:40]:
@@ -382,19 +383,6 @@ class Ensemble:
 
     def _repr_html_(self) -> str:
         return f"<pre>{html.escape(str(self))}</pre>"
-
-
-def _weights(given: ArrayLike | None, count: int) -> Floats:
-    """Return weights of sum 1."""
-    if given is None:
-        return np.full(count, 1.0 / count)
-    weights = _check.real_array("weights", given, shape=(count,))
-    _check.refuse_where("weights", weights, weights < 0.0, "weights must not be negative")
-    if not weights.any():
-        _check.refuse("weights", weights, "weights must not all be 0")
-    total = weights.sum()
-    # those that are normalised keep their bits
-    return weights if abs(total - 1.0) < 1e-12 else weights / total
 
 
 def _frozen(values: Floats) -> Floats:
