@@ -21,6 +21,7 @@ BENCHES = {
     "unit": "The unit",
     "build": "Building operators",
     "apply": "Applying them",
+    "evolve": "One density without operators",
     "plain": "Against plain numpy",
     "memory": "Memory",
     "accuracy": "Accuracy",

@@ -14,7 +14,7 @@ use crate::error::{Error, Result};
 
 /// Scales equal to a threshold up to this relative difference count as equal: `m = sqrt(2)` squared in floating
 /// point is above 2 by two units of rounding, and a scale of 2 is then meant to lie on the threshold.
-const SAME_SCALE: f64 = 4.0 * f64::EPSILON;
+pub(crate) const SAME_SCALE: f64 = 4.0 * f64::EPSILON;
 
 /// Everything assumed, as given.
 #[derive(Debug, Clone, PartialEq)]

@@ -4,10 +4,7 @@
 //! direction; legs of the start leave the start scale, others the threshold at which nf changed.
 
 use crate::error::{Error, Result};
-use crate::theory::Theory;
-
-/// Scales closer than this relative distance are one scale: squares of rounded masses.
-const SAME_SCALE: f64 = 4.0 * f64::EPSILON;
+use crate::theory::{SAME_SCALE, Theory};
 
 /// A stretch of scales at one nf.
 #[derive(Debug, Clone, PartialEq)]
