@@ -2,7 +2,7 @@
 
 use scalewright_core::numerics::blocks::{Factors, Matrix, multiply_add};
 use scalewright_core::numerics::chebyshev::{Nodes, coefficients};
-use scalewright_core::numerics::matrix_ode::Step;
+use scalewright_core::numerics::matrix_ode::{Span, Step};
 
 /// Asserts that every entry differs by at most `tolerance`.
 #[track_caller]
@@ -23,6 +23,11 @@ fn exponential(s: f64, p: f64, q: f64, c: f64) -> Vec<f64> {
     vec![first, 0.0, c * (first - second) / (p - q), second]
 }
 
+/// Enough sweeps to leave nothing.
+fn span(from: f64, to: f64, degree: usize) -> Span {
+    Span { from, to, degree, sweeps: 20 }
+}
+
 /// Constant coefficients, the two rows in panels of their own or in one; the second pair is stiff. Degree 24 resolves
 /// `e^(-2s)` to rounding; of `e^(-70s)` on a step of one half, Chebyshev coefficients fall like `I_k(17.5) e^(-17.5)`,
 /// 2e-7 at k = 24.
@@ -30,8 +35,8 @@ fn exponential(s: f64, p: f64, q: f64, c: f64) -> Vec<f64> {
 fn triangular_matrices_have_their_exponential() {
     for (q, length, tolerance) in [(1.0, 1.0, 1e-13), (-70.0, 0.5, 1e-6)] {
         for offsets in [&[0, 1, 2][..], &[0, 2]] {
-            let step = Step::new(0.0, length, 24, offsets, |_| matrix([[-2.0, 0.0], [3.0, q]]));
-            let solution = step.solve(&Matrix::identity(2), 0);
+            let step = Step::new(&span(0.0, length, 24), offsets, |_| matrix([[-2.0, 0.0], [3.0, q]]));
+            let solution = step.solve(&Matrix::identity(2), 0, 0);
             assert_near(solution.end().values(), &exponential(length, -2.0, q, 3.0), tolerance);
             let inside = [0.1 * length, 0.5 * length, 0.93 * length];
             for (at, s) in solution.at_many(&inside).iter().zip(inside) {
@@ -46,9 +51,9 @@ fn triangular_matrices_have_their_exponential() {
 fn a_jordan_block_has_its_exponential() {
     let jordan = || matrix([[-1.0, 0.0, 0.0], [1.0, -1.0, 0.0], [0.0, 1.0, -1.0]]);
     for s in [0.8_f64, -0.8] {
-        let step = Step::new(0.0, s, 20, &[0, 1, 3], |_| jordan());
+        let step = Step::new(&span(0.0, s, 20), &[0, 1, 3], |_| jordan());
         let expected = [1.0, 0.0, 0.0, s, 1.0, 0.0, 0.5 * s * s, s, 1.0].map(|value| value * (-s).exp());
-        assert_near(step.solve(&Matrix::identity(3), 0).end().values(), &expected, 1e-13);
+        assert_near(step.solve(&Matrix::identity(3), 0, 0).end().values(), &expected, 1e-13);
     }
 }
 
@@ -56,8 +61,8 @@ fn a_jordan_block_has_its_exponential() {
 #[test]
 fn a_scalar_equation_with_moving_coefficient_has_its_closed_solution() {
     let (from, to) = (0.3_f64, 1.7_f64);
-    let step = Step::new(from, to, 22, &[0, 1], |s| Matrix::from_values(1, 1, vec![s.cos()]));
-    let solution = step.solve(&Matrix::from_values(1, 2, vec![1.0, -4.0]), 0);
+    let step = Step::new(&span(from, to, 22), &[0, 1], |s| Matrix::from_values(1, 1, vec![s.cos()]));
+    let solution = step.solve(&Matrix::from_values(1, 2, vec![1.0, -4.0]), 0, 0);
     for (at, s) in solution.at_many(&[from, 1.0, to]).iter().zip([from, 1.0, to]) {
         let growth = (s.sin() - from.sin()).exp();
         assert_near(at.values(), &[growth, -4.0 * growth], 1e-13);
@@ -71,8 +76,8 @@ fn a_scalar_equation_with_moving_coefficient_has_its_closed_solution() {
 fn the_error_estimate_is_of_the_size_of_the_error() {
     let mut before = f64::INFINITY;
     for degree in [4, 6, 8, 10] {
-        let step = Step::new(0.0, 1.0, degree, &[0, 1], |s| Matrix::from_values(1, 1, vec![-1.0 / (1.0 + s)]));
-        let solution = step.solve(&Matrix::identity(1), 0);
+        let step = Step::new(&span(0.0, 1.0, degree), &[0, 1], |s| Matrix::from_values(1, 1, vec![-1.0 / (1.0 + s)]));
+        let solution = step.solve(&Matrix::identity(1), 0, 1);
         let at: Vec<f64> = (0..=50).map(|i| f64::from(i) / 50.0).collect();
         let values = solution.at_many(&at);
         let errors = values.iter().zip(&at).map(|(value, s)| (value.values()[0] - 1.0 / (1.0 + s)).abs());
@@ -87,9 +92,9 @@ fn the_error_estimate_is_of_the_size_of_the_error() {
 /// An overflowing solution is no accurate one.
 #[test]
 fn the_error_of_what_is_not_finite_is_infinite() {
-    let step = Step::new(0.0, 1.0, 6, &[0, 1], |_| Matrix::from_values(1, 1, vec![1.0]));
+    let step = Step::new(&span(0.0, 1.0, 6), &[0, 1], |_| Matrix::from_values(1, 1, vec![1.0]));
     for start in [f64::MAX, f64::NAN] {
-        let error = step.solve(&Matrix::from_values(1, 1, vec![start]), 0).error(&[0]);
+        let error = step.solve(&Matrix::from_values(1, 1, vec![start]), 0, 1).error(&[0]);
         assert!(error.is_infinite(), "{start}: {error}");
     }
 }
@@ -98,9 +103,9 @@ fn the_error_of_what_is_not_finite_is_infinite() {
 #[test]
 fn panels_before_the_first_stay_zero() {
     let generator = |s: f64| matrix([[-1.0, 0.0, 0.0], [s, -2.0, 0.0], [0.5, 1.0 - s, -3.0]]);
-    let step = Step::new(0.0, 0.7, 9, &[0, 1, 2, 3], generator);
+    let step = Step::new(&span(0.0, 0.7, 9), &[0, 1, 2, 3], generator);
     let start = Matrix::from_values(3, 1, vec![0.0, 1.0, 2.0]);
-    let (all, later) = (step.solve(&start, 0).end(), step.solve(&start, 1).end());
+    let (all, later) = (step.solve(&start, 0, 0).end(), step.solve(&start, 1, 0).end());
     assert_eq!(all, later);
     assert_eq!(later.row(0), &[0.0]);
 }

@@ -4,13 +4,12 @@
 //! decided by its factorisation scale alone; the coupling changes flavours at `mu_r^2 = (mu_r^2/mu_f^2) mu_thr^2`.
 
 use std::f64::consts::PI;
-use std::fmt::Display;
 
 use crate::coupling::beta::{MOST_LOOPS, beta};
 use crate::coupling::masses::{MassKind, Masses};
 use crate::coupling::running::ALPHA_S_LIMIT;
 use crate::coupling::{FEWEST, MOST, Reference, RunningCoupling, Step};
-use crate::error::{Error, Result};
+use crate::error::{Result, require};
 
 /// Scales equal to a threshold up to this relative difference count as equal: `m = sqrt(2)` squared in floating
 /// point is above 2 by two units of rounding, and a scale of 2 is then meant to lie on the threshold.
@@ -223,13 +222,6 @@ fn check_scales(given: &Assumptions) -> Result<()> {
         crossed.windows(2).all(|pair| pair[0] < pair[1]),
         "charm, bottom and top must increase in this order",
     )
-}
-
-fn require(name: &'static str, value: &dyn Display, holds: bool, allowed: &str) -> Result<()> {
-    if holds {
-        return Ok(());
-    }
-    Err(Error::Argument { name, value: value.to_string(), allowed: allowed.to_owned() })
 }
 
 fn positive(name: &'static str, value: f64, unit: &str) -> Result<()> {

@@ -4,15 +4,15 @@
 //! families of their own. Each matrix has one row a node and a last row: what has flowed below `x_min` (all of the
 //! momentum in that of the gluon, each flavour's own number elsewhere).
 
-use crate::evolution::{CHARM, Sector, Stretch, StretchSolution, place};
+use crate::evolution::{CHARM, Sector, place};
 use crate::numerics::blocks::Matrix;
 
 /// Gluon, light sum, charm, bottom, top.
-const CHANNELS: usize = 5;
+pub const CHANNELS: usize = 5;
 /// Their places.
-const GLUON_PLACE: usize = 0;
-const LIGHT_PLACE: usize = 1;
-const CHARM_PLACE: usize = 2;
+pub const GLUON_PLACE: usize = 0;
+pub const LIGHT_PLACE: usize = 1;
+pub const CHARM_PLACE: usize = 2;
 
 /// What kind of combination the columns belong to.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -32,9 +32,12 @@ pub enum Family {
 pub struct Columns {
     /// Their family.
     pub family: Family,
-    light: usize,
-    channels: [Option<Matrix>; CHANNELS],
+    pub light: usize,
+    pub channels: [Option<Matrix>; CHANNELS],
 }
+
+/// What evolves alone: the part that holds all flavours, and each heavy flavour less its share of the light sum.
+pub type Combinations = ((Sector, Matrix), Vec<(usize, Sector, Matrix)>);
 
 impl Columns {
     /// Columns with nothing in them: `rows` with the last one for what flows below `x_min`.
@@ -47,15 +50,15 @@ impl Columns {
         Self { family, light, channels }
     }
 
-    /// The gluon. Only the plus family has one; to others their light sum stands in, and nobody asks.
+    /// The gluon, for the plus family alone.
     pub fn gluon(&self) -> &Matrix {
-        self.channels[GLUON_PLACE].as_ref().unwrap_or(self.light_sum())
+        // Set by the constructors of the plus family and never removed; others have none and are not asked.
+        self.channels[GLUON_PLACE].as_ref().expect("the plus family holds a gluon")
     }
 
-    /// The gluon. Only the plus family has one; to others their light sum stands in, and nobody asks.
+    /// The gluon, for the plus family alone.
     pub fn gluon_mut(&mut self) -> &mut Matrix {
-        let place = if self.family == Family::Plus { GLUON_PLACE } else { LIGHT_PLACE };
-        self.channel_mut(place)
+        self.channel_mut(GLUON_PLACE)
     }
 
     /// The sum of the light flavours; for a non-singlet family the only content.
@@ -105,6 +108,32 @@ impl Columns {
         sum
     }
 
+    /// What evolves alone at nf: the part that holds all flavours, and each heavy flavour less its share of the light
+    /// sum.
+    pub fn combinations(&self, nf: usize, offsets: &[usize]) -> Combinations {
+        let (sum, difference) = match self.family {
+            Family::Plus => (Sector::Singlet, Sector::NsPlus),
+            Family::Minus => (Sector::Valence, Sector::NsMinus),
+            Family::NsPlus => (Sector::NsPlus, Sector::NsPlus),
+            Family::NsMinus => (Sector::NsMinus, Sector::NsMinus),
+        };
+        let whole = match self.family {
+            Family::Plus => pack(self.gluon(), &self.singlet(nf), offsets),
+            Family::Minus => self.singlet(nf),
+            Family::NsPlus | Family::NsMinus => self.light_sum().clone(),
+        };
+        let share = -1.0 / self.light as f64;
+        let differences = (self.lightest_heavy()..=nf)
+            .filter(|_| matches!(self.family, Family::Plus | Family::Minus))
+            .map(|flavour| {
+                let mut deviation = self.heavy(flavour).cloned().unwrap_or_else(|| self.empty());
+                deviation.add_scaled(share, self.light_sum());
+                (flavour, difference, deviation)
+            })
+            .collect();
+        ((sum, whole), differences)
+    }
+
     /// Moves all momentum below `x_min` to the gluon's last row.
     pub fn gather_momentum(&mut self) {
         let mut total = vec![0.0; self.light_sum().cols()];
@@ -119,120 +148,20 @@ impl Columns {
         gluon.row_mut(last).copy_from_slice(&total);
     }
 
-    fn channel_mut(&mut self, channel: usize) -> &mut Matrix {
-        // Asked for the light channel, or the gluon of the plus family: set by the constructors and never removed.
-        self.channels[channel].as_mut().expect("every family holds the light channel, plus the gluon")
-    }
-}
-
-/// Columns along one leg, at any scale of it.
-pub struct LegColumns {
-    start: Columns,
-    nf: usize,
-    offsets: Vec<usize>,
-    /// The part that holds all flavours: singlet pair, valence, or the only content.
-    sum: StretchSolution,
-    /// Each heavy flavour less its share of the light sum.
-    differences: Vec<(usize, StretchSolution)>,
-}
-
-impl LegColumns {
-    /// Carries columns along a stretch of nf flavours. Rows of panels before `first` are zero.
-    pub fn new(start: Columns, stretch: &Stretch, nf: usize, offsets: &[usize], first: usize) -> Self {
-        let (sum, difference) = match start.family {
-            Family::Plus => (Sector::Singlet, Sector::NsPlus),
-            Family::Minus => (Sector::Valence, Sector::NsMinus),
-            Family::NsPlus => (Sector::NsPlus, Sector::NsPlus),
-            Family::NsMinus => (Sector::NsMinus, Sector::NsMinus),
-        };
-        let whole = match start.family {
-            Family::Plus => pack(start.gluon(), &start.singlet(nf), offsets),
-            Family::Minus => start.singlet(nf),
-            Family::NsPlus | Family::NsMinus => start.light_sum().clone(),
-        };
-        let share = -1.0 / start.light as f64;
-        let differences = (start.lightest_heavy()..=nf)
-            .filter(|_| matches!(start.family, Family::Plus | Family::Minus))
-            .map(|flavour| {
-                let mut deviation = start.heavy(flavour).cloned().unwrap_or_else(|| start.empty());
-                deviation.add_scaled(share, start.light_sum());
-                (flavour, stretch.solve(difference, deviation, first))
-            })
-            .collect();
-        let sum = stretch.solve(sum, whole, first);
-        Self { start, nf, offsets: offsets.to_vec(), sum, differences }
-    }
-
-    /// The columns at `s = ln a`.
-    pub fn at(&self, s: f64) -> Columns {
-        // One scale gives one set of columns.
-        self.at_many(&[s]).swap_remove(0)
-    }
-
-    /// The columns at several scales.
-    pub fn at_many(&self, s: &[f64]) -> Vec<Columns> {
-        let mut deviations: Vec<_> = self
-            .differences
-            .iter()
-            .map(|(flavour, solution)| solution.at_many(s).into_iter().map(move |values| (*flavour, values)))
-            .collect();
-        let sums = self.sum.at_many(s);
-        sums.into_iter()
-            .map(|sum| self.by_flavour(sum, deviations.iter_mut().filter_map(Iterator::next).collect()))
-            .collect()
-    }
-
-    /// Flavours from their sum and what each heavy one differs from its share of the light sum.
-    ///
-    /// With `d_h = h - L/light` and `Sigma = L + sum_h h`: `L = (light/nf) (Sigma - sum_h d_h)`.
-    fn by_flavour(&self, sum: Matrix, deviations: Vec<(usize, Matrix)>) -> Columns {
-        let mut columns = self.inactive();
-        if matches!(columns.family, Family::NsPlus | Family::NsMinus) {
-            columns.channels[LIGHT_PLACE] = Some(sum);
-            return columns;
-        }
-        let mut average = sum;
-        if columns.family == Family::Plus {
-            let (gluon, quarks) = unpack(&average, &self.offsets);
-            columns.channels[GLUON_PLACE] = Some(gluon);
-            average = quarks;
-        }
-        for (_, deviation) in &deviations {
-            average.add_scaled(-1.0, deviation);
-        }
-        average.scale(1.0 / self.nf as f64);
-        for (flavour, mut heavy) in deviations {
-            heavy.add_scaled(1.0, &average);
-            columns.set_heavy(flavour, heavy);
-        }
-        average.scale(columns.light as f64);
-        columns.channels[LIGHT_PLACE] = Some(average);
-        if columns.family == Family::Plus {
-            columns.gather_momentum();
-        }
-        columns
-    }
-
-    /// What does not evolve on this leg: heavy flavours that are not active.
-    fn inactive(&self) -> Columns {
+    /// Heavy flavours that are not active at nf.
+    pub fn inactive(&self, nf: usize) -> Self {
         let mut channels = [const { None }; CHANNELS];
-        for (place, channel) in self.start.channels.iter().enumerate().skip(CHARM_PLACE) {
-            if place - CHARM_PLACE + CHARM > self.nf {
+        for (place, channel) in self.channels.iter().enumerate().skip(CHARM_PLACE) {
+            if place - CHARM_PLACE + CHARM > nf {
                 channels[place].clone_from(channel);
             }
         }
-        Columns { family: self.start.family, light: self.start.light, channels }
+        Self { family: self.family, light: self.light, channels }
     }
 
-    /// Estimated error relative to each value at the nodes named, over the whole leg.
-    pub fn error(&self, nodes: &[usize]) -> f64 {
-        let sum = if self.start.family == Family::Plus {
-            let rows = |component| nodes.iter().map(move |&i| place(&self.offsets, component, i));
-            self.sum.error(&rows(0).chain(rows(1)).collect::<Vec<_>>())
-        } else {
-            self.sum.error(nodes)
-        };
-        self.differences.iter().map(|(_, solution)| solution.error(nodes)).fold(sum, f64::max)
+    fn channel_mut(&mut self, channel: usize) -> &mut Matrix {
+        // Asked for the light channel, or the gluon of the plus family: set by the constructors and never removed.
+        self.channels[channel].as_mut().expect("every family holds the light channel, plus the gluon")
     }
 }
 
@@ -247,17 +176,4 @@ fn pack(gluon: &Matrix, singlet: &Matrix, offsets: &[usize]) -> Matrix {
     }
     pair.row_mut(2 * n).copy_from_slice(gluon.row(n));
     pair
-}
-
-fn unpack(pair: &Matrix, offsets: &[usize]) -> (Matrix, Matrix) {
-    let n = offsets[offsets.len() - 1];
-    let mut parts = [Matrix::zeros(n + 1, pair.cols()), Matrix::zeros(n + 1, pair.cols())];
-    for (component, part) in parts.iter_mut().enumerate() {
-        for i in 0..n {
-            part.row_mut(i).copy_from_slice(pair.row(place(offsets, component, i)));
-        }
-    }
-    parts[0].row_mut(n).copy_from_slice(pair.row(2 * n));
-    let [gluon, singlet] = parts;
-    (gluon, singlet)
 }

@@ -3,12 +3,14 @@
 mod columns;
 mod crossing;
 mod inputs;
+mod leg_columns;
 mod operators;
 mod options;
 mod prepared;
+mod probes;
 mod route;
 mod vector;
 
 pub use operators::{Evolution, build};
 pub use options::BuildOptions;
-pub use vector::{Vectors, evolve};
+pub use vector::{Evolved, Vectors, evolve};

@@ -1,19 +1,24 @@
 //! The finished set of operators: distinct blocks for each scale.
 
-use super::columns::{Columns, Family, LegColumns};
+use super::columns::Family;
 use super::inputs::{Inputs, Layout, Output};
+use super::leg_columns::LegColumns;
 use super::options::BuildOptions;
-use super::prepared::{Prepared, prepare, scale};
+use super::prepared::{Prepared, carried, scale};
+use super::probes;
 use super::route::Route;
 use crate::error::Result;
 use crate::grid::Grid;
-use crate::numerics::blocks::Matrix;
 use crate::theory::Theory;
+use crate::threads::costly_first;
 use crate::watch::{Stage, Watch};
 use rayon::prelude::*;
+use std::ops::Range;
 
-/// Scales interpolated together: each pass over the stored solutions serves as many.
+/// Most scales interpolated together: each pass over the stored solutions serves as many.
 const TOGETHER: usize = 8;
+/// Scales are shared out in a multiple of so many parts.
+const PARTS: usize = 4;
 
 /// A set of operators, dense in scale along its route.
 pub struct Evolution {
@@ -31,8 +36,10 @@ pub struct Evolution {
 /// Columns that belong to one panel of input nodes: they are carried along the whole route by themselves.
 struct Chunk {
     family: Family,
-    /// `(input channel, input node)` of each column.
-    columns: Vec<(usize, usize)>,
+    /// Nodes of the input: the columns of each input channel, one channel after the other.
+    owned: Range<usize>,
+    /// Rows before this are zero.
+    first_row: usize,
     legs: Vec<LegColumns>,
 }
 
@@ -47,32 +54,12 @@ struct Chunk {
 /// [`Error::Tolerance`]: crate::error::Error::Tolerance
 /// [`Error::Interrupted`]: crate::error::Error::Interrupted
 pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn Watch) -> Result<Evolution> {
-    let (prepared, inputs, error) = prepare(theory, grid, options, &Stage::new(watch, 0, 2))?;
-    finish(theory, grid, prepared, &inputs, error, &Stage::new(watch, 1, 2))
-}
-
-/// Carries the unit columns of all families.
-fn finish(
-    theory: &Theory,
-    grid: &Grid,
-    prepared: Prepared,
-    inputs: &Inputs,
-    error: f64,
-    watch: &Stage,
-) -> Result<Evolution> {
-    let families = inputs.families(|one, other| prepared.same(one, other));
-    let tasks: Vec<(Family, usize)> =
-        families.iter().flat_map(|&family| (0..grid.panels()).map(move |panel| (family, panel))).collect();
-    let chunks: Vec<Chunk> = tasks
-        .par_iter()
-        .map(|&(family, panel)| {
-            watch.check()?;
-            let (columns, start) = inputs.start(family, grid, panel);
-            let legs = prepared.carry(theory, &start, panel)?;
-            watch.one_of(tasks.len());
-            Ok(Chunk { family, columns, legs })
-        })
-        .collect::<Result<_>>()?;
+    let stages = (Stage::new(watch, 0, 2), Stage::new(watch, 1, 2));
+    let made = carried(theory, grid, options, &stages.0, |prepared, inputs| {
+        carry_units(theory, grid, prepared, inputs, &stages.1)
+    })?;
+    let (families, chunks) = made.columns;
+    let inputs = made.inputs;
     Ok(Evolution {
         theory: theory.clone(),
         nodes: grid.nodes(),
@@ -80,10 +67,37 @@ fn finish(
         layouts: inputs.layouts(&families),
         names: inputs.block_names(&families),
         flow_names: inputs.flow_names(&families),
-        error,
-        steps: prepared.steps(),
-        route: prepared.route,
+        error: made.error,
+        steps: made.prepared.steps(),
+        route: made.prepared.route,
     })
+}
+
+/// Families, their chunks, and the errors of the chunks that hold probes.
+type Units = ((Vec<Family>, Vec<Chunk>), Vec<Vec<f64>>);
+
+/// Carries the unit columns of all families.
+fn carry_units(theory: &Theory, grid: &Grid, prepared: &Prepared, inputs: &Inputs, watch: &Stage) -> Result<Units> {
+    let families = inputs.families(|one, other| prepared.same(one, other));
+    let tasks: Vec<(Family, usize)> =
+        families.iter().flat_map(|&family| (0..grid.panels()).map(move |panel| (family, panel))).collect();
+    let judged = probes::nodes(grid);
+    // Columns of the pair are twice as long, and there are twice as many; all panels from the own one on act.
+    let cost = |&(family, panel): &(Family, usize)| {
+        let share = if family == Family::Plus { 6 } else { 1 };
+        share * grid.owned(panel).len() * (grid.nodes() - grid.owned(panel).start)
+    };
+    let carried = costly_first(&tasks, cost, |&(family, panel)| {
+        watch.check()?;
+        let (start, probes) = inputs.start(family, grid, panel);
+        let legs = prepared.carry(theory, &start, panel, probes)?;
+        watch.one_of(tasks.len());
+        let errors: Vec<f64> = legs.iter().map(|leg| leg.error(&judged)).collect();
+        let (owned, first_row) = (grid.owned(panel), grid.offsets()[panel]);
+        Ok((Chunk { family, owned, first_row, legs }, errors))
+    })?;
+    let (chunks, errors) = carried.into_iter().unzip();
+    Ok(((families, chunks), errors))
 }
 
 impl Evolution {
@@ -126,10 +140,13 @@ impl Evolution {
         let (block, flow) = (self.names.len() * n * n, self.flow_names.len() * n);
         let mut blocks = vec![0.0; asked.len() * block];
         let mut flows = vec![0.0; asked.len() * flow];
+        let parts = asked.len().div_ceil(TOGETHER).next_multiple_of(PARTS).max(1);
+        let together = asked.len().div_ceil(parts).max(1);
         blocks
-            .par_chunks_mut((TOGETHER * block).max(1))
-            .zip(flows.par_chunks_mut((TOGETHER * flow).max(1)))
-            .zip(asked.par_chunks(TOGETHER))
+            .par_chunks_mut((together * block).max(1))
+            .zip(flows.par_chunks_mut((together * flow).max(1)))
+            .zip(asked.par_chunks(together))
+            .with_max_len(1)
             .try_for_each(|((blocks, flows), asked)| {
                 watch.check()?;
                 self.write(asked, blocks, flows)
@@ -146,44 +163,57 @@ impl Evolution {
             let here: Vec<usize> = (0..asked.len()).filter(|&index| legs[index] == leg).collect();
             let s: Vec<f64> = here.iter().map(|&index| logs[index]).collect();
             for chunk in &self.chunks {
-                for (columns, &index) in chunk.legs[leg].at_many(&s).iter().zip(&here) {
-                    let blocks = &mut blocks[index * block..(index + 1) * block];
-                    self.scatter(chunk, columns, blocks, &mut flows[index * flow..(index + 1) * flow]);
+                for layout in self.layouts.iter().filter(|layout| layout.family == chunk.family) {
+                    for (row, &output) in layout.outputs.iter().enumerate() {
+                        let to = Target { nodes: self.nodes, chunk, layout, row };
+                        chunk.legs[leg].output(output, &s, |place, values| {
+                            let index = here[place];
+                            to.write_block(values, &mut blocks[index * block..(index + 1) * block]);
+                            // All momentum below x_min is held with the gluon; numbers with each flavour.
+                            if output == Output::Gluon || chunk.family != Family::Plus {
+                                to.write_flow(values, &mut flows[index * flow..(index + 1) * flow]);
+                            }
+                        });
+                    }
                 }
             }
         }
         Ok(())
     }
+}
 
-    /// Writes the columns of a chunk to their places.
-    fn scatter(&self, chunk: &Chunk, columns: &Columns, blocks: &mut [f64], flows: &mut [f64]) {
-        let n = self.nodes;
-        for layout in self.layouts.iter().filter(|layout| layout.family == chunk.family) {
-            for (index, &output) in layout.outputs.iter().enumerate() {
-                let matrix = match output {
-                    Output::Gluon => Some(columns.gluon()),
-                    Output::Light => Some(columns.light_sum()),
-                    Output::Heavy(flavour) => columns.heavy(flavour),
-                };
-                let Some(matrix) = matrix else { continue };
-                let first = layout.first_block + index * layout.inputs;
-                for i in 0..n {
-                    for (&(channel, node), value) in chunk.columns.iter().zip(matrix.row(i)) {
-                        blocks[((first + channel) * n + i) * n + node] = *value;
-                    }
-                }
-                // All momentum below x_min is held with the gluon; numbers with each flavour.
-                if output == Output::Gluon || chunk.family != Family::Plus {
-                    scatter_flow(chunk, layout.first_flow + index * layout.inputs, matrix, n, flows);
-                }
+/// Where an output of a chunk goes in blocks and flows.
+struct Target<'a> {
+    nodes: usize,
+    chunk: &'a Chunk,
+    layout: &'a Layout,
+    /// Which output.
+    row: usize,
+}
+
+impl Target<'_> {
+    /// Writes the rows from that of the chunk's first node on, but for the last.
+    fn write_block(&self, values: &[f64], blocks: &mut [f64]) {
+        let (n, owned) = (self.nodes, &self.chunk.owned);
+        let rows = n - self.chunk.first_row;
+        for input in 0..self.layout.inputs {
+            let first = (self.layout.first_block + self.row * self.layout.inputs + input) * n * n;
+            let block = blocks[first..first + n * n].chunks_exact_mut(n).skip(self.chunk.first_row);
+            for (target, row) in block.zip(values.chunks_exact(values.len() / (rows + 1))) {
+                target[owned.clone()].copy_from_slice(&row[input * owned.len()..(input + 1) * owned.len()]);
             }
         }
     }
-}
 
-/// Writes the last row, what has flowed below `x_min`.
-fn scatter_flow(chunk: &Chunk, first: usize, matrix: &Matrix, n: usize, flows: &mut [f64]) {
-    for (&(channel, node), value) in chunk.columns.iter().zip(matrix.row(n)) {
-        flows[(first + channel) * n + node] = *value;
+    /// Writes the last row, what has flowed below `x_min`.
+    fn write_flow(&self, values: &[f64], flows: &mut [f64]) {
+        let (n, owned) = (self.nodes, &self.chunk.owned);
+        let cols = values.len() / (n - self.chunk.first_row + 1);
+        let last = &values[values.len() - cols..];
+        for input in 0..self.layout.inputs {
+            let first = (self.layout.first_flow + self.row * self.layout.inputs + input) * n;
+            let own = &last[input * owned.len()..(input + 1) * owned.len()];
+            flows[first + owned.start..first + owned.end].copy_from_slice(own);
+        }
     }
 }
