@@ -89,6 +89,24 @@ fn the_error_estimate_is_of_the_size_of_the_error() {
     }
 }
 
+/// `e^(-s - s^2/2)` from `dE/ds = - (1 + s) E`, degree 16, which leaves 1e-13: each sweep gains, and the estimate is not
+/// far below the error (a factor 10, as it speaks of what the next sweep would change).
+#[test]
+fn each_sweep_gains_and_the_estimate_tells() {
+    let mut before = f64::INFINITY;
+    for sweeps in 1..=6 {
+        let span = Span { from: 0.0, to: 1.0, degree: 16, sweeps };
+        let step = Step::new(&span, &[0, 1], |s| Matrix::from_values(1, 1, vec![-1.0 - s]));
+        let solution = step.solve(&Matrix::identity(1), 0, 1);
+        let (error, estimate) = ((solution.end().values()[0] - (-1.5_f64).exp()).abs(), solution.error(&[0]));
+        println!("{sweeps} sweeps: error {error:.1e}, estimate {estimate:.1e}");
+        assert!(error < 10.0 * estimate, "{sweeps}: {estimate} for {error}");
+        assert!(estimate < 0.5 * before, "{sweeps}: {estimate} after {before}");
+        before = estimate;
+    }
+    assert!(before < 1e-6, "{before}");
+}
+
 /// An overflowing solution is no accurate one.
 #[test]
 fn the_error_of_what_is_not_finite_is_infinite() {

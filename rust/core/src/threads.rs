@@ -60,3 +60,18 @@ pub fn costly_first<T: Sync, R: Send, E: Send>(
     done.sort_by_key(|(index, _)| *index);
     done.into_iter().map(|(_, result)| result).collect()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn results_keep_the_order_of_the_tasks() {
+        let tasks: Vec<usize> = (0..50).collect();
+        let made = within(2, || costly_first(&tasks, |task| task * 7919 % 13, |task| Ok::<_, ()>(task * task)));
+        assert_eq!(made.unwrap(), tasks.iter().map(|task| task * task).collect::<Vec<_>>());
+        let refused =
+            within(2, || costly_first(&tasks, |task| *task, |&task| if task > 20 { Err(task) } else { Ok(()) }));
+        assert_eq!(refused.unwrap_err(), 21);
+    }
+}

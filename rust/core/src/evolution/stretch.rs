@@ -17,8 +17,11 @@ const LONGEST: f64 = 1.3;
 const LOWEST: f64 = 2.4;
 const SLOPE: f64 = 10.0;
 const UNIT: f64 = 1.2;
-/// Largest degree tried first.
-const HIGHEST: f64 = 24.0;
+/// Largest degree: there are more steps before it is passed. The basis of planes loses a digit every other degree; at 24
+/// nothing is left of it.
+const HIGHEST: usize = 18;
+/// Most steps of a stretch.
+const MOST_STEPS: usize = 64;
 /// By how much the degree is raised where the accuracy was missed.
 const RAISE: usize = 2;
 
@@ -68,7 +71,7 @@ impl Stretch {
         let representative: HashMap<_, _> =
             sectors.iter().map(|&sector| (sector, equations.representative(sector))).collect();
         let distinct = sectors.into_iter().filter(|sector| representative[sector] == *sector);
-        let count = Plan::steps(to - from);
+        let count = plan.steps(to - from);
         let tasks: Vec<(Sector, usize)> = distinct.flat_map(|sector| (0..count).map(move |i| (sector, i))).collect();
         let ready: Vec<Step> = tasks
             .par_iter()
@@ -139,7 +142,8 @@ impl StretchSolution {
     }
 }
 
-/// How accurate the steps of a stretch are to be: their number follows from its length alone, their degree from both.
+/// How accurate the steps of a stretch are to be: their number follows from its length but for the most accurate, their
+/// degree from both.
 #[derive(Debug, Clone, Copy)]
 pub struct Plan {
     /// Relative accuracy wanted.
@@ -150,11 +154,13 @@ pub struct Plan {
 
 impl Plan {
     /// Number of steps for a stretch of this length in `ln a`; none for a length of zero.
-    fn steps(length: f64) -> usize {
+    fn steps(&self, length: f64) -> usize {
         if length == 0.0 {
             return 0;
         }
-        (length.abs() / LONGEST).ceil() as usize
+        let least = (length.abs() / LONGEST).ceil() as usize;
+        let few_enough = |count: &usize| self.degree(length / *count as f64) <= HIGHEST;
+        (least..=MOST_STEPS.max(least)).find(few_enough).unwrap_or(MOST_STEPS.max(least))
     }
 
     /// Number of sweeps of a step.
@@ -168,6 +174,6 @@ impl Plan {
         let digits = -self.tolerance.log10();
         let share = length.abs() / UNIT;
         let degree = LOWEST + SLOPE * share.powf(0.55) + (digits - 8.0) * share.powf(0.2);
-        degree.ceil().clamp(3.0, HIGHEST) as usize + RAISE * self.refinement as usize
+        degree.ceil().max(3.0) as usize + RAISE * self.refinement as usize
     }
 }

@@ -32,7 +32,7 @@ impl Dense {
     pub fn at_many(&self, s: &[f64]) -> Vec<Matrix> {
         let size = self.rows * self.cols;
         let mut values = Matrix::zeros(s.len(), size);
-        self.nodes.interpolate(s, &self.values, &mut values);
+        self.nodes.interpolate(s, &self.values, values.values_mut());
         (0..s.len()).map(|row| Matrix::from_values(self.rows, self.cols, values.row(row).to_vec())).collect()
     }
 

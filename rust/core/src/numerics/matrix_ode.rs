@@ -13,6 +13,7 @@ pub use super::dense::Dense;
 use super::blocks::{Matrix, inverse, multiply, multiply_add, view, view_mut};
 use super::chebyshev::Nodes;
 use super::collocation::Collocation;
+use rayon::prelude::*;
 use std::cell::RefCell;
 use std::ops::Range;
 use std::sync::Arc;
@@ -69,12 +70,13 @@ impl Step {
     /// Prepares a step.
     ///
     /// `generator(s)` is `A(s)`, block lower triangular with panels between `offsets`.
-    pub fn new(span: &Span, offsets: &[usize], generator: impl Fn(f64) -> Matrix) -> Self {
+    pub fn new(span: &Span, offsets: &[usize], generator: impl Fn(f64) -> Matrix + Sync) -> Self {
         let nodes = Nodes::new(span.from, span.to, span.degree);
         let half = 0.5 * (span.to - span.from);
-        let generators: Vec<Matrix> = nodes.points().iter().map(|&s| generator(s)).collect();
+        let generators: Vec<Matrix> = nodes.points().par_iter().map(|&s| generator(s)).collect();
         let rule = Collocation::of(span.degree);
-        let frozen = offsets.windows(2).map(|own| Frozen::of(&rule, &generators, half, own[0]..own[1])).collect();
+        let panels = offsets.par_windows(2).with_max_len(1);
+        let frozen = panels.map(|own| Frozen::of(&rule, &generators, half, own[0]..own[1])).collect();
         Self { nodes, rule, half, sweeps: span.sweeps, generators, frozen, offsets: offsets.to_vec() }
     }
 

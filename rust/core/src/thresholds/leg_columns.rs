@@ -35,11 +35,12 @@ impl LegColumns {
     pub fn new(start: Columns, stretch: &Stretch, nf: usize, offsets: &[usize], first: usize, judged: usize) -> Self {
         let ((sector, whole), differences) = start.combinations(nf, offsets);
         // Differences obey the same equations: they are carried side by side.
-        let difference = differences.first().map(|(_, sector, _)| {
+        let carry_differences = || {
             let parts: Vec<&Matrix> = differences.iter().map(|(_, _, deviation)| deviation).collect();
-            stretch.solve_judged(*sector, side_by_side(&parts), first, judged)
-        });
-        let sum = stretch.solve_judged(sector, whole, first, judged);
+            let first_one = differences.first();
+            first_one.map(|(_, sector, _)| stretch.solve_judged(*sector, side_by_side(&parts), first, judged))
+        };
+        let (sum, difference) = rayon::join(|| stretch.solve_judged(sector, whole, first, judged), carry_differences);
         let heavy: Vec<usize> = differences.iter().map(|(flavour, _, _)| *flavour).collect();
         let split = Split::new(&start, &heavy, nf, offsets, offsets[first]);
         let errors = if judged > 0 { errors(&start, &sum, difference.as_ref(), offsets) } else { vec![] };
@@ -63,8 +64,9 @@ impl LegColumns {
     pub fn at_many(&self, s: &[f64]) -> Vec<Columns> {
         let mut all = vec![self.inactive.clone(); s.len()];
         let (rows, cols) = self.shape;
+        let mut room = Vec::new();
         for channel in 0..CHANNELS {
-            self.each(channel, s, |index, values| {
+            self.each(channel, s, &mut room, |index, values| {
                 let mut matrix = Matrix::zeros(rows, cols);
                 matrix.values_mut()[self.first_row * cols..].copy_from_slice(values);
                 all[index].channels[channel] = Some(matrix);
@@ -73,8 +75,9 @@ impl LegColumns {
         all
     }
 
-    /// Hands over one density at several scales: index of the scale, and the rows from `first` on.
-    pub fn output(&self, output: Output, s: &[f64], mut put: impl FnMut(usize, &[f64])) {
+    /// Hands over one density at several scales: index of the scale, and the rows from `first` on; `room` is room to
+    /// work in.
+    pub fn output(&self, output: Output, s: &[f64], room: &mut Vec<f64>, mut put: impl FnMut(usize, &[f64])) {
         let channel = match output {
             Output::Gluon => GLUON_PLACE,
             Output::Light => LIGHT_PLACE,
@@ -84,11 +87,11 @@ impl LegColumns {
             let values = &constant.values()[self.first_row * constant.cols()..];
             (0..s.len()).for_each(|index| put(index, values));
         }
-        self.each(channel, s, put);
+        self.each(channel, s, room, put);
     }
 
     /// The same for a channel that evolves.
-    fn each(&self, channel: usize, s: &[f64], mut put: impl FnMut(usize, &[f64])) {
+    fn each(&self, channel: usize, s: &[f64], room: &mut Vec<f64>, mut put: impl FnMut(usize, &[f64])) {
         for (index, piece) in self.pieces.iter().enumerate() {
             let Some(values) = &piece.channels[channel] else { continue };
             let here: Vec<usize> = (0..s.len()).filter(|&i| self.division.step_of(s[i]) == index).collect();
@@ -99,9 +102,12 @@ impl LegColumns {
                 continue;
             };
             let places: Vec<f64> = here.iter().map(|&i| s[i]).collect();
-            let mut found = Matrix::zeros(places.len(), values.cols());
-            nodes.interpolate(&places, values, &mut found);
-            here.iter().enumerate().for_each(|(row, &index)| put(index, found.row(row)));
+            let size = values.cols();
+            room.resize(room.len().max(places.len() * size), 0.0);
+            nodes.interpolate(&places, values, &mut room[..places.len() * size]);
+            for (&index, found) in here.iter().zip(room.chunks_exact(size.max(1))) {
+                put(index, found);
+            }
         }
     }
 
@@ -163,7 +169,7 @@ impl<'a> Split<'a> {
             .map(|index| {
                 let step = &sum.steps()[index];
                 let count = step.nodes().points().len();
-                let mut channels = [const { vec![] }; CHANNELS];
+                let mut channels = self.room(count);
                 for node in 0..count {
                     let differences = difference.map(|solution| solution.steps()[index].values_at(node));
                     self.add(step.values_at(node), differences, &mut channels);
@@ -171,6 +177,18 @@ impl<'a> Split<'a> {
                 self.piece(Some(step.nodes().clone()), count, channels)
             })
             .collect()
+    }
+
+    /// Room for the values of every channel that evolves.
+    fn room(&self, count: usize) -> [Vec<f64>; CHANNELS] {
+        std::array::from_fn(|channel| {
+            let held = match channel {
+                GLUON_PLACE => self.family == Family::Plus,
+                LIGHT_PLACE => true,
+                heavy => self.heavy.contains(&(heavy - CHARM_PLACE + CHARM)),
+            };
+            Vec::with_capacity(if held { count * self.rows.len() * self.cols } else { 0 })
+        })
     }
 
     fn piece(&self, nodes: Option<Nodes>, count: usize, channels: [Vec<f64>; CHANNELS]) -> Piece {

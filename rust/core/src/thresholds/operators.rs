@@ -159,6 +159,7 @@ impl Evolution {
         let legs = asked.iter().map(|&(q2, nf)| self.route.leg_of(q2, nf)).collect::<Result<Vec<_>>>()?;
         let logs = asked.iter().map(|&(q2, nf)| scale(&self.theory, q2, nf)).collect::<Result<Vec<_>>>()?;
         let (block, flow) = (blocks.len() / asked.len(), flows.len() / asked.len());
+        let mut room = Vec::new();
         for leg in 0..self.route.legs.len() {
             let here: Vec<usize> = (0..asked.len()).filter(|&index| legs[index] == leg).collect();
             let s: Vec<f64> = here.iter().map(|&index| logs[index]).collect();
@@ -166,7 +167,7 @@ impl Evolution {
                 for layout in self.layouts.iter().filter(|layout| layout.family == chunk.family) {
                     for (row, &output) in layout.outputs.iter().enumerate() {
                         let to = Target { nodes: self.nodes, chunk, layout, row };
-                        chunk.legs[leg].output(output, &s, |place, values| {
+                        chunk.legs[leg].output(output, &s, &mut room, |place, values| {
                             let index = here[place];
                             to.write_block(values, &mut blocks[index * block..(index + 1) * block]);
                             // All momentum below x_min is held with the gluon; numbers with each flavour.
