@@ -69,6 +69,18 @@ def test_priors_are_drawn_like_data():
     assert abs(spread.value - result.error(name)) < 4 * spread.error
 
 
+def test_replicas_vary_by_the_covariance_of_the_theory_too():
+    # drawn from the errors of the data alone they spread by 8 and 11 sampling errors less than the Hessian
+    values = truth(quick_shape())
+    shifts = np.stack([0.05 * values, 0.04 * np.linspace(-1, 1, values.size) * values], axis=1)
+    chi2 = sw.ChiSquare(measured(values, seed=3), theory=shifts @ shifts.T)
+    result = fit(fmap(), chi2, quick_shape())
+    ensemble = replicas_of((fmap(), chi2, quick_shape()), replicas=400, workers=1)
+    for name in result.names:
+        spread = ensemble.std(name)
+        assert abs(spread.value - result.error(name)) < 4 * spread.error, name
+
+
 def test_intervals_of_pseudo_experiments_cover_the_truth():
     shape, chi2_values, covered = linear_shape(), [], []
     exact = sw.ChiSquare(measured(truth(shape)))

@@ -63,7 +63,8 @@ def fit_replicas(
     ----------
     fmap : ForwardMap
     chi2 : ChiSquare
-        Pseudo-data are drawn around its measurements; its covariance serves all replicas.
+        Pseudo-data are drawn around its measurements, from the errors of these and from its covariance of the
+        theory (as in arXiv:1906.10698, recalled from memory); its covariance serves all replicas.
     shape : Shape
     replicas : int
         How many in all, those of the journal included.
@@ -168,13 +169,21 @@ class _Work:
         self._problem, self._chi2, self.seed = problem.compact(), chi2, seed
         self.begin, self._evaluations, self._stopping = begin, evaluations, stopping
         self._at_start = problem.prediction(begin)
+        self._theory_root: Floats | None = None
+        if chi2._theory is not None:
+            values, vectors = np.linalg.eigh(chi2._theory)
+            # the symmetric root: no other is the same wherever a run goes on
+            self._theory_root = (vectors * np.sqrt(np.clip(values, 0.0, None))) @ vectors.T
 
     def replica(self, index: int) -> Outcome:
         """Draw and fit one replica; what goes wrong becomes its reason."""
         rng = np.random.default_rng(np.random.SeedSequence(self.seed, spawn_key=(index,)))
         measured, problem = self._chi2.measurements, self._problem
-        pseudo = measured.pseudo_data(rng)
-        moved = problem.shift(self._chi2.whiten(pseudo.values - measured.value))
+        values = measured.pseudo_data(rng).values
+        if self._theory_root is not None:
+            # what chi-square forgives, replicas must vary: else they spread less than it says
+            values = values + self._theory_root @ rng.normal(size=values.size)
+        moved = problem.shift(self._chi2.whiten(values - measured.value))
         shift = np.concatenate([moved, -rng.normal(size=len(problem.priors))])
         try:
             if self._stopping is None:
@@ -192,7 +201,7 @@ class _Work:
         except Exception as error:  # a shape may raise anything; the other replicas go on
             reason, at = f"{type(error).__name__}: {error}", np.full(len(problem.names), np.nan)
             chi2, chi2_data, steps = np.nan, np.nan, 0
-        return Outcome(index, at, chi2, chi2_data, steps, pseudo.negative, reason)
+        return Outcome(index, at, chi2, chi2_data, steps, int((values < 0.0).sum()), reason)
 
     def described(self) -> dict[str, Any]:
         """Say which fit this is, for the journal."""
