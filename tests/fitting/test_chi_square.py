@@ -103,6 +103,23 @@ def test_the_nuisance_parameters_are_at_their_minimum(form):
 
 
 @pytest.mark.parametrize("form", ["covariance", "nuisance"])
+def test_shifted_pulls_leave_to_the_theory_what_its_covariance_explains(form):
+    # without it their squares and those of the shifts added up to twice chi-square
+    measured = table(5, matrix=False)
+    prediction = measured.value * np.random.default_rng(1).uniform(0.9, 1.1, len(measured))
+    sigma, shifts = measured.nuisance()
+    wave = 0.1 * measured.value * np.stack([np.ones(len(measured)), np.linspace(-1, 1, len(measured))])
+    both = np.concatenate([shifts, wave.T], axis=1)
+    system = np.concatenate([both / sigma[:, None], np.eye(both.shape[1])])
+    target = np.concatenate([(measured.value - prediction) / sigma, np.zeros(both.shape[1])])
+    best = np.linalg.lstsq(system, target, rcond=None)[0]
+    chi2 = ChiSquare(measured, form, theory=wave.T @ wave)
+    pulls = chi2.pulls(prediction, shifted=True)
+    np.testing.assert_allclose(pulls, (system @ best - target)[: sigma.size] * -1, rtol=1e-8, atol=1e-9)
+    np.testing.assert_allclose(chi2.shifts(prediction), best[: shifts.shape[1]], rtol=1e-8, atol=1e-9)
+
+
+@pytest.mark.parametrize("form", ["covariance", "nuisance"])
 def test_whitening_is_the_root_of_the_inverse(form):
     measured = table(7)
     chi2 = ChiSquare(measured, form)

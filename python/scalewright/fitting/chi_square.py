@@ -202,8 +202,8 @@ class ChiSquare:
         prediction : array_like, (..., datum)
         shifted : bool
             False: (value - prediction) over the total standard deviation of the datum. True: the common
-            sources are first moved to their best fit, and what is left is divided by the error the datum has
-            for itself; nan where it has none.
+            sources, and the theory within its covariance, are first moved to their best fit, and what is left
+            is divided by the error the datum has for itself; nan where it has none.
 
         Returns
         -------
@@ -220,7 +220,10 @@ class ChiSquare:
         if not shifted:
             return difference / np.sqrt(np.diagonal(self.covariance))
         sigma, shifts = self._nuisance
-        left = difference - self.shifts(prediction) @ shifts.T
+        weighted = self._weighted(prediction)
+        left = difference - (weighted @ shifts) @ shifts.T
+        if self._theory is not None:
+            left = left - weighted @ self._theory
         return left / np.where(sigma > 0.0, sigma, np.nan)
 
     def shifts(self, prediction: ArrayLike) -> Floats:
