@@ -16,6 +16,7 @@ from fitting.problems import (
     linear_shape,
     measured,
     points,
+    quick_shape,
     truth,
     twin_shape,
 )
@@ -263,6 +264,16 @@ def test_a_callback_watches_and_stops(bent):
     assert "stopped by the callback" in result.status[0]
     np.testing.assert_array_equal(result.parameters, seen[-1][2])
     assert result.chi2 == pytest.approx(seen[-1][1], rel=1e-12)
+
+
+def test_a_shape_without_free_parameters_has_a_chi_square_and_nothing_else():
+    # this was a ValueError of numpy
+    shape = quick_shape().restricted(fixed=["a", "b", "c"])
+    chi2 = chi_square(truth(quick_shape()), seed=1)
+    result = fit(fmap(), chi2, shape)
+    assert result.converged and result.names == ()
+    assert result.chi2 == pytest.approx(chi2.value(truth(quick_shape())), rel=1e-12)
+    assert result.covariance.shape == (0, 0)
 
 
 def test_a_start_at_the_minimum_stays_there(bent):

@@ -216,8 +216,8 @@ class Problem:
     def jacobian(self, parameters: Floats) -> Floats:
         """Return the derivative of `residuals`, (residual, parameter)."""
         moved, count = self._moved(parameters), len(self.shape.names)
-        along = self.shape.jacobian(parameters[:count])[:, self._order].reshape(count, -1)
         maps = self._whitened if self._whitened is not None else self._parts()[0].maps
+        along = self.shape.jacobian(parameters[:count])[:, self._order].reshape(count, maps[0].shape[1])
         columns = product(maps[0], along)
         for change, one in zip(moved, maps[1:], strict=True):
             if change != 0.0:
