@@ -336,6 +336,9 @@ WRONG = {
     "start": (lambda: fitted(start=[1.0]), "the shape of start must be"),
     "start nan": (lambda: fitted(start=np.full(6, np.nan)), "start must be finite"),
     "start unknown": (lambda: fitted(start={"g.c": 1.0}), "no free parameter of this name"),
+    # these were an AssertionError, and a ValueError of scipy
+    "start far": (lambda: fitted(start={"dbar.c0": 1e300}), "start: chi-square is not finite"),
+    "start infinite": (lambda: fitted(start={"dbar.c0": 1e308}), "start: chi-square is not finite"),
     "start out": (
         lambda: fit(fmap(), chi_square(truth(bent_shape())), bent_shape(), start={"g.fall": -3}),
         r"start\[g.fall\] = -3: must lie in",

@@ -73,7 +73,7 @@ def fit(
     ------
     InputError
         If the parts do not fit each other, there are more parameters than data and priors, or a start lies
-        outside its bounds.
+        outside its bounds or where chi-square is not finite.
 
     Notes
     -----
@@ -136,7 +136,7 @@ class _Rebuilder:
 
 
 def starting(problem: Problem, start: Any) -> Floats:
-    """Return where to begin, checked against the bounds."""
+    """Return where to begin, checked against the bounds; chi-square must be finite there."""
     begin = np.array(problem.start)
     if isinstance(start, Mapping):
         for name, value in start.items():
@@ -150,6 +150,10 @@ def starting(problem: Problem, start: Any) -> Floats:
         if not low <= value <= high:
             limits = f"must lie in [{_check.show(float(low))}, {_check.show(float(high))}]"
             _check.refuse(f"start[{name}]", float(value), limits)
+    with np.errstate(over="ignore", invalid="ignore"):
+        residuals = problem.residuals(begin)
+        if not np.isfinite(residuals @ residuals):
+            raise InputError("start: chi-square is not finite there: begin nearer to the data")
     return begin
 
 
