@@ -206,6 +206,18 @@ def test_one_datum_without_own_error_is_fine_in_the_covariance_form():
     assert np.isnan(chi2.pulls(1.0 - residual, shifted=True)).tolist() == [True, False, False]
 
 
+@pytest.mark.filterwarnings("ignore:overflow encountered")
+@pytest.mark.parametrize("form", ["covariance", "nuisance"])
+@pytest.mark.parametrize("unit", [1e-160, 1e156, 1e300])
+def test_uncertainties_whose_squares_are_lost_are_refused(form, unit):
+    # chi-square 1 was 1.012 in the first unit and, in the form "nuisance", 0 in the last
+    points = {"x": [0.1], "q2": [2.0], "value": [1.0 * unit], "stat": [0.1 * unit]}
+    stat = {"column": "stat", "given_in": "value", "scales_with": "nothing"}
+    kind = {"title": "T", "measures": "F2", "exchange": "photon", "uncertainty": [stat]}
+    with pytest.raises(InputError, match="datum 1: its square is no float of full precision"):
+        ChiSquare(Measurements.from_columns(kind, points), form)
+
+
 def test_a_multiplicative_error_of_a_prediction_zero_is_refused():
     description = {"title": "A", "measures": "F2", "exchange": "photon",
                    "uncertainty": [{"name": "a", "size": 3.0, **PERCENT}]}  # fmt: skip
