@@ -256,7 +256,8 @@ class Measurements(Questions):
                 words, inside = in_range(name, given, getattr(rows, name), rows.place)
                 conditions[words] = self._of_all_rows(inside)
         if keep is not None:
-            conditions[str(reason)] = self._chosen(keep)
+            chosen, words = self._chosen(keep), str(reason)
+            conditions[words] = chosen & conditions[words] if words in conditions else chosen
         tables, cuts = apply_cuts(self._tables, conditions)
         return Measurements(tables, (*self.cuts, *cuts))
 
