@@ -108,6 +108,19 @@ def test_a_repair_is_reported(make):
     assert "repaired: an eigenvalue moved by" in make(None, [BROKEN], covariance=[part]).describe()
 
 
+@pytest.mark.parametrize("repair", ["clip", "nearest"])
+def test_a_rounded_covariance_beyond_correlation_one_is_repaired_on_request(make, repair):
+    # variances 0.00994 and 0.01004, correlation 0.9999: printed with two digits the correlation is 1.005
+    matrix = np.array([[0.0099, 0.01], [0.01, 0.01]])
+    kind = {"kind": "covariance", "given_in": "value", "scales_with": "nothing", "repair": repair}
+    points = {"x": [0.1, 0.2], "q2": [1.0, 1.0], "value": [1.0, 2.0], "stat": [0.1, 0.1]}
+    table = make(points, [matrix], covariance=[kind])
+    # the nearest matrix of unit diagonal and no negative eigenvalue has correlation 1
+    size = np.sqrt([0.0099, 0.01])
+    np.testing.assert_allclose(table.covariance(), np.outer(size, size) + 0.01 * np.eye(2), rtol=1e-9)
+    assert "repaired: an eigenvalue moved by 0.00504" in table.describe()
+
+
 def test_rounding_below_zero_is_no_reason_to_refuse(make):
     ones = np.ones((3, 3))  # eigenvalues 3, 0, 0 in exact arithmetic, and about -1e-16 here
     table = make(None, [ones], covariance=[{"kind": "correlation", "of": "stat"}])

@@ -95,7 +95,9 @@ def _rounding(values: Floats) -> float:
     return float(_ROUNDING * values.size * np.finfo(float).eps * max(float(values[-1]), 0.0))
 
 
-def correlations(matrix: Floats, place: Callable[[int], str]) -> tuple[Floats, Floats]:
+def correlations(
+    matrix: Floats, place: Callable[[int], str], *, repair: str | None = None
+) -> tuple[Floats, Floats]:
     """Take a covariance matrix apart into standard deviations and correlations.
 
     Parameters
@@ -104,6 +106,8 @@ def correlations(matrix: Floats, place: Callable[[int], str]) -> tuple[Floats, F
         As it was read.
     place : callable
         Number of a row -> where it stands, for messages.
+    repair : str, optional
+        What will be done with it; without, correlations must lie in [-1, 1].
 
     Returns
     -------
@@ -131,7 +135,9 @@ def correlations(matrix: Floats, place: Callable[[int], str]) -> tuple[Floats, F
         raise InputError(f"{place(row)}, column {column + 1}: {what}")
     result = 0.5 * (scaled + scaled.T)
     np.fill_diagonal(result, 1.0)
-    for row, column in np.argwhere(np.abs(result) > 1.0 + _MIRRORED)[:1]:
+    # covariances of few digits may say 1.01 where the correlation is 0.999: a repair mends that, too
+    beyond = np.abs(result) > 1.0 + _MIRRORED
+    for row, column in np.argwhere(beyond)[: 1 if repair is None else 0]:
         what = f"correlation {show(result[row, column])} with row {column + 1}: must lie in [-1, 1]"
         raise InputError(f"{place(row)}: {what}")
     return size, result
