@@ -70,6 +70,37 @@ def test_a_damaged_record_and_what_follows_is_computed_again(serial, written, tm
     assert_same_bits(serial, found)
 
 
+def small_journal(path):
+    """Write a journal of three replicas of no fit in particular."""
+    fit = {"seed": 1, "start": [1.0, 2.0]}
+    with _journal.Journal(path, fit) as book:
+        book.append([_journal.Outcome(i, np.arange(2.0), 1.0, 2.0, 3, 0, "") for i in range(3)])
+    return fit, path.read_bytes()
+
+
+@pytest.mark.parametrize("zeros", [8, 100, 4096])
+def test_zeros_that_a_power_cut_left_at_the_end_are_dropped(tmp_path, zeros):
+    # eight of them were an empty record of right sum, and the journal could not be opened again
+    path = tmp_path / "run.journal"
+    fit, whole = small_journal(path)
+    path.write_bytes(whole + bytes(zeros))
+    with _journal.Journal(path, fit) as book:
+        assert sorted(book.outcomes) == [0, 1, 2]
+    assert path.read_bytes() == whole
+
+
+def test_a_journal_whose_first_record_is_damaged_is_refused_and_kept(tmp_path):
+    # it was emptied without a word
+    path = tmp_path / "run.journal"
+    fit, whole = small_journal(path)
+    flipped = bytearray(whole)
+    flipped[40] ^= 0x10
+    path.write_bytes(flipped)
+    with pytest.raises(StoreError, match="its first record is damaged"):
+        _journal.Journal(path, fit)
+    assert path.read_bytes() == flipped
+
+
 def test_a_full_journal_is_not_computed_again_and_can_be_extended(serial, written, tmp_path):
     found, known = resumed(tmp_path, written)
     assert known == COUNT
