@@ -146,3 +146,20 @@ def test_independent_part_and_sources_rebuild_the_matrix():
     own, shifts = part.nuisance(np.full(6, 2.0))
     assert (own > 0.0).all()
     np.testing.assert_allclose(np.diag(own) + shifts @ shifts.T, 4.0 * full, rtol=1e-12)  # eigensystem of 6
+
+
+def test_what_is_drawn_does_not_depend_on_the_choice_of_eigenvectors(monkeypatch):
+    # equal correlations have one eigenvalue n - 1 times: any basis of that space is as good, and another
+    # number of threads gives another one; replicas of one seed were other replicas then
+    matrix = np.full((5, 5), 0.3) + 0.7 * np.eye(5)
+    plain = Correlated("m", np.ones(5), matrix, False).draw(np.random.default_rng(1), (4, 5))
+    eigh = np.linalg.eigh
+
+    def turned(one):
+        values, vectors = eigh(one)
+        mix = np.linalg.qr(np.random.default_rng(2).normal(size=(4, 4)))[0]
+        return values, np.concatenate([vectors[:, :4] @ mix, -vectors[:, 4:]], axis=1)
+
+    monkeypatch.setattr(np.linalg, "eigh", turned)
+    again = Correlated("m", np.ones(5), matrix, False).draw(np.random.default_rng(1), (4, 5))
+    np.testing.assert_allclose(again, plain, rtol=0, atol=1e-14)  # sums of five numbers of order one

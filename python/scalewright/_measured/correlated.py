@@ -69,25 +69,30 @@ class Correlated:
         return size[:, None] * self.matrix * size
 
     @cached_property
-    def _parts(self) -> tuple[float, Floats]:
-        """Return c and A (datum, source) with R = c + A A^T: each datum for itself, and the rest."""
+    def _parts(self) -> tuple[float, Floats, Floats]:
+        """Return c and A (datum, source) with R = c + A A^T, each datum for itself and the rest; and |A|.
+
+        The last is the symmetric root of A A^T: unlike A it does not depend on the choice of eigenvectors,
+        which is another on every machine where eigenvalues are equal.
+        """
         values, vectors = np.linalg.eigh(self.matrix)
         # Half of the smallest eigenvalue: the larger c, the better both forms of chi-square agree, but the
         # rest must stay safely positive.
         own = 0.5 * max(float(values[0]), 0.0)
         own = own if own > _rounding(values) else 0.0
-        return own, vectors * np.sqrt(np.clip(values - own, 0.0, None))
+        shifts = vectors * np.sqrt(np.clip(values - own, 0.0, None))
+        return own, shifts, shifts @ vectors.T
 
     def nuisance(self, reference: Floats) -> tuple[Floats, Floats]:
         """Return variances of independent errors (datum,) and shifts (datum, source) of equal covariance."""
-        own, shifts = self._parts
+        own, shifts, _ = self._parts
         size = self.at(reference)
         return own * size**2, size[:, None] * shifts
 
     def draw(self, rng: np.random.Generator, shape: tuple[int, int]) -> Floats:
         """Return normal numbers of unit variance with these correlations, (replica, datum)."""
-        own, shifts = self._parts
-        drawn: Floats = np.sqrt(own) * rng.standard_normal(shape) + rng.standard_normal(shape) @ shifts.T
+        own, _, root = self._parts
+        drawn: Floats = np.sqrt(own) * rng.standard_normal(shape) + rng.standard_normal(shape) @ root
         return drawn
 
 
