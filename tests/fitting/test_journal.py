@@ -9,9 +9,11 @@ import sys
 import numpy as np
 import pytest
 import scalewright as sw
+from fitting.problems import FLAVOURS, GRID, fmap, points, quick_shape, truth
 from fitting.runs import COUNT, assert_same_bits, bent_problem, replicas_of
 from scalewright import StoreError
 from scalewright.fitting import _journal
+from scalewright.fitting.shapes import FunctionShape
 
 
 @pytest.mark.skipif(not hasattr(signal, "SIGKILL"), reason="this system cannot kill")
@@ -128,6 +130,43 @@ def test_a_journal_of_another_fit_is_refused_and_kept(written, tmp_path):
         with pytest.raises(StoreError, match="this journal is of another fit"):
             run()
         assert path.read_bytes() == written, name
+
+
+def other_model(kind="nothing", correlated=True):
+    """Return chi-square with a common error of one size and several kinds."""
+    x, q2 = points()
+    value = truth(quick_shape())
+    own = {"name": "own", "size": 0.02, "given_in": "value", "scales_with": "nothing"}
+    common = {"column": "common", "given_in": "value", "scales_with": kind, "correlated": correlated}
+    about = {"title": "Run 1", "measures": "F2", "exchange": "photon", "uncertainty": [own, common]}
+    return sw.ChiSquare(
+        sw.Measurements.from_columns(about, {"x": x, "q2": q2, "value": value, "common": 0.05 * value})
+    )
+
+
+def steeper():
+    """Return a shape of the names, start and prediction there of another one, but not of its slopes."""
+    shape = quick_shape()
+    return FunctionShape(
+        GRID, FLAVOURS, lambda x, p: 2 * shape(p) - shape(shape.start), shape.start, names=shape.names
+    )
+
+
+@pytest.mark.parametrize(
+    ("chi2", "shape"),
+    [
+        (lambda: other_model("value"), quick_shape),
+        (lambda: other_model(correlated=False), quick_shape),
+        (other_model, steeper),
+    ],
+    ids=["multiplicative", "independent", "slopes"],
+)
+def test_a_journal_of_a_fit_with_other_correlations_or_slopes_is_refused(tmp_path, chi2, shape):
+    # equal values, errors, start and prediction there: replicas of two fits were mixed
+    path, begin = tmp_path / "run.journal", quick_shape().start
+    replicas_of((fmap(), other_model(), quick_shape()), 2, workers=1, journal=path, start=begin)
+    with pytest.raises(StoreError, match="this journal is of another fit"):
+        replicas_of((fmap(), chi2(), shape()), 4, workers=1, journal=path, start=begin)
 
 
 def test_a_file_that_is_no_journal_is_refused_and_kept(tmp_path):

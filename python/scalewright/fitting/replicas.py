@@ -172,17 +172,15 @@ class _Work:
         self._theory_root: Floats | None = None
         if chi2._theory is not None:
             values, vectors = np.linalg.eigh(chi2._theory)
+            seen = values > 16.0 * values.size * np.finfo(float).eps * values[-1]  # the others are rounding
             # the symmetric root: no other is the same wherever a run goes on
-            self._theory_root = (vectors * np.sqrt(np.clip(values, 0.0, None))) @ vectors.T
+            self._theory_root = (vectors[:, seen] * np.sqrt(values[seen])) @ vectors[:, seen].T
 
     def replica(self, index: int) -> Outcome:
         """Draw and fit one replica; what goes wrong becomes its reason."""
         rng = np.random.default_rng(np.random.SeedSequence(self.seed, spawn_key=(index,)))
         measured, problem = self._chi2.measurements, self._problem
-        values = measured.pseudo_data(rng).values
-        if self._theory_root is not None:
-            # what chi-square forgives, replicas must vary: else they spread less than it says
-            values = values + self._theory_root @ rng.normal(size=values.size)
+        values = self._drawn(rng)
         moved = problem.shift(self._chi2.whiten(values - measured.value))
         shift = np.concatenate([moved, -rng.normal(size=len(problem.priors))])
         try:
@@ -203,6 +201,14 @@ class _Work:
             chi2, chi2_data, steps = np.nan, np.nan, 0
         return Outcome(index, at, chi2, chi2_data, steps, int((values < 0.0).sum()), reason)
 
+    def _drawn(self, rng: np.random.Generator) -> Floats:
+        """Return pseudo-data, (datum,)."""
+        values = self._chi2.measurements.pseudo_data(rng).values
+        if self._theory_root is None:
+            return values
+        # what chi-square forgives, replicas must vary: else they spread less than it says
+        return np.asarray(values + self._theory_root @ rng.normal(size=values.size))
+
     def described(self) -> dict[str, Any]:
         """Say which fit this is, for the journal."""
         problem = self._problem
@@ -213,10 +219,19 @@ class _Work:
             "values": self._chi2.measurements.value.tolist(),
             "errors": np.sqrt(np.diagonal(self._chi2.covariance)).tolist(),
             "prediction": self._at_start.tolist(),
+            **self._fingerprint(),
             "bounds": [[_finite(v) for v in side] for side in (problem.low, problem.high)],
             "priors": [[name, *pair] for name, pair in problem.priors.items()],
             "evaluations": self._evaluations,
             "stopping": None if self._stopping is None else self._stopping.described(),
+        }
+
+    def _fingerprint(self) -> dict[str, Any]:
+        """Say what values, errors and prediction leave open: the rest of error model and shape."""
+        slopes = self._problem.jacobian(self.begin)
+        return {
+            "pseudo-data": self._drawn(np.random.default_rng(0)).tolist(),
+            "derivative": np.linalg.norm(slopes, axis=0).tolist(),
         }
 
 
