@@ -40,6 +40,23 @@ def moody(x, p):
     return law(x, p)
 
 
+class Twofold(Exception):
+    """Can be sent to another process, but not be read there: it is made from two arguments, kept as one."""
+
+    def __init__(self, first, second):
+        super().__init__(f"{first}, {second}")
+
+
+class Closed:
+    """Can be sent to another process, but not be read there."""
+
+    def __getstate__(self):
+        return {"needs": "a library"}
+
+    def __setstate__(self, state):
+        raise Twofold("no", state["needs"])
+
+
 def run_and_die(journal, after):
     """Fit replicas, and be killed once so many are done."""
     from fitting.problems import fmap

@@ -3,6 +3,7 @@
 import multiprocessing
 import os
 import pathlib
+import pickle
 from concurrent.futures import Executor, Future, ProcessPoolExecutor, ThreadPoolExecutor
 from dataclasses import replace
 
@@ -24,7 +25,8 @@ from fitting.problems import (
 )
 from fitting.runs import assert_same_bits, bent_problem, replicas_of
 from scalewright import InputError, ScalewrightError
-from scalewright.fitting import _parcel
+from scalewright.fitting import _parcel, _pool
+from scalewright.fitting._parcel import Parcel
 from scalewright.fitting._problem import Problem
 from scalewright.fitting._solve import solve
 from scalewright.fitting.least_squares import fit
@@ -298,6 +300,14 @@ def test_what_cannot_be_sent_is_refused():
     with pytest.raises(InputError, match=r"cannot be sent to other processes.*workers=1"):
         replicas_of(problem, replicas=2, workers=2)
     assert replicas_of(problem, replicas=2, workers=1).replicas == 2
+
+
+def test_what_a_worker_cannot_read_is_named():
+    # the exception could not be read in turn: the pool broke three times, and "workers died"
+    with Parcel(children.Closed()) as parcel, pytest.raises(InputError) as caught:
+        _pool._task(parcel.ticket, [0])
+    again = pickle.loads(pickle.dumps(caught.value))
+    assert str(again) == "shape cannot be read in a worker: Twofold: no, a library"
 
 
 WRONG = {

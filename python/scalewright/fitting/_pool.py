@@ -211,7 +211,10 @@ class _Run:
 
 def _task(ticket: Ticket, indices: list[int]) -> list[Outcome] | Missing:
     """Compute some replicas in a worker."""
-    work = content(ticket)
+    try:
+        work = content(ticket)
+    except Exception as error:  # as words: an exception that cannot be read elsewhere would end the engine
+        raise InputError(f"shape cannot be read in a worker: {type(error).__name__}: {error}") from None
     if isinstance(work, Missing):
         return work
     return [work.replica(index) for index in indices]
