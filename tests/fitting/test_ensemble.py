@@ -74,6 +74,14 @@ def test_sampling_errors_are_the_spread_over_many_ensembles(law):
         assert errors.mean() == pytest.approx(values.std(ddof=1), rel=0.15), name
 
 
+@pytest.mark.parametrize(("level", "few", "enough"), [(0.95, 38, 40), (0.6827, 5, 6)])
+def test_the_error_of_an_interval_is_unknown_where_replicas_are_too_few(level, few, enough):
+    # 20 normal replicas gave 0.41 of the true spread of the ends of the 95 per cent interval
+    values = np.random.default_rng(1).normal(size=(enough, 1))
+    assert all(end.error > 0 for end in ensemble_of(values).interval("p0", level))
+    assert all(np.isnan(end.error) for end in ensemble_of(values[:few]).interval("p0", level))
+
+
 def test_quantities_have_any_shape():
     ensemble = ensemble_of(drawn(4))
     x = GRID.x[[1, 3, 5]]

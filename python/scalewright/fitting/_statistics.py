@@ -53,7 +53,8 @@ def correlation(one: Floats, other: Floats, weights: Floats) -> Estimate:
 def quantile(values: Floats, weights: Floats, level: float) -> Estimate:
     """Quantile over the first axis.
 
-    Each replica stands in the middle of its weight, and between two of them the line is straight.
+    Each replica stands in the middle of its weight, and between two of them the line is straight. The error
+    is nan where that of the rank reaches beyond the first or the last replica: nobody knows how far they lie.
     """
     order = np.argsort(values, axis=0, kind="stable")
     rising = np.take_along_axis(values, order, axis=0).reshape(len(values), -1)
@@ -64,7 +65,8 @@ def quantile(values: Floats, weights: Floats, level: float) -> Estimate:
     found = np.stack(
         [np.interp(at, place, column) for place, column in zip(places.T, rising.T, strict=True)], axis=1
     ).reshape(3, *values.shape[1:])
-    return _estimate(found[0], 0.5 * (found[2] - found[1]))
+    known = 1.0 if half <= min(level, 1.0 - level) else np.nan
+    return _estimate(found[0], known * 0.5 * (found[2] - found[1]))
 
 
 def _estimate(value: Any, error: Any) -> Estimate:
