@@ -240,6 +240,9 @@ class Restricted(Shape):
             begin[free.index(name)] = _check.real(f"start[{name}]", value)
         limits = (shape.limits[0][self._free], shape.limits[1][self._free])
         super().__init__(shape.grid, shape.flavours, free, begin, (low, high), limits)
+        for name in shape.priors:
+            if name in tied:  # it would be forgotten without a word
+                _check.refuse("tied", name, "it has a prior: tie the other one to it, or leave the prior out")
         self.priors = {name: pair for name, pair in shape.priors.items() if name in free}
         self.priors |= {name: prior(name, pair) for name, pair in priors.items()}
         self._check_limits()
