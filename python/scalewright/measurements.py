@@ -297,8 +297,8 @@ class Measurements(Questions):
         Returns
         -------
         PseudoData
-            (truth + sum of additive shifts) times the product of (1 + multiplicative shifts); negative values
-            are kept and counted.
+            (truth + sum of additive shifts) times the product over sources of (1 + multiplicative shift);
+            negative values are kept and counted.
 
         Raises
         ------
