@@ -147,14 +147,14 @@ def fit_replicas(
         central = solve(problem, begin, evaluations=evaluations)
         begin = central.parameters if central.converged else begin
     work = _Work(problem, chi2, _check.whole("seed", seed, least=0), begin, evaluations, stopping)
-    executor = as_executor(executor)
-    size = _workers(executor, workers)
+    engine: Engine = as_executor(executor)
+    size = _workers(engine, workers)
     limit = _check.real("limit", limit, above=0.0)
     if chunk is None:
         chunk = min(_LARGEST_CHUNK, max(1, count // (_TASKS * size)))
     chunk = _check.whole("chunk", chunk, least=1)
     report = watcher(progress, "replicas")
-    options: dict[str, Any] = {"executor": executor, "workers": size, "chunk": chunk, "limit": limit}
+    options: dict[str, Any] = {"executor": engine, "workers": size, "chunk": chunk, "limit": limit}
     if journal is None:
         outcomes = _all(work, count, {}, None, report, options)
     else:
