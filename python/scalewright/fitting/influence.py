@@ -212,23 +212,25 @@ def density_gradient(
     if not isinstance(result, FitResult):
         _check.refuse("result", result, "result must be a FitResult")
     problem, count = result._problem, len(result._problem.shape.names)
-    shape, theory = problem.shape, result.names[count:]
+    shape, theory = problem.shape, tuple(problem.reference)
     jacobian = shape.jacobian(result.parameters[:count])
     along = Densities(problem.shape.grid, q2=problem.q2, nf=problem.nf, flavours=shape.flavours,
                       values=jacobian)  # fmt: skip
     shape_of_x = np.shape(np.asarray(x, dtype=np.float64))
-    none = np.zeros((len(theory), *shape_of_x))
+    none = np.zeros((len(result.names) - count, *shape_of_x))
     if q2 is None:
         return np.concatenate([along.at(None, x, flavour, nf), none])
+    none = none[: len(none) - len(theory)]  # of what moves neither densities nor operators
     scale = _check.scale("q2", q2)
 
     def carried(by: Operators, densities: Densities) -> Floats:
         return by.apply(densities, q2=[scale], nf=None if nf is None else [nf]).at(scale, x, flavour, nf)
 
-    values = dict(zip(theory, result.parameters[count:].tolist(), strict=True))
+    last = result.parameters[len(result.names) - len(theory) :]
+    values = dict(zip(theory, last.tolist(), strict=True))
     first = carried(_operators(operators, values), along)
     moved = [_moved(operators, values, name, lambda by: carried(by, result.densities)) for name in theory]
-    return np.concatenate([first, *moved]) if moved else first
+    return np.concatenate([first, none, *moved])
 
 
 def _operators(operators: Rebuilt | None, values: Mapping[str, float]) -> Operators:
