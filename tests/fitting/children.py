@@ -70,5 +70,21 @@ def run_and_die(journal, after):
     raise SystemExit(f"{fmap()} was not stopped")
 
 
+def run_on_dask_and_die(journal, after, address):
+    """As `run_and_die`, with the workers of a cluster."""
+    from distributed import Client
+    from fitting.runs import bent_problem, replicas_of
+
+    def watch(done, total):
+        if done >= after:
+            os.kill(os.getpid(), signal.SIGKILL)
+
+    with Client(address) as client:
+        replicas_of(bent_problem(), executor=client, chunk=1, journal=journal, progress=watch)
+    raise SystemExit("the run was not stopped")
+
+
 if __name__ == "__main__":
-    run_and_die(sys.argv[1], int(sys.argv[2]))
+    run_and_die(sys.argv[1], int(sys.argv[2])) if len(sys.argv) == 3 else run_on_dask_and_die(
+        sys.argv[1], int(sys.argv[2]), sys.argv[3]
+    )

@@ -141,9 +141,11 @@ class _Run:
             ticket, indices = self._waiting[0]
             try:
                 future = self._engine.submit(_task, ticket, indices)
-            except (BrokenExecutor, RuntimeError) as error:
+            except Exception as error:
                 if not self._owned:
                     raise self._broken(error) from error
+                if not isinstance(error, BrokenExecutor | RuntimeError):
+                    raise
                 return False
             self._waiting.popleft()
             self._flying[future] = indices

@@ -18,6 +18,7 @@ from .._check import Floats
 from .._progress import Progress, watcher
 from ..errors import ScalewrightError
 from ..files.whole import PathLike
+from ._dask import Client, as_executor, threads
 from ._journal import Journal, Outcome
 from ._problem import Map, Problem, Theory
 from ._shape import Shape
@@ -47,7 +48,7 @@ def fit_replicas(
     start: ArrayLike | Mapping[str, float] | None = None,
     theory: Theory = (),
     priors: Mapping[str, tuple[float, float]] | None = None,
-    executor: Engine = None,
+    executor: Engine | Client = None,
     workers: int | None = None,
     chunk: int | None = None,
     journal: PathLike | None = None,
@@ -73,8 +74,9 @@ def fit_replicas(
     start, theory, priors, evaluations
         As for `fit`. By default each replica starts from the best fit to the data; with `validation` from the
         start of the shape. The values of priors are drawn, like data.
-    executor : Executor, or callable that makes one, optional
-        By default a pool of processes of our own.
+    executor : Executor, callable that makes one, or Dask client, optional
+        By default a pool of processes of our own. For several machines a ``distributed.Client``, or its
+        ``get_executor()``: Dask replaces workers that are lost.
     workers : int, optional
         Processes of our own pool; 1 stays in this process. By default all processors, or, for another
         executor, as many as it says it has.
@@ -109,7 +111,10 @@ def fit_replicas(
     Notes
     -----
     Bits are equal for any number of workers that run with the same number of BLAS threads as this process.
-    For many workers set OPENBLAS_NUM_THREADS=1, or its like, before Python starts.
+    For many workers set OPENBLAS_NUM_THREADS=1, or its like, before Python starts; Dask sets it for its own.
+
+    Workers of one machine map one file with all that replicas have in common; a worker that does not see the
+    file gets its bytes with its first tasks, and keeps them.
 
     Examples
     --------
@@ -143,13 +148,14 @@ def fit_replicas(
         central = solve(problem, begin, evaluations=evaluations)
         begin = central.parameters if central.converged else begin
     work = _Work(problem, chi2, _check.whole("seed", seed, least=0), begin, evaluations, stopping)
-    size = _workers(executor, workers)
+    engine: Engine = as_executor(executor)
+    size = _workers(engine, workers)
     limit = _check.real("limit", limit, above=0.0)
     if chunk is None:
         chunk = min(_LARGEST_CHUNK, max(1, count // (_TASKS * size)))
     chunk = _check.whole("chunk", chunk, least=1)
     report = watcher(progress, "replicas")
-    options: dict[str, Any] = {"executor": executor, "workers": size, "chunk": chunk, "limit": limit}
+    options: dict[str, Any] = {"executor": engine, "workers": size, "chunk": chunk, "limit": limit}
     if journal is None:
         outcomes = _all(work, count, {}, None, report, options)
     else:
@@ -284,7 +290,7 @@ def _workers(executor: Engine, workers: int | None) -> int:
         _check.refuse("executor", executor, "executor must be an Executor, or a function that makes one")
     if workers is not None:
         return _check.whole("workers", workers, least=1, most=10**5)
-    said = getattr(executor, "_max_workers", None)
+    said = getattr(executor, "_max_workers", None) or threads(executor)
     return said if isinstance(said, int) and said > 0 else processors()
 
 
