@@ -5,6 +5,7 @@ The public names in the order of a calculation. Importing this package imports n
 
 from __future__ import annotations
 
+from . import corrections as corrections
 from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities

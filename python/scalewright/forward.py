@@ -7,6 +7,7 @@ mu_f^2.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -14,6 +15,7 @@ import numpy as np
 
 from . import _check
 from ._check import Floats, show
+from ._corrected.bound import Bound
 from ._measured.combination import Combination
 from ._observed import storing
 from ._observed.accuracy import row_errors
@@ -22,6 +24,7 @@ from ._observed.differences import TOLERANCE, Derivative, differentiated
 from ._observed.points import Points
 from ._observed.problem import Problem
 from ._route import SAME_SCALE
+from .corrections import Correction
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError
@@ -107,13 +110,22 @@ class ForwardMap:
         flat = self.matrix.reshape(self.matrix.shape[0], -1)
         return np.asarray(values.reshape(values.shape[0], -1) @ flat.T)
 
-    def predict(self, densities: Densities | Floats) -> Floats:
+    @property
+    def weights(self) -> Floats:
+        """Weights of F2, FL and xF3 in what each row is, (row, 3)."""
+        return self._problem.factors
+
+    def predict(
+        self, densities: Densities | Floats, corrections: Sequence[Correction] | Correction = ()
+    ) -> Floats:
         """Predict each datum.
 
         Parameters
         ----------
         densities : Densities or array_like
             As for `predict_rows`.
+        corrections : sequence of Correction
+            See `scalewright.corrections`; at the start of their parameters, which `Correction.at` sets.
 
         Returns
         -------
@@ -124,7 +136,8 @@ class ForwardMap:
         InputError
             As `predict_rows`; or if a denominator vanishes.
         """
-        return self.data.predict(self.predict_rows(densities))
+        bound = Bound(corrections, self)
+        return self.data.predict(bound.corrected(self.predict_rows(densities), bound.start))
 
     def numerical_error(self, densities: Densities | Floats) -> Floats:
         """Estimate how far `predict` is off numerically: grid, quadrature, steps in scale, rounding.
