@@ -7,7 +7,7 @@ mu_f^2.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -21,6 +21,7 @@ from ._observed import storing
 from ._observed.accuracy import row_errors
 from ._observed.carried import carried_matrix
 from ._observed.differences import TOLERANCE, Derivative, differentiated
+from ._observed.further import checked_further
 from ._observed.points import Points
 from ._observed.problem import Problem
 from ._route import SAME_SCALE
@@ -30,6 +31,7 @@ from .electroweak import Electroweak
 from .errors import InputError
 from .files.whole import PathLike
 from .grid import ChebyshevGrid
+from .kernels import CoefficientFunction
 from .theory import Theory
 
 __all__ = ["ForwardMap", "forward_map"]
@@ -232,6 +234,8 @@ class ForwardMap:
         ------
         StoreError
             If it cannot be written; an old file stays then.
+        InputError
+            If it has further coefficient functions: functions cannot be stored.
         """
         start = self.start_q2, self.start_nf
         storing.save(path, self._problem, start, self.flavours, self.matrix, self.data, self.steps_error)
@@ -304,6 +308,7 @@ def forward_map(
     electroweak: Electroweak | None = None,
     target_mass: bool = False,
     subtraction: str = "damped",
+    further: Mapping[str, Sequence[Mapping[str, CoefficientFunction]]] | None = None,
     tolerance: float | None = None,
     threads: int | None = None,
 ) -> ForwardMap:
@@ -330,6 +335,10 @@ def forward_map(
     subtraction : {"damped", "chi", "plain"}
         With heavy_quarks="matched": what is beyond the massive part is multiplied by (1 - m^2/Q^2)^2 above
         Q^2 = m^2 and dropped below; taken at x (1 + 4 m^2/Q^2); or left as it is.
+    further : mapping, optional
+        Coefficient functions of your own beyond the order of the theory: "F2", "FL" or "xF3" to a list with
+        one mapping an order, "ns+", "ns-", "pure singlet" or "gluon" to `CoefficientFunction`. They enter the
+        light parts; logarithms of scale ratios follow to a^3, beyond it the ratios must be 1.
     tolerance, threads
         As for `build_operators`.
 
@@ -359,7 +368,7 @@ def forward_map(
     """
     rows, data = _rows_and_data(points)
     electroweak = Electroweak.effective() if electroweak is None else electroweak
-    problem = Problem(theory, grid, electroweak, rows, target_mass, subtraction)
+    problem = Problem(theory, grid, electroweak, rows, target_mass, subtraction, checked_further(further))
     matrix, operators = carried_matrix(
         problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads
     )

@@ -6,6 +6,7 @@ for a table of points and many input densities. Both use the same rows.
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from types import SimpleNamespace
 
 import numpy as np
@@ -14,6 +15,7 @@ from numpy.typing import ArrayLike
 from . import _check
 from ._check import Floats, show
 from ._observed.carried import scale_groups, with_target
+from ._observed.further import checked_further
 from ._observed.point_rows import point_rows
 from ._observed.points import Points
 from ._observed.problem import Problem
@@ -22,6 +24,7 @@ from ._route import SAME_SCALE
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError
+from .kernels import CoefficientFunction
 from .theory import Theory
 
 __all__ = ["at_scale", "structure_function"]
@@ -45,6 +48,7 @@ def structure_function(
     electroweak: Electroweak | None = None,
     target_mass: bool = False,
     subtraction: str = "damped",
+    further: Mapping[str, Sequence[Mapping[str, CoefficientFunction]]] | None = None,
 ) -> Floats:
     """Return a structure function or cross section.
 
@@ -71,7 +75,7 @@ def structure_function(
         The part where the current couples to that quark.
     y, s : array_like, float, optional
         For cross sections: inelasticity, or squared centre-of-mass energy in GeV^2.
-    electroweak, target_mass, subtraction
+    electroweak, target_mass, subtraction, further
         As for `forward_map`.
 
     Returns
@@ -103,7 +107,9 @@ def structure_function(
         _check.refuse("densities", densities, f"densities must be Densities, not {type(densities).__name__}")
     points, shape = _points(measure, x, q2, y, s, current, exchange, beam, polarisation, target, tagged)
     electroweak = Electroweak.effective() if electroweak is None else electroweak
-    problem = Problem(theory, densities.grid, electroweak, points, target_mass, subtraction)
+    problem = Problem(
+        theory, densities.grid, electroweak, points, target_mass, subtraction, checked_further(further)
+    )
     scales, counts, group = scale_groups(problem)
     flavours = densities.flavours
     parts = []
