@@ -15,15 +15,17 @@ import numpy as np
 
 from . import _check
 from ._check import Floats, show
-from ._corrected.bound import Bound
+from ._corrected.bound import Bound, checked
 from ._measured.combination import Combination
 from ._observed import storing
 from ._observed.accuracy import row_errors
 from ._observed.carried import carried_matrix
 from ._observed.differences import TOLERANCE, Derivative, differentiated
 from ._observed.further import checked_further
+from ._observed.orders import Orders, orders_of
 from ._observed.points import Points
-from ._observed.problem import Problem
+from ._observed.problem import INTRINSIC, Problem
+from ._observed.reported import described
 from ._route import SAME_SCALE
 from .corrections import Correction
 from .densities import Densities
@@ -90,6 +92,57 @@ class ForwardMap:
         """What each row is."""
         return self._problem.points
 
+    @property
+    def weights(self) -> Floats:
+        """Weights of F2, FL and xF3 in what each row is, (row, 3)."""
+        return self._problem.factors
+
+    def orders(self, boundaries: Mapping[str, float] | None = None) -> Orders:
+        """Return the formal order of the light, heavy and longitudinal part of each row, and its regime.
+
+        Parameters
+        ----------
+        boundaries : mapping, optional
+            Of the regimes: arguments of `scalewright.kinematics.regimes`.
+
+        Returns
+        -------
+        Orders
+            `light`, `heavy`, `fl` and `regime`, one entry a row; ``of_data(fmap.data)``: one a datum.
+
+        Raises
+        ------
+        InputError
+            If a boundary is unknown or no number.
+        """
+        return orders_of(self._problem, boundaries)
+
+    def describe(
+        self,
+        corrections: Sequence[Correction] | Correction = (),
+        boundaries: Mapping[str, float] | None = None,
+    ) -> str:
+        """Say of what order predictions are, in which regimes they lie, and what they are not corrected for.
+
+        Parameters
+        ----------
+        corrections : sequence of Correction
+            Those that go with the map, see `scalewright.corrections`.
+        boundaries : mapping, optional
+            As for `orders`.
+
+        Returns
+        -------
+        str
+            One screen.
+
+        Raises
+        ------
+        InputError
+            If something is no correction, or a boundary no number.
+        """
+        return described(self._problem, self.orders(boundaries), repr(self), checked(corrections))
+
     def predict_rows(self, densities: Densities | Floats) -> Floats:
         """Predict each row.
 
@@ -111,11 +164,6 @@ class ForwardMap:
         values = self._values(densities)
         flat = self.matrix.reshape(self.matrix.shape[0], -1)
         return np.asarray(values.reshape(values.shape[0], -1) @ flat.T)
-
-    @property
-    def weights(self) -> Floats:
-        """Weights of F2, FL and xF3 in what each row is, (row, 3)."""
-        return self._problem.factors
 
     def predict(
         self, densities: Densities | Floats, corrections: Sequence[Correction] | Correction = ()
@@ -286,7 +334,8 @@ class ForwardMap:
         held = {flavour: place for place, flavour in enumerate(densities.flavours)}
         for flavour, place in held.items():
             if flavour not in self.flavours and values[:, place].any():
-                _check.refuse("densities.flavours", flavour, f"not active at nf = {nf} and not zero")
+                what = f"not active at nf = {nf} and not zero: {INTRINSIC}"
+                _check.refuse("densities.flavours", flavour, what)
         absent = [flavour for flavour in self.flavours if flavour not in held]
         if absent:
             raise InputError(f"densities have no flavour {_check.show_all(absent)}, active at nf = {nf}")

@@ -26,8 +26,10 @@ from . import _check
 from ._check import Floats
 from ._measured.rows import NUCLEON_M2
 
-__all__ = ["REGIMES", "Regimes", "inelasticity", "invariant_mass2", "regimes"]
+__all__ = ["BOUNDARIES", "REGIMES", "Regimes", "inelasticity", "invariant_mass2", "regimes"]
 
+#: Arguments of `regimes` that say where one ends.
+BOUNDARIES = ("hadronic_scale", "resonance", "endpoint", "low_q2", "low_x")
 REGIMES = ("resonance", "endpoint", "low Q^2", "low x", "inclusive")
 
 

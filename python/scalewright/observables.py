@@ -18,7 +18,7 @@ from ._observed.carried import scale_groups, with_target
 from ._observed.further import checked_further
 from ._observed.point_rows import point_rows
 from ._observed.points import Points
-from ._observed.problem import Problem
+from ._observed.problem import INTRINSIC, Problem
 from ._observed.pullback import flavour_rows
 from ._route import SAME_SCALE
 from .densities import Densities
@@ -86,8 +86,8 @@ def structure_function(
     Raises
     ------
     InputError
-        If an argument is wrong, or the densities have no such scale, another number of flavours or a flavour
-        missing.
+        If an argument is wrong, or the densities have no such scale, another number of flavours, a flavour
+        missing, or a heavy one below its threshold.
     RangeError
         If x lies below the grid, or the coupling is too large.
 
@@ -182,5 +182,8 @@ def at_scale(densities: Densities, q2: float, nf: int) -> Floats:
     missing = [f for f in (21, *range(1, nf + 1), *range(-nf, 0)) if f not in densities.flavours]
     if missing:
         raise InputError(f"densities have no flavour {_check.show_all(missing)}, active at nf = {nf}")
-    values = densities.values
-    return values if values.ndim == 3 else values[same[0]]
+    values = densities.values if densities.values.ndim == 3 else densities.values[same[0]]
+    for place, flavour in enumerate(densities.flavours):
+        if flavour != 21 and abs(flavour) > nf and values[:, place].any():
+            _check.refuse("densities.flavours", flavour, f"not active at nf = {nf} and not zero: {INTRINSIC}")
+    return values

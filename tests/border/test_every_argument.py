@@ -237,6 +237,8 @@ CALLS = {
         },
     ),
     "ForwardMap.predict": (FMAP.predict, {"densities": FULL, "corrections": ()}),
+    "ForwardMap.describe": (FMAP.describe, {"corrections": (), "boundaries": None}),
+    "ForwardMap.orders": (FMAP.orders, {"boundaries": None}),
     "ForwardMap.predict_rows": (FMAP.predict_rows, {"densities": FULL}),
     "ForwardMap.numerical_error": (FMAP.numerical_error, {"densities": FULL}),
     "ForwardMap.derivative": (FMAP.derivative, {"parameter": "alpha_s"}),

@@ -19,8 +19,10 @@ from .measures import FUNCTIONS, measure_weights
 from .points import Points
 from .rows import Setting
 
-__all__ = ["Problem"]
+__all__ = ["INTRINSIC", "Problem"]
 
+#: R. Ball et al., arXiv:1510.00009, has the parts that would be needed.
+INTRINSIC = "an intrinsic heavy input is not implemented in structure functions"
 #: alpha_s at mu_r^2 above which a series in it means nothing (common practice, no source).
 _STRONG = 1.0
 #: Highest power of a whose logarithms of mu_r and mu_f follow from the splitting functions known.
