@@ -70,7 +70,11 @@ class Correction(ABC):
         Start, lowest and highest values.
     priors : dict
         Name -> (value, standard deviation) of what is known from elsewhere.
+    corrects_target : bool
+        Whether it is for what a target is more than free protons and neutrons.
     """
+
+    corrects_target = True
 
     def __init__(self, targets: Any, name: str | None, prefix: str, current: str | None) -> None:
         self.targets = target_names(targets)
@@ -159,6 +163,8 @@ class HigherTwist(Correction):
     >>> twist.names
     ('h_proton.c0', 'h_proton.c1', 'h_proton.c2')
     """
+
+    corrects_target = False
 
     def __init__(
         self,

@@ -16,6 +16,7 @@ import numpy as np
 from . import _check
 from ._check import Floats, show
 from ._corrected.bound import Bound, checked
+from ._corrected.reported import described
 from ._measured.combination import Combination
 from ._observed import storing
 from ._observed.accuracy import row_errors
@@ -25,7 +26,6 @@ from ._observed.further import checked_further
 from ._observed.orders import Orders, orders_of
 from ._observed.points import Points
 from ._observed.problem import INTRINSIC, Problem
-from ._observed.reported import described
 from ._route import SAME_SCALE
 from .corrections import Correction
 from .densities import Densities

@@ -14,6 +14,7 @@ from numpy.typing import ArrayLike
 
 from . import _check
 from ._check import Floats, show
+from ._corrected.bound import Bound
 from ._observed.carried import scale_groups, with_target
 from ._observed.further import checked_further
 from ._observed.point_rows import point_rows
@@ -21,6 +22,7 @@ from ._observed.points import Points
 from ._observed.problem import INTRINSIC, Problem
 from ._observed.pullback import flavour_rows
 from ._route import SAME_SCALE
+from .corrections import Correction
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError
@@ -49,6 +51,7 @@ def structure_function(
     target_mass: bool = False,
     subtraction: str = "damped",
     further: Mapping[str, Sequence[Mapping[str, CoefficientFunction]]] | None = None,
+    corrections: Sequence[Correction] | Correction = (),
 ) -> Floats:
     """Return a structure function or cross section.
 
@@ -77,6 +80,8 @@ def structure_function(
         For cross sections: inelasticity, or squared centre-of-mass energy in GeV^2.
     electroweak, target_mass, subtraction, further
         As for `forward_map`.
+    corrections
+        As for `ForwardMap.predict`.
 
     Returns
     -------
@@ -122,7 +127,8 @@ def structure_function(
     result = np.empty((parts[0][1].shape[0], len(points)))
     for members, values in parts:
         result[:, members] = values
-    return result.reshape(result.shape[0], *shape)
+    bound = Bound(corrections, SimpleNamespace(points=points, weights=problem.factors))
+    return bound.corrected(result, bound.start).reshape(result.shape[0], *shape)
 
 
 def _points(

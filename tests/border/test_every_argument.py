@@ -253,6 +253,7 @@ CALLS = {
             "target_mass": False,
             "subtraction": "damped",
             "further": {"F2": [{"gluon": OWN}]},
+            "corrections": (),
         }
         | ASKED,
     ),

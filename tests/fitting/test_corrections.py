@@ -53,6 +53,7 @@ def test_a_known_higher_twist_is_found_again(form):
     assert result.converged and result.chi2 < 1e-9  # no noise: what convergence leaves
     np.testing.assert_allclose(result.parameters, np.append(TRUE, TRUE_H), rtol=1e-5)
     assert result.names[-2:] == (("h" if form == "factor" else "H") + "_proton_deuteron.c0", result.names[-1])
+    assert "no correction for the deuteron (32 rows): free protons and neutrons" in result.status
     # without it the data cannot be described
     assert sw.fit(fmap, sw.ChiSquare(data), shape).chi2 > 10.0
 
@@ -111,6 +112,7 @@ def test_replicas_fit_corrections_as_well():
     data = problems.measured(truth(fmap, given).prediction(at), size=0.005, common=0.002, seed=5)
     chi2 = sw.ChiSquare(data)
     result = sw.fit(fmap, chi2, shape, corrections=given)
+    assert "no correction" not in str(result)
     ensemble = sw.fit_replicas(fmap, chi2, shape, corrections=given, replicas=40, seed=2, workers=1)
     assert ensemble.names == result.names and not ensemble.failed
     spread = ensemble.parameters.std(axis=0, ddof=1)

@@ -46,6 +46,15 @@ def test_a_factor_multiplies_and_an_addition_enters_with_its_weight(fmap, start)
         np.testing.assert_allclose(added, plain + np.array(weights) * h / Q2, rtol=1e-13)
 
 
+def test_single_questions_have_the_same_corrections(fmap, start):
+    evolved = sw.evolve(fmap.theory, start, [9.0])
+    twist = HigherTwist(Polynomial(1, start=[0.3, 0.2]), form="addition")
+    asked = {"x": 0.3, "q2": 9.0, "y": Y, "beam": "e+", "exchange": "photon"}
+    asked |= {"densities": evolved, "theory": fmap.theory, "corrections": twist}
+    value = sw.structure_function("reduced_cross_section", **asked)[0]
+    assert value == pytest.approx(fmap.predict(start, twist)[0, 4], rel=1e-8)  # steps in scale
+
+
 def test_each_target_has_its_own_and_factors_multiply(fmap, start):
     plain = fmap.predict(start)[0]
     given = [

@@ -56,6 +56,9 @@ class Part:
 class Correction(Protocol):
     """What `Bound` asks of a correction."""
 
+    targets: tuple[str, ...]
+    corrects_target: bool
+
     @property
     def names(self) -> tuple[str, ...]:
         """Names of the parameters, unlike those of other corrections."""

@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
 
 from .. import _check
 from .._check import Integers
+from .._display import count
 from ..errors import InputError
 
-__all__ = ["chosen_rows", "target_names"]
+__all__ = ["chosen_rows", "target_names", "without_factor"]
 
 _NAMES = ("proton", "neutron", "deuteron", "isoscalar")
+#: Targets that are no nuclei: of them nothing can be corrected.
+_NUCLEONS = ("proton", "neutron", "isoscalar")
 
 
 def target_names(given: Any) -> tuple[str, ...]:
@@ -59,3 +63,22 @@ def chosen_rows(
         what += "" if current is None else f" and a {current} current"
         raise InputError(f"corrections: {name}: {what}; there are {held}")
     return np.flatnonzero(mask)
+
+
+def without_factor(targets: Sequence[str], corrections: Sequence[Any]) -> list[str]:
+    """Say which deuterons and nuclei no factor corrects, one sentence each.
+
+    Parameters
+    ----------
+    targets : sequence of str
+        Of the rows.
+    corrections : sequence of Correction
+    """
+    corrected = {target for one in corrections if one.corrects_target for target in one.targets}
+    said = []
+    for target in dict.fromkeys(targets):
+        if target not in _NUCLEONS and target not in corrected:
+            name = "the deuteron" if target == "deuteron" else f"the nucleus {target}"
+            rows = count(list(targets).count(target), "row")
+            said.append(f"no correction for {name} ({rows}): free protons and neutrons")
+    return said

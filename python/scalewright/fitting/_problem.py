@@ -16,7 +16,8 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats, show
-from .._corrected.bound import Bound, Correction
+from .._corrected.bound import Bound, Correction, checked
+from .._corrected.selection import without_factor
 from ..errors import InputError
 from ..flavours import flavour_name
 from ..grid import ChebyshevGrid
@@ -136,6 +137,8 @@ class Problem:
     ----------
     count, rows : int
         Number of data, and of the residuals they make; those of the priors come after them.
+    notes : tuple of str
+        Deuterons and nuclei that nothing corrects.
     first_theory : int
         Place of the first theory parameter.
     """
@@ -157,6 +160,8 @@ class Problem:
         self.reference = _reference(fmap, theory)
         self.q2, self.nf = float(fmap.start_q2), int(fmap.start_nf)
         self.corrections = Bound(corrections, fmap)
+        targets = getattr(getattr(fmap, "points", None), "target", ())
+        self.notes = tuple(without_factor(targets, checked(corrections)))
         self._source: _Rows | None = _Rows(fmap, list(self.reference), self.corrections)
         self._chi2: Distance | None = chi2
         at_zero = np.zeros(len(fmap.matrix))
