@@ -33,8 +33,10 @@ from numpy.typing import ArrayLike
 from . import _check
 from ._check import Floats, show
 from ._corrected.bound import Bound, Part
-from ._corrected.curves import Curve, Function, Linear, Polynomial, Spline
+from ._corrected.curves import Curve, Linear
+from ._corrected.families import Polynomial, Spline
 from ._corrected.known import OfX, known_source, read_columns
+from ._corrected.own_function import Function
 from ._corrected.selection import chosen_rows, target_names
 from .files.whole import PathLike
 

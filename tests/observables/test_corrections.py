@@ -101,6 +101,26 @@ def test_free_exponents_agree_with_a_complex_step():
     np.testing.assert_allclose(at.jacobian(q), found, rtol=1e-13)
 
 
+def test_parameters_of_a_curve_may_be_fixed_or_bounded(fmap, start):
+    whole = Spline([0.01, 0.1, 0.5], start=[1.0, 2.0, 3.0])
+    part = whole.restricted(fixed={"k1": 0.0}, bounds={"k0": (0.0, 5.0)})
+    twist = HigherTwist(part, name="h")
+    assert twist.names == ("h.k0", "h.k2") and twist.limits[2].tolist() == [5.0, np.inf]
+    same = HigherTwist(Spline([0.01, 0.1, 0.5], start=[1.0, 0.0, 3.0]), name="h")
+    np.testing.assert_array_equal(fmap.predict(start, twist), fmap.predict(start, same))
+    rows = fmap.predict_rows(start)[0]
+    full, some = (Bound(one, fmap) for one in (same, twist))
+    np.testing.assert_array_equal(full.jacobian(rows, full.start)[:, [0, 2]], some.jacobian(rows, some.start))
+    for options, message in [
+        ({"fixed": ["k9"]}, "fixed = 'k9': no parameter of this name; there are 'k0', 'k1', 'k2'"),
+        ({"fixed": "k0"}, "fixed must be a list of names"),
+        ({"fixed": ["k0"], "bounds": {"k0": (0, 1)}}, "bounds = 'k0': the parameter is fixed"),
+        ({"bounds": {"k0": (2.0, 3.0)}}, r"start\[k0\] = 1: must lie in \[2, 3\]"),
+    ]:
+        with pytest.raises(sw.InputError, match=message):
+            whole.restricted(**options)
+
+
 def test_a_table_of_factors_is_read_and_joined_by_straight_lines(fmap, start, tmp_path):
     file = tmp_path / "deuteron.csv"
     file.write_text("x,factor,model\n0.01,1.0,0.0\n0.11,0.9,0.01\n0.5,0.9,0.02\n")

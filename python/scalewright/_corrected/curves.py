@@ -1,13 +1,9 @@
-"""Functions of x with parameters, and their exact derivative: what corrections are made of.
-
-Which one when: `Polynomial` for a few numbers that say how a correction rises and falls; `Spline` where the
-data shall decide between given knots; `Function` for a law of one's own.
-"""
+"""Functions of x with parameters, and their exact derivative: what corrections are made of."""
 
 from __future__ import annotations
 
 from abc import ABC, abstractmethod
-from collections.abc import Callable, Sequence
+from collections.abc import Mapping, Sequence
 from typing import Protocol
 
 import numpy as np
@@ -16,15 +12,7 @@ from numpy.typing import ArrayLike
 from .. import _check
 from .._check import Floats, show
 
-__all__ = ["At", "Curve", "Function", "Linear", "Polynomial", "Spline"]
-
-#: Highest degree: beyond it the data of a correction decide nothing (common practice, no source).
-_MOST = 8
-#: Lowest and highest values of free exponents of x and 1 - x.
-_RANGES = {"a": (-2.0, 10.0), "b": (0.0, 20.0)}
-#: Step of a difference of five points, in parts of the parameter or of 1 if that is smaller: the fifth root
-#: of rounding balances it against the error h^4.
-_STEP = (2.0**-52) ** 0.2
+__all__ = ["At", "Curve", "Linear"]
 
 
 class At(Protocol):
@@ -64,6 +52,93 @@ class Curve(ABC):
     def on(self, x: Floats, place: Sequence[str]) -> At:
         """Return the curve at points x, (point,); `place` says where each stands, for messages."""
 
+    def restricted(
+        self,
+        *,
+        fixed: Sequence[str] | Mapping[str, float] = (),
+        bounds: Mapping[str, tuple[float, float]] | None = None,
+    ) -> Curve:
+        """Return the curve with some parameters fixed or bounded.
+
+        Parameters
+        ----------
+        fixed : sequence of names, or mapping
+            Parameters that do not move: from their start, or at the values given.
+        bounds : mapping
+            Name -> (lowest, highest).
+
+        Returns
+        -------
+        Curve
+
+        Raises
+        ------
+        InputError
+            If a name is unknown or fixed as well, or a value lies outside its bounds.
+
+        Examples
+        --------
+        >>> from scalewright.corrections import Spline
+        >>> Spline([0.1, 0.4, 0.8]).restricted(fixed={"k2": 0.0}).names
+        ('k0', 'k1')
+        """
+        return _Restricted(self, fixed, bounds or {})
+
+
+class _Restricted(Curve):
+    """A curve with some parameters of another fixed or bounded."""
+
+    def __init__(
+        self,
+        curve: Curve,
+        fixed: Sequence[str] | Mapping[str, float],
+        bounds: Mapping[str, tuple[float, float]],
+    ) -> None:
+        if isinstance(fixed, str):
+            _check.refuse("fixed", fixed, "fixed must be a list of names, or map names to values")
+        held = list(fixed)
+        for option, names in (("fixed", held), ("bounds", list(bounds))):
+            for name in names:
+                if name not in curve.names:
+                    known = f"{_check.show_all(curve.names)}{_check.nearest(name, curve.names)}"
+                    _check.refuse(option, name, f"no parameter of this name; there are {known}")
+                if option == "bounds" and name in held:
+                    _check.refuse(option, name, "the parameter is fixed")
+        self._curve, self._all = curve, curve.start.copy()
+        if isinstance(fixed, Mapping):
+            for name, value in fixed.items():
+                self._all[curve.names.index(name)] = _check.real(f"fixed[{name}]", value)
+        self._free = [place for place, name in enumerate(curve.names) if name not in held]
+        low, high = curve.low.copy(), curve.high.copy()
+        for name, (least, most) in bounds.items():
+            low[curve.names.index(name)], high[curve.names.index(name)] = least, most
+        names = [curve.names[place] for place in self._free]
+        super().__init__(names, self._all[self._free], low[self._free], high[self._free])
+
+    def on(self, x: Floats, place: Sequence[str]) -> At:
+        """Return the curve at points."""
+        return _Held(self._curve.on(x, place), self._all, self._free)
+
+
+class _Held:
+    """A curve at fixed points with some of its parameters held."""
+
+    def __init__(self, at: At, every: Floats, free: list[int]) -> None:
+        self._at, self._all, self._free = at, every, free
+
+    def _full(self, q: Floats) -> Floats:
+        full = self._all.copy()
+        full[self._free] = q
+        return full
+
+    def value(self, q: Floats) -> Floats:
+        """Return the curve, (point,)."""
+        return self._at.value(self._full(q))
+
+    def jacobian(self, q: Floats) -> Floats:
+        """Return its derivative, (point, parameter)."""
+        return self._at.jacobian(self._full(q))[:, self._free]
+
 
 class Linear:
     """A curve at fixed points that is linear in its parameters: matrix (point, parameter) times them."""
@@ -78,227 +153,3 @@ class Linear:
     def jacobian(self, q: Floats) -> Floats:
         """Return its derivative, (point, parameter)."""
         return self._matrix
-
-
-class Polynomial(Curve):
-    """x^a (1-x)^b times a polynomial in x.
-
-    Parameters
-    ----------
-    degree : int
-        0 to 8; the coefficients are the parameters "c0", "c1" ...
-    family : {"chebyshev", "plain"}
-        T_k(1 - 2x), whose members are almost independent; or x^k.
-    a, b : float
-        Exponents: fixed, unless named in `free`.
-    free : sequence of {"a", "b"}
-        Exponents that are parameters as well, from -2 to 10 and 0 to 20, after the coefficients.
-    start : array_like, (degree + 1,), optional
-        Coefficients that a fit begins with; 0 by default, with a free exponent 1 for c0.
-
-    Raises
-    ------
-    InputError
-        If an argument is wrong.
-
-    Examples
-    --------
-    >>> line = Polynomial(1, family="plain", b=2.0)
-    >>> at = line.on(np.array([0.5]), ["here"])
-    >>> at.value(np.array([1.0, 4.0]))
-    array([0.75])
-    """
-
-    def __init__(
-        self,
-        degree: int,
-        *,
-        family: str = "chebyshev",
-        a: float = 0.0,
-        b: float = 0.0,
-        free: Sequence[str] = (),
-        start: ArrayLike | None = None,
-    ) -> None:
-        self.degree = _check.whole("degree", degree, least=0, most=_MOST)
-        self.family = _check.choice("family", family, ("chebyshev", "plain"))
-        if isinstance(free, str):
-            _check.refuse("free", free, 'free must be a list of "a" and "b"')
-        self.free = tuple(_check.choice("free", name, ("a", "b")) for name in free)
-        if len(set(self.free)) != len(self.free):
-            _check.refuse("free", self.free, "an exponent stands there twice")
-        self.exponents = {"a": _check.real("a", a), "b": _check.real("b", b)}
-        first = np.zeros(self.degree + 1)
-        first[0] = 1.0 if self.free else 0.0  # at 0 nothing depends on the exponents
-        if start is not None:
-            first = _check.real_array("start", start, shape=(self.degree + 1,))
-        names = [*(f"c{k}" for k in range(self.degree + 1)), *self.free]
-        wide = np.full(self.degree + 1, np.inf)
-        low = [*-wide, *(_RANGES[name][0] for name in self.free)]
-        high = [*wide, *(_RANGES[name][1] for name in self.free)]
-        super().__init__(names, [*first, *(self.exponents[name] for name in self.free)], low, high)
-
-    def on(self, x: Floats, place: Sequence[str]) -> At:
-        """Return the curve at points."""
-        at_one = x >= 1.0
-        if at_one.any() and ("b" in self.free or self.exponents["b"] < 0.0):
-            where = place[int(np.argmax(at_one))]
-            _check.refuse(where, 1.0, "x must lie below 1 for a free or negative power of 1 - x")
-        if self.family == "plain":
-            matrix = np.asarray(x[:, np.newaxis] ** np.arange(self.degree + 1), dtype=np.float64)
-        else:
-            matrix = np.asarray(np.polynomial.chebyshev.chebvander(1.0 - 2.0 * x, self.degree))
-        if not self.free:
-            power = x ** self.exponents["a"] * (1.0 - x) ** self.exponents["b"]
-            return Linear(power[:, np.newaxis] * matrix)
-        return _Powers(matrix, x, self.exponents, self.free)
-
-
-class _Powers:
-    """A polynomial with free exponents at fixed points."""
-
-    def __init__(self, matrix: Floats, x: Floats, exponents: dict[str, float], free: tuple[str, ...]) -> None:
-        self._matrix, self._free, self._count = matrix, free, matrix.shape[1]
-        with np.errstate(divide="ignore"):
-            self._logs = {"a": np.log(x), "b": np.log1p(-x)}
-        held = [name for name in ("a", "b") if name not in free]
-        base = {"a": x, "b": 1.0 - x}
-        self._held = np.prod([base[name] ** exponents[name] for name in held], axis=0) * np.ones_like(x)
-
-    def _power(self, q: Floats) -> Floats:
-        exponent = sum(p * self._logs[name] for name, p in zip(self._free, q[self._count :], strict=True))
-        return np.asarray(self._held * np.exp(exponent))
-
-    def value(self, q: Floats) -> Floats:
-        """Return the curve, (point,)."""
-        return np.asarray(self._power(q) * np.einsum("pk,k->p", self._matrix, q[: self._count]))
-
-    def jacobian(self, q: Floats) -> Floats:
-        """Return its derivative, (point, parameter)."""
-        value, logs = self.value(q), [self._logs[name] for name in self._free]
-        return np.column_stack([self._power(q)[:, np.newaxis] * self._matrix, *(value * log for log in logs)])
-
-
-class Spline(Curve):
-    """A natural cubic spline in x; the parameters are its values at knots, "k0", "k1" ...
-
-    Parameters
-    ----------
-    knots : array_like, (knot,)
-        x in (0, 1], growing, at least 3. Points outside are refused: nothing is extrapolated.
-    start : array_like, (knot,), optional
-        Values that a fit begins with; 0 by default.
-
-    Raises
-    ------
-    InputError
-        If an argument is wrong.
-
-    Examples
-    --------
-    >>> Spline([0.1, 0.4, 0.8]).names
-    ('k0', 'k1', 'k2')
-    """
-
-    def __init__(self, knots: ArrayLike, *, start: ArrayLike | None = None) -> None:
-        self.knots = _check.x_values("knots", _check.real_array("knots", knots, ndim=1)).copy()
-        if self.knots.size < 3 or (np.diff(self.knots) <= 0.0).any():
-            _check.refuse("knots", self.knots.tolist(), "knots must grow, and there must be at least 3")
-        size = self.knots.size
-        first = np.zeros(size) if start is None else _check.real_array("start", start, shape=(size,))
-        super().__init__([f"k{k}" for k in range(size)], first, -np.inf, np.inf)
-
-    def on(self, x: Floats, place: Sequence[str]) -> At:
-        """Return the curve at points."""
-        from scipy.interpolate import CubicSpline  # type: ignore[import-untyped]
-
-        outside = (x < self.knots[0]) | (x > self.knots[-1])
-        if outside.any():
-            row = int(np.argmax(outside))
-            limits = f"[{show(self.knots[0])}, {show(self.knots[-1])}]"
-            _check.refuse(f"{place[row]}: x", x[row], f"the knots of the spline span {limits}")
-        return Linear(np.asarray(CubicSpline(self.knots, np.eye(self.knots.size), bc_type="natural")(x)))
-
-
-class Function(Curve):
-    """Any function ``f(x, parameters)`` of x.
-
-    Parameters
-    ----------
-    function : callable
-        With arrays x (point,) and parameters (parameter,), returning (point,).
-    start : array_like, (parameter,)
-        Where a fit begins.
-    names : sequence of str, optional
-        By default "p0", "p1" ...
-    bounds : tuple of two array_like, (parameter,), optional
-        Lowest and highest values.
-    jacobian : callable, optional
-        ``f(x, parameters)`` returning (point, parameter). Without it, differences of five points are used;
-        their step may reach beyond a bound.
-
-    Raises
-    ------
-    InputError
-        If a function raises, or returns another shape or values that are not finite.
-
-    Notes
-    -----
-    For more than one process the functions must be importable: defined at the top of a module, no lambda.
-
-    Examples
-    --------
-    >>> law = Function(lambda x, p: p[0] * np.exp(-p[1] * x), [1.0, 2.0])
-    >>> law.on(np.array([0.5]), ["here"]).jacobian(np.array([1.0, 2.0])).round(6)
-    array([[ 0.367879, -0.18394 ]])
-    """
-
-    def __init__(
-        self,
-        function: Callable[[Floats, Floats], ArrayLike],
-        start: ArrayLike,
-        *,
-        names: Sequence[str] | None = None,
-        bounds: tuple[ArrayLike, ArrayLike] = (-np.inf, np.inf),
-        jacobian: Callable[[Floats, Floats], ArrayLike] | None = None,
-    ) -> None:
-        _check.function("function", function)
-        if jacobian is not None:
-            _check.function("jacobian", jacobian)
-        first = _check.real_array("start", start, ndim=1)
-        called = [f"p{k}" for k in range(first.size)] if names is None else list(names)
-        if len(called) != first.size or len(set(called)) != first.size:
-            _check.refuse("names", names, f"there must be {first.size} different names, one a parameter")
-        self._function, self._derivative = function, jacobian
-        super().__init__(called, first, *bounds)
-
-    def on(self, x: Floats, place: Sequence[str]) -> At:
-        """Return the curve at points."""
-        return _Called(self._function, self._derivative, x)
-
-
-class _Called:
-    """A user's function at fixed points."""
-
-    def __init__(self, function: object, derivative: object, x: Floats) -> None:
-        self._function, self._derivative, self._x = function, derivative, x
-
-    def value(self, q: Floats) -> Floats:
-        """Return the curve, (point,)."""
-        return _check.called("function", self._function, self._x.copy(), q.copy(), shape=self._x.shape)
-
-    def jacobian(self, q: Floats) -> Floats:
-        """Return its derivative, (point, parameter)."""
-        if self._derivative is not None:
-            shape = (self._x.size, q.size)
-            return _check.called("jacobian", self._derivative, self._x.copy(), q.copy(), shape=shape)
-        columns = [self._difference(q, place) for place in range(q.size)]
-        return np.stack(columns, axis=1) if columns else np.zeros((self._x.size, 0))
-
-    def _difference(self, q: Floats, place: int) -> Floats:
-        step = _STEP * max(abs(q[place]), 1.0)
-        total = np.zeros_like(self._x)
-        for times, weight in ((-2, 1.0), (-1, -8.0), (1, 8.0), (2, -1.0)):
-            moved = q.copy()
-            moved[place] += times * step
-            total += weight / (12.0 * step) * self.value(moved)
-        return total
