@@ -7,8 +7,9 @@ from typing import Any, TypeAlias
 
 from .. import _check
 from ..kernels import CoefficientFunction
-from .light import COEFFICIENTS, FurtherOrders
+from .light import COEFFICIENTS
 from .measures import FUNCTIONS
+from .own_functions import FurtherOrders
 
 __all__ = ["Further", "checked_further"]
 

@@ -10,18 +10,14 @@ once for each number of flavours.
 from __future__ import annotations
 
 from functools import lru_cache
-from typing import TypeAlias
 
 import numpy as np
 
 from .._check import Floats
 from ..grid import ChebyshevGrid
-from ..kernels import CoefficientFunction
+from .own_functions import FurtherOrders, further_matrix
 
-__all__ = ["COEFFICIENTS", "FurtherOrders", "beta_coefficients", "light_matrices", "splitting"]
-
-#: One entry an order, each pairs of name and function.
-FurtherOrders: TypeAlias = tuple[tuple[tuple[str, CoefficientFunction], ...], ...]
+__all__ = ["COEFFICIENTS", "beta_coefficients", "light_matrices", "splitting"]
 
 COEFFICIENTS = ("ns+", "ns-", "pure singlet", "gluon")
 #: The highest power of a known of each structure function.
@@ -97,16 +93,6 @@ def light_matrices(
     made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
     made["gluon"] = [c[:, n:] for c in singlet]
     return {name: np.stack(made[name]) for name in COEFFICIENTS}
-
-
-@lru_cache(maxsize=64)
-def further_matrix(grid: ChebyshevGrid, kernel: CoefficientFunction | None, nf: int) -> Floats:
-    """Return the matrix (node, node) of a coefficient function of one's own; 0 where there is none."""
-    from .. import _core
-
-    if kernel is None:
-        return np.zeros((grid.nodes, grid.nodes))
-    return _core.convolution_matrix(grid.handle(), *kernel.evaluate(grid.handle().quadrature_z(), nf))
 
 
 def _plain(grid: ChebyshevGrid, order: int, function: str, name: str, nf: int) -> Floats:

@@ -15,7 +15,8 @@ from .._check import Floats
 from ..electroweak import Electroweak
 from ..grid import ChebyshevGrid
 from .couplings import Weights
-from .light import FurtherOrders, light_matrices
+from .light import light_matrices
+from .own_functions import FurtherOrders
 from .pullback import GLUON, MINUS, PLUS
 
 __all__ = ["Setting", "light_rows"]

@@ -174,6 +174,7 @@ def read_predict_job(path: PathLike) -> PredictJob:
     theory = Theory.from_dict(top.get("theory"), top.section("theory").where())
     source = top.section("input").only("file", "q2", "nf", "interpolate", "missing")
     data = top.section("data").only("file", "cut")
+    corrections, boundaries = _factors(path, top), _boundaries(top)
     prediction = top.section("prediction", {}).only("target_mass", "subtraction")
     chi_square = top.section("chi_square", {}).only("form", "reference")
     output = top.section("output").only("file", "picture")
@@ -187,7 +188,6 @@ def read_predict_job(path: PathLike) -> PredictJob:
         held = chi_square.get("reference", "data")
         reference = _check.choice("reference", held, ("data", "prediction"))
     target_mass = _yes_or_no(prediction, "target_mass")
-    corrections, boundaries = _factors(path, top), _boundaries(top)
     electroweak = _electroweak(top.section("electroweak", {}))
     given = _whole(_given(path, top, source), source)
     measured = _measured(path, data)
@@ -195,26 +195,6 @@ def read_predict_job(path: PathLike) -> PredictJob:
         top, theory, electroweak, given, measured, target_mass, subtraction, corrections, boundaries, form,
         reference, file, picture,
     )  # fmt: skip
-
-
-def _factors(path: PathLike, top: Section) -> list[KnownFactor]:
-    """Read the factors of [[factor]]."""
-    made = []
-    for section in sections(top, "factor"):
-        section.only("file", "target", "current", "name")
-        file = toml.beside(path, section.text("file"))
-        current, name = section.text("current", None), section.text("name", None)
-        with section.blame():
-            made.append(KnownFactor.read(file, targets=section.get("target"), current=current, name=name))
-    return made
-
-
-def _boundaries(top: Section) -> dict[str, float]:
-    """Return where regimes end, as far as the job says it."""
-    section = top.section("regimes", {}).only(*BOUNDARIES)
-    with section.blame():
-        given = {name: section.get(name) for name in BOUNDARIES if section.get(name, None) is not None}
-        return {name: _check.real(name, value, least=0.0) for name, value in given.items()}
 
 
 def _result(path: PathLike, output: Section, key: str, ending: str) -> str:
@@ -259,6 +239,26 @@ def _range(value: Any) -> Any:
     if not isinstance(value, list):
         return value
     return tuple(None if isinstance(v, float) and np.isinf(v) else v for v in value)
+
+
+def _factors(path: PathLike, top: Section) -> list[KnownFactor]:
+    """Read the factors of [[factor]]."""
+    made = []
+    for section in sections(top, "factor"):
+        section.only("file", "target", "current", "name")
+        file = toml.beside(path, section.text("file"))
+        current, name = section.text("current", None), section.text("name", None)
+        with section.blame():
+            made.append(KnownFactor.read(file, targets=section.get("target"), current=current, name=name))
+    return made
+
+
+def _boundaries(top: Section) -> dict[str, float]:
+    """Return where regimes end, as far as the job says it."""
+    section = top.section("regimes", {}).only(*BOUNDARIES)
+    with section.blame():
+        given = {name: section.get(name) for name in BOUNDARIES if section.get(name, None) is not None}
+        return {name: _check.real(name, value, least=0.0) for name, value in given.items()}
 
 
 def _whole(given: Densities, source: Section) -> Densities:
