@@ -19,6 +19,7 @@ __all__ = [
     "coefficient_function",
     "coefficient_matrix",
     "compose",
+    "convolution_matrix",
     "evolve",
     "massive_coefficient",
     "massive_rows",
@@ -193,6 +194,11 @@ def massive_coefficient(
 def splitting_matrix(grid: Grid, order: int, channel: str, nf: int) -> NDArray[np.float64]: ...
 def coefficient_matrix(
     grid: Grid, order: int, structure_function: str, coefficient: str, nf: int
+) -> NDArray[np.float64]: ...
+
+# the same of a kernel of the user: regular values at quadrature_z, plus coefficients, local part
+def convolution_matrix(
+    grid: Grid, regular: NDArray[np.float64], plus: NDArray[np.float64], local: float
 ) -> NDArray[np.float64]: ...
 
 # (point, node): from nodal values of the gluon or of the light quark to the contribution at each point; x and

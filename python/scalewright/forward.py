@@ -7,6 +7,7 @@ mu_f^2.
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -14,19 +15,25 @@ import numpy as np
 
 from . import _check
 from ._check import Floats, show
+from ._corrected.bound import Bound, checked
+from ._corrected.reported import described
 from ._measured.combination import Combination
 from ._observed import storing
 from ._observed.accuracy import row_errors
 from ._observed.carried import carried_matrix
 from ._observed.differences import TOLERANCE, Derivative, differentiated
+from ._observed.further import checked_further
+from ._observed.orders import Orders, orders_of
 from ._observed.points import Points
-from ._observed.problem import Problem
+from ._observed.problem import INTRINSIC, Problem
 from ._route import SAME_SCALE
+from .corrections import Correction
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError
 from .files.whole import PathLike
 from .grid import ChebyshevGrid
+from .kernels import CoefficientFunction
 from .theory import Theory
 
 __all__ = ["ForwardMap", "forward_map"]
@@ -85,6 +92,57 @@ class ForwardMap:
         """What each row is."""
         return self._problem.points
 
+    @property
+    def weights(self) -> Floats:
+        """Weights of F2, FL and xF3 in what each row is, (row, 3)."""
+        return self._problem.factors
+
+    def orders(self, boundaries: Mapping[str, float] | None = None) -> Orders:
+        """Return the formal order of the light, heavy and longitudinal part of each row, and its regime.
+
+        Parameters
+        ----------
+        boundaries : mapping, optional
+            Of the regimes: arguments of `scalewright.kinematics.regimes`.
+
+        Returns
+        -------
+        Orders
+            `light`, `heavy`, `fl` and `regime`, one entry a row; ``of_data(fmap.data)``: one a datum.
+
+        Raises
+        ------
+        InputError
+            If a boundary is unknown or no number.
+        """
+        return orders_of(self._problem, boundaries)
+
+    def describe(
+        self,
+        corrections: Sequence[Correction] | Correction = (),
+        boundaries: Mapping[str, float] | None = None,
+    ) -> str:
+        """Say of what order predictions are, in which regimes they lie, and what they are not corrected for.
+
+        Parameters
+        ----------
+        corrections : sequence of Correction
+            Those that go with the map, see `scalewright.corrections`.
+        boundaries : mapping, optional
+            As for `orders`.
+
+        Returns
+        -------
+        str
+            One screen.
+
+        Raises
+        ------
+        InputError
+            If something is no correction, or a boundary no number.
+        """
+        return described(self._problem, self.orders(boundaries), repr(self), checked(corrections))
+
     def predict_rows(self, densities: Densities | Floats) -> Floats:
         """Predict each row.
 
@@ -107,13 +165,17 @@ class ForwardMap:
         flat = self.matrix.reshape(self.matrix.shape[0], -1)
         return np.asarray(values.reshape(values.shape[0], -1) @ flat.T)
 
-    def predict(self, densities: Densities | Floats) -> Floats:
+    def predict(
+        self, densities: Densities | Floats, corrections: Sequence[Correction] | Correction = ()
+    ) -> Floats:
         """Predict each datum.
 
         Parameters
         ----------
         densities : Densities or array_like
             As for `predict_rows`.
+        corrections : sequence of Correction
+            See `scalewright.corrections`; at the start of their parameters, which `Correction.at` sets.
 
         Returns
         -------
@@ -124,7 +186,8 @@ class ForwardMap:
         InputError
             As `predict_rows`; or if a denominator vanishes.
         """
-        return self.data.predict(self.predict_rows(densities))
+        bound = Bound(corrections, self)
+        return self.data.predict(bound.corrected(self.predict_rows(densities), bound.start))
 
     def numerical_error(self, densities: Densities | Floats) -> Floats:
         """Estimate how far `predict` is off numerically: grid, quadrature, steps in scale, rounding.
@@ -219,6 +282,8 @@ class ForwardMap:
         ------
         StoreError
             If it cannot be written; an old file stays then.
+        InputError
+            If it has further coefficient functions: functions cannot be stored.
         """
         start = self.start_q2, self.start_nf
         storing.save(path, self._problem, start, self.flavours, self.matrix, self.data, self.steps_error)
@@ -269,7 +334,8 @@ class ForwardMap:
         held = {flavour: place for place, flavour in enumerate(densities.flavours)}
         for flavour, place in held.items():
             if flavour not in self.flavours and values[:, place].any():
-                _check.refuse("densities.flavours", flavour, f"not active at nf = {nf} and not zero")
+                what = f"not active at nf = {nf} and not zero: {INTRINSIC}"
+                _check.refuse("densities.flavours", flavour, what)
         absent = [flavour for flavour in self.flavours if flavour not in held]
         if absent:
             raise InputError(f"densities have no flavour {_check.show_all(absent)}, active at nf = {nf}")
@@ -291,6 +357,7 @@ def forward_map(
     electroweak: Electroweak | None = None,
     target_mass: bool = False,
     subtraction: str = "damped",
+    further: Mapping[str, Sequence[Mapping[str, CoefficientFunction]]] | None = None,
     tolerance: float | None = None,
     threads: int | None = None,
 ) -> ForwardMap:
@@ -317,6 +384,10 @@ def forward_map(
     subtraction : {"damped", "chi", "plain"}
         With heavy_quarks="matched": what is beyond the massive part is multiplied by (1 - m^2/Q^2)^2 above
         Q^2 = m^2 and dropped below; taken at x (1 + 4 m^2/Q^2); or left as it is.
+    further : mapping, optional
+        Coefficient functions of your own beyond the order of the theory: "F2", "FL" or "xF3" to a list with
+        one mapping an order, "ns+", "ns-", "pure singlet" or "gluon" to `CoefficientFunction`. They enter the
+        light parts; logarithms of scale ratios follow to a^3, beyond it the ratios must be 1.
     tolerance, threads
         As for `build_operators`.
 
@@ -346,7 +417,7 @@ def forward_map(
     """
     rows, data = _rows_and_data(points)
     electroweak = Electroweak.effective() if electroweak is None else electroweak
-    problem = Problem(theory, grid, electroweak, rows, target_mass, subtraction)
+    problem = Problem(theory, grid, electroweak, rows, target_mass, subtraction, checked_further(further))
     matrix, operators = carried_matrix(
         problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads
     )

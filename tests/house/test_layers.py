@@ -43,6 +43,8 @@ PYTHON_LAYERS = (
     ("measurements",),
     ("electroweak", "kinematics"),
     ("_observed",),
+    ("_corrected",),
+    ("corrections",),
     ("observables", "forward"),
     ("moments",),
     ("fitting",),

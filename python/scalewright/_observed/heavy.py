@@ -100,12 +100,14 @@ def beyond_pair(
 
 def to_first_order(setting: Setting) -> Setting:
     """Return the same with no power of a above the first."""
-    return replace(setting, highest={name: min(power, 1) for name, power in setting.highest.items()})
+    first = {name: min(power, 1) for name, power in setting.highest.items()}
+    return replace(setting, highest=first, further={})
 
 
 def at_q(setting: Setting, function: str, nf: int) -> dict[str, Floats]:
     """Return coefficient matrices to order a at mu_r = mu_f = Q."""
-    first = replace(setting, highest={name: 1 for name in FUNCTIONS}, mur2_ratio=1.0, muf2_ratio=1.0)
+    powers = dict.fromkeys(FUNCTIONS, 1)
+    first = replace(setting, highest=powers, mur2_ratio=1.0, muf2_ratio=1.0, further={})
     return first.matrices(function, nf)
 
 

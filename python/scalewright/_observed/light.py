@@ -15,6 +15,7 @@ import numpy as np
 
 from .._check import Floats
 from ..grid import ChebyshevGrid
+from .own_functions import FurtherOrders, further_matrix
 
 __all__ = ["COEFFICIENTS", "beta_coefficients", "light_matrices", "splitting"]
 
@@ -41,7 +42,13 @@ def splitting(grid: ChebyshevGrid, order: int, channel: str, nf: int) -> Floats:
 
 @lru_cache(maxsize=64)
 def light_matrices(
-    grid: ChebyshevGrid, function: str, highest: int, nf: int, mur2_ratio: float, muf2_ratio: float
+    grid: ChebyshevGrid,
+    function: str,
+    highest: int,
+    nf: int,
+    mur2_ratio: float,
+    muf2_ratio: float,
+    further: FurtherOrders = (),
 ) -> dict[str, Floats]:
     """Return the coefficients of a(mu_r)^k, k = 0 to `highest`, as matrices.
 
@@ -57,6 +64,8 @@ def light_matrices(
         Number of active flavours.
     mur2_ratio, muf2_ratio : float
         mu_r^2/Q^2 and mu_f^2/Q^2.
+    further : tuple of tuple
+        Coefficient functions beyond `highest`, one entry an order, pairs of name and function.
 
     Returns
     -------
@@ -65,14 +74,21 @@ def light_matrices(
     """
     t, lr = -float(np.log(muf2_ratio)), float(np.log(mur2_ratio / muf2_ratio))
     plain = {name: [_plain(grid, k, function, name, nf) for k in range(highest + 1)] for name in COEFFICIENTS}
-    plus, minus = ([splitting(grid, k, name, nf) for k in range(highest)] for name in ("ns+", "ns-"))
+    for order in further:
+        given = dict(order)
+        for name in COEFFICIENTS:
+            plain[name].append(further_matrix(grid, given.get(name), nf))
+    highest += len(further)
+    # beyond the known splitting functions the ratios of scales are 1, and these count for nothing
+    known = [min(k, 2) for k in range(highest)]
+    plus, minus = ([splitting(grid, k, name, nf) for k in known] for name in ("ns+", "ns-"))
     nonsinglet = {"ns+": (plain["ns+"], plus), "ns-": (plain["ns-"], minus)}
     made = {name: _shifted(c, p, t, lr, nf) for name, (c, p) in nonsinglet.items()}
     # the singlet as one row of two blocks (Sigma, gluon)
     both = [
         np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)
     ]
-    singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], t, lr, nf)
+    singlet = _shifted(both, [_singlet(grid, k, nf) for k in known], t, lr, nf)
     n = grid.nodes
     made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
     made["gluon"] = [c[:, n:] for c in singlet]

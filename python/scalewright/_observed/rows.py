@@ -7,7 +7,7 @@ coefficient matrices, times powers of a and the couplings of the quarks.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -16,6 +16,7 @@ from ..electroweak import Electroweak
 from ..grid import ChebyshevGrid
 from .couplings import Weights
 from .light import light_matrices
+from .own_functions import FurtherOrders
 from .pullback import GLUON, MINUS, PLUS
 
 __all__ = ["Setting", "light_rows"]
@@ -35,6 +36,8 @@ class Setting:
         Structure function -> highest power of a.
     mur2_ratio, muf2_ratio : float
         mu_r^2/Q^2 and mu_f^2/Q^2.
+    further : mapping
+        Structure function -> coefficient functions of the user beyond `highest`.
     """
 
     grid: ChebyshevGrid
@@ -42,12 +45,12 @@ class Setting:
     highest: Mapping[str, int]
     mur2_ratio: float
     muf2_ratio: float
+    further: Mapping[str, FurtherOrders] = field(default_factory=dict)
 
     def matrices(self, function: str, nf: int) -> dict[str, Floats]:
         """Return the coefficient matrices of one structure function."""
-        return light_matrices(
-            self.grid, function, self.highest[function], nf, self.mur2_ratio, self.muf2_ratio
-        )
+        ratios, own = (self.mur2_ratio, self.muf2_ratio), self.further.get(function, ())
+        return light_matrices(self.grid, function, self.highest[function], nf, *ratios, own)
 
 
 def light_rows(setting: Setting, nodal: Mapping[str, Floats], weights: Weights, a: Floats, nf: int) -> Floats:

@@ -11,6 +11,8 @@ import numpy as np
 
 from .. import _check
 from .._check import Floats, refuse, show
+from .._measured.description import sections
+from ..corrections import KnownFactor
 from ..densities import Densities
 from ..electroweak import Electroweak
 from ..errors import InputError, StoreError
@@ -19,6 +21,7 @@ from ..files.csv import Lattice, write_lattice
 from ..files.toml import Section
 from ..files.whole import PathLike
 from ..grid import ChebyshevGrid
+from ..kinematics import BOUNDARIES
 from ..measurements import Measurements
 from ..theory import Theory
 
@@ -122,6 +125,10 @@ class PredictJob:
         The data, after cuts.
     target_mass, subtraction
         As for `forward_map`.
+    corrections
+        Known factors of deuterons and nuclei.
+    boundaries
+        Of the regimes, where they are not those by default.
     form, reference
         Of chi-square; `reference` is "data" or "prediction".
     file
@@ -137,6 +144,8 @@ class PredictJob:
     measured: Measurements
     target_mass: bool
     subtraction: str
+    corrections: list[KnownFactor]
+    boundaries: dict[str, float]
     form: str
     reference: str
     file: str
@@ -159,11 +168,13 @@ def read_predict_job(path: PathLike) -> PredictJob:
         If the job or a file that it names cannot be read.
     """
     top = toml.load(path).only(
-        "theory", "electroweak", "grid", "input", "data", "prediction", "chi_square", "output"
-    )
+        "theory", "electroweak", "grid", "input", "data", "prediction", "factor", "regimes", "chi_square",
+        "output",
+    )  # fmt: skip
     theory = Theory.from_dict(top.get("theory"), top.section("theory").where())
     source = top.section("input").only("file", "q2", "nf", "interpolate", "missing")
     data = top.section("data").only("file", "cut")
+    corrections, boundaries = _factors(path, top), _boundaries(top)
     prediction = top.section("prediction", {}).only("target_mass", "subtraction")
     chi_square = top.section("chi_square", {}).only("form", "reference")
     output = top.section("output").only("file", "picture")
@@ -181,8 +192,9 @@ def read_predict_job(path: PathLike) -> PredictJob:
     given = _whole(_given(path, top, source), source)
     measured = _measured(path, data)
     return PredictJob(
-        top, theory, electroweak, given, measured, target_mass, subtraction, form, reference, file, picture
-    )
+        top, theory, electroweak, given, measured, target_mass, subtraction, corrections, boundaries, form,
+        reference, file, picture,
+    )  # fmt: skip
 
 
 def _result(path: PathLike, output: Section, key: str, ending: str) -> str:
@@ -227,6 +239,26 @@ def _range(value: Any) -> Any:
     if not isinstance(value, list):
         return value
     return tuple(None if isinstance(v, float) and np.isinf(v) else v for v in value)
+
+
+def _factors(path: PathLike, top: Section) -> list[KnownFactor]:
+    """Read the factors of [[factor]]."""
+    made = []
+    for section in sections(top, "factor"):
+        section.only("file", "target", "current", "name")
+        file = toml.beside(path, section.text("file"))
+        current, name = section.text("current", None), section.text("name", None)
+        with section.blame():
+            made.append(KnownFactor.read(file, targets=section.get("target"), current=current, name=name))
+    return made
+
+
+def _boundaries(top: Section) -> dict[str, float]:
+    """Return where regimes end, as far as the job says it."""
+    section = top.section("regimes", {}).only(*BOUNDARIES)
+    with section.blame():
+        given = {name: section.get(name) for name in BOUNDARIES if section.get(name, None) is not None}
+        return {name: _check.real(name, value, least=0.0) for name, value in given.items()}
 
 
 def _whole(given: Densities, source: Section) -> Densities:

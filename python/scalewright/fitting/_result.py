@@ -77,7 +77,7 @@ class FitResult:
     Attributes
     ----------
     names : tuple of str
-        Parameters of the shape, then of the theory.
+        Parameters of the shape, then of corrections, then of the theory.
     parameters : ndarray, (parameter,)
     chi2, chi2_priors : float
         Of the data, and of the priors.
@@ -305,8 +305,8 @@ class FitResult:
     def _held(self, place: int, value: float) -> Solution:
         """Fit with one parameter held."""
         problem = self._problem
-        if self._rebuild is not None and place >= len(problem.shape.names):
-            at = dict(zip(problem.reference, self.parameters[len(problem.shape.names) :], strict=True))
+        if self._rebuild is not None and place >= problem.first_theory:
+            at = dict(zip(problem.reference, self.parameters[problem.first_theory :], strict=True))
             at[self.names[place]] = value
             problem = self._rebuild({key: float(number) for key, number in at.items()})
         return solve(problem, self.parameters, held={place: value})

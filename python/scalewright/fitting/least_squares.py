@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -10,6 +10,7 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats
+from .._corrected.bound import Correction
 from ..errors import InputError
 from ._problem import Distance, Map, Problem, Theory
 from ._result import BlindDirection, FitResult, Profile
@@ -31,6 +32,7 @@ def fit(
     start: ArrayLike | Mapping[str, float] | None = None,
     theory: Theory = (),
     priors: Mapping[str, tuple[float, float]] | None = None,
+    corrections: Sequence[Correction] | Correction = (),
     rebuild: Callable[[Mapping[str, float]], Map] | None = None,
     delta_chi2: float = 1.0,
     evaluations: int | None = None,
@@ -53,6 +55,9 @@ def fit(
         does not say it itself.
     priors : mapping
         Name -> (value, standard deviation), besides those of the shape.
+    corrections : sequence of Correction
+        Higher twist, deuteron and nuclear factors, see `scalewright.corrections`; their parameters are fitted
+        as well.
     rebuild : callable, optional
         ``f({"alpha_s": value, ...})`` returning the map for other theory parameters. With it the fit is
         repeated until they lie within 0.01 of their uncertainty of those of the map; without it their effect
@@ -106,18 +111,18 @@ def fit(
     for name, function in (("rebuild", rebuild), ("callback", callback)):
         if function is not None:
             _check.function(name, function)
-    problem = Problem(fmap, chi2, shape, theory, priors)
+    problem = Problem(fmap, chi2, shape, theory, priors, corrections=corrections)
     problem.check_enough()
     begin = starting(problem, start)
-    again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors)
+    again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors, corrections)
     solution = solve(problem, begin, evaluations=evaluations, callback=callback)
     rebuilt = 0
     while again is not None and _is_far(problem, solution):
         if rebuilt == _REBUILDS:
             moved = _check.show_all(problem.reference)
             raise InputError(f"rebuild: {moved} has not settled after {rebuilt} maps")
-        count = len(shape.names)
-        at = dict(zip(problem.reference, solution.parameters[count:].tolist(), strict=True))
+        found = solution.parameters[problem.first_theory :]
+        at = dict(zip(problem.reference, found.tolist(), strict=True))
         problem = again(at)
         solution = solve(problem, solution.parameters, evaluations=evaluations, callback=callback)
         rebuilt += 1
@@ -127,12 +132,14 @@ def fit(
 class _Rebuilder:
     """The problem of a fit, for other theory parameters."""
 
-    def __init__(self, rebuild: Any, chi2: Distance, shape: Shape, priors: Any) -> None:
+    def __init__(self, rebuild: Any, chi2: Distance, shape: Shape, priors: Any, corrections: Any) -> None:
         self._rebuild, self._chi2, self._shape, self._priors = rebuild, chi2, shape, priors
+        self._corrections = corrections
 
     def __call__(self, at: Mapping[str, float]) -> Problem:
         fmap = _check.raised("rebuild", self._rebuild, dict(at))
-        return Problem(fmap, self._chi2, self._shape, dict(at), self._priors)
+        own = self._corrections
+        return Problem(fmap, self._chi2, self._shape, dict(at), self._priors, corrections=own)
 
 
 def starting(problem: Problem, start: Any) -> Floats:
@@ -159,7 +166,7 @@ def starting(problem: Problem, start: Any) -> Floats:
 
 def _is_far(problem: Problem, solution: Solution) -> bool:
     """Say whether theory parameters lie further from those of the map than a small part of their error."""
-    count = len(problem.shape.names)
+    count = problem.first_theory
     moved = solution.parameters[count:] - problem.start[count:]
     if not moved.any():
         return False

@@ -6,7 +6,7 @@ they finish, nor a kill and a new start change a bit of it.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from contextlib import closing
 from typing import TYPE_CHECKING, Any
 
@@ -15,6 +15,7 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats
+from .._corrected.bound import Correction
 from .._progress import Progress, watcher
 from ..errors import ScalewrightError
 from ..files.whole import PathLike
@@ -54,6 +55,7 @@ def fit_replicas(
     journal: PathLike | None = None,
     progress: Progress = False,
     evaluations: int | None = None,
+    corrections: Sequence[Correction] | Correction = (),
     validation: float = 0.0,
     patience: int = 5,
     limit: float = 3600.0,
@@ -71,7 +73,7 @@ def fit_replicas(
         How many in all, those of the journal included.
     seed : int
         Replica i draws from ``numpy.random.SeedSequence(seed, spawn_key=(i,))``.
-    start, theory, priors, evaluations
+    start, theory, priors, corrections, evaluations
         As for `fit`. By default each replica starts from the best fit to the data; with `validation` from the
         start of the shape. The values of priors are drawn, like data.
     executor : Executor, callable that makes one, or Dask client, optional
@@ -140,7 +142,7 @@ def fit_replicas(
     if not isinstance(chi2, ChiSquare):
         _check.refuse("chi2", chi2, f"chi2 must be a ChiSquare, not {type(chi2).__name__}")
     stopping = Stopping.of(validation, patience)
-    problem = Problem(fmap, chi2, shape, theory, priors, compressed=stopping is None)
+    problem = Problem(fmap, chi2, shape, theory, priors, corrections=corrections, compressed=stopping is None)
     if stopping is None:
         problem.check_enough()
     begin = starting(problem, start)

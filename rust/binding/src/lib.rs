@@ -16,7 +16,8 @@ use pyo3::prelude::*;
 mod _core {
     #[pymodule_export]
     use crate::coefficients::{
-        coefficient_function, coefficient_matrix, massive_coefficient, massive_rows, splitting_matrix,
+        coefficient_function, coefficient_matrix, convolution_matrix, massive_coefficient, massive_rows,
+        splitting_matrix,
     };
     #[pymodule_export]
     use crate::grid::Grid;
