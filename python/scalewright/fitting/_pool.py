@@ -213,10 +213,15 @@ class _Run:
 
 def _task(ticket: Ticket, indices: list[int]) -> list[Outcome] | Missing:
     """Compute some replicas in a worker."""
+    unread = ""
     try:
         work = content(ticket)
-    except Exception as error:  # as words: an exception that cannot be read elsewhere would end the engine
-        raise InputError(f"shape cannot be read in a worker: {type(error).__name__}: {error}") from None
+    except Exception as error:
+        unread = f"{type(error).__name__}: {error}"
+    # As words, and outside of the handler: an exception that cannot be read elsewhere would end the engine, and
+    # some engines send what an exception came from as well.
+    if unread:
+        raise InputError(f"shape cannot be read in a worker: {unread}")
     if isinstance(work, Missing):
         return work
     return [work.replica(index) for index in indices]
