@@ -218,8 +218,8 @@ def _task(ticket: Ticket, indices: list[int]) -> list[Outcome] | Missing:
         work = content(ticket)
     except Exception as error:
         unread = f"{type(error).__name__}: {error}"
-    # As words, and outside of the handler: an exception that cannot be read elsewhere would end the engine, and
-    # some engines send what an exception came from as well.
+    # As words, and outside of the handler: an exception that cannot be read elsewhere would end the engine,
+    # and some engines send what an exception came from as well.
     if unread:
         raise InputError(f"shape cannot be read in a worker: {unread}")
     if isinstance(work, Missing):
