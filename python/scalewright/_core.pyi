@@ -21,6 +21,7 @@ __all__ = [
     "compose",
     "convolution_matrix",
     "evolve",
+    "light_rows",
     "massive_coefficient",
     "massive_rows",
     "matching_element",
@@ -94,6 +95,21 @@ class Evolution:
     def values(
         self, q2: NDArray[np.float64], nf: NDArray[np.int64], threads: int
     ) -> tuple[NDArray[np.float64], NDArray[np.float64]]: ...
+    # rows (point, 13, node) as of light_rows, at scales (scale,) of points; protons (point,) the fraction of
+    # protons in each target; written to rows `places` (point,) of out (row, flavour, node)
+    def pull_back(
+        self,
+        rows: NDArray[np.float64],
+        *,
+        q2: NDArray[np.float64],
+        nf: NDArray[np.int64],
+        scale_of: NDArray[np.int64],
+        protons: NDArray[np.float64],
+        flavours: NDArray[np.int64],
+        places: NDArray[np.int64],
+        out: NDArray[np.float64],
+        threads: int,
+    ) -> None: ...
 
 # intrinsic: heavy flavours above start_nf whose input is allowed; threads 0: all; further: user kernels as
 # (order k, nf, channel, regular values at quadrature_z, plus coefficients, local)
@@ -206,3 +222,26 @@ def convolution_matrix(
 def massive_rows(
     grid: Grid, what: str, x: NDArray[np.float64], q2: NDArray[np.float64], mass: float
 ) -> NDArray[np.float64]: ...
+
+# matrices (term, node, node), and to each its structure function (0 to 2: F2, FL, xF3), its part (0 to 3:
+# "ns+", "ns-", "pure singlet", "gluon") and its column of powers (point, power); f2, fl, xf3 (point, node),
+# weights of nodal values; even, odd, even3, odd3 (point, 6), couplings; out (point, 13, node): gluon,
+# q + qbar, q - qbar
+def light_rows(
+    grid: Grid,
+    *,
+    matrices: NDArray[np.float64],
+    functions: NDArray[np.int64],
+    parts: NDArray[np.int64],
+    orders: NDArray[np.int64],
+    f2: NDArray[np.float64],
+    fl: NDArray[np.float64],
+    xf3: NDArray[np.float64],
+    powers: NDArray[np.float64],
+    even: NDArray[np.float64],
+    odd: NDArray[np.float64],
+    even3: NDArray[np.float64],
+    odd3: NDArray[np.float64],
+    nf: int,
+    out: NDArray[np.float64],
+) -> None: ...

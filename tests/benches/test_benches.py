@@ -9,7 +9,20 @@ import sys
 import pytest
 from house.tree import ROOT
 
-BENCHES = ("accuracy", "apply", "build", "ensemble", "evolve", "fit", "memory", "plain", "unit")
+BENCHES = (
+    "accuracy",
+    "apply",
+    "build",
+    "ensemble",
+    "evolve",
+    "fit",
+    "forward",
+    "memory",
+    "plain",
+    "plain_forward",
+    "quoted_error",
+    "unit",
+)
 
 
 @pytest.mark.parametrize("bench", BENCHES)

@@ -1,22 +1,33 @@
-"""The matrix of a table: rows of all points carried back to the input, scale by scale in bounded memory."""
+"""The matrix of a table: rows of all points carried back to the input, some points at a time.
+
+The operators of single scales are never made: the compiled core multiplies rows by what it holds of the
+evolution, so that memory is that of the rows of some points and the time next to independent of the number of
+scales.
+"""
 
 from __future__ import annotations
 
 from collections.abc import Iterator
+from typing import TYPE_CHECKING
 
 import numpy as np
 
+from .._carry import thread_count
 from .._check import Floats, Integers
+from .._route import Live
 from ..build import build_operators
 from ..operators import Operators
 from .point_rows import point_rows
 from .problem import Problem
-from .pullback import flavour_rows, pulled_back
+from .pullback import CHANNELS
 
-__all__ = ["carried_matrix", "scale_groups"]
+if TYPE_CHECKING:
+    from .. import _core
 
-#: Scales whose operators are held at a time, and points whose rows are unless one scale has more: some 30 MB.
-_SCALES, _POINTS = 32, 512
+__all__ = ["carried_matrix", "scale_groups", "with_target"]
+
+#: Points whose rows are held at a time: some 4 MB.
+_POINTS = 512
 
 
 def scale_groups(problem: Problem) -> tuple[Floats, Integers, Integers]:
@@ -60,37 +71,46 @@ def carried_matrix(
     )
     flavours = operators._route.active
     matrix = np.empty((len(problem.points), len(flavours), problem.grid.nodes))
-    members = [np.flatnonzero(group == scale) for scale in range(q2.size)]
-    for chunk in _chunks(nf, [part.size for part in members]):
-        blocks, _ = operators._source.at(q2[chunk], nf[chunk], 0)
-        together = np.concatenate([members[scale] for scale in chunk])
-        rows = point_rows(problem, together, int(nf[chunk[0]]))
-        start = 0
-        for place, scale in enumerate(chunk):
-            named = dict(zip(operators.block_names, blocks[place], strict=True))
-            some = members[scale]
-            back = pulled_back(rows[start : start + some.size], named, operators.light)
-            back = flavour_rows(back, flavours)
-            matrix[some] = with_target(back, problem.points.protons[some], flavours)
-            start += some.size
+    if isinstance(operators._source, Live):  # what `build_operators` makes
+        numbers = np.asarray(flavours, dtype=np.int64)
+        _carry(problem, operators._source.evolution, numbers, matrix, (q2, nf, group), thread_count(threads))
     return matrix, operators
 
 
-def _chunks(nf: Integers, sizes: list[int]) -> Iterator[Integers]:
-    """Yield scales that share a number of flavours, few enough to hold their operators and rows at once."""
-    start = 0
-    while start < nf.size:
-        end, points = start + 1, sizes[start]
-        while (
-            end < nf.size
-            and nf[end] == nf[start]
-            and end - start < _SCALES
-            and points + sizes[end] <= _POINTS
-        ):
-            points += sizes[end]
-            end += 1
-        yield np.arange(start, end)
-        start = end
+def _carry(
+    problem: Problem,
+    evolution: _core.Evolution,
+    flavours: Integers,
+    matrix: Floats,
+    groups: tuple[Floats, Integers, Integers],
+    threads: int,
+) -> None:
+    """Write rows of all points on the input, `matrix` (row, flavour, node), some points at a time."""
+    q2, nf, group = groups
+    room = np.empty((min(_POINTS, group.size), CHANNELS, problem.grid.nodes))
+    for members in _chunks(nf, group):
+        scales, scale_of = np.unique(group[members], return_inverse=True)
+        rows = point_rows(problem, members, int(nf[scales[0]]), room[: members.size])
+        evolution.pull_back(
+            rows,
+            q2=q2[scales],
+            nf=nf[scales],
+            scale_of=scale_of.astype(np.int64),
+            protons=problem.points.protons[members],
+            flavours=flavours,
+            places=members,
+            out=matrix,
+            threads=threads,
+        )
+
+
+def _chunks(nf: Integers, group: Integers) -> Iterator[Integers]:
+    """Yield points that share a number of flavours, by growing scale, few enough to hold their rows."""
+    order = np.argsort(group, kind="stable")
+    for count in np.unique(nf):
+        some = order[nf[group[order]] == count]
+        for start in range(0, some.size, _POINTS):
+            yield some[start : start + _POINTS]
 
 
 def with_target(rows: Floats, protons: Floats, flavours: tuple[int, ...]) -> Floats:

@@ -87,7 +87,7 @@ def beyond_pair(
     even[:, quark - 1] = charge2
     nothing = np.zeros_like(even)
     photon = {name: nodal[name] for name in FUNCTIONS[:2]}
-    rows = light_rows(short, photon, Weights(even, nothing, nothing, nothing), a, nf)
+    rows = light_rows(short, photon, Weights(even, nothing, nothing, nothing), short.powers(a), nf)
     logarithm = np.log(q2 / mass**2)[:, np.newaxis]
     for function, of_nodes in photon.items():
         if short.highest[function] >= 1:

@@ -10,16 +10,26 @@ once for each number of flavours.
 from __future__ import annotations
 
 from functools import lru_cache
+from typing import NamedTuple
 
 import numpy as np
 
-from .._check import Floats
+from .._check import Floats, Integers
 from ..grid import ChebyshevGrid
 from .own_functions import FurtherOrders, further_matrix
 
-__all__ = ["COEFFICIENTS", "beta_coefficients", "light_matrices", "splitting"]
+__all__ = [
+    "COEFFICIENTS",
+    "LIGHT_FUNCTIONS",
+    "Terms",
+    "beta_coefficients",
+    "light_matrices",
+    "light_terms",
+    "splitting",
+]
 
 COEFFICIENTS = ("ns+", "ns-", "pure singlet", "gluon")
+LIGHT_FUNCTIONS = ("F2", "FL", "xF3")
 #: The highest power of a known of each structure function.
 HIGHEST = {"F2": 2, "FL": 3, "xF3": 2}
 
@@ -30,6 +40,56 @@ def beta_coefficients(nf: int) -> tuple[float, float]:
     W. Caswell, Phys. Rev. Lett. 33 (1974) 244; D. Jones, Nucl. Phys. B75 (1974) 531.
     """
     return 11.0 - 2.0 / 3.0 * nf, 102.0 - 38.0 / 3.0 * nf
+
+
+class Terms(NamedTuple):
+    """Coefficient matrices that rows are sums of, one a structure function, coefficient and power of a.
+
+    Attributes
+    ----------
+    matrices : ndarray, (term, node, node)
+    functions, parts, orders : ndarray of int, (term,)
+        Index in `LIGHT_FUNCTIONS`, index in `COEFFICIENTS`, power of a.
+    """
+
+    matrices: Floats
+    functions: Integers
+    parts: Integers
+    orders: Integers
+
+
+@lru_cache(maxsize=32)
+def light_terms(
+    grid: ChebyshevGrid,
+    highest: tuple[int, ...],
+    nf: int,
+    mur2_ratio: float,
+    muf2_ratio: float,
+    further: tuple[FurtherOrders, ...] = ((), (), ()),
+) -> Terms:
+    """Return all coefficients that do not vanish.
+
+    They depend on neither coupling nor scale: kept for the life of the process.
+
+    Parameters
+    ----------
+    grid : ChebyshevGrid
+    highest : tuple of int
+        Highest power of a of each of `LIGHT_FUNCTIONS`.
+    nf, mur2_ratio, muf2_ratio
+        As for `light_matrices`.
+    further : tuple of tuple
+        The same of each of `LIGHT_FUNCTIONS`.
+    """
+    found = []
+    for place, function in enumerate(LIGHT_FUNCTIONS):
+        made = light_matrices(grid, function, highest[place], nf, mur2_ratio, muf2_ratio, further[place])
+        for part, name in enumerate(COEFFICIENTS):
+            powers = enumerate(made[name])
+            found += [(matrix, place, part, order) for order, matrix in powers if matrix.any()]
+    matrices, functions, parts, orders = zip(*found, strict=True)
+    numbers = (np.asarray(column, dtype=np.int64) for column in (functions, parts, orders))
+    return Terms(np.stack(matrices), *numbers)
 
 
 @lru_cache(maxsize=512)
@@ -110,6 +170,8 @@ def _singlet(grid: ChebyshevGrid, order: int, nf: int) -> Floats:
 
 def _shifted(c: list[Floats], p: list[Floats], t: float, lr: float, nf: int) -> list[Floats]:
     """Return coefficients at mu_f and mu_r from those at Q."""
+    if t == 0.0 and lr == 0.0:
+        return c
     b0, b1 = beta_coefficients(nf)
     moved = _with_logarithms(c, p, t, b0, b1)
     # a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3 with a = a(mu_r)

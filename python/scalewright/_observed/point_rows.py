@@ -20,7 +20,7 @@ __all__ = ["light_weights", "nodal_weights", "point_rows"]
 _CHARM = 4
 
 
-def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
+def point_rows(problem: Problem, chosen: Integers, nf: int, out: Floats | None = None) -> Floats:
     """Return rows on gluon, q + qbar and q - qbar at the mu_f of each point.
 
     Parameters
@@ -30,6 +30,8 @@ def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
         Which points; all with `nf` flavours.
     nf : int
         Number of active flavours.
+    out : ndarray, (point, 13, node), optional
+        Where to write.
 
     Returns
     -------
@@ -44,7 +46,7 @@ def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
     else:
         nodal = nodal_weights(problem, points.x, factors)
     weights = light_weights(problem, points, nf, scheme == "matched")
-    rows = light_rows(problem.setting, nodal, weights, a, nf)
+    rows = light_rows(problem.setting, nodal, weights, problem.setting.powers(a), nf, out=out)
     if scheme != "massless":
         for quark in HEAVY:
             _add_pairs(rows, problem, points, factors, a, nf, quark)
@@ -114,6 +116,7 @@ def _add_charm(rows: Floats, problem: Problem, points: Points, factors: Floats, 
         nodal = nodal_weights(problem, at, factors)
         whole = charged(part, problem.electroweak, nf)
         weights = whole.plus(charged(part, problem.electroweak, nf, _CHARM), -1.0)
-        beyond = light_rows(to_first_order(setting), nodal, weights, a, nf)
+        short = to_first_order(setting)
+        beyond = light_rows(short, nodal, weights, short.powers(a), nf)
         beyond -= limit_rows(setting, nodal, part.q2, a, nf, mass, negative)
         rows[some] += suppression(problem.subtraction, part.q2, mass)[:, np.newaxis, np.newaxis] * beyond

@@ -17,11 +17,13 @@ const TOGETHER: usize = 8;
 
 /// A set of operators, dense in scale along its route.
 pub struct Evolution {
-    theory: Theory,
+    pub(super) theory: Theory,
     nodes: usize,
-    route: Route,
-    chunks: Vec<Chunk>,
+    pub(super) route: Route,
+    pub(super) chunks: Vec<Chunk>,
     layouts: Vec<Layout>,
+    /// Heavy flavours of the input.
+    pub(super) heavy: Vec<usize>,
     names: Vec<String>,
     flow_names: Vec<String>,
     error: f64,
@@ -29,11 +31,11 @@ pub struct Evolution {
 }
 
 /// Columns that belong to one panel of input nodes: they are carried along the whole route by themselves.
-struct Chunk {
-    family: Family,
+pub(super) struct Chunk {
+    pub(super) family: Family,
     /// `(input channel, input node)` of each column.
-    columns: Vec<(usize, usize)>,
-    legs: Vec<LegColumns>,
+    pub(super) columns: Vec<(usize, usize)>,
+    pub(super) legs: Vec<LegColumns>,
 }
 
 /// Builds the set.
@@ -78,6 +80,7 @@ fn finish(
         nodes: grid.nodes(),
         chunks,
         layouts: inputs.layouts(&families),
+        heavy: inputs.heavy.clone(),
         names: inputs.block_names(&families),
         flow_names: inputs.flow_names(&families),
         error,
