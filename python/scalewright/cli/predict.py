@@ -44,7 +44,8 @@ with job.toml:
   file = "run1.toml"                  # a description of measured points, or a list of them
   cut = { q2 = [3.5, inf] }           # also x, w2, y: least and most
 
-  # [[factor]]                        # of a deuteron or nucleus; none by default
+  # [[correction]]                    # none by default; "higher twist" and "target factor" too
+  # kind = "known factor"
   # target = "deuteron"               # { z = 26, a = 56 }; or a list of them
   # file = "deuteron.csv"             # columns x, factor; others are its uncertainties
 
