@@ -72,7 +72,8 @@ def run(options: argparse.Namespace) -> None:
     start = time.perf_counter()
     with job.place.blame():
         fmap, mean = _mapped(job)
-        predicted, error = fmap.predict(job.given, job.corrections), fmap.numerical_error(mean)[0]
+        predicted = fmap.predict(job.given, job.corrections)
+        error = fmap.numerical_error(mean, job.corrections)[0]
         prediction = predicted.mean(axis=0)
         reference = prediction if job.reference == "prediction" else None
         theory = covariance(fmap, job.corrections, mean) if job.corrections else None
