@@ -42,6 +42,7 @@ from .files.whole import PathLike
 
 __all__ = [
     "Correction",
+    "Curve",
     "Function",
     "HigherTwist",
     "KnownFactor",

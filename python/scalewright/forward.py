@@ -189,13 +189,15 @@ class ForwardMap:
         bound = Bound(corrections, self)
         return self.data.predict(bound.corrected(self.predict_rows(densities), bound.start))
 
-    def numerical_error(self, densities: Densities | Floats) -> Floats:
+    def numerical_error(
+        self, densities: Densities | Floats, corrections: Sequence[Correction] | Correction = ()
+    ) -> Floats:
         """Estimate how far `predict` is off numerically: grid, quadrature, steps in scale, rounding.
 
         Parameters
         ----------
-        densities : Densities or array_like
-            As for `predict_rows`.
+        densities, corrections
+            As for `predict`.
 
         Returns
         -------
@@ -214,7 +216,10 @@ class ForwardMap:
         """
         values = self._values(densities)
         errors = row_errors(self.grid, self.matrix, values, self.steps_error)
-        rows = self.predict_rows(values)
+        bound, rows = Bound(corrections, self), self.predict_rows(values)
+        if bound.parts:
+            errors = errors * np.abs(bound.values(bound.start)[0])
+            rows = bound.corrected(rows, bound.start)
         made = [
             np.abs(self.data.tangent(row, np.diag(error))).sum(axis=1)
             for row, error in zip(rows, errors, strict=True)

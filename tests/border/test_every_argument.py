@@ -240,7 +240,7 @@ CALLS = {
     "ForwardMap.describe": (FMAP.describe, {"corrections": (), "boundaries": None}),
     "ForwardMap.orders": (FMAP.orders, {"boundaries": None}),
     "ForwardMap.predict_rows": (FMAP.predict_rows, {"densities": FULL}),
-    "ForwardMap.numerical_error": (FMAP.numerical_error, {"densities": FULL}),
+    "ForwardMap.numerical_error": (FMAP.numerical_error, {"densities": FULL, "corrections": ()}),
     "ForwardMap.derivative": (FMAP.derivative, {"parameter": "alpha_s"}),
     "ForwardMap.differences": (FMAP.differences, {"parameter": "alpha_s"}),
     "structure_function": (

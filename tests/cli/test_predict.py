@@ -146,7 +146,7 @@ def test_orders_regimes_and_what_is_not_corrected_are_said(run, tmp_path, write)
 
 
 def test_known_factors_multiply_and_their_uncertainty_is_common(run, tmp_path, start, write):
-    factor = '[[factor]]\ntarget = "deuteron"\nfile = "factor.csv"\n'
+    factor = '[[correction]]\nkind = "known factor"\ntarget = "deuteron"\nfile = "factor.csv"\n'
     write(('beam = "e+"', 'beam = "e+"\ntarget = "deuteron"'), ("[output]", factor + "[output]"))
     (tmp_path / "factor.csv").write_text("x,factor,model\n0.001,1.0,0.0\n0.3,0.9,0.02\n")
     done = run("predict", "job.toml")
@@ -309,25 +309,13 @@ WRONG = {
         [("[output]", '[prediction]\nsubtraction = "dampened"\n[output]')],
         "job.toml: [prediction]: subtraction = 'dampened': subtraction must be one of",
     ),
-    "a factor without file": (
-        [("[output]", '[[factor]]\ntarget = "deuteron"\n[output]')],
-        "job.toml: [factor 1] file: missing",
-    ),
-    "a factor of a target that is not there": (
-        [("[output]", '[[factor]]\nfile = "run1.csv"\ntarget = "lead"\n[output]')],
-        "job.toml: [factor 1]: run1.csv: no column 'factor'",
-    ),
-    "an unknown key of a factor": (
-        [("[output]", '[[factor]]\nfiles = "run1.csv"\n[output]')],
-        'job.toml: [factor 1] files: unknown key; did you mean "file"?',
+    "a correction of no kind": (
+        [("[output]", '[[correction]]\nkind = "higher twists"\n[output]')],
+        'job.toml: [correction 1]: kind = \'higher twists\': kind must be one of "known factor", "higher',
     ),
     "an unknown boundary": (
         [("[output]", "[regimes]\nlow_q = 2\n[output]")],
         "job.toml: [regimes] low_q: unknown key",
-    ),
-    "a boundary that is none": (
-        [("[output]", '[regimes]\nlow_q2 = "2"\n[output]')],
-        "job.toml: [regimes]: low_q2 = '2': low_q2 must be real numbers",
     ),
     "form": (
         [("[output]", '[chi_square]\nform = "matrix"\n[output]')],

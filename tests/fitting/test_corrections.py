@@ -13,9 +13,9 @@ TRUE_H = np.array([0.4, -0.9])
 TRUE = np.array([1.1, 0.4, 0.25])
 
 
-def rows(count=64):
+def rows(count=64, alpha_s=0.35):
     """Return a map of proton and deuteron rows alternating, the deuteron like the proton."""
-    plain = problems.fmap(count_q2=count // 8)
+    plain = problems.fmap(alpha_s, count_q2=count // 8)
     x, q2 = (np.array(column) for column in problems.points(count_q2=count // 8))
     target = tuple("deuteron" if row % 2 else "proton" for row in range(count))
     points = SimpleNamespace(
@@ -71,6 +71,25 @@ def test_residuals_have_the_exact_derivative_with_theory_parameters_too():
         found = (8 * (r[1] - r[-1]) - (r[2] - r[-2])) / (12 * step)  # error h^4 and rounding over h
         scale = np.abs(found).max()
         np.testing.assert_allclose(exact[:, place], found, atol=1e-9 * scale, err_msg=name)
+
+
+def test_theory_parameters_come_after_those_of_corrections():
+    # data of another coupling: the map is built anew until it is that of the fit
+    shape = problems.quick_shape()
+    other = Problem(
+        rows(alpha_s=0.36), sw.ChiSquare(problems.measured(np.ones(64))), shape, corrections=twist()
+    )
+    data = problems.measured(other.prediction(np.append(TRUE, TRUE_H)), size=0.005, common=0.002)
+    result = sw.fit(
+        rows(), sw.ChiSquare(data), shape, corrections=twist(), theory={"alpha_s": 0.35},
+        rebuild=lambda at: rows(alpha_s=at["alpha_s"]),
+    )  # fmt: skip
+    assert result.names[-1] == "alpha_s" and result.rebuilt >= 1 and result.converged
+    # what moving the map by less than 0.01 of the uncertainty leaves
+    miss = (result.parameters - np.concatenate([TRUE, TRUE_H, [0.36]])) / result.errors
+    assert np.abs(miss).max() < 0.02
+    profile = result.profile("alpha_s", [0.36])
+    assert profile.chi2[0] == pytest.approx(result.chi2, abs=1e-3)
 
 
 def test_corrections_without_parameters_become_part_of_the_map():

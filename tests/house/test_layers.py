@@ -209,7 +209,7 @@ def test_a_python_module_knows_only_those_before_it(module: str) -> None:
 @pytest.mark.parametrize("module", sorted(name for name in PYTHON_SOURCES if name))
 def test_formats_and_commands_do_not_know_their_siblings(module: str) -> None:
     # A command knows the report and the jobs; a format only how files are written whole.
-    siblings = {"files": {"whole"}, "cli": {"benchmark", "campaign", "jobs", "report"}}
+    siblings = {"files": {"whole"}, "cli": {"benchmark", "campaign", "correction_job", "jobs", "report"}}
     top, _, inner = module.partition(".")
     if not inner or top not in siblings or inner == "main":
         return

@@ -66,6 +66,10 @@ def test_each_target_has_its_own_and_factors_multiply(fmap, start):
     expected = plain * (1 + np.array([1, 1, 1, 1, 1, 0]) * 0.5 / Q2) * [1, 1, 0.98, 0.98, 1, 0.97]
     expected += np.array([0, 0, 0, 1, 0, 0]) * 0.1 / Q2
     np.testing.assert_allclose(fmap.predict(start, given)[0], expected, rtol=1e-13)
+    # numerical errors are those of the map, times the factors
+    errors = [fmap.numerical_error(start, some)[0] for some in ((), given)]
+    expected = errors[0] * (1 + np.array([1, 1, 1, 1, 1, 0]) * 0.5 / Q2) * [1, 1, 0.98, 0.98, 1, 0.97]
+    np.testing.assert_allclose(errors[1], expected, rtol=1e-13)
 
 
 def test_derivatives_agree_with_differences(fmap, start):

@@ -94,7 +94,7 @@ class _Restricted(Curve):
         fixed: Sequence[str] | Mapping[str, float],
         bounds: Mapping[str, tuple[float, float]],
     ) -> None:
-        if isinstance(fixed, str):
+        if isinstance(fixed, str) or not isinstance(fixed, Sequence | Mapping):
             _check.refuse("fixed", fixed, "fixed must be a list of names, or map names to values")
         held = list(fixed)
         for option, names in (("fixed", held), ("bounds", list(bounds))):
@@ -110,14 +110,26 @@ class _Restricted(Curve):
                 self._all[curve.names.index(name)] = _check.real(f"fixed[{name}]", value)
         self._free = [place for place, name in enumerate(curve.names) if name not in held]
         low, high = curve.low.copy(), curve.high.copy()
-        for name, (least, most) in bounds.items():
-            low[curve.names.index(name)], high[curve.names.index(name)] = least, most
+        for name, pair in bounds.items():
+            place = curve.names.index(name)
+            low[place], high[place] = _two(f"bounds[{name}]", pair)
         names = [curve.names[place] for place in self._free]
         super().__init__(names, self._all[self._free], low[self._free], high[self._free])
 
     def on(self, x: Floats, place: Sequence[str]) -> At:
         """Return the curve at points."""
         return _Held(self._curve.on(x, place), self._all, self._free)
+
+
+def _two(name: str, given: object) -> tuple[float, float]:
+    """Return two numbers, infinite ones allowed."""
+    try:
+        array = np.asarray(given, dtype=np.float64)
+    except (TypeError, ValueError):
+        array = np.zeros(0)
+    if array.shape != (2,) or np.isnan(array).any():
+        _check.refuse(name, given, "must be two numbers")
+    return float(array[0]), float(array[1])
 
 
 class _Held:

@@ -64,7 +64,7 @@ class Polynomial(Curve):
     ) -> None:
         self.degree = _check.whole("degree", degree, least=0, most=_MOST)
         self.family = _check.choice("family", family, ("chebyshev", "plain"))
-        if isinstance(free, str):
+        if isinstance(free, str) or not isinstance(free, Sequence):
             _check.refuse("free", free, 'free must be a list of "a" and "b"')
         self.free = tuple(_check.choice("free", name, ("a", "b")) for name in free)
         if len(set(self.free)) != len(self.free):

@@ -11,8 +11,7 @@ import numpy as np
 
 from .. import _check
 from .._check import Floats, refuse, show
-from .._measured.description import sections
-from ..corrections import KnownFactor
+from ..corrections import Correction
 from ..densities import Densities
 from ..electroweak import Electroweak
 from ..errors import InputError, StoreError
@@ -24,6 +23,7 @@ from ..grid import ChebyshevGrid
 from ..kinematics import BOUNDARIES
 from ..measurements import Measurements
 from ..theory import Theory
+from .correction_job import read_corrections
 
 _STORED = (".h5", ".hdf5")
 _TABLE = ".csv"
@@ -126,7 +126,7 @@ class PredictJob:
     target_mass, subtraction
         As for `forward_map`.
     corrections
-        Known factors of deuterons and nuclei.
+        Higher twist, deuteron and nuclear factors.
     boundaries
         Of the regimes, where they are not those by default.
     form, reference
@@ -144,7 +144,7 @@ class PredictJob:
     measured: Measurements
     target_mass: bool
     subtraction: str
-    corrections: list[KnownFactor]
+    corrections: list[Correction]
     boundaries: dict[str, float]
     form: str
     reference: str
@@ -168,13 +168,13 @@ def read_predict_job(path: PathLike) -> PredictJob:
         If the job or a file that it names cannot be read.
     """
     top = toml.load(path).only(
-        "theory", "electroweak", "grid", "input", "data", "prediction", "factor", "regimes", "chi_square",
+        "theory", "electroweak", "grid", "input", "data", "prediction", "correction", "regimes", "chi_square",
         "output",
     )  # fmt: skip
     theory = Theory.from_dict(top.get("theory"), top.section("theory").where())
     source = top.section("input").only("file", "q2", "nf", "interpolate", "missing")
     data = top.section("data").only("file", "cut")
-    corrections, boundaries = _factors(path, top), _boundaries(top)
+    corrections, boundaries = read_corrections(path, top), _boundaries(top)
     prediction = top.section("prediction", {}).only("target_mass", "subtraction")
     chi_square = top.section("chi_square", {}).only("form", "reference")
     output = top.section("output").only("file", "picture")
@@ -239,18 +239,6 @@ def _range(value: Any) -> Any:
     if not isinstance(value, list):
         return value
     return tuple(None if isinstance(v, float) and np.isinf(v) else v for v in value)
-
-
-def _factors(path: PathLike, top: Section) -> list[KnownFactor]:
-    """Read the factors of [[factor]]."""
-    made = []
-    for section in sections(top, "factor"):
-        section.only("file", "target", "current", "name")
-        file = toml.beside(path, section.text("file"))
-        current, name = section.text("current", None), section.text("name", None)
-        with section.blame():
-            made.append(KnownFactor.read(file, targets=section.get("target"), current=current, name=name))
-    return made
 
 
 def _boundaries(top: Section) -> dict[str, float]:

@@ -44,7 +44,8 @@ with job.toml:
   file = "run1.toml"                  # a description of measured points, or a list of them
   cut = { q2 = [3.5, inf] }           # also x, w2, y: least and most
 
-  # [[factor]]                        # of a deuteron or nucleus; none by default
+  # [[correction]]                    # none by default; "higher twist" and "target factor" too
+  # kind = "known factor"
   # target = "deuteron"               # { z = 26, a = 56 }; or a list of them
   # file = "deuteron.csv"             # columns x, factor; others are its uncertainties
 
@@ -71,7 +72,8 @@ def run(options: argparse.Namespace) -> None:
     start = time.perf_counter()
     with job.place.blame():
         fmap, mean = _mapped(job)
-        predicted, error = fmap.predict(job.given, job.corrections), fmap.numerical_error(mean)[0]
+        predicted = fmap.predict(job.given, job.corrections)
+        error = fmap.numerical_error(mean, job.corrections)[0]
         prediction = predicted.mean(axis=0)
         reference = prediction if job.reference == "prediction" else None
         theory = covariance(fmap, job.corrections, mean) if job.corrections else None
