@@ -9,7 +9,7 @@ import sys
 import pytest
 from house.tree import ROOT
 
-BENCHES = ("accuracy", "apply", "build", "ensemble", "evolve", "fit", "memory", "plain", "unit")
+BENCHES = ("accuracy", "apply", "build", "ensemble", "evolve", "fit", "memory", "plain", "unit", "world_fit")
 
 
 @pytest.mark.parametrize("bench", BENCHES)

@@ -13,6 +13,7 @@ from .._check import Floats
 from ..errors import InputError
 from ._problem import Distance, Map, Problem, Theory
 from ._result import BlindDirection, FitResult, Profile
+from ._settling import Settling
 from ._shape import Shape
 from ._solve import Callback, Solution, solve
 
@@ -111,15 +112,15 @@ def fit(
     begin = starting(problem, start)
     again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors)
     solution = solve(problem, begin, evaluations=evaluations, callback=callback)
-    rebuilt = 0
+    rebuilt, settling = 0, Settling()
     while again is not None and _is_far(problem, solution):
         if rebuilt == _REBUILDS:
             moved = _check.show_all(problem.reference)
             raise InputError(f"rebuild: {moved} has not settled after {rebuilt} maps")
-        count = len(shape.names)
-        at = dict(zip(problem.reference, solution.parameters[count:].tolist(), strict=True))
-        problem = again(at)
-        solution = solve(problem, solution.parameters, evaluations=evaluations, callback=callback)
+        begin = np.array(solution.parameters)
+        begin[-len(problem.reference) :] = settling.next(*_moves(problem, solution))
+        problem = again(dict(zip(problem.reference, begin[-len(problem.reference) :].tolist(), strict=True)))
+        solution = solve(problem, begin, evaluations=evaluations, callback=callback)
         rebuilt += 1
     return FitResult(problem, solution, delta_chi2, rebuilt, again)
 
@@ -155,10 +156,15 @@ def starting(problem: Problem, start: Any) -> Floats:
 
 def _is_far(problem: Problem, solution: Solution) -> bool:
     """Say whether theory parameters lie further from those of the map than a small part of their error."""
-    count = len(problem.shape.names)
-    moved = solution.parameters[count:] - problem.start[count:]
-    if not moved.any():
+    if not problem.reference:
         return False
+    at, found, errors = _moves(problem, solution)
+    return bool((abs(found - at) > _CLOSE * errors).any())
+
+
+def _moves(problem: Problem, solution: Solution) -> tuple[Floats, Floats, Floats]:
+    """Return theory parameters of the map, of the fit, and their uncertainties to first order."""
+    count = len(problem.reference)
     inverse = np.linalg.pinv(solution.jacobian.T @ solution.jacobian, hermitian=True)
-    errors = np.sqrt(np.maximum(np.diagonal(inverse)[count:], 0.0))
-    return bool((abs(moved) > _CLOSE * errors).any())
+    errors = np.sqrt(np.maximum(np.diagonal(inverse)[-count:], 0.0))
+    return problem.start[-count:], solution.parameters[-count:], np.where(errors > 0.0, errors, 1.0)
