@@ -22,6 +22,7 @@ BENCHES = (
     "plain_forward",
     "quoted_error",
     "unit",
+    "world_fit",
 )
 
 

@@ -95,11 +95,12 @@ def test_intervals_of_pseudo_experiments_cover_the_truth():
             problem, problem.start, shift=problem.shift(exact.whiten(pseudo - exact.measurements.value))
         )
         errors = np.sqrt(np.diagonal(np.linalg.inv(solution.jacobian.T @ solution.jacobian)))
-        covered.append(abs(solution.parameters - shape.start) < errors)
+        covered.append(abs(solution.parameters - shape.start) / errors)
         chi2_values.append(solution.total)
-    within = np.mean(covered, axis=0)
-    # 68.27 per cent within three binomial standard deviations, for each of the parameters
-    assert (abs(within - 0.6827) < 3 * np.sqrt(0.6827 * 0.3173 / experiments)).all(), within
+    # one and two standard deviations of a Gaussian, within three of a binomial, for each of the parameters
+    for deviations, level in ((1.0, 0.6827), (2.0, 0.9545)):
+        within = np.mean(np.array(covered) < deviations, axis=0)
+        assert (abs(within - level) < 3 * np.sqrt(level * (1 - level) / experiments)).all(), within
     freedom = len(exact.measurements) - len(shape.names)
     assert stats.kstest(chi2_values, stats.chi2(freedom).cdf).pvalue > 1e-3
 

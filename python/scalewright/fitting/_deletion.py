@@ -8,6 +8,7 @@ import numpy as np
 
 from .._check import Floats, Integers
 from ._result import FitResult
+from ._space import whitened_derivative
 from .chi_square import ChiSquare
 
 __all__ = ["Deletion"]
@@ -44,15 +45,11 @@ class Deletion:
     @classmethod
     def of(cls, result: FitResult, chi2: ChiSquare) -> Deletion:
         """Collect it from a fit that has a covariance."""
-        problem, jacobian = result._problem, result._solution.jacobian
-        derivative = -jacobian[: problem.rows]
-        if problem._space is not None:  # its last row is what no density can move: zero
-            derivative = problem._space.basis.T @ derivative[: len(problem._space.basis)]
         back = chi2._whitening.transposed
         assert result.linear_covariance is not None
         return cls(
-            chi2.whiten(np.eye(problem.count)),
-            back(derivative),
+            chi2.whiten(np.eye(result.data)),
+            back(whitened_derivative(result)),
             back(chi2.residuals(result.prediction)),
             _root(result.linear_covariance / result.delta_chi2),
             chi2.covariance,

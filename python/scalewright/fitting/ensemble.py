@@ -52,6 +52,8 @@ class Ensemble(Statistics):
         Of the pseudo-data.
     negative : int
         How many pseudo-data were negative.
+    notes : sequence of str
+        What else is to be known, in sentences.
 
     Raises
     ------
@@ -84,6 +86,7 @@ class Ensemble(Statistics):
         failed: Mapping[int, str] | None = None,
         seed: int | None = None,
         negative: int = 0,
+        notes: Sequence[str] = (),
     ) -> None:
         if not isinstance(densities, Densities):
             _check.refuse("densities", densities, "densities must be Densities")
@@ -107,6 +110,7 @@ class Ensemble(Statistics):
         self.failed = dict(sorted((failed or {}).items()))
         self.seed = None if seed is None else _check.whole("seed", seed, least=0)
         self.negative = _check.whole("negative", negative, least=0)
+        self.notes = tuple(str(note) for note in notes)
 
     # ---- what there is ---------------------------------------------------------------------------------
 
@@ -363,6 +367,7 @@ class Ensemble(Statistics):
             lines.append(f"  weighted: {self.effective_replicas:.1f} are effective")
         if self.negative:
             lines.append(f"  {self.negative} pseudo-data were negative, and kept")
+        lines += [f"  {note}" for note in self.notes]
         for what, values in (("pseudo-data", self.chi2), ("the data", self.chi2_data)):
             if self.data and np.isfinite(values).all():
                 lines.append(f"  mean chi-square {self.weights @ values:.5g} to {what}, for {self.data} data")

@@ -14,6 +14,7 @@ from .._corrected.bound import Correction
 from ..errors import InputError
 from ._problem import Distance, Map, Problem, Theory
 from ._result import BlindDirection, FitResult, Profile
+from ._settling import Settling
 from ._shape import Shape
 from ._solve import Callback, Solution, solve
 
@@ -116,15 +117,15 @@ def fit(
     begin = starting(problem, start)
     again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors, corrections)
     solution = solve(problem, begin, evaluations=evaluations, callback=callback)
-    rebuilt = 0
+    rebuilt, settling = 0, Settling()
     while again is not None and _is_far(problem, solution):
         if rebuilt == _REBUILDS:
             moved = _check.show_all(problem.reference)
             raise InputError(f"rebuild: {moved} has not settled after {rebuilt} maps")
-        found = solution.parameters[problem.first_theory :]
-        at = dict(zip(problem.reference, found.tolist(), strict=True))
-        problem = again(at)
-        solution = solve(problem, solution.parameters, evaluations=evaluations, callback=callback)
+        begin = np.array(solution.parameters)
+        found = begin[problem.first_theory :] = settling.next(*_moves(problem, solution))
+        problem = again(dict(zip(problem.reference, found.tolist(), strict=True)))
+        solution = solve(problem, begin, evaluations=evaluations, callback=callback)
         rebuilt += 1
     return FitResult(problem, solution, delta_chi2, rebuilt, again)
 
@@ -166,10 +167,15 @@ def starting(problem: Problem, start: Any) -> Floats:
 
 def _is_far(problem: Problem, solution: Solution) -> bool:
     """Say whether theory parameters lie further from those of the map than a small part of their error."""
-    count = problem.first_theory
-    moved = solution.parameters[count:] - problem.start[count:]
-    if not moved.any():
+    if not problem.reference:
         return False
+    at, found, errors = _moves(problem, solution)
+    return bool((abs(found - at) > _CLOSE * errors).any())
+
+
+def _moves(problem: Problem, solution: Solution) -> tuple[Floats, Floats, Floats]:
+    """Return theory parameters of the map, of the fit, and their uncertainties to first order."""
+    first = problem.first_theory
     inverse = np.linalg.pinv(solution.jacobian.T @ solution.jacobian, hermitian=True)
-    errors = np.sqrt(np.maximum(np.diagonal(inverse)[count:], 0.0))
-    return bool((abs(moved) > _CLOSE * errors).any())
+    errors = np.sqrt(np.maximum(np.diagonal(inverse)[first:], 0.0))
+    return problem.start[first:], solution.parameters[first:], np.where(errors > 0.0, errors, 1.0)

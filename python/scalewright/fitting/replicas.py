@@ -6,7 +6,7 @@ they finish, nor a kill and a new start change a bit of it.
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from contextlib import closing
 from typing import TYPE_CHECKING, Any
 
@@ -17,17 +17,18 @@ from .. import _check
 from .._check import Floats
 from .._corrected.bound import Correction
 from .._progress import Progress, watcher
-from ..errors import ScalewrightError
+from ..errors import InputError, ScalewrightError
 from ..files.whole import PathLike
 from ._dask import Client, as_executor, threads
 from ._journal import Journal, Outcome
+from ._neglected import notes as neglected
 from ._problem import Map, Problem, Theory
 from ._shape import Shape
 from ._solve import solve
 from ._stopping import Stopping
 from .chi_square import ChiSquare
 from .ensemble import Ensemble
-from .least_squares import starting
+from .least_squares import fit, starting
 
 if TYPE_CHECKING:
     from ._pool import Engine
@@ -49,6 +50,7 @@ def fit_replicas(
     start: ArrayLike | Mapping[str, float] | None = None,
     theory: Theory = (),
     priors: Mapping[str, tuple[float, float]] | None = None,
+    rebuild: Callable[[Mapping[str, float]], Map] | None = None,
     executor: Engine | Client = None,
     workers: int | None = None,
     chunk: int | None = None,
@@ -76,6 +78,11 @@ def fit_replicas(
     start, theory, priors, corrections, evaluations
         As for `fit`. By default each replica starts from the best fit to the data; with `validation` from the
         start of the shape. The values of priors are drawn, like data.
+    rebuild : callable, optional
+        As for `fit`: the data are fitted first with maps built anew until theory parameters settle, and all
+        replicas start there, with the last map. It moves to first order in each of them; `Ensemble.notes`
+        says by how much the neglected curvature of the map would move a fit one uncertainty away. Without
+        `rebuild` theory parameters move to first order from those of `fmap`, however far that is.
     executor : Executor, callable that makes one, or Dask client, optional
         By default a pool of processes of our own. For several machines a ``distributed.Client``, or its
         ``get_executor()``: Dask replaces workers that are lost.
@@ -104,11 +111,12 @@ def fit_replicas(
     Raises
     ------
     InputError
-        As `fit`; if the shape cannot be sent to other processes.
+        As `fit`; if the shape cannot be sent to other processes; if `rebuild` meets `validation`.
     StoreError
         If the journal is of another fit or cannot be written; what was computed before is in it.
     ScalewrightError
-        If workers die again and again, nothing comes back within `limit`, or all fits failed.
+        If workers die again and again, nothing comes back within `limit`, all fits failed, or with `rebuild`
+        that to the data did.
 
     Notes
     -----
@@ -142,13 +150,25 @@ def fit_replicas(
     if not isinstance(chi2, ChiSquare):
         _check.refuse("chi2", chi2, f"chi2 must be a ChiSquare, not {type(chi2).__name__}")
     stopping = Stopping.of(validation, patience)
-    problem = Problem(fmap, chi2, shape, theory, priors, corrections=corrections, compressed=stopping is None)
-    if stopping is None:
-        problem.check_enough()
-    begin = starting(problem, start)
-    if start is None and stopping is None:
-        central = solve(problem, begin, evaluations=evaluations)
-        begin = central.parameters if central.converged else begin
+    notes: tuple[str, ...] = ()
+    if rebuild is not None:
+        if stopping is not None:
+            raise InputError("rebuild: there is no fit to all data to settle on with validation")
+        central = fit(fmap, chi2, shape, start=start, theory=theory, priors=priors, rebuild=rebuild,
+                      corrections=corrections, evaluations=evaluations)  # fmt: skip
+        if not central.converged:
+            raise ScalewrightError(f"rebuild: the fit to the data has {central.status[0]}")
+        problem, begin, notes = central._problem, central.parameters, neglected(central, chi2)
+    else:
+        problem = Problem(
+            fmap, chi2, shape, theory, priors, corrections=corrections, compressed=stopping is None
+        )
+        if stopping is None:
+            problem.check_enough()
+        begin = starting(problem, start)
+        if start is None and stopping is None:
+            first = solve(problem, begin, evaluations=evaluations)
+            begin = first.parameters if first.converged else begin
     work = _Work(problem, chi2, _check.whole("seed", seed, least=0), begin, evaluations, stopping)
     engine: Engine = as_executor(executor)
     size = _workers(engine, workers)
@@ -164,7 +184,7 @@ def fit_replicas(
         with Journal(journal, work.described()) as book:
             work.begin = np.array(book.fit["start"])
             outcomes = _all(work, count, book.outcomes, book, report, options)
-    return _gathered(problem, [outcomes[index] for index in range(count)], work.seed)
+    return _gathered(problem, [outcomes[index] for index in range(count)], work.seed, notes)
 
 
 class _Work:
@@ -266,7 +286,9 @@ def _all(
     return found
 
 
-def _gathered(problem: Problem, outcomes: list[Outcome], seed: int) -> Ensemble:
+def _gathered(
+    problem: Problem, outcomes: list[Outcome], seed: int, notes: tuple[str, ...]
+) -> Ensemble:  # fmt: skip
     """Return the ensemble of what converged."""
     good = [outcome for outcome in outcomes if not outcome.reason]
     failed = {outcome.index: outcome.reason for outcome in outcomes if outcome.reason}
@@ -280,7 +302,7 @@ def _gathered(problem: Problem, outcomes: list[Outcome], seed: int) -> Ensemble:
         parameters=parameters, names=problem.names, index=[outcome.index for outcome in good],
         chi2=[outcome.chi2 for outcome in good], chi2_data=[outcome.chi2_data for outcome in good],
         data=problem.count, failed=failed, seed=seed,
-        negative=sum(outcome.negative for outcome in outcomes),
+        negative=sum(outcome.negative for outcome in outcomes), notes=notes,
     )  # fmt: skip
 
 
