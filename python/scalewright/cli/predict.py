@@ -4,18 +4,17 @@ from __future__ import annotations
 
 import argparse
 import time
-from collections.abc import Sequence
 from importlib.util import find_spec
 
 import numpy as np
 
 from .._check import Floats
 from ..densities import Densities
-from ..files.cells import Cells, write_cells
 from ..fitting.chi_square import ChiSquare
 from ..forward import forward_map
 from .jobs import PredictJob, read_predict_job
 from .report import Report, chi_square_summary
+from .written import write_predictions
 
 NAME = "predict"
 SUMMARY = "predict measured tables from densities, as a job file says"
@@ -69,7 +68,8 @@ def run(options: argparse.Namespace) -> None:
         prediction = predicted.mean(axis=0)
         reference = prediction if job.reference == "prediction" else None
         chi_square = ChiSquare(job.measured, job.form, reference)
-    _write(job, predicted, error, chi_square)
+    spread = predicted.std(axis=0, ddof=1) if predicted.shape[0] > 1 else None
+    write_predictions(job.file, chi_square, prediction, error, spread)
     report.say(f"{job.file}: {job.measured!r}, predicted")
     report.say(f"  from {job.given!r}")
     report.say(f"  with {job.theory!r}")
@@ -101,34 +101,6 @@ def _predicted(job: PredictJob) -> tuple[Floats, Floats]:
     values = given.values.reshape(-1, *given.values.shape[-2:]).mean(axis=0)
     mean = Densities(given.grid, q2=q2, nf=nf, flavours=given.flavours, values=values)
     return fmap.predict(given), fmap.numerical_error(mean)[0]
-
-
-def _write(job: PredictJob, predicted: Floats, error: Floats, chi_square: ChiSquare) -> None:
-    """Write predictions beside the data, one line a datum."""
-    measured = job.measured
-    prediction = predicted.mean(axis=0)
-    sigma = np.sqrt(np.diagonal(chi_square.covariance))
-    columns: dict[str, Sequence[str]] = {
-        "table": [measured.tables[number] for number in measured.table_of],
-        "x": _numbers(measured.x),
-        "q2": _numbers(measured.q2),
-        "y": _numbers(measured.y),
-        "value": _numbers(measured.value),
-        "uncertainty": _numbers(sigma),
-        "prediction": _numbers(prediction),
-        "numerical error": _numbers(error),
-    }
-    if predicted.shape[0] > 1:
-        columns["spread"] = _numbers(predicted.std(axis=0, ddof=1))
-    columns["pull"] = _numbers(chi_square.pulls(prediction))
-    columns["pull after shifts"] = _numbers(chi_square.pulls(prediction, shifted=True))
-    rows = tuple(zip(*columns.values(), strict=True))
-    write_cells(job.file, Cells(tuple(columns), rows, job.file, tuple(range(2, len(rows) + 2))))
-
-
-def _numbers(values: Floats) -> list[str]:
-    """Return numbers with every bit, nothing where there is none."""
-    return ["" if np.isnan(value) else repr(value) for value in values.tolist()]
 
 
 def _draw(job: PredictJob, prediction: Floats, report: Report) -> None:
