@@ -7,7 +7,6 @@ matplotlib is changed.
 from __future__ import annotations
 
 import io
-import os
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, TypeAlias
 
@@ -151,34 +150,10 @@ def plot_against_q2(
     return ax
 
 
-def demo_picture(start: Densities, evolved: Densities, path: str | os.PathLike[str]) -> None:
-    """Draw what `scalewright demo` computed: the input, and the result at its largest scale.
-
-    Parameters
-    ----------
-    start : Densities
-        Of one scale.
-    evolved : Densities
-        Of several.
-    path : path-like
-        Where to write; PNG.
-    """
-    from .files.whole import write_whole
-
-    figure = new_figure(11.0, 4.6)
-    left, right = figure.subplots(1, 2)
-    names, factors = ("u_v", "d_v", "sea", "g"), (1.0, 1.0, 0.1, 0.1)
-    x = np.geomspace(1e-4, 0.99, _POINTS)
-    plot_densities(start, names, scale_by=factors, x=x, ax=left)
-    plot_densities(evolved, names, q2=float(np.max(evolved.q2)), scale_by=factors, x=x, ax=right)
-    for ax in (left, right):
-        ax.set_ylim(0.0, 1.2)
-    figure.suptitle(f"{start.replicas} replicas around the published input, NNLO: median and 68 per cent")
-    write_whole(path, png_of(figure, 120))
-
-
-def new_figure(width: float, height: float) -> Any:
+def new_figure(width: float, height: float, layout: str | None = "constrained") -> Any:
     """Return a figure without window and global state, sides in inches: it works without a screen.
+
+    `layout` None leaves margins to the caller: with many panels, finding them takes most of the time.
 
     Raises
     ------
@@ -189,7 +164,8 @@ def new_figure(width: float, height: float) -> Any:
         from matplotlib.figure import Figure
     except ImportError as error:
         raise ImportError("pictures need matplotlib: pip install 'scalewright[plot]'") from error
-    return Figure(figsize=(width, height), layout="constrained")
+    chosen: Any = layout
+    return Figure(figsize=(width, height), layout=chosen)
 
 
 def png_of(figure: Any, dpi: int = 100) -> bytes:

@@ -167,12 +167,19 @@ def data_figure(
     drawn = _Drawn.of(measurements, line, chi_square)
     bins = np.unique(measurements.q2[chosen])
     rows = -(-bins.size // _COLUMNS)
-    figure = new_figure(2.6 * _COLUMNS, 1.0 + 1.7 * rows)
+    width, height = 2.6 * _COLUMNS, 1.2 + 1.7 * rows
+    figure = new_figure(width, height, layout=None)
     panels = figure.subplots(rows, _COLUMNS, sharex=True, squeeze=False)
+    figure.subplots_adjust(
+        left=1.0 / width, right=1.0 - 0.15 / width, bottom=0.65 / height, top=1.0 - 0.75 / height,
+        wspace=0.3, hspace=0.42,
+    )  # fmt: skip
     for q2, panel in zip(bins, panels.flat, strict=False):
         _ratio(measurements, drawn, chosen, float(q2), panel)
         panel.set(xlabel="", ylabel="")
         panel.set_title(f"{q2:.6g} GeV$^2$", fontsize=9)
+        panel.tick_params(labelsize=8)
+        panel.minorticks_off()  # a hundred logarithmic ticks in each of many panels take seconds
     for panel in panels.flat[bins.size :]:
         panel.set_axis_off()
     for panel in panels.flat[max(bins.size - _COLUMNS, 0) :]:  # lowest of their columns

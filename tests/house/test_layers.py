@@ -46,6 +46,7 @@ PYTHON_LAYERS = (
     ("observables", "forward"),
     ("moments",),
     ("fitting",),
+    ("closure",),
     ("plot",),
     ("plot_data", "plot_fit"),
     ("report",),

@@ -6,12 +6,11 @@ import argparse
 import time
 from importlib.util import find_spec
 
-from ..errors import StoreError
 from ..files.whole import read_whole
-from .fit_job import FitJob, read_fit_job
-from .fitted import fit_data, refuse_unconverged, replicas_of
+from .fit_job import read_fit_job
+from .fitted import refuse_unconverged
 from .report import Report
-from .results import Results, fit_summary, write_all
+from .results import done, fit_summary
 
 NAME = "fit"
 SUMMARY = "fit densities, and alpha_s or masses, to measured tables, as a job file says"
@@ -89,29 +88,10 @@ def run(options: argparse.Namespace) -> None:
         where = job.place.section("output").where("pictures")
         raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
     start = time.perf_counter()
-    results = fitted_job(job, report, read_whole(options.job).decode("utf-8", "replace"))
+    results = done(job, report, read_whole(options.job).decode("utf-8", "replace"))
     report.say(f"{options.job}: {job.measured!r}, fitted in {time.perf_counter() - start:.1f} s")
     report.say(f"  with {results.fitted.result.theory!r}")
     fit_summary(job, results, report)
     for line in results.files:
         report.say(line)
     refuse_unconverged(results.fitted, job.place)
-
-
-def fitted_job(job: FitJob, report: Report, text: str) -> Results:
-    """Do all that a job asks for, and write it."""
-    with job.place.blame():
-        fitted = fit_data(job, job.maps(), job.measured)
-    try:
-        with job.place.blame():
-            ensemble = replicas_of(job, fitted, report)
-    except (KeyboardInterrupt, StoreError):
-        if job.replicas is not None and job.replicas.journal is not None:
-            report.note(
-                f"what was computed is in {job.replicas.journal}: the same command goes on from there"
-            )
-        raise
-    results = Results(fitted, ensemble, text)
-    with job.place.blame():
-        write_all(job, results, report)
-    return results

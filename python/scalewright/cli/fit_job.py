@@ -127,7 +127,7 @@ class FitJob:
         )  # fmt: skip
 
 
-def read_fit_job(path: PathLike, more: tuple[str, ...] = ()) -> FitJob:
+def read_fit_job(path: PathLike, more: tuple[str, ...] = (), *, writes: bool = True) -> FitJob:
     """Read a job of `scalewright fit` and the tables it names.
 
     Parameters
@@ -136,6 +136,8 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = ()) -> FitJob:
         The job, TOML.
     more
         Sections that another command reads.
+    writes
+        Whether [output] is that of a fit; otherwise another command reads it.
 
     Raises
     ------
@@ -156,7 +158,9 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = ()) -> FitJob:
     start = read_start(shape_section, theory)
     bare = read_shape(shape_section, grid, start.nf)
     shape, priors = read_parameters(top.section("parameters", {}), bare, free)
-    files, pictures, q2, x = _output(path, top, start, grid, replicas is not None)
+    files, pictures, q2, x = _nothing()
+    if writes:
+        files, pictures, q2, x = _output(path, top, start, grid, replicas is not None)
     return FitJob(
         top, theory, electroweak, grid, read_measured(path, data), target_mass, subtraction, form, reference,
         start, shape, free, priors, delta_chi2, evaluations, replicas, files, pictures, q2, x,
@@ -225,9 +229,14 @@ def _grid(top: Section) -> ChebyshevGrid:
         return ChebyshevGrid(section.get("x_min", 1e-5), section.get("resolution", "standard"))
 
 
-def _output(
-    path: PathLike, top: Section, start: Start, grid: ChebyshevGrid, has_replicas: bool
-) -> tuple[dict[str, str], str | None, Floats | None, Floats | None]:
+_Outputs = tuple[dict[str, str], str | None, Floats | None, Floats | None]
+
+
+def _nothing() -> _Outputs:
+    return {}, None, None, None
+
+
+def _output(path: PathLike, top: Section, start: Start, grid: ChebyshevGrid, has_replicas: bool) -> _Outputs:
     """Return files, folder of pictures, and scales and x of the lattice."""
     output = top.section("output").only(*ENDINGS, "pictures", "q2", "x")
     files = {

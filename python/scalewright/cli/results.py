@@ -13,9 +13,10 @@ from ..densities import Densities
 from ..errors import StoreError
 from ..files.whole import reason, write_whole
 from ..fitting.ensemble import Ensemble
+from ..fitting.functionals import Functional
 from ..report import fit_report
 from .fit_job import FitJob
-from .fitted import Fitted, evolved
+from .fitted import Fitted, evolved, fit_data, replicas_of
 from .report import Report, chi_square_summary
 from .written import write_parameters, write_predictions, write_table
 
@@ -43,6 +44,36 @@ class Results:
     text: str
     truth: Mapping[str, float] = field(default_factory=dict)
     files: list[str] = field(default_factory=list)
+
+
+def done(job: FitJob, report: Report, text: str, truth: Mapping[str, float] | None = None) -> Results:
+    """Do all that a job asks for, and write it.
+
+    Parameters
+    ----------
+    job : FitJob
+    report : Report
+        Where progress is drawn.
+    text : str
+        Of the job file.
+    truth : mapping, optional
+        Functional -> value, where the law behind the data is known.
+    """
+    with job.place.blame():
+        fitted = fit_data(job, job.maps(), job.measured)
+    try:
+        with job.place.blame():
+            ensemble = replicas_of(job, fitted, report)
+    except (KeyboardInterrupt, StoreError):
+        if job.replicas is not None and job.replicas.journal is not None:
+            report.note(
+                f"what was computed is in {job.replicas.journal}: the same command goes on from there"
+            )
+        raise
+    results = Results(fitted, ensemble, text, dict(truth or {}))
+    with job.place.blame():
+        write_all(job, results, report)
+    return results
 
 
 def write_all(job: FitJob, results: Results, report: Report) -> None:
@@ -170,6 +201,21 @@ def fit_summary(job: FitJob, results: Results, report: Report) -> None:
     report.table(head, rows)
     if len(rows) < len(result.names):
         report.say(f"    ... and {len(result.names) - len(rows)} more")
+
+
+def truth_table(results: Results, report: Report) -> None:
+    """Print how far the fit is from the law behind the data, in units of its uncertainty."""
+    rows = []
+    for text, exact in results.truth.items():
+        one = Functional(text)
+        value, error = one.of_fit(results.fitted.result)
+        row = [text, f"{exact:.4g}", f"{value:.4g}", f"{error:.2g}", f"{(value - exact) / error:+.2f}"]
+        if results.ensemble is not None:
+            values = one.of_ensemble(results.ensemble)
+            row.append(f"{(values.mean() - exact) / values.std(ddof=1):+.2f}")
+        rows.append(row)
+    head = ["against the law", "law", "fit", "uncertainty", "pull"]
+    report.table([*head, "of replicas"] if results.ensemble is not None else head, rows)
 
 
 def _chosen(names: tuple[str, ...]) -> tuple[str, ...]:

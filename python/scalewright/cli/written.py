@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 
@@ -15,7 +15,7 @@ from ..fitting.ensemble import Ensemble
 from ..fitting.least_squares import FitResult
 
 
-def write_columns(file: str, columns: dict[str, Sequence[str]]) -> None:
+def write_columns(file: str, columns: Mapping[str, Sequence[str]]) -> None:
     """Write columns of equal length."""
     rows = tuple(zip(*columns.values(), strict=True))
     write_cells(file, Cells(tuple(columns), rows, file, tuple(range(2, len(rows) + 2))))

@@ -1,6 +1,4 @@
-"""What a fit can say besides numbers: directions that the data do not see, profiles; and what follows from
-its covariance for anything computed from densities.
-"""
+"""What a fit can say besides numbers: blind directions, profiles; what follows from its covariance."""
 
 from __future__ import annotations
 

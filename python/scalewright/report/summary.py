@@ -80,12 +80,19 @@ def convergence(page: Page, told: Told) -> None:
 def origin(page: Page, told: Told) -> None:
     """Say what made this report."""
     page.section("Origin")
-    from .. import __version__ as version
-
-    versions = f"scalewright {version}, numpy {np.__version__}, Python {platform.python_version()}"
+    versions = f"{_program()}, numpy {np.__version__}, Python {platform.python_version()}"
     page.say(f"Written by {versions}, {platform.system()} {platform.machine()}.")
     if told.ensemble is not None and told.ensemble.seed is not None:
         page.say(f"Pseudo-data of replica i are drawn from the seed ({told.ensemble.seed}, i) alone.")
     if told.job:
         page.say("The job:")
         page.verbatim(told.job)
+
+
+def _program() -> str:
+    from importlib import metadata
+
+    try:
+        return f"scalewright {metadata.version('scalewright')}"
+    except metadata.PackageNotFoundError:  # run from a source tree
+        return "scalewright"
