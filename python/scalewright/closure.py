@@ -24,8 +24,10 @@ from .errors import ScalewrightError
 from .fitting.chi_square import ChiSquare
 from .fitting.functionals import Functional
 from .fitting.least_squares import FitResult, fit
+from .fitting.maps import KnownMap
 from .fitting.replicas import fit_replicas
 from .fitting.shapes import Shape
+from .forward import ForwardMap
 
 __all__ = ["Closure", "Coverage", "Starts", "closure_test"]
 
@@ -267,7 +269,8 @@ class _Test:
         self, fmap: Any, chi2: ChiSquare, shape: Shape, law: Densities, functionals: Sequence[str],
         theory: tuple[str, ...], priors: dict[str, tuple[float, float]], seed: int,
     ) -> None:  # fmt: skip
-        self._fmap, self._shape, self._theory, self._priors = fmap, shape, theory, priors
+        self._fmap = KnownMap(fmap) if isinstance(fmap, ForwardMap) else fmap
+        self._shape, self._theory, self._priors = shape, theory, priors
         self._seed = _check.whole("seed", seed, least=0)
         self.functionals = [Functional(text) for text in functionals]
         for one in self.functionals:

@@ -96,11 +96,11 @@ def write_case(folder):
     """Write job, description and points; the values are drawn from the law with one seed."""
     x, q2 = np.meshgrid([0.02, 0.05, 0.1, 0.2, 0.35, 0.5], [4.0, 10.0, 30.0, 90.0])
     columns = {"x": x.ravel(), "q2": q2.ravel(), "value": np.ones(24), "stat": np.full(24, 1.0)}
-    description = {"title": "Run 1, positrons", "measures": "reduced_cross_section", "beam": "e+", "s": 1e4,
-                   "uncertainty": [{"column": "stat", "given_in": "percent", "scales_with": "nothing"}]}  # fmt: skip
+    stat = {"column": "stat", "given_in": "percent", "scales_with": "nothing"}
+    what = {"title": "Run 1, positrons", "measures": "reduced_cross_section", "beam": "e+", "s": 1e4}
     inside = q2.ravel() < 0.9 * x.ravel() * 1e4
     points = {name: values[inside] for name, values in columns.items()}
-    empty = sw.Measurements.from_columns(description, points)
+    empty = sw.Measurements.from_columns(what | {"uncertainty": [stat]}, points)
     truth = sw.forward_map(THEORY, GRID, start_q2=2.0, points=empty).predict(law())[0]
     rng = np.random.default_rng(5)
     values = truth * (1 + 0.01 * rng.normal(size=truth.size)) * (1 + 0.01 * rng.normal())

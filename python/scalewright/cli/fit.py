@@ -94,4 +94,4 @@ def run(options: argparse.Namespace) -> None:
     fit_summary(job, results, report)
     for line in results.files:
         report.say(line)
-    refuse_unconverged(results.fitted, job.place)
+    refuse_unconverged(job, results.fitted)

@@ -13,7 +13,6 @@ from .._check import Floats
 from ..build import build_operators
 from ..densities import Densities
 from ..errors import InputError, RangeError, ScalewrightError
-from ..files.toml import Section
 from ..fitting.chi_square import ChiSquare
 from ..fitting.ensemble import Ensemble
 from ..fitting.least_squares import FitResult, fit
@@ -63,18 +62,18 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
     InputError
         If the parts do not fit each other, or the reference does not settle.
     """
-    found: list[FitResult] = []
+    first = ChiSquare(measured, job.form)
+    # it takes the map as it comes; fits after it follow theory parameters
+    found = [_fit_once(job, maps, first, None)]
 
     def once(chi_square: ChiSquare) -> Floats:
-        found.append(_fit_once(job, maps, chi_square, found[-1] if found else None))
+        if chi_square is not first:
+            found.append(_fit_once(job, maps, chi_square, found[-1]))
         return found[-1].prediction
 
-    first = ChiSquare(measured, job.form)
     if job.reference == "data":
-        once(first)
-        # the first fit takes the map as it comes; where theory parameters are free, it is exact here
         if job.free:
-            once(first)
+            found.append(_fit_once(job, maps, first, found[-1]))
         return Fitted(first, found[-1], _map_of(maps, found[-1]), (found[-1].chi2,))
     settled = settle_reference(first, once)
     return Fitted(settled.chi_square, found[-1], _map_of(maps, found[-1]), settled.history)
@@ -180,7 +179,9 @@ def _of_replica(index: int) -> Iterator[None]:
         raise type(error)(f"replica {index}: {error}") from error
 
 
-def refuse_unconverged(fitted: Fitted, place: Section) -> None:
-    """End with an error where the fit to the data has found no minimum."""
-    if not fitted.result.converged:
-        raise ScalewrightError(f"{place.where()}: {fitted.result.status[0]}; what was found is written")
+def refuse_unconverged(job: FitJob, fitted: Fitted) -> None:
+    """End with an error where the fit to the data has found no minimum, unless replicas stop early anyway."""
+    is_early = job.replicas is not None and job.replicas.validation > 0.0
+    if not fitted.result.converged and not is_early:
+        said = f"{fitted.result.status[0]}; what was found is written"
+        raise ScalewrightError(f"{job.place.where()}: {said}")

@@ -59,12 +59,13 @@ def done(job: FitJob, report: Report, text: str, truth: Mapping[str, float] | No
     truth : mapping, optional
         Functional -> value, where the law behind the data is known.
     """
+    _make_folder(job)
     with job.place.blame():
         fitted = fit_data(job, job.maps(), job.measured)
     try:
         with job.place.blame():
             ensemble = replicas_of(job, fitted, report)
-    except (KeyboardInterrupt, StoreError):
+    except KeyboardInterrupt:
         if job.replicas is not None and job.replicas.journal is not None:
             report.note(
                 f"what was computed is in {job.replicas.journal}: the same command goes on from there"
@@ -143,6 +144,17 @@ def _report(job: FitJob, results: Results, carried: Densities | None) -> None:
     )  # fmt: skip
 
 
+def _make_folder(job: FitJob) -> None:
+    """Make the folder of pictures, before any work is done."""
+    if job.pictures is None:
+        return
+    try:
+        os.makedirs(job.pictures, exist_ok=True)
+    except OSError as error:
+        where = job.place.section("output").where("pictures")
+        raise StoreError(f"{where} = {job.pictures!r}: the folder cannot be made: {reason(error)}") from error
+
+
 def _pictures(job: FitJob, results: Results, carried: Densities | None) -> int:
     """Draw into the folder; return how many pictures."""
     from ..plot import png_of
@@ -150,11 +162,6 @@ def _pictures(job: FitJob, results: Results, carried: Densities | None) -> int:
     from ..report import figures
 
     assert job.pictures is not None
-    try:
-        os.makedirs(job.pictures, exist_ok=True)
-    except OSError as error:
-        where = job.place.section("output").where("pictures")
-        raise StoreError(f"{where} = {job.pictures!r}: the folder cannot be made: {reason(error)}") from error
     fitted, ensemble = results.fitted, results.ensemble
     result, chi_square = fitted.result, fitted.chi_square
     start = ensemble.densities if ensemble else figures.hessian_samples(result) or result.densities

@@ -79,7 +79,9 @@ class Functional:
 
     @property
     def x(self) -> float | None:
-        """Where x f(x) is asked for, or None for a momentum."""
+        """Where x f(x) is asked for, or None."""
+        if self.parameter is not None:
+            return None
         head, inside = self._parts
         if head == "momentum":
             return None
