@@ -155,11 +155,13 @@ def chi_squares_figure(ensemble: Ensemble) -> Any:
     """Draw chi-square of each replica to its own pseudo-data and to the data, over the number of data."""
     figure = new_figure(6.0, 3.4)
     ax = figure.subplots()
+    both = np.concatenate([ensemble.chi2, ensemble.chi2_data]) / ensemble.data
+    edges = np.linspace(both.min(), both.max(), 31).tolist()
     for values, label, style in (
         (ensemble.chi2, "to its pseudo-data", {"color": "0.8", "edgecolor": "0.15"}),
         (ensemble.chi2_data, "to the data", {"histtype": "step", "color": "black", "linestyle": "--"}),
     ):
-        ax.hist(values / max(ensemble.data, 1), 20, label=label, **style)
+        ax.hist(values / ensemble.data, edges, label=label, **style)
     ax.set_xlabel("chi-square of a replica / number of data")
     ax.set_ylabel("replicas per bin")
     ax.legend(frameon=False)
