@@ -9,7 +9,7 @@ import sys
 import pytest
 from house.tree import ROOT
 
-BENCHES = ("accuracy", "apply", "build", "evolve", "memory", "plain", "unit")
+BENCHES = ("accuracy", "apply", "build", "closure", "evolve", "memory", "plain", "unit")
 
 
 @pytest.mark.parametrize("bench", BENCHES)
