@@ -13,6 +13,7 @@ BENCHES = (
     "accuracy",
     "apply",
     "build",
+    "closure",
     "ensemble",
     "evolve",
     "fit",

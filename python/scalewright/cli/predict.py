@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import argparse
 import time
-from collections.abc import Sequence
 from importlib.util import find_spec
 
 import numpy as np
@@ -12,11 +11,11 @@ import numpy as np
 from .._check import Floats
 from ..corrections import covariance
 from ..densities import Densities
-from ..files.cells import Cells, write_cells
 from ..fitting.chi_square import ChiSquare
 from ..forward import ForwardMap, forward_map
 from .jobs import PredictJob, read_predict_job
 from .report import Report, chi_square_summary
+from .written import write_predictions
 
 NAME = "predict"
 SUMMARY = "predict measured tables from densities, as a job file says"
@@ -80,7 +79,8 @@ def run(options: argparse.Namespace) -> None:
         chi_square = ChiSquare(job.measured, job.form, reference, theory)
         orders = fmap.orders(job.boundaries).of_data(fmap.data)
         described = fmap.describe(job.corrections, job.boundaries)
-    _write(job, predicted, error, chi_square, orders)
+    spread = predicted.std(axis=0, ddof=1) if predicted.shape[0] > 1 else None
+    write_predictions(job.file, chi_square, prediction, error, spread, orders)
     report.say(f"{job.file}: {job.measured!r}, predicted")
     report.say(f"  from {job.given!r}")
     report.say(f"  with {job.theory!r}")
@@ -112,37 +112,6 @@ def _mapped(job: PredictJob) -> tuple[ForwardMap, Densities]:
     )
     values = given.values.reshape(-1, *given.values.shape[-2:]).mean(axis=0)
     return fmap, Densities(given.grid, q2=q2, nf=nf, flavours=given.flavours, values=values)
-
-
-def _write(
-    job: PredictJob, predicted: Floats, error: Floats, chi_square: ChiSquare, orders: dict[str, list[str]]
-) -> None:
-    """Write predictions beside the data, one line a datum."""
-    measured = job.measured
-    prediction = predicted.mean(axis=0)
-    sigma = np.sqrt(np.diagonal(chi_square.covariance))
-    columns: dict[str, Sequence[str]] = {
-        "table": [measured.tables[number] for number in measured.table_of],
-        "x": _numbers(measured.x),
-        "q2": _numbers(measured.q2),
-        "y": _numbers(measured.y),
-        "value": _numbers(measured.value),
-        "uncertainty": _numbers(sigma),
-        "prediction": _numbers(prediction),
-        "numerical error": _numbers(error),
-    }
-    if predicted.shape[0] > 1:
-        columns["spread"] = _numbers(predicted.std(axis=0, ddof=1))
-    columns["pull"] = _numbers(chi_square.pulls(prediction))
-    columns["pull after shifts"] = _numbers(chi_square.pulls(prediction, shifted=True))
-    columns |= {f"order of {name}" if name != "regime" else name: words for name, words in orders.items()}
-    rows = tuple(zip(*columns.values(), strict=True))
-    write_cells(job.file, Cells(tuple(columns), rows, job.file, tuple(range(2, len(rows) + 2))))
-
-
-def _numbers(values: Floats) -> list[str]:
-    """Return numbers with every bit, nothing where there is none."""
-    return ["" if np.isnan(value) else repr(value) for value in values.tolist()]
 
 
 def _draw(job: PredictJob, prediction: Floats, report: Report) -> None:

@@ -156,6 +156,7 @@ class Problem:
     ) -> None:
         if not isinstance(shape, Shape):
             _check.refuse("shape", shape, "shape must be a Shape: see scalewright.fitting.shapes")
+        self.theory = getattr(fmap, "theory", None)
         self.shape, self._order = shape, _order(fmap, shape)
         self.reference = _reference(fmap, theory)
         self.q2, self.nf = float(fmap.start_q2), int(fmap.start_nf)
