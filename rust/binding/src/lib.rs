@@ -7,6 +7,7 @@ mod errors;
 mod grid;
 mod kernels;
 mod operators;
+mod sensitivity;
 mod theory;
 
 use pyo3::prelude::*;

@@ -2,13 +2,16 @@
 
 mod columns;
 mod crossing;
+mod crossing_slope;
 mod inputs;
 mod operators;
 mod options;
 mod prepared;
 mod route;
+mod sensitivity;
 mod vector;
 
 pub use operators::{Evolution, build};
 pub use options::BuildOptions;
+pub use sensitivity::Direction;
 pub use vector::{Vectors, evolve};
