@@ -2,18 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 import numpy as np
 
 from .._check import Floats, Integers
+from .._route import Source
 from ..build import build_operators
 from ..operators import Operators
 from .point_rows import point_rows
 from .problem import Problem
 from .pullback import flavour_rows, pulled_back
 
-__all__ = ["carried_matrix", "scale_groups"]
+__all__ = ["built", "carried", "carried_matrix", "scale_groups"]
 
 #: Scales whose operators are held at a time, and points whose rows are unless one scale has more: some 30 MB.
 _SCALES, _POINTS = 32, 512
@@ -47,8 +48,20 @@ def carried_matrix(
     matrix : ndarray, (row, flavour, node)
     operators : Operators
     """
-    q2, nf, group = scale_groups(problem)
-    operators = build_operators(
+    operators = built(problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads)
+
+    def rows(chosen: Integers, nf: int) -> Floats:
+        return point_rows(problem, chosen, nf)
+
+    return carried(problem, operators._source, operators._route.active, rows), operators
+
+
+def built(
+    problem: Problem, *, start_q2: float, start_nf: int | None, tolerance: float | None, threads: int | None
+) -> Operators:
+    """Return operators that serve the scales of all points."""
+    q2, nf, _ = scale_groups(problem)
+    return build_operators(
         problem.theory,
         problem.grid,
         start_q2=start_q2,
@@ -58,22 +71,39 @@ def carried_matrix(
         tolerance=tolerance,
         threads=threads,
     )
-    flavours = operators._route.active
+
+
+def carried(
+    problem: Problem, source: Source, flavours: tuple[int, ...], rows: Callable[[Integers, int], Floats]
+) -> Floats:
+    """Return the matrix (row, flavour, node) on the input of rows at the scales of their points.
+
+    Parameters
+    ----------
+    problem : Problem
+    source : Source
+        Operators, or their derivative.
+    flavours : tuple of int
+        PDG numbers of the input.
+    rows : callable
+        (points, number of flavours) -> (point, 13, node).
+    """
+    q2, nf, group = scale_groups(problem)
     matrix = np.empty((len(problem.points), len(flavours), problem.grid.nodes))
     members = [np.flatnonzero(group == scale) for scale in range(q2.size)]
     for chunk in _chunks(nf, [part.size for part in members]):
-        blocks, _ = operators._source.at(q2[chunk], nf[chunk], 0)
+        blocks, _ = source.at(q2[chunk], nf[chunk], 0)
         together = np.concatenate([members[scale] for scale in chunk])
-        rows = point_rows(problem, together, int(nf[chunk[0]]))
+        of_points = rows(together, int(nf[chunk[0]]))
         start = 0
         for place, scale in enumerate(chunk):
-            named = dict(zip(operators.block_names, blocks[place], strict=True))
+            named = dict(zip(source.names, blocks[place], strict=True))
             some = members[scale]
-            back = pulled_back(rows[start : start + some.size], named, operators.light)
+            back = pulled_back(of_points[start : start + some.size], named, source.light)
             back = flavour_rows(back, flavours)
             matrix[some] = with_target(back, problem.points.protons[some], flavours)
             start += some.size
-    return matrix, operators
+    return matrix
 
 
 def _chunks(nf: Integers, sizes: list[int]) -> Iterator[Integers]:

@@ -41,7 +41,13 @@ def splitting(grid: ChebyshevGrid, order: int, channel: str, nf: int) -> Floats:
 
 @lru_cache(maxsize=64)
 def light_matrices(
-    grid: ChebyshevGrid, function: str, highest: int, nf: int, mur2_ratio: float, muf2_ratio: float
+    grid: ChebyshevGrid,
+    function: str,
+    highest: int,
+    nf: int,
+    mur2_ratio: float,
+    muf2_ratio: float,
+    by: str | None = None,
 ) -> dict[str, Floats]:
     """Return the coefficients of a(mu_r)^k, k = 0 to `highest`, as matrices.
 
@@ -57,6 +63,8 @@ def light_matrices(
         Number of active flavours.
     mur2_ratio, muf2_ratio : float
         mu_r^2/Q^2 and mu_f^2/Q^2.
+    by : {None, "mur2_ratio", "muf2_ratio"}
+        The coefficients, or their derivative with respect to the logarithm of a ratio at fixed a(mu_r).
 
     Returns
     -------
@@ -67,12 +75,12 @@ def light_matrices(
     plain = {name: [_plain(grid, k, function, name, nf) for k in range(highest + 1)] for name in COEFFICIENTS}
     plus, minus = ([splitting(grid, k, name, nf) for k in range(highest)] for name in ("ns+", "ns-"))
     nonsinglet = {"ns+": (plain["ns+"], plus), "ns-": (plain["ns-"], minus)}
-    made = {name: _shifted(c, p, t, lr, nf) for name, (c, p) in nonsinglet.items()}
+    made = {name: _shifted(c, p, (t, lr), nf, by) for name, (c, p) in nonsinglet.items()}
     # the singlet as one row of two blocks (Sigma, gluon)
     both = [
         np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)
     ]
-    singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], t, lr, nf)
+    singlet = _shifted(both, [_singlet(grid, k, nf) for k in range(highest)], (t, lr), nf, by)
     n = grid.nodes
     made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
     made["gluon"] = [c[:, n:] for c in singlet]
@@ -92,21 +100,46 @@ def _singlet(grid: ChebyshevGrid, order: int, nf: int) -> Floats:
     return np.block([[part["ns+"] + part["pure singlet"], part["qg"]], [part["gq"], part["gg"]]])
 
 
-def _shifted(c: list[Floats], p: list[Floats], t: float, lr: float, nf: int) -> list[Floats]:
-    """Return coefficients at mu_f and mu_r from those at Q."""
-    b0, b1 = beta_coefficients(nf)
-    moved = _with_logarithms(c, p, t, b0, b1)
-    # a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3 with a = a(mu_r)
-    result = list(moved)
-    if len(moved) > 2:
-        result[2] = moved[2] + b0 * lr * moved[1]
-    if len(moved) > 3:
-        result[3] = moved[3] + 2.0 * b0 * lr * moved[2] + (b1 * lr + (b0 * lr) ** 2) * moved[1]
+def _shifted(
+    c: list[Floats], p: list[Floats], logarithms: tuple[float, float], nf: int, by: str | None
+) -> list[Floats]:
+    """Return coefficients at mu_f and mu_r from those at Q, or their derivative; `logarithms`: t, lr."""
+    t, lr = logarithms
+    beta = beta_coefficients(nf)
+    series = _with_logarithms(c, p, *beta)
+    if by is None:
+        return _reexpanded(_at(series, t), lr, *beta)
+    slope = _reexpanded_slope(_at(series, t), lr, *beta)
+    if by == "mur2_ratio":  # in lr alone
+        return slope
+    moved = _reexpanded(_at([_slope(powers) for powers in series], t), lr, *beta)
+    return [
+        -one - other for one, other in zip(moved, slope, strict=True)
+    ]  # both t and lr fall with ln mu_f^2
+
+
+def _reexpanded(c: list[Floats], lr: float, b0: float, b1: float) -> list[Floats]:
+    """Return coefficients of a = a(mu_r) from those of a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3."""
+    result = list(c)
+    if len(c) > 2:
+        result[2] = c[2] + b0 * lr * c[1]
+    if len(c) > 3:
+        result[3] = c[3] + 2.0 * b0 * lr * c[2] + (b1 * lr + (b0 * lr) ** 2) * c[1]
     return result
 
 
-def _with_logarithms(c: list[Floats], p: list[Floats], t: float, b0: float, b1: float) -> list[Floats]:
-    """Return the coefficients as series in a(mu_f), polynomials in t evaluated at t.
+def _reexpanded_slope(c: list[Floats], lr: float, b0: float, b1: float) -> list[Floats]:
+    """Return the derivative of `_reexpanded` with respect to lr."""
+    result = [np.zeros_like(one) for one in c]
+    if len(c) > 2:
+        result[2] = b0 * c[1]
+    if len(c) > 3:
+        result[3] = 2.0 * b0 * c[2] + (b1 + 2.0 * b0**2 * lr) * c[1]
+    return result
+
+
+def _with_logarithms(c: list[Floats], p: list[Floats], b0: float, b1: float) -> list[list[Floats]]:
+    """Return the coefficients as series in a(mu_f), each a polynomial in t by rising power.
 
     d C_k/d t = sum_j C_(k-1-j) P_j - (k-1) b0 C_(k-1) - (k-2) b1 C_(k-2).
     """
@@ -123,6 +156,16 @@ def _with_logarithms(c: list[Floats], p: list[Floats], t: float, b0: float, b1: 
                     slope = slope - factor * series[lower][power - 1]
             powers.append(slope / power)
         series.append(powers)
+    return series
+
+
+def _at(series: list[list[Floats]], t: float) -> list[Floats]:
+    """Return polynomials in t at one t."""
     return [
         sum((term * t**n for n, term in enumerate(powers)), np.zeros_like(powers[0])) for powers in series
     ]
+
+
+def _slope(powers: list[Floats]) -> list[Floats]:
+    """Return the derivative of a polynomial."""
+    return [n * term for n, term in enumerate(powers)][1:] or [np.zeros_like(powers[0])]

@@ -13,9 +13,10 @@ import numpy as np
 
 from .._check import Floats
 
-__all__ = ["GLUON", "MINUS", "PLUS", "flavour_rows", "pulled_back"]
+__all__ = ["CHANNELS", "GLUON", "MINUS", "PLUS", "flavour_rows", "pulled_back"]
 
 GLUON, PLUS, MINUS = 0, slice(1, 7), slice(7, 13)
+CHANNELS = 13
 _HEAVY = {4: "charm", 5: "bottom", 6: "top"}
 
 
