@@ -20,6 +20,7 @@ __all__ = [
     "coefficient_matrix",
     "compose",
     "evolve",
+    "light_rows",
     "massive_coefficient",
     "massive_rows",
     "matching_element",
@@ -100,6 +101,21 @@ class Evolution:
     # with respect to "alpha_s", "charm", "bottom" or "top", thresholds fixed, or "ln_q2", that of the output;
     # served as the set itself
     def derivative(self, parameter: str, threads: int) -> Evolution: ...
+    # rows (point, 13, node) as of light_rows, at scales (scale,) of points; protons (point,) the fraction of
+    # protons in each target; written to rows `places` (point,) of out (row, flavour, node)
+    def pull_back(
+        self,
+        rows: NDArray[np.float64],
+        *,
+        q2: NDArray[np.float64],
+        nf: NDArray[np.int64],
+        scale_of: NDArray[np.int64],
+        protons: NDArray[np.float64],
+        flavours: NDArray[np.int64],
+        places: NDArray[np.int64],
+        out: NDArray[np.float64],
+        threads: int,
+    ) -> None: ...
 
 # intrinsic: heavy flavours above start_nf whose input is allowed; threads 0: all; further: user kernels as
 # (order k, nf, channel, regular values at quadrature_z, plus coefficients, local)
@@ -207,3 +223,26 @@ def coefficient_matrix(
 def massive_rows(
     grid: Grid, what: str, x: NDArray[np.float64], q2: NDArray[np.float64], mass: float
 ) -> NDArray[np.float64]: ...
+
+# matrices (term, node, node), and to each its structure function (0 to 2: F2, FL, xF3), its part (0 to 3:
+# "ns+", "ns-", "pure singlet", "gluon") and its column of powers (point, power); f2, fl, xf3 (point, node),
+# weights of nodal values; even, odd, even3, odd3 (point, 6), couplings; out (point, 13, node): gluon,
+# q + qbar, q - qbar
+def light_rows(
+    grid: Grid,
+    *,
+    matrices: NDArray[np.float64],
+    functions: NDArray[np.int64],
+    parts: NDArray[np.int64],
+    orders: NDArray[np.int64],
+    f2: NDArray[np.float64],
+    fl: NDArray[np.float64],
+    xf3: NDArray[np.float64],
+    powers: NDArray[np.float64],
+    even: NDArray[np.float64],
+    odd: NDArray[np.float64],
+    even3: NDArray[np.float64],
+    odd3: NDArray[np.float64],
+    nf: int,
+    out: NDArray[np.float64],
+) -> None: ...

@@ -119,6 +119,11 @@ class Live:
         self.flow_names = tuple(evolution.flow_names)
         self.error, self.steps = evolution.error, evolution.steps
 
+    @property
+    def evolution(self) -> _core.Evolution:
+        """The compiled core's solution."""
+        return self._evolution
+
     def refuse(self, q2: Floats, nf: Integers) -> None:
         """Raise a `RangeError` if a scale is not served."""
         ranges = self._evolution.ranges()

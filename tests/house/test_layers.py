@@ -21,6 +21,7 @@ RUST_LAYERS = (
     ("evolution",),
     ("thresholds",),
     ("apply",),
+    ("observables",),
 )
 # The formulas are pure functions: of what stands before them they know no more than this.
 KERNELS_KNOW = {"numerics", "colour", "coupling::masses::MassKind"}

@@ -6,10 +6,12 @@ everything is smooth.
 
 from __future__ import annotations
 
+from functools import partial
+
 from .. import _check
 from .._carry import thread_count
 from .._check import Floats, Integers
-from .carried import built, carried
+from .carried import built, carried, live
 from .point_rows import point_rows
 from .problem import Problem
 from .row_slopes import RATIOS, row_slopes
@@ -45,21 +47,17 @@ def carried_derivative(
     """
     _check.choice("parameter", parameter, PARAMETERS)
     operators = built(problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads)
-    source, flavours = operators._source, operators._route.active
+    source, flavours = live(operators), operators._route.active
 
-    def slopes(chosen: Integers, nf: int) -> Floats:
+    def slopes(chosen: Integers, nf: int, out: Floats) -> Floats:
         return row_slopes(problem, chosen, nf, parameter)
 
-    matrix = carried(problem, source, flavours, slopes)
+    matrix = carried(problem, source, flavours, slopes, threads)
     if parameter == "hard_mur2_ratio":
         return matrix
     # mu_f^2 is where the operators end: d/d ratio = 1/ratio d/d ln mu_f^2
     ratio = problem.theory.hard_muf2_ratio
     name, factor = ("ln_q2", 1.0 / ratio) if parameter == "hard_muf2_ratio" else (parameter, 1.0)
     moving = source.derivative(name, thread_count(threads))
-
-    def rows(chosen: Integers, nf: int) -> Floats:
-        return point_rows(problem, chosen, nf)
-
-    matrix += factor * carried(problem, moving, flavours, rows)
+    matrix += factor * carried(problem, moving, flavours, partial(point_rows, problem), threads)
     return matrix

@@ -10,15 +10,25 @@ once for each number of flavours.
 from __future__ import annotations
 
 from functools import lru_cache
+from typing import NamedTuple
 
 import numpy as np
 
-from .._check import Floats
+from .._check import Floats, Integers
 from ..grid import ChebyshevGrid
 
-__all__ = ["COEFFICIENTS", "beta_coefficients", "light_matrices", "splitting"]
+__all__ = [
+    "COEFFICIENTS",
+    "LIGHT_FUNCTIONS",
+    "Terms",
+    "beta_coefficients",
+    "light_matrices",
+    "light_terms",
+    "splitting",
+]
 
 COEFFICIENTS = ("ns+", "ns-", "pure singlet", "gluon")
+LIGHT_FUNCTIONS = ("F2", "FL", "xF3")
 #: The highest power of a known of each structure function.
 HIGHEST = {"F2": 2, "FL": 3, "xF3": 2}
 
@@ -29,6 +39,54 @@ def beta_coefficients(nf: int) -> tuple[float, float]:
     W. Caswell, Phys. Rev. Lett. 33 (1974) 244; D. Jones, Nucl. Phys. B75 (1974) 531.
     """
     return 11.0 - 2.0 / 3.0 * nf, 102.0 - 38.0 / 3.0 * nf
+
+
+class Terms(NamedTuple):
+    """Coefficient matrices that rows are sums of, one a structure function, coefficient and power of a.
+
+    Attributes
+    ----------
+    matrices : ndarray, (term, node, node)
+    functions, parts, orders : ndarray of int, (term,)
+        Index in `LIGHT_FUNCTIONS`, index in `COEFFICIENTS`, power of a.
+    """
+
+    matrices: Floats
+    functions: Integers
+    parts: Integers
+    orders: Integers
+
+
+@lru_cache(maxsize=32)
+def light_terms(
+    grid: ChebyshevGrid,
+    highest: tuple[int, ...],
+    nf: int,
+    mur2_ratio: float,
+    muf2_ratio: float,
+    by: str | None = None,
+) -> Terms:
+    """Return all coefficients that do not vanish.
+
+    They depend on neither coupling nor scale: kept for the life of the process.
+
+    Parameters
+    ----------
+    grid : ChebyshevGrid
+    highest : tuple of int
+        Highest power of a of each of `LIGHT_FUNCTIONS`.
+    nf, mur2_ratio, muf2_ratio, by
+        As for `light_matrices`.
+    """
+    found = []
+    for place, function in enumerate(LIGHT_FUNCTIONS):
+        made = light_matrices(grid, function, highest[place], nf, mur2_ratio, muf2_ratio, by)
+        for part, name in enumerate(COEFFICIENTS):
+            powers = enumerate(made[name])
+            found += [(matrix, place, part, order) for order, matrix in powers if matrix.any()]
+    matrices = np.stack([term[0] for term in found]) if found else np.zeros((0, grid.nodes, grid.nodes))
+    numbers = np.array([term[1:] for term in found], dtype=np.int64).reshape(-1, 3).T.copy()
+    return Terms(matrices, *numbers)
 
 
 @lru_cache(maxsize=512)
@@ -105,6 +163,8 @@ def _shifted(
 ) -> list[Floats]:
     """Return coefficients at mu_f and mu_r from those at Q, or their derivative; `logarithms`: t, lr."""
     t, lr = logarithms
+    if by is None and t == 0.0 and lr == 0.0:
+        return c
     beta = beta_coefficients(nf)
     series = _with_logarithms(c, p, *beta)
     if by is None:
@@ -113,9 +173,8 @@ def _shifted(
     if by == "mur2_ratio":  # in lr alone
         return slope
     moved = _reexpanded(_at([_slope(powers) for powers in series], t), lr, *beta)
-    return [
-        -one - other for one, other in zip(moved, slope, strict=True)
-    ]  # both t and lr fall with ln mu_f^2
+    # both t and lr fall with ln mu_f^2
+    return [-one - other for one, other in zip(moved, slope, strict=True)]
 
 
 def _reexpanded(c: list[Floats], lr: float, b0: float, b1: float) -> list[Floats]:

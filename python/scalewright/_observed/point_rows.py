@@ -23,7 +23,7 @@ __all__ = ["add_heavy", "light_part", "light_weights", "nodal_weights", "point_r
 _CHARM = 4
 
 
-def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
+def point_rows(problem: Problem, chosen: Integers, nf: int, out: Floats | None = None) -> Floats:
     """Return rows on gluon, q + qbar and q - qbar at the mu_f of each point.
 
     Parameters
@@ -33,6 +33,8 @@ def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
         Which points; all with `nf` flavours.
     nf : int
         Number of active flavours.
+    out : ndarray, (point, 13, node), optional
+        Where to write.
 
     Returns
     -------
@@ -41,12 +43,19 @@ def point_rows(problem: Problem, chosen: Integers, nf: int) -> Floats:
     """
     setting = problem.setting
     powers = setting.powers(problem.a[chosen])
-    rows = light_part(problem, chosen, nf, setting, powers)
+    rows = light_part(problem, chosen, nf, setting, powers, out)
     add_heavy(rows, problem, chosen, nf, setting, powers, problem.theory.masses.values)
     return rows
 
 
-def light_part(problem: Problem, chosen: Integers, nf: int, setting: Setting, powers: Floats) -> Floats:
+def light_part(
+    problem: Problem,
+    chosen: Integers,
+    nf: int,
+    setting: Setting,
+    powers: Floats,
+    out: Floats | None = None,
+) -> Floats:
     """Return the rows of what is massless to the order of the theory, (point, 13, node).
 
     Parameters
@@ -57,6 +66,8 @@ def light_part(problem: Problem, chosen: Integers, nf: int, setting: Setting, po
         That of the problem, or with derivatives for coefficients.
     powers : ndarray, (point, power)
         a(mu_r)^k, or its derivative.
+    out : ndarray, (point, 13, node), optional
+        Where to write.
     """
     points, factors = problem.points.part(chosen), problem.factors[chosen]
     if problem.target_mass:
@@ -64,7 +75,7 @@ def light_part(problem: Problem, chosen: Integers, nf: int, setting: Setting, po
     else:
         nodal = nodal_weights(problem, points.x, factors)
     weights = light_weights(problem, points, nf, problem.theory.heavy_quarks == "matched")
-    return light_rows(setting, nodal, weights, powers, nf)
+    return light_rows(setting, nodal, weights, powers, nf, out=out)
 
 
 def add_heavy(

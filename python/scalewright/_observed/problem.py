@@ -72,8 +72,11 @@ class Problem:
     @cached_property
     def a(self) -> Floats:
         """a(mu_r) = alpha_s/(4 pi), (point,)."""
-        mur2 = self.points.q2 * self.theory.hard_mur2_ratio
-        return np.asarray(self.theory.alpha_s(mur2, self.nf) / (4.0 * np.pi))
+        # tables come in bins of Q^2: the running is solved once for each
+        pairs = np.stack([self.points.q2 * self.theory.hard_mur2_ratio, self.nf], axis=1)
+        distinct, inverse = np.unique(pairs, axis=0, return_inverse=True)
+        mur2, nf = distinct[:, 0].copy(), distinct[:, 1].astype(np.int64)
+        return np.asarray(self.theory.alpha_s(mur2, nf) / (4.0 * np.pi))[inverse.reshape(-1)]
 
     @cached_property
     def highest(self) -> dict[str, int]:

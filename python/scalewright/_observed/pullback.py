@@ -3,6 +3,9 @@
 A row acts on the gluon, on q + qbar and on q - qbar of six quarks: axes (point, 13, node) in the order gluon,
 plus 1 to 6, minus 1 to 6. Flavours that act alike along the whole route, the light ones, differ from their
 mean by what evolves with the non-singlet blocks; so a row on them is split into its mean and what is left.
+
+Which one when: `_core.Evolution.pull_back` does it for a live set of operators, many scales at once; the
+functions here for blocks at hand.
 """
 
 from __future__ import annotations

@@ -6,6 +6,7 @@ mod detached;
 mod errors;
 mod grid;
 mod kernels;
+mod observables;
 mod operators;
 mod sensitivity;
 mod theory;
@@ -23,6 +24,8 @@ mod _core {
     use crate::grid::Grid;
     #[pymodule_export]
     use crate::kernels::{matching_element, splitting_function};
+    #[pymodule_export]
+    use crate::observables::light_rows;
     #[pymodule_export]
     use crate::operators::{Evolution, apply, build, compose, evolve};
     #[pymodule_export]

@@ -3,6 +3,7 @@
 use super::fixed_flavour::{FixedFlavour, Sector};
 use crate::error::Result;
 use crate::numerics::blocks::Matrix;
+use crate::numerics::left_product::{Rows, multiply_left};
 use crate::numerics::matrix_ode::{Dense, Step};
 use crate::watch::Watch;
 use rayon::prelude::*;
@@ -101,14 +102,9 @@ impl StretchSolution {
         if self.steps.is_empty() {
             return vec![self.start.clone(); s.len()];
         }
-        let last = self.steps.len() - 1;
-        let step_of = |s: f64| {
-            let share = (s - self.from) / (self.to - self.from) * self.steps.len() as f64;
-            (share.max(0.0) as usize).min(last)
-        };
         let mut solutions = vec![Matrix::default(); s.len()];
         for (index, step) in self.steps.iter().enumerate() {
-            let here: Vec<usize> = (0..s.len()).filter(|&i| step_of(s[i]) == index).collect();
+            let here: Vec<usize> = (0..s.len()).filter(|&i| self.step_of(s[i]) == index).collect();
             let at: Vec<f64> = here.iter().map(|&i| s[i]).collect();
             for (solution, i) in step.at_many(&at).into_iter().zip(here) {
                 solutions[i] = solution;
@@ -133,6 +129,22 @@ impl StretchSolution {
     pub fn add(&mut self, other: &Self) {
         self.start.add_scaled(1.0, &other.start);
         self.steps.iter_mut().zip(&other.steps).for_each(|(own, other)| own.add(other));
+    }
+
+    /// The step that holds `s`; all sectors of a stretch have the same steps.
+    pub fn step_of(&self, s: f64) -> usize {
+        let share = (s - self.from) / (self.to - self.from) * self.steps.len() as f64;
+        // Not a number where the stretch has no length.
+        (share.max(0.0) as usize).min(self.steps.len().saturating_sub(1))
+    }
+
+    /// `target += row * solution(s)` for rows that all act within one step. Rows of the solution before `first` are
+    /// zero.
+    pub fn multiply_left(&self, step: usize, rows: &Rows, first: usize, target: &mut Matrix) {
+        match self.steps.get(step) {
+            Some(dense) => dense.multiply_left(rows, first, target),
+            None => multiply_left(&self.start, rows, first, target),
+        }
     }
 
     /// Estimated error of some rows, relative to the largest value of each entry over a step.

@@ -22,11 +22,11 @@ pub struct Step {
 
 /// What a step makes of its start: the solution at every node.
 pub struct Dense {
-    nodes: Nodes,
+    pub(super) nodes: Nodes,
     /// `(node, row * column)`.
-    values: Matrix,
-    rows: usize,
-    cols: usize,
+    pub(super) values: Matrix,
+    pub(super) rows: usize,
+    pub(super) cols: usize,
 }
 
 impl Step {

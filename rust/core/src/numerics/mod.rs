@@ -4,5 +4,6 @@ pub mod blocks;
 pub mod chebyshev;
 pub mod endpoint;
 pub mod gauss_legendre;
+pub mod left_product;
 pub mod matrix_ode;
 pub mod polylog;

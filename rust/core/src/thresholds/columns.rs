@@ -170,13 +170,13 @@ impl Columns {
 
 /// Columns along one leg, at any scale of it.
 pub struct LegColumns {
-    start: Columns,
+    pub(super) start: Columns,
     nf: usize,
-    offsets: Vec<usize>,
+    pub(super) offsets: Vec<usize>,
     /// The part that holds all flavours: singlet pair, valence, or the only content.
-    sum: StretchSolution,
+    pub(super) sum: StretchSolution,
     /// Each heavy flavour less its share of the light sum.
-    differences: Vec<(usize, StretchSolution)>,
+    pub(super) differences: Vec<(usize, StretchSolution)>,
 }
 
 impl LegColumns {

@@ -24,6 +24,8 @@ pub struct Evolution {
     pub(super) route: Route,
     pub(super) chunks: Vec<Chunk>,
     layouts: Vec<Layout>,
+    /// Heavy flavours of the input.
+    pub(super) heavy: Vec<usize>,
     names: Vec<String>,
     flow_names: Vec<String>,
     error: f64,
@@ -32,11 +34,11 @@ pub struct Evolution {
 
 /// Columns that belong to one panel of input nodes: they are carried along the whole route by themselves.
 pub(super) struct Chunk {
-    family: Family,
+    pub(super) family: Family,
     /// Panel of the input nodes: rows of those before it are zero.
     pub(super) panel: usize,
     /// `(input channel, input node)` of each column.
-    columns: Vec<(usize, usize)>,
+    pub(super) columns: Vec<(usize, usize)>,
     pub(super) legs: Vec<LegColumns>,
 }
 
@@ -90,6 +92,7 @@ fn finish(
         options: Some(options.clone()),
         chunks,
         layouts: inputs.layouts(&families),
+        heavy: inputs.heavy.clone(),
         names: inputs.block_names(&families),
         flow_names: inputs.flow_names(&families),
         error,
@@ -109,6 +112,7 @@ impl Evolution {
             route: self.route.clone(),
             chunks,
             layouts: self.layouts.clone(),
+            heavy: self.heavy.clone(),
             names: self.names.clone(),
             flow_names: self.flow_names.clone(),
             error: self.error,

@@ -1,0 +1,127 @@
+//! Rows times a solution that is dense in s: what acts on it from the left, each row at an `s` of its own.
+//!
+//! Which way when: many rows at few `s` want the solution evaluated there; rows that all have an `s` of their own are
+//! cheaper multiplied by the solution at every node, since that is one product of matrices for all of them.
+
+use super::blocks::{Matrix, View, multiply_add};
+use super::matrix_ode::Dense;
+use std::ops::Range;
+
+/// Values of `s` at which the solution is evaluated together: each pass over its nodes serves as many.
+const TOGETHER: usize = 8;
+
+/// How the solution at the `s` of a row is had.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Way {
+    /// It is evaluated once for neighbouring rows with the same `s`.
+    Evaluated,
+    /// Rows are multiplied by the solution at every node, with the weights of interpolation as factors.
+    AtNodes,
+}
+
+/// Rows that act on a solution from the left.
+pub struct Rows<'a> {
+    /// Where each acts.
+    pub s: &'a [f64],
+    /// Number of leading entries of each that may differ from zero.
+    pub ends: &'a [usize],
+    /// `(row, entry)`.
+    pub values: &'a Matrix,
+    /// How the solution is had.
+    pub way: Way,
+}
+
+/// `target += row * solution`, for a solution that does not change. Its rows before `first` are zero.
+pub fn multiply_left(solution: &Matrix, rows: &Rows, first: usize, target: &mut Matrix) {
+    let view = solution.part(0..solution.rows(), 0..solution.cols());
+    multiply(view, 0, rows, 0..rows.s.len(), first, target);
+}
+
+impl Dense {
+    /// `target += row * solution(s)`, one row of `target` for each. Rows of the solution before `first` are zero.
+    pub fn multiply_left(&self, rows: &Rows, first: usize, target: &mut Matrix) {
+        let mut weights = Matrix::zeros(rows.s.len(), self.nodes.points().len());
+        for (row, &s) in rows.s.iter().enumerate() {
+            self.nodes.cardinals(s, weights.row_mut(row));
+        }
+        match rows.way {
+            Way::Evaluated => self.evaluated(rows, &weights, first, target),
+            Way::AtNodes => self.at_nodes(rows, &weights, first, target),
+        }
+    }
+
+    fn evaluated(&self, rows: &Rows, weights: &Matrix, first: usize, target: &mut Matrix) {
+        let places: Vec<Range<usize>> = runs(rows.s).collect();
+        for together in places.chunks(TOGETHER) {
+            let some = together[0].start..together[together.len() - 1].end;
+            let end = rows.ends[some].iter().copied().max().unwrap_or(0);
+            if end <= first {
+                continue;
+            }
+            let (count, nodes, size) = (together.len(), weights.cols(), (end - first) * self.cols);
+            let of_places = together.iter().flat_map(|run| weights.row(run.start)).copied().collect();
+            let of_places = Matrix::from_values(count, nodes, of_places);
+            let mut solutions = Matrix::zeros(count, size);
+            multiply_add(
+                solutions.part_mut(0..count, 0..size),
+                1.0,
+                of_places.part(0..count, 0..nodes),
+                self.values.part(0..nodes, first * self.cols..end * self.cols),
+            );
+            for (run, solution) in together.iter().zip(0..) {
+                let view = View::from_row_major_slice(solutions.row(solution), end - first, self.cols);
+                multiply(view, first, rows, run.clone(), first, target);
+            }
+        }
+    }
+
+    fn at_nodes(&self, rows: &Rows, weights: &Matrix, first: usize, target: &mut Matrix) {
+        for group in runs(rows.ends) {
+            let end = rows.ends[group.start];
+            if end <= first {
+                continue;
+            }
+            let (count, width) = (group.len(), end - first);
+            let mut scaled = Matrix::zeros(count, width);
+            for node in 0..weights.cols() {
+                for (i, row) in group.clone().enumerate() {
+                    let weight = weights.row(row)[node];
+                    let source = &rows.values.row(row)[first..end];
+                    scaled.row_mut(i).iter_mut().zip(source).for_each(|(to, value)| *to = weight * value);
+                }
+                let at_node = View::from_row_major_slice(self.values.row(node), self.rows, self.cols);
+                multiply_add(
+                    target.part_mut(group.clone(), 0..self.cols),
+                    1.0,
+                    scaled.part(0..count, 0..width),
+                    at_node.submatrix(first, 0, width, self.cols),
+                );
+            }
+        }
+    }
+}
+
+/// Multiplies some rows by a solution of which the first row held is number `held_from`.
+fn multiply(solution: View, held_from: usize, rows: &Rows, some: Range<usize>, first: usize, target: &mut Matrix) {
+    for group in runs(&rows.ends[some.clone()]) {
+        let group = some.start + group.start..some.start + group.end;
+        let end = rows.ends[group.start];
+        if end > first {
+            multiply_add(
+                target.part_mut(group.clone(), 0..solution.ncols()),
+                1.0,
+                rows.values.part(group, first..end),
+                solution.submatrix(first - held_from, 0, end - first, solution.ncols()),
+            );
+        }
+    }
+}
+
+/// Ranges of neighbours that are equal.
+pub fn runs<T: PartialEq>(values: &[T]) -> impl Iterator<Item = Range<usize>> + '_ {
+    let mut start = 0;
+    values.chunk_by(|one, next| one == next).map(move |run| {
+        start += run.len();
+        start - run.len()..start
+    })
+}
