@@ -10,6 +10,9 @@ use std::ops::Range;
 /// Values of `s` at which the solution is evaluated together: each pass over its nodes serves as many.
 const TOGETHER: usize = 8;
 
+/// Fewer rows than this are multiplied together with the next, zeros included: a product has a cost of its own.
+const FEW: usize = 32;
+
 /// How the solution at the `s` of a row is had.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Way {
@@ -76,8 +79,7 @@ impl Dense {
     }
 
     fn at_nodes(&self, rows: &Rows, weights: &Matrix, first: usize, target: &mut Matrix) {
-        for group in runs(rows.ends) {
-            let end = rows.ends[group.start];
+        for (group, end) in groups(rows.ends) {
             if end <= first {
                 continue;
             }
@@ -103,9 +105,8 @@ impl Dense {
 
 /// Multiplies some rows by a solution of which the first row held is number `held_from`.
 fn multiply(solution: View, held_from: usize, rows: &Rows, some: Range<usize>, first: usize, target: &mut Matrix) {
-    for group in runs(&rows.ends[some.clone()]) {
+    for (group, end) in groups(&rows.ends[some.clone()]) {
         let group = some.start + group.start..some.start + group.end;
-        let end = rows.ends[group.start];
         if end > first {
             multiply_add(
                 target.part_mut(group.clone(), 0..solution.ncols()),
@@ -115,6 +116,20 @@ fn multiply(solution: View, held_from: usize, rows: &Rows, some: Range<usize>, f
             );
         }
     }
+}
+
+/// Neighbouring rows to multiply in one go, with the largest of their ends: those with equal ends, and more where they
+/// are few.
+fn groups(ends: &[usize]) -> Vec<(Range<usize>, usize)> {
+    let mut groups: Vec<(Range<usize>, usize)> = Vec::new();
+    for run in runs(ends) {
+        let end = ends[run.start];
+        match groups.last_mut() {
+            Some((group, largest)) if group.len() < FEW => (group.end, *largest) = (run.end, end.max(*largest)),
+            _ => groups.push((run, end)),
+        }
+    }
+    groups
 }
 
 /// Ranges of neighbours that are equal.

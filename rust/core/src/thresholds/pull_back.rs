@@ -135,18 +135,13 @@ impl Side {
     fn new(points: &[RowAt], pair: Option<&[usize]>, light: usize, nf: usize, offsets: &[usize]) -> Self {
         let n = offsets[offsets.len() - 1];
         let base = if pair.is_some() { 1 } else { 1 + QUARKS };
-        let quark = |point: &RowAt<'_>, q: usize, node: usize| point.values[(base + q) * n + node];
         let ends: Vec<usize> = points.iter().map(|point| offsets[point.panels]).collect();
+        let quark = |i: usize, q: usize| &points[i].values[(base + q) * n..][..ends[i]];
         let mean = |count: usize| {
             let mut values = Matrix::zeros(points.len(), n);
-            for (i, point) in points.iter().enumerate() {
-                let row = values.row_mut(i);
+            for i in 0..points.len() {
                 for q in 0..count {
-                    let of_quark = &point.values[(base + q) * n..][..ends[i]];
-                    row.iter_mut().zip(of_quark).for_each(|(sum, value)| *sum += value);
-                }
-                for value in row.iter_mut() {
-                    *value /= count as f64;
+                    add_scaled(values.row_mut(i), 1.0 / count as f64, quark(i, q));
                 }
             }
             values
@@ -156,21 +151,20 @@ impl Side {
         let mut heavy = Vec::new();
         for flavour in light + 1..=QUARKS {
             let mut values = Matrix::zeros(points.len(), n);
-            for (i, point) in points.iter().enumerate() {
-                for node in 0..ends[i] {
-                    let share = if flavour <= nf { all.row(i)[node] } else { 0.0 };
-                    values.row_mut(i)[node] = quark(point, flavour - 1, node) - share;
+            for i in 0..points.len() {
+                add_scaled(values.row_mut(i), 1.0, quark(i, flavour - 1));
+                if flavour <= nf {
+                    add_scaled(values.row_mut(i), -1.0, all.row(i));
                 }
             }
             heavy.extend(Stacked::new(s.clone(), ends.clone(), values).map(|rows| (flavour, rows)));
         }
         let each = light - 1;
         let mut differences = Matrix::zeros(points.len() * each, n);
-        for (i, point) in points.iter().enumerate() {
+        for i in 0..points.len() {
             for q in 0..each {
-                for node in 0..ends[i] {
-                    differences.row_mut(i * each + q)[node] = quark(point, q, node) - lightest.row(i)[node];
-                }
+                add_scaled(differences.row_mut(i * each + q), 1.0, quark(i, q));
+                add_scaled(differences.row_mut(i * each + q), -1.0, lightest.row(i));
             }
         }
         let repeated = |i: usize| std::iter::repeat_n(i, each);
@@ -252,11 +246,24 @@ impl Carry<'_> {
         Matrix::zeros(rows.s.len(), self.chunk.columns.len())
     }
 
+    /// Adds columns to their channels; those of a channel are neighbours, as their nodes are.
     fn add(&self, target: &Matrix, made: &mut [Matrix]) {
-        for row in 0..target.rows() {
-            for (&(channel, node), value) in self.chunk.columns.iter().zip(target.row(row)) {
-                made[channel].row_mut(row)[node] += *value;
+        let channels = self.chunk.columns.chunk_by(|one, next| one.0 == next.0);
+        let mut start = 0;
+        for columns in channels {
+            let (channel, node) = columns[0];
+            for row in 0..target.rows() {
+                let values = &target.row(row)[start..start + columns.len()];
+                add_scaled(&mut made[channel].row_mut(row)[node..], 1.0, values);
             }
+            start += columns.len();
         }
+    }
+}
+
+/// `target += factor * source`, as far as the source goes.
+fn add_scaled(target: &mut [f64], factor: f64, source: &[f64]) {
+    for (sum, value) in target.iter_mut().zip(source) {
+        *sum += factor * value;
     }
 }
