@@ -7,7 +7,8 @@ import numpy as np
 import pytest
 import scalewright as sw
 
-GRID = sw.ChebyshevGrid(1e-4)
+#: Coarse: maps are compared with maps, whatever they are worth.
+GRID = sw.ChebyshevGrid.from_panels([0.0, 0.7, 2.5, 9.3], [9, 9, 9])
 X, Q2 = np.array([0.001, 0.05, 0.3]), np.array([8.0, 200.0, 2e4])
 ROWS = [
     {"measure": "reduced_cross_section", "exchange": "photon+Z", "beam": "e+"},
