@@ -73,6 +73,10 @@ class Theory:
     ) -> Theory: ...
     # at mu_r^2, for the nf given, elementwise
     def alpha_s(self, mu2: NDArray[np.float64], nf: NDArray[np.int64]) -> NDArray[np.float64]: ...
+    # with respect to "alpha_s", "charm", "bottom" or "top", thresholds fixed, or "ln_q2", that of mu2
+    def alpha_s_derivative(
+        self, parameter: str, mu2: NDArray[np.float64], nf: NDArray[np.int64]
+    ) -> NDArray[np.float64]: ...
     # of a factorisation scale; a scale on a threshold counts as above
     def nf_at(self, q2: NDArray[np.float64]) -> NDArray[np.int64]: ...
 
@@ -95,6 +99,9 @@ class Evolution:
     def values(
         self, q2: NDArray[np.float64], nf: NDArray[np.int64], threads: int
     ) -> tuple[NDArray[np.float64], NDArray[np.float64]]: ...
+    # with respect to "alpha_s", "charm", "bottom" or "top", thresholds fixed, or "ln_q2", that of the output;
+    # served as the set itself
+    def derivative(self, parameter: str, threads: int) -> Evolution: ...
     # rows (point, 13, node) as of light_rows, at scales (scale,) of points; protons (point,) the fraction of
     # protons in each target; written to rows `places` (point,) of out (row, flavour, node)
     def pull_back(

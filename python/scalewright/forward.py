@@ -8,7 +8,6 @@ mu_f^2.
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -21,7 +20,7 @@ from ._measured.combination import Combination
 from ._observed import storing
 from ._observed.accuracy import row_errors
 from ._observed.carried import carried_matrix
-from ._observed.differences import TOLERANCE, Derivative, differentiated
+from ._observed.derivatives import carried_derivative
 from ._observed.further import checked_further
 from ._observed.orders import Orders, orders_of
 from ._observed.points import Points
@@ -227,13 +226,12 @@ class ForwardMap:
         return np.asarray(made)
 
     def derivative(self, parameter: str) -> Floats:
-        """Derivative of the matrix with respect to a parameter of the theory, by finite differences.
+        """Derivative of the matrix with respect to a parameter of the theory; thresholds stay fixed.
 
         Parameters
         ----------
-        parameter : {"alpha_s", "charm", "bottom", "hard_mur2_ratio", "hard_muf2_ratio"}
-            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales. Thresholds stay
-            fixed.
+        parameter : {"alpha_s", "charm", "bottom", "top", "hard_mur2_ratio", "hard_muf2_ratio"}
+            alpha_s at the scale where it is given, a mass in GeV, or a ratio of scales.
 
         Returns
         -------
@@ -242,38 +240,15 @@ class ForwardMap:
         Raises
         ------
         InputError
-            If the parameter is unknown, or a step from it leaves what a theory allows.
+            If the parameter is unknown.
+
+        Notes
+        -----
+        Exact, by the product rule from those of operators, coupling and coefficient functions; but massive
+        coefficients are differentiated with respect to the mass by six-point differences of them alone. A
+        mu_f that lies on a threshold is taken to stay above it.
         """
-        return self.differences(parameter).matrix
-
-    def differences(self, parameter: str) -> Derivative:
-        """Return `derivative` with the step that was taken and the error that it shows.
-
-        Parameters
-        ----------
-        parameter : str
-            As for `derivative`. A ratio is moved by 1 per cent at most, which must stay in [0.25, 4]; no mu_f
-            must cross a threshold within it.
-
-        Returns
-        -------
-        Derivative
-            matrix, step and error.
-
-        Raises
-        ------
-        InputError
-            As `derivative`.
-        """
-        return differentiated(self.theory, parameter, self._rebuilt)
-
-    def _rebuilt(self, theory: Theory) -> Floats:
-        """Return the matrix of the same points under another theory, at tight tolerance."""
-        problem = replace(self._problem, theory=theory)
-        matrix, _ = carried_matrix(
-            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TOLERANCE, threads=None
-        )
-        return matrix
+        return carried_derivative(self._problem, parameter, start_q2=self.start_q2, start_nf=self.start_nf)
 
     def save(self, path: PathLike) -> None:
         """Store the map, whole or not at all.

@@ -85,6 +85,7 @@ MIXING = ELECTROWEAK.mixing
 SEVEN = (21, 1, 2, 3, -1, -2, -3)
 FULL = Densities(GRID, q2=2.0, nf=3, flavours=SEVEN, values=np.ones((7, GRID.nodes)))
 THREE = Theory(order="LO", flavours=3)
+OPERATORS = sw.build_operators(THREE, GRID, start_q2=2.0, q2=[10.0])
 FMAP = sw.forward_map(THREE, GRID, start_q2=2.0, points=MEASURED)
 ASKED = {
     "q2": 2.0,
@@ -242,7 +243,7 @@ CALLS = {
     "ForwardMap.predict_rows": (FMAP.predict_rows, {"densities": FULL}),
     "ForwardMap.numerical_error": (FMAP.numerical_error, {"densities": FULL, "corrections": ()}),
     "ForwardMap.derivative": (FMAP.derivative, {"parameter": "alpha_s"}),
-    "ForwardMap.differences": (FMAP.differences, {"parameter": "alpha_s"}),
+    "Operators.derivative": (OPERATORS.derivative, {"parameter": "alpha_s", "threads": 1}),
     "structure_function": (
         sw.structure_function,
         {

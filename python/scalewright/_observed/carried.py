@@ -7,8 +7,9 @@ scales.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from typing import TYPE_CHECKING
+from collections.abc import Callable, Iterator
+from functools import partial
+from typing import TypeAlias
 
 import numpy as np
 
@@ -21,10 +22,9 @@ from .point_rows import point_rows
 from .problem import Problem
 from .pullback import CHANNELS
 
-if TYPE_CHECKING:
-    from .. import _core
+__all__ = ["built", "carried", "carried_matrix", "live", "scale_groups", "with_target"]
 
-__all__ = ["carried_matrix", "scale_groups", "with_target"]
+RowsOf: TypeAlias = Callable[[Integers, int, Floats], Floats]
 
 #: Points whose rows are held at a time: some 4 MB.
 _POINTS = 512
@@ -58,8 +58,24 @@ def carried_matrix(
     matrix : ndarray, (row, flavour, node)
     operators : Operators
     """
-    q2, nf, group = scale_groups(problem)
-    operators = build_operators(
+    operators = built(problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads)
+    rows = partial(point_rows, problem)
+    return carried(problem, live(operators), operators._route.active, rows, threads), operators
+
+
+def live(operators: Operators) -> Live:
+    """Return the solution that `build_operators` has made."""
+    source = operators._source
+    assert isinstance(source, Live)
+    return source
+
+
+def built(
+    problem: Problem, *, start_q2: float, start_nf: int | None, tolerance: float | None, threads: int | None
+) -> Operators:
+    """Return operators that serve the scales of all points."""
+    q2, nf, _ = scale_groups(problem)
+    return build_operators(
         problem.theory,
         problem.grid,
         start_q2=start_q2,
@@ -69,39 +85,43 @@ def carried_matrix(
         tolerance=tolerance,
         threads=threads,
     )
-    flavours = operators._route.active
+
+
+def carried(
+    problem: Problem, source: Live, flavours: tuple[int, ...], rows: RowsOf, threads: int | None
+) -> Floats:
+    """Return the matrix (row, flavour, node) on the input of rows at the scales of their points.
+
+    Parameters
+    ----------
+    problem : Problem
+    source : Live
+        Operators that `build_operators` has made, or their derivative.
+    flavours : tuple of int
+        PDG numbers of the input.
+    rows : callable
+        (points, number of flavours, where to write) -> (point, 13, node): `point_rows`, or a derivative.
+    threads : int, optional
+        As for `build_operators`.
+    """
+    q2, nf, group = scale_groups(problem)
     matrix = np.empty((len(problem.points), len(flavours), problem.grid.nodes))
-    if isinstance(operators._source, Live):  # what `build_operators` makes
-        numbers = np.asarray(flavours, dtype=np.int64)
-        _carry(problem, operators._source.evolution, numbers, matrix, (q2, nf, group), thread_count(threads))
-    return matrix, operators
-
-
-def _carry(
-    problem: Problem,
-    evolution: _core.Evolution,
-    flavours: Integers,
-    matrix: Floats,
-    groups: tuple[Floats, Integers, Integers],
-    threads: int,
-) -> None:
-    """Write rows of all points on the input, `matrix` (row, flavour, node), some points at a time."""
-    q2, nf, group = groups
     room = np.empty((min(_POINTS, group.size), CHANNELS, problem.grid.nodes))
     for members in _chunks(nf, group):
         scales, scale_of = np.unique(group[members], return_inverse=True)
-        rows = point_rows(problem, members, int(nf[scales[0]]), room[: members.size])
-        evolution.pull_back(
-            rows,
+        of_points = rows(members, int(nf[scales[0]]), room[: members.size])
+        source.evolution.pull_back(
+            of_points,
             q2=q2[scales],
             nf=nf[scales],
             scale_of=scale_of.astype(np.int64),
             protons=problem.points.protons[members],
-            flavours=flavours,
+            flavours=np.asarray(flavours, dtype=np.int64),
             places=members,
             out=matrix,
-            threads=threads,
+            threads=thread_count(threads),
         )
+    return matrix
 
 
 def _chunks(nf: Integers, group: Integers) -> Iterator[Integers]:

@@ -66,6 +66,7 @@ def light_terms(
     mur2_ratio: float,
     muf2_ratio: float,
     further: tuple[FurtherOrders, ...] = ((), (), ()),
+    by: str | None = None,
 ) -> Terms:
     """Return all coefficients that do not vanish.
 
@@ -76,20 +77,21 @@ def light_terms(
     grid : ChebyshevGrid
     highest : tuple of int
         Highest power of a of each of `LIGHT_FUNCTIONS`.
-    nf, mur2_ratio, muf2_ratio
+    nf, mur2_ratio, muf2_ratio, by
         As for `light_matrices`.
     further : tuple of tuple
         The same of each of `LIGHT_FUNCTIONS`.
     """
     found = []
     for place, function in enumerate(LIGHT_FUNCTIONS):
-        made = light_matrices(grid, function, highest[place], nf, mur2_ratio, muf2_ratio, further[place])
+        ratios = mur2_ratio, muf2_ratio
+        made = light_matrices(grid, function, highest[place], nf, *ratios, further[place], by)
         for part, name in enumerate(COEFFICIENTS):
             powers = enumerate(made[name])
             found += [(matrix, place, part, order) for order, matrix in powers if matrix.any()]
-    matrices, functions, parts, orders = zip(*found, strict=True)
-    numbers = (np.asarray(column, dtype=np.int64) for column in (functions, parts, orders))
-    return Terms(np.stack(matrices), *numbers)
+    matrices = np.stack([term[0] for term in found]) if found else np.zeros((0, grid.nodes, grid.nodes))
+    numbers = np.array([term[1:] for term in found], dtype=np.int64).reshape(-1, 3).T.copy()
+    return Terms(matrices, *numbers)
 
 
 @lru_cache(maxsize=512)
@@ -109,6 +111,7 @@ def light_matrices(
     mur2_ratio: float,
     muf2_ratio: float,
     further: FurtherOrders = (),
+    by: str | None = None,
 ) -> dict[str, Floats]:
     """Return the coefficients of a(mu_r)^k, k = 0 to `highest`, as matrices.
 
@@ -126,6 +129,8 @@ def light_matrices(
         mu_r^2/Q^2 and mu_f^2/Q^2.
     further : tuple of tuple
         Coefficient functions beyond `highest`, one entry an order, pairs of name and function.
+    by : {None, "mur2_ratio", "muf2_ratio"}
+        The coefficients, or their derivative with respect to the logarithm of a ratio at fixed a(mu_r).
 
     Returns
     -------
@@ -143,12 +148,12 @@ def light_matrices(
     known = [min(k, 2) for k in range(highest)]
     plus, minus = ([splitting(grid, k, name, nf) for k in known] for name in ("ns+", "ns-"))
     nonsinglet = {"ns+": (plain["ns+"], plus), "ns-": (plain["ns-"], minus)}
-    made = {name: _shifted(c, p, t, lr, nf) for name, (c, p) in nonsinglet.items()}
+    made = {name: _shifted(c, p, (t, lr), nf, by) for name, (c, p) in nonsinglet.items()}
     # the singlet as one row of two blocks (Sigma, gluon)
     both = [
         np.hstack([plain["ns+"][k] + plain["pure singlet"][k], plain["gluon"][k]]) for k in range(highest + 1)
     ]
-    singlet = _shifted(both, [_singlet(grid, k, nf) for k in known], t, lr, nf)
+    singlet = _shifted(both, [_singlet(grid, k, nf) for k in known], (t, lr), nf, by)
     n = grid.nodes
     made["pure singlet"] = [c[:, :n] - d for c, d in zip(singlet, made["ns+"], strict=True)]
     made["gluon"] = [c[:, n:] for c in singlet]
@@ -168,23 +173,47 @@ def _singlet(grid: ChebyshevGrid, order: int, nf: int) -> Floats:
     return np.block([[part["ns+"] + part["pure singlet"], part["qg"]], [part["gq"], part["gg"]]])
 
 
-def _shifted(c: list[Floats], p: list[Floats], t: float, lr: float, nf: int) -> list[Floats]:
-    """Return coefficients at mu_f and mu_r from those at Q."""
-    if t == 0.0 and lr == 0.0:
+def _shifted(
+    c: list[Floats], p: list[Floats], logarithms: tuple[float, float], nf: int, by: str | None
+) -> list[Floats]:
+    """Return coefficients at mu_f and mu_r from those at Q, or their derivative; `logarithms`: t, lr."""
+    t, lr = logarithms
+    if by is None and t == 0.0 and lr == 0.0:
         return c
-    b0, b1 = beta_coefficients(nf)
-    moved = _with_logarithms(c, p, t, b0, b1)
-    # a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3 with a = a(mu_r)
-    result = list(moved)
-    if len(moved) > 2:
-        result[2] = moved[2] + b0 * lr * moved[1]
-    if len(moved) > 3:
-        result[3] = moved[3] + 2.0 * b0 * lr * moved[2] + (b1 * lr + (b0 * lr) ** 2) * moved[1]
+    beta = beta_coefficients(nf)
+    series = _with_logarithms(c, p, *beta)
+    if by is None:
+        return _reexpanded(_at(series, t), lr, *beta)
+    slope = _reexpanded_slope(_at(series, t), lr, *beta)
+    if by == "mur2_ratio":  # in lr alone
+        return slope
+    moved = _reexpanded(_at([_slope(powers) for powers in series], t), lr, *beta)
+    # both t and lr fall with ln mu_f^2
+    return [-one - other for one, other in zip(moved, slope, strict=True)]
+
+
+def _reexpanded(c: list[Floats], lr: float, b0: float, b1: float) -> list[Floats]:
+    """Return coefficients of a = a(mu_r) from those of a(mu_f) = a + b0 lr a^2 + (b1 lr + b0^2 lr^2) a^3."""
+    result = list(c)
+    if len(c) > 2:
+        result[2] = c[2] + b0 * lr * c[1]
+    if len(c) > 3:
+        result[3] = c[3] + 2.0 * b0 * lr * c[2] + (b1 * lr + (b0 * lr) ** 2) * c[1]
     return result
 
 
-def _with_logarithms(c: list[Floats], p: list[Floats], t: float, b0: float, b1: float) -> list[Floats]:
-    """Return the coefficients as series in a(mu_f), polynomials in t evaluated at t.
+def _reexpanded_slope(c: list[Floats], lr: float, b0: float, b1: float) -> list[Floats]:
+    """Return the derivative of `_reexpanded` with respect to lr."""
+    result = [np.zeros_like(one) for one in c]
+    if len(c) > 2:
+        result[2] = b0 * c[1]
+    if len(c) > 3:
+        result[3] = 2.0 * b0 * c[2] + (b1 + 2.0 * b0**2 * lr) * c[1]
+    return result
+
+
+def _with_logarithms(c: list[Floats], p: list[Floats], b0: float, b1: float) -> list[list[Floats]]:
+    """Return the coefficients as series in a(mu_f), each a polynomial in t by rising power.
 
     d C_k/d t = sum_j C_(k-1-j) P_j - (k-1) b0 C_(k-1) - (k-2) b1 C_(k-2).
     """
@@ -201,6 +230,16 @@ def _with_logarithms(c: list[Floats], p: list[Floats], t: float, b0: float, b1: 
                     slope = slope - factor * series[lower][power - 1]
             powers.append(slope / power)
         series.append(powers)
+    return series
+
+
+def _at(series: list[list[Floats]], t: float) -> list[Floats]:
+    """Return polynomials in t at one t."""
     return [
         sum((term * t**n for n, term in enumerate(powers)), np.zeros_like(powers[0])) for powers in series
     ]
+
+
+def _slope(powers: list[Floats]) -> list[Floats]:
+    """Return the derivative of a polynomial."""
+    return [n * term for n, term in enumerate(powers)][1:] or [np.zeros_like(powers[0])]

@@ -63,7 +63,8 @@ class Problem:
         if not isinstance(self.target_mass, bool):
             _check.refuse("target_mass", self.target_mass, "target_mass must be True or False")
         _check.choice("subtraction", self.subtraction, ("damped", "chi", "plain"))
-        self._refuse_unknown_logarithms()
+        if not self.theory.hard_mur2_ratio == self.theory.hard_muf2_ratio == 1.0:
+            self.refuse_unknown_logarithms("hard_mur2_ratio and hard_muf2_ratio must be 1")
         self.points.refuse_outside(self.grid)
         self._refuse_unknown_orders()
         self._refuse_strong()
@@ -124,16 +125,14 @@ class Problem:
                 f"exchange with nf = 3, and not for nf = {self.nf[row]} or other bosons"
             )
 
-    def _refuse_unknown_logarithms(self) -> None:
-        """Refuse ratios of scales where further orders need splitting functions that are not known."""
-        if self.theory.hard_mur2_ratio == self.theory.hard_muf2_ratio == 1.0:
-            return
+    def refuse_unknown_logarithms(self, allowed: str) -> None:
+        """Refuse logarithms of scales where further orders need splitting functions that are not known."""
         for function, orders in self.further.items():
             power = self.highest[function] + len(orders)
             if orders and power > _LOGARITHMS:
                 raise InputError(
                     f"further[{function!r}]: to a^{power}: beyond a^{_LOGARITHMS} logarithms are not "
-                    "known: hard_mur2_ratio and hard_muf2_ratio must be 1"
+                    f"known: {allowed}"
                 )
 
     def _refuse_strong(self) -> None:

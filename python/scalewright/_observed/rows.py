@@ -2,7 +2,7 @@
 
 The nodal weights of a structure function at a point (interpolation, or more of it with target mass) times the
 coefficient matrices, times powers of a and the couplings of the quarks: a sum over terms, each with a factor
-a point and power, that is a power of a here and its derivative where derivatives are taken. The sums are the
+a point and power, that is a power of a or its derivative. The sums are the
 compiled core's, which leaves out what is zero: nodes of other panels, and the upper half of each matrix.
 """
 
@@ -40,6 +40,8 @@ class Setting:
         mu_r^2/Q^2 and mu_f^2/Q^2.
     further : mapping
         Structure function -> coefficient functions of the user beyond `highest`.
+    by : {None, "mur2_ratio", "muf2_ratio"}
+        Coefficient matrices, or their derivative with respect to the logarithm of a ratio.
     """
 
     grid: ChebyshevGrid
@@ -48,17 +50,18 @@ class Setting:
     mur2_ratio: float
     muf2_ratio: float
     further: Mapping[str, FurtherOrders] = field(default_factory=dict)
+    by: str | None = None
 
     def matrices(self, function: str, nf: int) -> dict[str, Floats]:
         """Return the coefficient matrices of one structure function."""
         ratios, own = (self.mur2_ratio, self.muf2_ratio), self.further.get(function, ())
-        return light_matrices(self.grid, function, self.highest[function], nf, *ratios, own)
+        return light_matrices(self.grid, function, self.highest[function], nf, *ratios, own, self.by)
 
     def terms(self, nf: int) -> Terms:
         """Return all coefficient matrices of one number of flavours."""
         highest = tuple(self.highest[function] for function in LIGHT_FUNCTIONS)
         own = tuple(self.further.get(function, ()) for function in LIGHT_FUNCTIONS)
-        return light_terms(self.grid, highest, nf, self.mur2_ratio, self.muf2_ratio, own)
+        return light_terms(self.grid, highest, nf, self.mur2_ratio, self.muf2_ratio, own, self.by)
 
     def powers(self, a: Floats) -> Floats:
         """Return a^k, (point, power), as far as they are needed."""
@@ -78,10 +81,9 @@ def light_rows(
     powers: Floats,
     nf: int,
     *,
-    terms: Terms | None = None,
     out: Floats | None = None,
 ) -> Floats:
-    """Return the part of light quarks and gluon: linear in nodal weights, couplings, powers and terms.
+    """Return the part of light quarks and gluon: linear in nodal weights, couplings and powers.
 
     Parameters
     ----------
@@ -94,8 +96,6 @@ def light_rows(
         What multiplies the coefficient of a^k: `Setting.powers`, or its derivative.
     nf : int
         Number of active flavours.
-    terms : Terms, optional
-        Coefficient matrices, by default those of the setting.
     out : ndarray, (point, 13, node), optional
         Where to write.
 
@@ -107,7 +107,7 @@ def light_rows(
     from .. import _core
 
     points, nodes = powers.shape[0], setting.grid.nodes
-    used = setting.terms(nf) if terms is None else terms
+    used = setting.terms(nf)
     rows = np.empty((points, CHANNELS, nodes)) if out is None else out
     nothing = np.zeros((0, 0)) if len(nodal) == len(LIGHT_FUNCTIONS) else np.zeros((points, nodes))
     f2, fl, xf3 = (np.ascontiguousarray(nodal.get(name, nothing)) for name in LIGHT_FUNCTIONS)

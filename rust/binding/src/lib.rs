@@ -8,6 +8,7 @@ mod grid;
 mod kernels;
 mod observables;
 mod operators;
+mod sensitivity;
 mod theory;
 
 use pyo3::prelude::*;

@@ -5,6 +5,7 @@ use crate::detached::run;
 use crate::errors::input;
 use crate::grid::Grid;
 use crate::kernels::channel;
+use crate::sensitivity::direction;
 use crate::theory::Theory;
 use numpy::{PyArrayDyn, PyReadonlyArray1, PyReadonlyArrayDyn, PyReadwriteArrayDyn, PyUntypedArrayMethods};
 use pyo3::prelude::*;
@@ -137,6 +138,13 @@ impl Evolution {
         let shape = [count_scales, self.core.names().len(), self.nodes, self.nodes];
         let flow_shape = [count_scales, self.core.flow_names().len(), self.nodes];
         Ok((handed_over(py, &shape, blocks)?, handed_over(py, &flow_shape, flows)?))
+    }
+
+    /// The derivative with respect to a parameter, served as the set itself.
+    fn derivative(&self, py: Python<'_>, parameter: &str, threads: i64) -> PyResult<Self> {
+        let direction = direction(py, parameter)?;
+        let core = run(py, count(py, "threads", threads)?, None, move |watch| self.core.derivative(direction, watch))?;
+        Ok(Self { core, nodes: self.nodes })
     }
 
     /// Rows (point, 13, node) at scales of points, carried back to the input: rows `places` of out (row, flavour, node).

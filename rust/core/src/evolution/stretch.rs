@@ -113,6 +113,24 @@ impl StretchSolution {
         solutions
     }
 
+    /// The start of the stretch in s, and what stands there.
+    pub fn start(&self) -> (f64, &Matrix) {
+        (self.from, &self.start)
+    }
+
+    /// Another function of s, made of this one at the nodes of every step: as accurate as the map is smooth in s.
+    #[must_use]
+    pub fn mapped(&self, map: impl Fn(f64, &Matrix) -> Matrix) -> Self {
+        let steps = self.steps.iter().map(|step| step.mapped(&map)).collect();
+        Self { from: self.from, to: self.to, start: map(self.from, &self.start), steps }
+    }
+
+    /// Adds a function on the same steps.
+    pub fn add(&mut self, other: &Self) {
+        self.start.add_scaled(1.0, &other.start);
+        self.steps.iter_mut().zip(&other.steps).for_each(|(own, other)| own.add(other));
+    }
+
     /// The step that holds `s`; all sectors of a stretch have the same steps.
     pub fn step_of(&self, s: f64) -> usize {
         let share = (s - self.from) / (self.to - self.from) * self.steps.len() as f64;

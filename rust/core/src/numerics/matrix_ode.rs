@@ -130,6 +130,24 @@ impl Dense {
         (0..s.len()).map(|row| Matrix::from_values(self.rows, self.cols, values.row(row).to_vec())).collect()
     }
 
+    /// Another function of s, with the value `map(s, solution(s))` at every node.
+    #[must_use]
+    pub fn mapped(&self, map: impl Fn(f64, &Matrix) -> Matrix) -> Self {
+        let at_node = |(row, &s): (usize, &f64)| {
+            map(s, &Matrix::from_values(self.rows, self.cols, self.values.row(row).to_vec()))
+        };
+        let nodes = self.nodes.clone();
+        let values: Vec<f64> =
+            nodes.points().iter().enumerate().map(at_node).flat_map(|made| made.values().to_vec()).collect();
+        let values = Matrix::from_values(nodes.points().len(), self.rows * self.cols, values);
+        Self { nodes, values, rows: self.rows, cols: self.cols }
+    }
+
+    /// Adds a function of the same step.
+    pub fn add(&mut self, other: &Self) {
+        self.values.add_scaled(1.0, &other.values);
+    }
+
     /// The solution at the end of the step.
     pub fn end(&self) -> Matrix {
         let last = self.values.rows() - 1;

@@ -27,6 +27,9 @@ pub enum Family {
     NsMinus,
 }
 
+/// A heavy flavour, how its difference from a share of the light sum evolves, and that difference.
+type Difference = (usize, Sector, Matrix);
+
 /// Values of some columns at one scale.
 #[derive(Debug, Clone)]
 pub struct Columns {
@@ -105,6 +108,46 @@ impl Columns {
         sum
     }
 
+    /// Adds `factor` times columns of the same kind; a channel that only they hold is taken over.
+    pub fn add_scaled(&mut self, factor: f64, other: &Self) {
+        for (own, other) in self.channels.iter_mut().zip(&other.channels) {
+            if let Some(other) = other {
+                own.get_or_insert_with(|| Matrix::zeros(other.rows(), other.cols())).add_scaled(factor, other);
+            }
+        }
+    }
+
+    /// Zeros in every channel of these.
+    pub fn nothing(&self) -> Self {
+        Self { channels: self.channels.each_ref().map(|own| own.as_ref().map(|_| self.empty())), ..*self }
+    }
+
+    /// What evolves alone at nf: the part that holds all flavours, and each heavy flavour less its share of the light
+    /// sum.
+    fn combinations(&self, nf: usize, offsets: &[usize]) -> ((Sector, Matrix), Vec<Difference>) {
+        let (sum, difference) = match self.family {
+            Family::Plus => (Sector::Singlet, Sector::NsPlus),
+            Family::Minus => (Sector::Valence, Sector::NsMinus),
+            Family::NsPlus => (Sector::NsPlus, Sector::NsPlus),
+            Family::NsMinus => (Sector::NsMinus, Sector::NsMinus),
+        };
+        let whole = match self.family {
+            Family::Plus => pack(self.gluon(), &self.singlet(nf), offsets),
+            Family::Minus => self.singlet(nf),
+            Family::NsPlus | Family::NsMinus => self.light_sum().clone(),
+        };
+        let share = -1.0 / self.light as f64;
+        let differences = (self.lightest_heavy()..=nf)
+            .filter(|_| matches!(self.family, Family::Plus | Family::Minus))
+            .map(|flavour| {
+                let mut deviation = self.heavy(flavour).cloned().unwrap_or_else(|| self.empty());
+                deviation.add_scaled(share, self.light_sum());
+                (flavour, difference, deviation)
+            })
+            .collect();
+        ((sum, whole), differences)
+    }
+
     /// Moves all momentum below `x_min` to the gluon's last row.
     pub fn gather_momentum(&mut self) {
         let mut total = vec![0.0; self.light_sum().cols()];
@@ -139,28 +182,62 @@ pub struct LegColumns {
 impl LegColumns {
     /// Carries columns along a stretch of nf flavours. Rows of panels before `first` are zero.
     pub fn new(start: Columns, stretch: &Stretch, nf: usize, offsets: &[usize], first: usize) -> Self {
-        let (sum, difference) = match start.family {
-            Family::Plus => (Sector::Singlet, Sector::NsPlus),
-            Family::Minus => (Sector::Valence, Sector::NsMinus),
-            Family::NsPlus => (Sector::NsPlus, Sector::NsPlus),
-            Family::NsMinus => (Sector::NsMinus, Sector::NsMinus),
-        };
-        let whole = match start.family {
-            Family::Plus => pack(start.gluon(), &start.singlet(nf), offsets),
-            Family::Minus => start.singlet(nf),
-            Family::NsPlus | Family::NsMinus => start.light_sum().clone(),
-        };
-        let share = -1.0 / start.light as f64;
-        let differences = (start.lightest_heavy()..=nf)
-            .filter(|_| matches!(start.family, Family::Plus | Family::Minus))
-            .map(|flavour| {
-                let mut deviation = start.heavy(flavour).cloned().unwrap_or_else(|| start.empty());
-                deviation.add_scaled(share, start.light_sum());
-                (flavour, stretch.solve(difference, deviation, first))
-            })
+        let ((sector, whole), differences) = start.combinations(nf, offsets);
+        let differences = differences
+            .into_iter()
+            .map(|(flavour, sector, deviation)| (flavour, stretch.solve(sector, deviation, first)))
             .collect();
-        let sum = stretch.solve(sum, whole, first);
+        let sum = stretch.solve(sector, whole, first);
         Self { start, nf, offsets: offsets.to_vec(), sum, differences }
+    }
+
+    /// The columns where the leg is entered.
+    pub fn at_start(&self) -> &Columns {
+        &self.start
+    }
+
+    /// Another function of s: `map(sector, s, C)` of each combination that evolves alone, nothing of what does not
+    /// evolve.
+    #[must_use]
+    pub fn mapped(&self, map: impl Fn(Sector, f64, &Matrix) -> Matrix) -> Self {
+        let start = self.start.nothing();
+        let ((sector, _), differences) = start.combinations(self.nf, &self.offsets);
+        let differences = differences
+            .iter()
+            .zip(&self.differences)
+            .map(|((flavour, sector, _), of)| (*flavour, of.1.mapped(|s, columns| map(*sector, s, columns))))
+            .collect();
+        let sum = self.sum.mapped(|s, columns| map(sector, s, columns));
+        Self { start, nf: self.nf, offsets: self.offsets.clone(), sum, differences }
+    }
+
+    /// How these columns move with a parameter.
+    ///
+    /// `entered` is how those at the start of the leg do there, at a fixed scale; `moving(sector, s, C)` is
+    /// `A(s) C ds/dp`. What the start moves away from under the columns is carried on with what enters; `stretch` and
+    /// `first` as for [`LegColumns::new`].
+    pub fn derivative(
+        &self,
+        entered: Columns,
+        stretch: &Stretch,
+        first: usize,
+        moving: impl Fn(Sector, f64, &Matrix) -> Matrix,
+    ) -> Self {
+        let carry = |sector: Sector, mut entered: Matrix, of: &StretchSolution| {
+            let (s, start) = of.start();
+            entered.add_scaled(-1.0, &moving(sector, s, start));
+            let mut moved = stretch.solve(sector, entered, first);
+            moved.add(&of.mapped(|s, columns| moving(sector, s, columns)));
+            moved
+        };
+        let ((sector, whole), entering) = entered.combinations(self.nf, &self.offsets);
+        let sum = carry(sector, whole, &self.sum);
+        let differences = entering
+            .into_iter()
+            .zip(&self.differences)
+            .map(|((flavour, sector, deviation), (_, of))| (flavour, carry(sector, deviation, of)))
+            .collect();
+        Self { start: entered, nf: self.nf, offsets: self.offsets.clone(), sum, differences }
     }
 
     /// The columns at `s = ln a`.

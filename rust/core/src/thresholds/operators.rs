@@ -18,7 +18,9 @@ const TOGETHER: usize = 8;
 /// A set of operators, dense in scale along its route.
 pub struct Evolution {
     pub(super) theory: Theory,
-    nodes: usize,
+    pub(super) grid: Grid,
+    /// What was asked; nothing where this is a derivative.
+    pub(super) options: Option<BuildOptions>,
     pub(super) route: Route,
     pub(super) chunks: Vec<Chunk>,
     layouts: Vec<Layout>,
@@ -33,9 +35,17 @@ pub struct Evolution {
 /// Columns that belong to one panel of input nodes: they are carried along the whole route by themselves.
 pub(super) struct Chunk {
     pub(super) family: Family,
+    /// Panel of the input nodes: rows of those before it are zero.
+    pub(super) panel: usize,
     /// `(input channel, input node)` of each column.
     pub(super) columns: Vec<(usize, usize)>,
     pub(super) legs: Vec<LegColumns>,
+}
+
+impl Chunk {
+    fn with_legs(&self, legs: Vec<LegColumns>) -> Self {
+        Self { family: self.family, panel: self.panel, columns: self.columns.clone(), legs }
+    }
 }
 
 /// Builds the set.
@@ -50,13 +60,14 @@ pub(super) struct Chunk {
 /// [`Error::Interrupted`]: crate::error::Error::Interrupted
 pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn Watch) -> Result<Evolution> {
     let (prepared, inputs, error) = prepare(theory, grid, options, &Stage::new(watch, 0, 2))?;
-    finish(theory, grid, prepared, &inputs, error, &Stage::new(watch, 1, 2))
+    finish(theory, grid, options, prepared, &inputs, error, &Stage::new(watch, 1, 2))
 }
 
 /// Carries the unit columns of all families.
 fn finish(
     theory: &Theory,
     grid: &Grid,
+    options: &BuildOptions,
     prepared: Prepared,
     inputs: &Inputs,
     error: f64,
@@ -72,12 +83,13 @@ fn finish(
             let (columns, start) = inputs.start(family, grid, panel);
             let legs = prepared.carry(theory, &start, panel)?;
             watch.one_of(tasks.len());
-            Ok(Chunk { family, columns, legs })
+            Ok(Chunk { family, panel, columns, legs })
         })
         .collect::<Result<_>>()?;
     Ok(Evolution {
         theory: theory.clone(),
-        nodes: grid.nodes(),
+        grid: grid.clone(),
+        options: Some(options.clone()),
         chunks,
         layouts: inputs.layouts(&families),
         heavy: inputs.heavy.clone(),
@@ -90,6 +102,24 @@ fn finish(
 }
 
 impl Evolution {
+    /// The same with other columns, one list of legs a chunk.
+    pub(super) fn with_legs(&self, legs: Vec<Vec<LegColumns>>) -> Self {
+        let chunks = self.chunks.iter().zip(legs).map(|(chunk, legs)| chunk.with_legs(legs)).collect();
+        Self {
+            theory: self.theory.clone(),
+            grid: self.grid.clone(),
+            options: None,
+            route: self.route.clone(),
+            chunks,
+            layouts: self.layouts.clone(),
+            heavy: self.heavy.clone(),
+            names: self.names.clone(),
+            flow_names: self.flow_names.clone(),
+            error: self.error,
+            steps: self.steps,
+        }
+    }
+
     /// Names of the blocks, each `output<-input`, or `ns+`, `ns-` for differences among light flavours.
     pub fn names(&self) -> &[String] {
         &self.names
@@ -125,7 +155,7 @@ impl Evolution {
     /// # Errors
     /// [`crate::error::Error::OutOfRange`] for a scale that is not on the route; [`crate::error::Error::Interrupted`].
     pub fn values(&self, asked: &[(f64, usize)], watch: &dyn Watch) -> Result<(Vec<f64>, Vec<f64>)> {
-        let n = self.nodes;
+        let n = self.grid.nodes();
         let (block, flow) = (self.names.len() * n * n, self.flow_names.len() * n);
         let mut blocks = vec![0.0; asked.len() * block];
         let mut flows = vec![0.0; asked.len() * flow];
@@ -160,7 +190,7 @@ impl Evolution {
 
     /// Writes the columns of a chunk to their places.
     fn scatter(&self, chunk: &Chunk, columns: &Columns, blocks: &mut [f64], flows: &mut [f64]) {
-        let n = self.nodes;
+        let n = self.grid.nodes();
         for layout in self.layouts.iter().filter(|layout| layout.family == chunk.family) {
             for (index, &output) in layout.outputs.iter().enumerate() {
                 let matrix = match output {

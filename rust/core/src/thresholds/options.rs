@@ -6,6 +6,7 @@ use crate::evolution::{CHARM, FurtherKernel};
 use crate::grid::Grid;
 
 /// What is to be built.
+#[derive(Debug, Clone)]
 pub struct BuildOptions {
     /// Scale of the input, GeV^2.
     pub start_q2: f64,

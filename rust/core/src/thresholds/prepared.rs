@@ -25,10 +25,10 @@ pub struct Prepared {
     /// The route.
     pub route: Route,
     /// One a leg.
-    stretches: Vec<Stretch>,
+    pub(super) stretches: Vec<Stretch>,
     /// One a leg; none for those that leave the start.
-    crossings: Vec<Option<Crossing>>,
-    offsets: Vec<usize>,
+    pub(super) crossings: Vec<Option<Crossing>>,
+    pub(super) offsets: Vec<usize>,
 }
 
 impl Prepared {
