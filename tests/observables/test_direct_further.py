@@ -1,9 +1,10 @@
-"""NNLO at other scales and target mass by adaptive quadrature of the second writing of all functions."""
+"""NNLO at other scales, target mass and single charm by adaptive quadrature of the second writing."""
 
 import numpy as np
 import pytest
 import scalewright as sw
 from kernels.second_writing.coefficients import coefficient
+from kernels.second_writing.coefficients_charm import charm_gluon, charm_quark
 from kernels.second_writing.splitting_lo_nlo import splitting
 from numpy.polynomial.legendre import leggauss
 from observables import direct
@@ -119,4 +120,33 @@ def test_target_mass(grid, start, x, q2):
     common = {"x": x, "q2": q2, "densities": evolved, "theory": theory, "exchange": "photon"}
     for name, exact in expected.items():
         value = sw.structure_function(name, target_mass=True, **common)[0]
+        assert abs(value - exact) <= 1e-6 * max(abs(exact), 1e-3 * expected["F2"])
+
+
+@pytest.mark.parametrize(("x", "q2", "mur", "muf"), [(1e-3, 4.0, 1.0, 1.0), (0.1, 40.0, 2.0, 0.5)])
+def test_charged_current_charm(grid, start, x, q2, mur, muf):
+    # M. Glueck, S. Kretzer, E. Reya, hep-ph/9603304: with lambda = Q^2/(Q^2 + m^2), xi = x/lambda, each of
+    # F2/2, x F1/lambda, x F3/(2 lambda) is |V|^2 (S(xi) + a (C_q S + C_g G)(xi)), S and G times x
+    theory = sw.Theory(
+        order="NLO", flavours=3, heavy_quarks="massive", hard_mur2_ratio=mur, hard_muf2_ratio=muf
+    )
+    evolved = sw.evolve(theory, start, [muf * q2]).scale(muf * q2)
+    flavours, mass2 = list(evolved.flavours), theory.masses.charm**2
+    lam = q2 / (q2 + mass2)
+    a, log = float(theory.alpha_s(mur * q2, 3)) / (4 * np.pi), np.log((q2 + mass2) / (muf * q2))
+    v2 = np.array(sw.Electroweak.effective().mixing)[1] ** 2
+    values = evolved.values.reshape(len(flavours), -1)
+    down = v2[0] * values[flavours.index(1)] + v2[1] * values[flavours.index(3)]
+    both = np.array([down, (v2[0] + v2[1]) * values[flavours.index(21)]])
+
+    def each(sf):
+        kernels = [of(charm_quark(sf, lam, log)), of(charm_gluon(sf, lam, log))]
+        quark, gluon = direct.convolved(lambda p: grid.interpolate(both, p), grid.edges, x / lam, kernels)
+        return grid.interpolate(both, x / lam)[0] + a * (quark[0] + gluon[1])
+
+    f1, f2, f3 = (each(sf) for sf in ("F1", "F2", "F3"))
+    expected = {"F2": 2 * f2, "FL": 2 * f2 - 2 * lam * f1, "xF3": 2 * lam * f3}
+    common = {"x": x, "q2": q2, "densities": evolved, "theory": theory, "current": "charged", "beam": "nu"}
+    for name, exact in expected.items():
+        value = sw.structure_function(name, tagged="charm", **common)[0]
         assert abs(value - exact) <= 1e-6 * max(abs(exact), 1e-3 * expected["F2"])
