@@ -2,6 +2,7 @@
 
 use scalewright_core::numerics::blocks::{Factors, Matrix, multiply_add};
 use scalewright_core::numerics::chebyshev::{Nodes, coefficients};
+use scalewright_core::numerics::left_product::{Rows, Way, multiply_left, runs};
 use scalewright_core::numerics::matrix_ode::Step;
 
 /// Asserts that every entry differs by at most `tolerance`.
@@ -82,6 +83,42 @@ fn the_error_estimate_is_of_the_size_of_the_error() {
         assert!(estimate < 0.1 * before, "{degree}: {estimate} after {before}");
         before = estimate;
     }
+}
+
+/// Rows at their own `s` times `exp(s [[-2, 0], [3, 1]])`, whichever way; a row that ends after the first entry, and the
+/// columns of the second panel, whose first row is zero. Rounding of numbers up to 10.
+#[test]
+fn rows_from_the_left_find_the_exponential_at_their_own_place() {
+    let step = Step::new(0.0, 1.0, 24, &[0, 1, 2], |_| matrix([[-2.0, 0.0], [3.0, 1.0]]));
+    let s = [0.2, 0.2, 0.7, 0.9];
+    let values = Matrix::from_values(4, 2, vec![1.0, 0.0, 2.0, -1.0, 0.5, 3.0, -1.0, 1.0]);
+    let product = |row: usize, column: usize| {
+        let solution = exponential(s[row], -2.0, 1.0, 3.0);
+        values.row(row)[0] * solution[column] + values.row(row)[1] * solution[2 + column]
+    };
+    let (whole, second) =
+        (step.solve(&Matrix::identity(2), 0), step.solve(&Matrix::from_values(2, 1, vec![0.0, 1.0]), 1));
+    for way in [Way::Evaluated, Way::AtNodes] {
+        let rows = Rows { s: &s, ends: &[1, 2, 2, 2], values: &values, way };
+        let mut target = Matrix::zeros(4, 2);
+        whole.multiply_left(&rows, 0, &mut target);
+        let expected: Vec<f64> = (0..4).flat_map(|row| [product(row, 0), product(row, 1)]).collect();
+        assert_near(target.values(), &expected, 1e-12);
+        let mut target = Matrix::zeros(4, 1);
+        second.multiply_left(&rows, 1, &mut target);
+        let expected: Vec<f64> = (0..4).map(|row| product(row, 1)).collect();
+        assert_near(target.values(), &expected, 1e-12);
+    }
+    let mut target = Matrix::zeros(4, 2);
+    let rows = Rows { s: &s, ends: &[1, 2, 2, 2], values: &values, way: Way::AtNodes };
+    multiply_left(&matrix([[1.0, 0.0], [4.0, 2.0]]), &rows, 0, &mut target);
+    assert_near(target.values(), &[1.0, 0.0, -2.0, -2.0, 12.5, 6.0, 3.0, 2.0], 1e-14);
+}
+
+#[test]
+fn runs_are_neighbours_that_are_equal() {
+    assert_eq!(runs(&[3, 3, 1, 3]).collect::<Vec<_>>(), [0..2, 2..3, 3..4]);
+    assert_eq!(runs::<usize>(&[]).count(), 0);
 }
 
 /// An overflowing solution is no accurate one.
