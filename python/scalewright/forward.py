@@ -7,6 +7,8 @@ mu_f^2.
 
 from __future__ import annotations
 
+from dataclasses import replace
+from functools import cached_property
 from typing import Any
 
 import numpy as np
@@ -15,7 +17,7 @@ from . import _check
 from ._check import Floats, show
 from ._measured.combination import Combination
 from ._observed import storing
-from ._observed.accuracy import row_errors
+from ._observed.accuracy import TOLERANCE, RowErrors, finer_grid, row_errors
 from ._observed.carried import carried_matrix
 from ._observed.derivatives import carried_derivative
 from ._observed.points import Points
@@ -145,17 +147,27 @@ class ForwardMap:
 
         Notes
         -----
-        An estimate from the last Chebyshev coefficients of the input; how sharp it is stands in
-        `scalewright._observed.accuracy`.
+        The map is made once more on a finer grid, the first time that this is asked; what lies beyond the
+        nodal values of the input is judged by its last Chebyshev coefficients. Not below the true error in
+        99 of 100 cases, by `benches/quoted_error.py`.
         """
         values = self._values(densities)
-        errors = row_errors(self.grid, self.matrix, values, self.steps_error)
+        errors = row_errors(self.grid, self.matrix, self._row_errors, values)
         rows = self.predict_rows(values)
         made = [
             np.abs(self.data.tangent(row, np.diag(error))).sum(axis=1)
             for row, error in zip(rows, errors, strict=True)
         ]
         return np.asarray(made)
+
+    @cached_property
+    def _row_errors(self) -> RowErrors:
+        """The map compared with one on a finer grid."""
+        problem = replace(self._problem, grid=finer_grid(self.grid))
+        finer, _ = carried_matrix(
+            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TOLERANCE, threads=None
+        )
+        return RowErrors.of(self.grid, self.matrix, finer)
 
     def derivative(self, parameter: str) -> Floats:
         """Derivative of the matrix with respect to a parameter of the theory; thresholds stay fixed.

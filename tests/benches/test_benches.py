@@ -9,7 +9,18 @@ import sys
 import pytest
 from house.tree import ROOT
 
-BENCHES = ("accuracy", "apply", "build", "evolve", "memory", "plain", "unit")
+BENCHES = (
+    "accuracy",
+    "apply",
+    "build",
+    "evolve",
+    "forward",
+    "memory",
+    "plain",
+    "plain_forward",
+    "quoted_error",
+    "unit",
+)
 
 
 @pytest.mark.parametrize("bench", BENCHES)

@@ -18,7 +18,7 @@ const FEW: usize = 32;
 pub enum Way {
     /// It is evaluated once for neighbouring rows with the same `s`.
     Evaluated,
-    /// Rows are multiplied by the solution at every node, with the weights of interpolation as factors.
+    /// Rows are multiplied by the solution at every node, and the products added with the weights of interpolation.
     AtNodes,
 }
 
@@ -83,21 +83,22 @@ impl Dense {
             if end <= first {
                 continue;
             }
-            let (count, width) = (group.len(), end - first);
-            let mut scaled = Matrix::zeros(count, width);
+            let (count, width, cols) = (group.len(), end - first, self.cols);
+            let mut product = Matrix::zeros(count, cols);
             for node in 0..weights.cols() {
+                product.values_mut().fill(0.0);
+                let at_node = View::from_row_major_slice(self.values.row(node), self.rows, cols);
+                multiply_add(
+                    product.part_mut(0..count, 0..cols),
+                    1.0,
+                    rows.values.part(group.clone(), first..end),
+                    at_node.submatrix(first, 0, width, cols),
+                );
                 for (i, row) in group.clone().enumerate() {
                     let weight = weights.row(row)[node];
-                    let source = &rows.values.row(row)[first..end];
-                    scaled.row_mut(i).iter_mut().zip(source).for_each(|(to, value)| *to = weight * value);
+                    let sums = target.row_mut(row).iter_mut().zip(product.row(i));
+                    sums.for_each(|(sum, value)| *sum += weight * value);
                 }
-                let at_node = View::from_row_major_slice(self.values.row(node), self.rows, self.cols);
-                multiply_add(
-                    target.part_mut(group.clone(), 0..self.cols),
-                    1.0,
-                    scaled.part(0..count, 0..width),
-                    at_node.submatrix(first, 0, width, self.cols),
-                );
             }
         }
     }
