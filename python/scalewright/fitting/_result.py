@@ -16,6 +16,7 @@ from .._check import Floats, show
 from ..densities import Densities
 from ..errors import InputError
 from ..flavours import combination
+from ._bend import map_curvature
 from ._curvature import curvature
 from ._problem import Problem
 from ._solve import BLIND, Solution, scaled, solve
@@ -160,7 +161,8 @@ class FitResult:
     def covariance(self) -> Floats | None:
         """Covariance of the parameters, (parameter, parameter), or None where there is none.
 
-        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`. Rows and columns of
+        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`; those of the map with
+        respect to theory parameters are among them if the fit knows how to rebuild it. Rows and columns of
         parameters on a bound are 0: the covariance is that of the others with these where they are. None if
         the search has not ended at a minimum, or if neither data nor priors see some direction.
         """
@@ -193,6 +195,10 @@ class FitResult:
 
         room = np.minimum(self.parameters - problem.low, problem.high - self.parameters)
         matrix, unsettled = curvature(gradient, self.parameters, axes, room)
+        if self._rebuild is not None and problem.reference:
+            ends = axes[-len(problem.reference) :]
+            errors = np.linalg.norm(ends, axis=1)
+            matrix += ends.T @ map_curvature(problem, self.parameters, errors, self._rebuild) @ ends
         values, vectors = np.linalg.eigh(matrix)
         return None if (values <= 0.0).any() else (values, vectors, unsettled)
 
