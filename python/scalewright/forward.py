@@ -20,7 +20,7 @@ from ._corrected.bound import Bound, checked
 from ._corrected.reported import described
 from ._measured.combination import Combination
 from ._observed import storing
-from ._observed.accuracy import TIGHT, RowErrors, finer_grid, row_errors
+from ._observed.accuracy import TOLERANCE, RowErrors, finer_grid, row_errors
 from ._observed.carried import carried_matrix
 from ._observed.derivatives import carried_derivative
 from ._observed.further import checked_further
@@ -233,7 +233,7 @@ class ForwardMap:
         """The map compared with one on a finer grid."""
         problem = replace(self._problem, grid=finer_grid(self.grid))
         finer, _ = carried_matrix(
-            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TIGHT, threads=None
+            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TOLERANCE, threads=None
         )
         return RowErrors.of(self.grid, self.matrix, finer)
 

@@ -17,6 +17,7 @@ from ..errors import InputError
 from ..files.whole import PathLike
 from ..theory import Theory
 from ._answers import BlindDirection, Profile, ends, propagated, weights_of
+from ._bend import map_curvature
 from ._curvature import curvature
 from ._problem import Problem
 from ._result_files import load, save
@@ -134,7 +135,8 @@ class FitResult:
     def covariance(self) -> Floats | None:
         """Covariance of the parameters, (parameter, parameter), or None where there is none.
 
-        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`. Rows and columns of
+        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`; those of the map with
+        respect to theory parameters are among them if the fit knows how to rebuild it. Rows and columns of
         parameters on a bound are 0: the covariance is that of the others with these where they are. None if
         the search has not ended at a minimum, or if neither data nor priors see some direction.
         """
@@ -167,6 +169,11 @@ class FitResult:
 
         room = np.minimum(self.parameters - problem.low, problem.high - self.parameters)
         matrix, unsettled = curvature(gradient, self.parameters, axes, room)
+        if self._rebuild is not None and problem.reference:
+            of_theory = axes[-len(problem.reference) :]
+            errors = np.linalg.norm(of_theory, axis=1)
+            bend = map_curvature(problem, self.parameters, errors, self._rebuild)
+            matrix += of_theory.T @ bend @ of_theory
         values, vectors = np.linalg.eigh(matrix)
         return None if (values <= 0.0).any() else (values, vectors, unsettled)
 
