@@ -27,7 +27,12 @@ def numbers(values: Floats) -> list[str]:
 
 
 def write_predictions(
-    file: str, chi_square: ChiSquare, prediction: Floats, error: Floats, spread: Floats | None = None
+    file: str,
+    chi_square: ChiSquare,
+    prediction: Floats,
+    error: Floats,
+    spread: Floats | None = None,
+    more: Mapping[str, Sequence[str]] | None = None,
 ) -> None:
     """Write predictions beside the data, one line a datum.
 
@@ -40,6 +45,8 @@ def write_predictions(
         With its numerical error.
     spread : ndarray, (datum,), optional
         Standard deviation over replicas.
+    more : mapping, optional
+        Further columns.
     """
     measured = chi_square.measurements
     columns: dict[str, Sequence[str]] = {
@@ -56,7 +63,7 @@ def write_predictions(
         columns["spread"] = numbers(spread)
     columns["pull"] = numbers(chi_square.pulls(prediction))
     columns["pull after shifts"] = numbers(chi_square.pulls(prediction, shifted=True))
-    write_columns(file, columns)
+    write_columns(file, {**columns, **(more or {})})
 
 
 def write_parameters(file: str, result: FitResult, ensemble: Ensemble | None) -> None:
