@@ -27,13 +27,9 @@ def numbers(values: Floats) -> list[str]:
 
 
 def write_predictions(
-    file: str,
-    chi_square: ChiSquare,
-    prediction: Floats,
-    error: Floats,
-    spread: Floats | None = None,
-    more: Mapping[str, Sequence[str]] | None = None,
-) -> None:
+    file: str, chi_square: ChiSquare, prediction: Floats, error: Floats, spread: Floats | None = None,
+    orders: Mapping[str, Sequence[str]] | None = None,
+) -> None:  # fmt: skip
     """Write predictions beside the data, one line a datum.
 
     Parameters
@@ -45,8 +41,8 @@ def write_predictions(
         With its numerical error.
     spread : ndarray, (datum,), optional
         Standard deviation over replicas.
-    more : mapping, optional
-        Further columns.
+    orders : mapping, optional
+        Part of the prediction -> its order, and regime -> that of each datum.
     """
     measured = chi_square.measurements
     columns: dict[str, Sequence[str]] = {
@@ -63,7 +59,9 @@ def write_predictions(
         columns["spread"] = numbers(spread)
     columns["pull"] = numbers(chi_square.pulls(prediction))
     columns["pull after shifts"] = numbers(chi_square.pulls(prediction, shifted=True))
-    write_columns(file, {**columns, **(more or {})})
+    for name, words in (orders or {}).items():
+        columns[name if name == "regime" else f"order of {name}"] = words
+    write_columns(file, columns)
 
 
 def write_parameters(file: str, result: FitResult, ensemble: Ensemble | None) -> None:
