@@ -1,4 +1,4 @@
-"""`scalewright closure JOB.toml`: does a fit find back a law that is known?"""
+"""`scalewright closure JOB.toml`: whether a fit finds back a law that is known."""
 
 from __future__ import annotations
 
