@@ -315,7 +315,8 @@ def plot_convergence(
     Raises
     ------
     InputError
-        If there are fewer than three replicas, or the quantity is not one number for each.
+        If there are fewer than three replicas, or they have weights, or the quantity is not one number for
+        each.
     ImportError
         If matplotlib is not installed.
     """
@@ -324,8 +325,8 @@ def plot_convergence(
     ax, name = new_axes(ax), label or (quantity if isinstance(quantity, str) else "quantity")
     values = ensemble.parameter(quantity) if isinstance(quantity, str) else quantity
     array = _check.real_array("quantity", values, shape=(ensemble.replicas,))
-    if array.size < 3:
-        refuse("ensemble", ensemble, "there must be at least three replicas")
+    if array.size < 3 or ensemble.weights.min() != ensemble.weights.max():
+        refuse("ensemble", ensemble, "there must be at least three replicas, of equal weight")
     count = np.arange(1, array.size + 1)
     mean = np.cumsum(array) / count
     squares = np.cumsum((array - array[-1]) ** 2) / count - (mean - array[-1]) ** 2

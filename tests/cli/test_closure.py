@@ -37,7 +37,7 @@ def write(tmp_path):
 
 @pytest.fixture(scope="module")
 def many(tmp_path_factory):
-    """Fit 60 sets of pseudo-data from a law that the shape contains, and 5 replicas of each."""
+    """Fit 40 sets of pseudo-data from a law that the shape contains, and 4 replicas of each."""
     folder = tmp_path_factory.mktemp("closure")
     write_case(folder)
     table = sw.Measurements.read(folder / "run1.toml")
@@ -46,8 +46,8 @@ def many(tmp_path_factory):
         fixed=["g.power", "g.fall", "d_v.fall", "ubar.fall"], tied={"d_v.power": "u_v.power"}
     )
     return closure_test(
-        fmap, sw.ChiSquare(table), small, law(), functionals=FUNCTIONALS, sets=60, seed=4,
-        replicas=5, starts=3, theory=["alpha_s"],
+        fmap, sw.ChiSquare(table), small, law(), functionals=FUNCTIONALS, sets=40, seed=4,
+        replicas=4, starts=3, theory=["alpha_s"],
     )  # fmt: skip
 
 
@@ -66,13 +66,13 @@ def test_different_starts_end_at_one_minimum(many):
 
 @pytest.mark.parametrize("name", FUNCTIONALS)
 def test_the_truth_lies_inside_as_often_as_it_should(many, name):
-    assert not many.failed and many.sets == 60
+    assert not many.failed and many.sets == 40
     covered, of_replicas = many.coverage(name), many.replica_coverage(name)
     assert covered.is_fair, covered  # three binomial errors
     assert of_replicas.is_fair, of_replicas
-    # mean and deviation of five normal numbers, and a sixth: by simulation, to four standard errors
-    drawn = np.random.default_rng(1).normal(size=(100_000, 6))
-    inside = abs(drawn[:, :5].mean(axis=1) - drawn[:, 5]) < drawn[:, :5].std(axis=1, ddof=1)
+    # mean and deviation of four normal numbers, and a fifth: by simulation, to four standard errors
+    drawn = np.random.default_rng(1).normal(size=(100_000, 5))
+    inside = abs(drawn[:, :4].mean(axis=1) - drawn[:, 4]) < drawn[:, :4].std(axis=1, ddof=1)
     assert of_replicas.expected == pytest.approx(inside.mean(), abs=4 * 0.5 / np.sqrt(100_000))
 
 
@@ -84,8 +84,8 @@ def test_pulls_are_normal(many):
 
 def test_chi_square_has_the_degrees_of_freedom_that_are_left(many):
     left = many.data - 5  # u_v.power, u_v.fall, ubar.power, ubar.c0, alpha_s
-    # the mean of 60 chi-squares: sqrt(2 n / 60); four of them
-    assert abs(many.chi2.mean() - left) < 4 * np.sqrt(2 * left / 60)
+    # the mean of 40 chi-squares: sqrt(2 n / 40); four of them
+    assert abs(many.chi2.mean() - left) < 4 * np.sqrt(2 * left / 40)
 
 
 def test_a_wrong_uncertainty_is_found_out(many):

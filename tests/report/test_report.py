@@ -162,7 +162,7 @@ def test_without_matplotlib_the_report_says_so(fitted, tmp_path, monkeypatch):
 
 
 def test_parts_that_do_not_belong_together_are_refused(fitted, tmp_path):
-    result, chi2, _ = fitted
+    result, chi2, ensemble = fitted
     path = tmp_path / "fit.html"
     with pytest.raises(sw.InputError, match="result must be a FitResult, not int"):
         fit_report(path, 3, chi2)
@@ -171,6 +171,13 @@ def test_parts_that_do_not_belong_together_are_refused(fitted, tmp_path):
         fit_report(path, result, less)
     with pytest.raises(sw.InputError, match=r"alpha_s = nan"):
         fit_report(path, result, chi2, truth={"alpha_s": np.nan})
+    weights = np.arange(1.0, 13.0)
+    names, sets = ensemble.names, ensemble.parameters
+    weighted = sw.Ensemble(ensemble.densities, parameters=sets, names=names, weights=weights)
+    with pytest.raises(sw.InputError, match="at least two replicas, of equal weight"):
+        fit_report(path, result, chi2, ensemble=weighted)
+    with pytest.raises(sw.InputError, match=r"its parameters are .*, those of the fit"):
+        fit_report(path, result, chi2, ensemble=sw.Ensemble(ensemble.densities))
     with pytest.raises(sw.StoreError, match="cannot be written"):
         fit_report(tmp_path / "none" / "fit.html", result, chi2)
     assert not path.exists()

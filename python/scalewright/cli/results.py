@@ -127,7 +127,7 @@ def _densities(job: FitJob, results: Results, report: Report) -> Densities | Non
 def _report(job: FitJob, results: Results, carried: Densities | None) -> None:
     fitted = results.fitted
     notes = {
-        "electroweak inputs": str(job.electroweak).replace("\n", "; "),
+        "electroweak inputs": job.electroweak.describe().removeprefix("electroweak inputs: "),
         "target mass": "kept" if job.target_mass else "neglected",
         "subtraction of massive quarks": job.subtraction,
         "reference of multiplicative errors": "the data"

@@ -11,6 +11,7 @@
 /priors/names, values          (prior,), (prior, 2): value and standard deviation
 /theory/names, reference       theory parameters, and where the map is exact
 /theory/options                the theory at the fitted values as JSON text, empty where unknown
+/notes                         what else its status says
 /curvature/values, vectors     second derivatives along the axes of the linear ellipsoid; absent where unknown
 /axes                          (parameter, direction), their product the covariance; absent where unknown
 ============================== ==========================================================================
@@ -89,6 +90,7 @@ def _parameters(result: FitResult) -> dict[str, Any]:
         "/theory/names": _text(problem.reference),
         "/theory/reference": np.array(list(problem.reference.values()), dtype=np.float64),
         "/theory/options": _text([theory]),
+        "/notes": _text(getattr(problem, "notes", ())),
     }
 
 
@@ -205,6 +207,7 @@ class StoredProblem:
         text = str(arrays["/theory/options"][0])
         self.theory = Theory.from_json(text) if text else None
         self.shape = StoredShape(arrays, bool(notes["exact_jacobian"]), ends.grid, ends.flavours)
+        self.notes = tuple(arrays["/notes"].tolist())
         self.first_theory = len(self.names) - len(self.reference)
 
     def prediction(self, *_: Any, **__: Any) -> NoReturn:

@@ -112,12 +112,25 @@ def fit_report(
     if len(chi_square.measurements) != result.data:
         have = len(chi_square.measurements)
         _check.refuse("chi_square", chi_square, f"it has {have} data, the fit {result.data}")
+    if ensemble is not None:
+        _check_ensemble(ensemble, result)
     known = {Functional(text): _check.real(text, value) for text, value in (truth or {}).items()}
     told = Told(
         result, chi_square, ensemble, evolved, known, tuple(history), dict(notes or {}), job,
         find_spec("matplotlib") is not None,
     )  # fmt: skip
     write_whole(path, _page(told, title).text().encode("utf-8"))
+
+
+def _check_ensemble(ensemble: object, result: FitResult) -> None:
+    """Refuse replicas of another fit, and weighted ones: pictures count each alike."""
+    if not isinstance(ensemble, Ensemble):
+        _check.refuse("ensemble", ensemble, f"ensemble must be an Ensemble, not {type(ensemble).__name__}")
+    if ensemble.names != result.names:
+        have, want = _check.show_all(ensemble.names), _check.show_all(result.names)
+        _check.refuse("ensemble", ensemble, f"its parameters are {have}, those of the fit {want}")
+    if ensemble.replicas < 2 or ensemble.weights.min() != ensemble.weights.max():
+        _check.refuse("ensemble", ensemble, "there must be at least two replicas, of equal weight")
 
 
 def _page(told: Told, title: str) -> Page:

@@ -64,7 +64,7 @@ def convergence(page: Page, told: Told) -> None:
     page.section("Convergence")
     page.lines(list(result.status))
     calls = f"{result.calls['residuals']} evaluations of residuals, {result.calls['jacobian']} of derivatives"
-    page.say(f"{calls}; the map was built anew {result.rebuilt} times for other theory parameters.")
+    page.say(f"{calls}; in this fit the map was built anew {result.rebuilt} times.")
     if told.history:
         steps = ", ".join(f"{value:.2f}" for value in told.history)
         page.say(f"Chi-square while the reference of multiplicative errors settled: {steps}.")
