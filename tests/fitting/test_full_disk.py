@@ -1,4 +1,4 @@
-"""A disk that is full while a run writes: a real one of 16 kB (tmpfs), and a limit on the size of files."""
+"""A disk that is full while a run writes: a real one of 64 kB (tmpfs), and a limit on the size of files."""
 
 import os
 import pathlib
@@ -12,6 +12,8 @@ from scalewright import StoreError
 from scalewright.fitting.ensemble import Ensemble
 
 resource = pytest.importorskip("resource", reason="this system has no limits on files")
+#: Bytes; a file takes whole pages.
+DISK, PAGE = 65536, 4096
 TESTS = pathlib.Path(__file__).parents[1]
 
 #: Runs replicas, or saves an ensemble, where files cannot grow beyond so many bytes; prints what is said.
@@ -43,20 +45,28 @@ def limited(what, path, limit):
     return done.stdout
 
 
-def resumed(path):
+def resumed(path, replicas=COUNT):
     """Go on with a journal; return the ensemble and how many replicas were known."""
     seen = []
-    found = replicas_of(bent_problem(), workers=1, journal=path, progress=lambda *p: seen.append(p[0]))
+    found = replicas_of(
+        bent_problem(), replicas=replicas, workers=1, journal=path, progress=lambda *p: seen.append(p[0])
+    )
     return found, seen[0]
+
+
+def size_of_journal(path, replicas):
+    """Return how long a journal of so many replicas is."""
+    replicas_of(bent_problem(), replicas=replicas, workers=1, journal=path)
+    return path.stat().st_size
 
 
 def test_a_journal_that_cannot_grow_keeps_what_it_has(serial, tmp_path):
     path = tmp_path / "run.journal"
-    said = limited(1, path, 3000)
+    said = limited(1, path, size_of_journal(tmp_path / "other.journal", 6) + 50)  # half of a record
     assert "cannot be written" in said
+    assert "the 6 replicas written before are safe" in said
     found, known = resumed(path)
-    assert f"the {known} replicas written before are safe" in said
-    assert 0 < known < COUNT
+    assert known == 6
     assert_same_bits(serial, found)
 
 
@@ -78,13 +88,13 @@ def test_an_ensemble_that_cannot_be_saved_leaves_the_old_file(tmp_path):
 
 @pytest.fixture
 def small_disk(tmp_path):
-    """A file system of 16 kB; skips where mounting is refused."""
+    """A file system of 64 kB; skips where mounting is refused."""
     if shutil.which("mount") is None or not hasattr(os, "geteuid") or os.geteuid() != 0:
         pytest.skip("only root may mount a file system")
     folder = tmp_path / "disk"
     folder.mkdir()
     done = subprocess.run(
-        ["mount", "-t", "tmpfs", "-o", "size=16k", "tmpfs", str(folder)], capture_output=True
+        ["mount", "-t", "tmpfs", "-o", f"size={DISK}", "tmpfs", str(folder)], capture_output=True
     )
     if done.returncode:
         pytest.skip("mounting is refused here")
@@ -92,17 +102,19 @@ def small_disk(tmp_path):
     subprocess.run(["umount", "-l", str(folder)], check=True)
 
 
-def test_a_full_disk_loses_nothing(serial, small_disk, tmp_path):
-    path, filler = small_disk / "run.journal", small_disk / "filler"
-    filler.write_bytes(b"x" * 12000)
+def test_a_full_disk_loses_nothing(small_disk, tmp_path):
+    path, filler, count = small_disk / "run.journal", small_disk / "filler", 80
+    whole = replicas_of(bent_problem(), replicas=count, workers=1)
+    pages = -(-size_of_journal(tmp_path / "other.journal", 1) // PAGE)  # room for one replica, not for all
+    filler.write_bytes(b"x" * (DISK - pages * PAGE))
     with pytest.raises(
         StoreError, match=r"cannot be written: no space left.*replicas written before are safe"
     ):
-        replicas_of(bent_problem(), workers=1, journal=path)
+        replicas_of(bent_problem(), replicas=count, workers=1, journal=path)
     with pytest.raises(StoreError, match="cannot be written"):
-        serial.save(small_disk / "e.h5")
+        whole.save(small_disk / "e.h5")
     assert sorted(one.name for one in small_disk.iterdir()) == ["filler", "run.journal"]
     filler.unlink()
-    found, known = resumed(path)
-    assert 0 < known < COUNT
-    assert_same_bits(serial, found)
+    found, known = resumed(path, count)
+    assert 0 < known < count
+    assert_same_bits(whole, found)

@@ -8,14 +8,38 @@ have reached a map may not exist.
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 import numpy as np
 
 from .._check import Floats
+from ..errors import InputError
 
-__all__ = ["Settling"]
+if TYPE_CHECKING:
+    from ._result import FitResult
+
+__all__ = ["NotSettledError", "Settling"]
 
 #: How far the mixing goes back towards the last value, in parts of the distance.
 _BACK = 0.9
+
+
+class NotSettledError(InputError):
+    """A fit whose maps could not be built anew until theory parameters settled.
+
+    Attributes
+    ----------
+    result : FitResult
+        The last fit, with the map of first order around the theory parameters that its `status` names.
+    """
+
+    def __init__(self, reason: str, result: FitResult) -> None:
+        super().__init__(f"{reason}; the last fit is the attribute `result` of this error")
+        self.reason, self.result = reason, result
+
+    def __reduce__(self) -> tuple[type[NotSettledError], tuple[str, FitResult]]:
+        """Let it cross to other processes."""
+        return type(self), (self.reason, self.result)
 
 
 class Settling:

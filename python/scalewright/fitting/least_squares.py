@@ -14,11 +14,11 @@ from .._corrected.bound import Correction
 from ..errors import InputError
 from ._problem import Distance, Map, Problem, Theory
 from ._result import BlindDirection, FitResult, Profile
-from ._settling import Settling
+from ._settling import NotSettledError, Settling
 from ._shape import Shape
 from ._solve import Callback, Solution, solve
 
-__all__ = ["BlindDirection", "FitResult", "Profile", "fit"]
+__all__ = ["BlindDirection", "FitResult", "NotSettledError", "Profile", "fit"]
 
 #: The map is built anew until theory parameters lie within this part of their uncertainty of its own, or so
 #: often.
@@ -80,6 +80,9 @@ def fit(
     InputError
         If the parts do not fit each other, there are more parameters than data and priors, or a start lies
         outside its bounds or where chi-square is not finite.
+    NotSettledError
+        An `InputError`: if theory parameters have not settled after 10 maps, or `rebuild` raises. The last
+        fit is its attribute `result`.
 
     Notes
     -----
@@ -119,12 +122,16 @@ def fit(
     solution = solve(problem, begin, evaluations=evaluations, callback=callback)
     rebuilt, settling = 0, Settling()
     while again is not None and _is_far(problem, solution):
+        last = FitResult(problem, solution, delta_chi2, rebuilt, again)
         if rebuilt == _REBUILDS:
             moved = _check.show_all(problem.reference)
-            raise InputError(f"rebuild: {moved} has not settled after {rebuilt} maps")
+            raise NotSettledError(f"rebuild: {moved} has not settled after {rebuilt} maps", last)
         begin = np.array(solution.parameters)
         found = begin[problem.first_theory :] = settling.next(*_moves(problem, solution))
-        problem = again(dict(zip(problem.reference, found.tolist(), strict=True)))
+        try:
+            problem = again(dict(zip(problem.reference, found.tolist(), strict=True)))
+        except InputError as error:
+            raise NotSettledError(str(error), last) from error
         solution = solve(problem, begin, evaluations=evaluations, callback=callback)
         rebuilt += 1
     return FitResult(problem, solution, delta_chi2, rebuilt, again)
