@@ -17,7 +17,7 @@ from . import _check
 from ._check import Floats, show
 from ._measured.combination import Combination
 from ._observed import storing
-from ._observed.accuracy import RowErrors, finer_grid, row_errors
+from ._observed.accuracy import TIGHT, RowErrors, finer_grid, row_errors
 from ._observed.carried import carried_matrix
 from ._observed.differences import TOLERANCE, Derivative, differentiated
 from ._observed.points import Points
@@ -165,7 +165,7 @@ class ForwardMap:
         """The map compared with one on a finer grid."""
         problem = replace(self._problem, grid=finer_grid(self.grid))
         finer, _ = carried_matrix(
-            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TOLERANCE, threads=None
+            problem, start_q2=self.start_q2, start_nf=self.start_nf, tolerance=TIGHT, threads=None
         )
         return RowErrors.of(self.grid, self.matrix, finer)
 

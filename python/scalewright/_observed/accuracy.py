@@ -23,7 +23,10 @@ from .._check import Floats
 from ..errors import InputError
 from ..grid import ChebyshevGrid
 
-__all__ = ["RowErrors", "finer_grid", "row_errors"]
+__all__ = ["TIGHT", "RowErrors", "finer_grid", "row_errors"]
+
+#: Relative error of the steps in scale of the finer map.
+TIGHT = 1e-12
 
 #: Times the difference from the finer map, and times the sum over coefficients beyond the nodes: see above.
 _SEEN, _BEYOND = 2.0, 1.5
