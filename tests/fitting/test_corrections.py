@@ -8,6 +8,7 @@ import scalewright as sw
 from fitting import problems
 from scalewright.corrections import HigherTwist, KnownFactor, Polynomial, TargetFactor, covariance
 from scalewright.fitting._problem import Problem
+from scalewright.fitting.objective import Objective
 
 TRUE_H = np.array([0.4, -0.9])
 TRUE = np.array([1.1, 0.4, 0.25])
@@ -56,6 +57,21 @@ def test_a_known_higher_twist_is_found_again(form):
     assert "no correction for the deuteron (32 rows): free protons and neutrons" in result.status
     # without it the data cannot be described
     assert sw.fit(fmap, sw.ChiSquare(data), shape).chi2 > 10.0
+
+
+def test_an_objective_has_the_gradient_of_corrections():
+    fmap, shape = rows(), problems.quick_shape()
+    data = problems.measured(np.linspace(0.9, 1.1, 64), size=0.05)
+    objective = Objective(fmap, sw.ChiSquare(data), shape, corrections=twist())
+    at, h = np.append(TRUE, TRUE_H), 1e-4
+    value, gradient = objective.value_and_gradient(at)
+    assert value == pytest.approx(objective.value(at), rel=1e-13)
+    # four-point differences: an error of h^4, and of rounding over h
+    steps = ((1, 8 / 12), (-1, -8 / 12), (2, -1 / 12), (-2, 1 / 12))
+    for place in range(at.size):
+        along = np.eye(at.size)[place] * h
+        slope = sum(weight * objective.value(at + times * along) for times, weight in steps) / h
+        assert abs(gradient[place] - slope) < 1e-7 * abs(gradient).max()
 
 
 def test_residuals_have_the_exact_derivative_with_theory_parameters_too():

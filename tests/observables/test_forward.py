@@ -105,7 +105,7 @@ def test_a_damaged_map_is_named(fmap, tmp_path):
 
 def test_memory_does_not_grow_with_the_number_of_scales(grid):
     peaks = []
-    for count in (600, 1800):
+    for count in (600, 1200):
         rows = SimpleNamespace(
             x=np.full(count, 0.1), q2=np.geomspace(3, 1e4, count), measure="F2", exchange="photon"
         )

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats
+from .._corrected.bound import Correction
 from ._problem import Distance, Map, Problem, Theory
 from ._shape import Shape
 from ._space import product
@@ -21,13 +22,13 @@ class Objective:
 
     Parameters
     ----------
-    fmap, chi2, shape, theory, priors
+    fmap, chi2, shape, theory, priors, corrections
         As for `fit`.
 
     Attributes
     ----------
     names : tuple of str
-        Parameters of the shape, then of the theory.
+        Parameters of the shape, then of corrections, then of the theory.
     start : ndarray, (parameter,)
     bounds : tuple of two ndarrays, (parameter,)
 
@@ -67,8 +68,9 @@ class Objective:
         *,
         theory: Theory = (),
         priors: Mapping[str, tuple[float, float]] | None = None,
+        corrections: Sequence[Correction] | Correction = (),
     ) -> None:
-        problem = Problem(fmap, chi2, shape, theory, priors)
+        problem = Problem(fmap, chi2, shape, theory, priors, corrections=corrections)
         self._problem = problem
         self.names, self.start, self.bounds = problem.names, problem.start, (problem.low, problem.high)
         whitened = problem._whitened
