@@ -167,7 +167,7 @@ def _real(values: Sequence[Any] | Floats) -> Floats:
 
 
 def _picked(values: tuple[str, ...], numbers: NDArray[Any]) -> tuple[str, ...]:
-    return tuple(values[number] for number in numbers)
+    return tuple(map(values.__getitem__, numbers.tolist()))
 
 
 def _attribute(rows: Any, name: str) -> Any:
