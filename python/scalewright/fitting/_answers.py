@@ -17,7 +17,7 @@ from ..flavours import combination
 if TYPE_CHECKING:
     from ._problem import Problem
 
-__all__ = ["BlindDirection", "Profile", "direction", "ends", "propagated", "weights_of"]
+__all__ = ["BlindDirection", "Profile", "ends", "propagated", "weights_of"]
 
 #: Parts of a direction that are shown.
 _SHOWN = 0.1
@@ -40,6 +40,19 @@ class BlindDirection:
     singular_value: float
     parameters: dict[str, float]
     values: Floats
+
+    @classmethod
+    def of(
+        cls, problem: Problem, parameters: Floats, free: Any, along: Floats, singular: float
+    ) -> BlindDirection:
+        """Return a direction of the free parameters (free,) at a fit."""
+        whole = np.zeros(len(problem.names))
+        whole[free] = along / along[np.argmax(abs(along))]
+        count = len(problem.shape.names)
+        change = np.tensordot(whole[:count], problem.shape.jacobian(parameters[:count]), axes=(0, 0))
+        largest = abs(change).max()
+        parts = {name: float(part) for name, part in zip(problem.names, whole, strict=True) if part != 0.0}
+        return cls(singular, parts, change / largest if largest > 0.0 else change)
 
     def __str__(self) -> str:
         parts = [f"{part:+.3g} {name}" for name, part in self.parameters.items() if abs(part) >= _SHOWN]
@@ -64,19 +77,6 @@ class Profile:
     chi2: Floats
     parameters: Floats
     converged: Any
-
-
-def direction(
-    problem: Problem, parameters: Floats, free: Any, along: Floats, singular: float
-) -> BlindDirection:
-    """Return a direction of the free parameters in words and as a change of densities."""
-    whole = np.zeros(len(problem.names))
-    whole[free] = along / along[np.argmax(abs(along))]
-    count = len(problem.shape.names)
-    change = np.tensordot(whole[:count], problem.shape.jacobian(parameters[:count]), axes=(0, 0))
-    largest = abs(change).max()
-    parts = {name: float(part) for name, part in zip(problem.names, whole, strict=True) if part != 0.0}
-    return BlindDirection(singular, parts, change / largest if largest > 0.0 else change)
 
 
 def weights_of(problem: Problem, flavour: int | str) -> dict[int, float]:

@@ -16,7 +16,7 @@ from ..densities import Densities
 from ..errors import InputError
 from ..files.whole import PathLike
 from ..theory import Theory
-from ._answers import BlindDirection, Profile, direction, ends, propagated, weights_of
+from ._answers import BlindDirection, Profile, ends, propagated, weights_of
 from ._curvature import curvature
 from ._problem import Problem
 from ._result_files import load, save
@@ -321,7 +321,7 @@ class FitResult:
         _, values, right, size = scaled(part)
         top = values[0] if values[0] > 0.0 else 1.0
         found = [
-            direction(self._problem, self.parameters, free, right[j] / size, float(values[j] / top))
+            BlindDirection.of(self._problem, self.parameters, free, right[j] / size, float(values[j] / top))
             for j in np.flatnonzero(values <= BLIND * top)
         ]
         return tuple(found[::-1])
