@@ -1,6 +1,7 @@
 """`scalewright closure`: the law is found back, mistakes are named; and the statistics behind it."""
 
 import csv
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -33,6 +34,22 @@ def write(tmp_path):
         (tmp_path / "job.toml").write_text(text)
 
     return written
+
+
+@pytest.fixture
+def run(tmp_path, capsys, monkeypatch):
+    """Run in this process, which has loaded everything already, in the folder of the job."""
+    from scalewright.cli.main import main
+
+    monkeypatch.chdir(tmp_path)
+
+    def runner(*arguments):
+        found = main(list(arguments))
+        out, said = capsys.readouterr()
+        assert found == 0, (out, said)
+        return SimpleNamespace(stdout=out, stderr=said)
+
+    return runner
 
 
 @pytest.fixture(scope="module")

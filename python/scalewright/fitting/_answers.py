@@ -41,6 +41,19 @@ class BlindDirection:
     parameters: dict[str, float]
     values: Floats
 
+    @classmethod
+    def of(
+        cls, problem: Problem, parameters: Floats, free: Any, along: Floats, singular: float
+    ) -> BlindDirection:
+        """Return a direction of the free parameters (free,) at a fit."""
+        whole = np.zeros(len(problem.names))
+        whole[free] = along / along[np.argmax(abs(along))]
+        count = len(problem.shape.names)
+        change = np.tensordot(whole[:count], problem.shape.jacobian(parameters[:count]), axes=(0, 0))
+        largest = abs(change).max()
+        parts = {name: float(part) for name, part in zip(problem.names, whole, strict=True) if part != 0.0}
+        return cls(singular, parts, change / largest if largest > 0.0 else change)
+
     def __str__(self) -> str:
         parts = [f"{part:+.3g} {name}" for name, part in self.parameters.items() if abs(part) >= _SHOWN]
         return f"{' '.join(parts)} (singular value {self.singular_value:.1e})"

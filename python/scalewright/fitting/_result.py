@@ -62,10 +62,8 @@ class FitResult:
         self.delta_chi2, self.rebuilt = delta_chi2, rebuilt
         self.data = problem.count
         squares = solution.residuals**2
-        self.chi2, self.chi2_priors = (
-            float(squares[: problem.rows].sum()),
-            float(squares[problem.rows :].sum()),
-        )
+        self.chi2 = float(squares[: problem.rows].sum())
+        self.chi2_priors = float(squares[problem.rows :].sum())
         self.converged, self.distance = solution.converged, solution.distance
         self.calls = {"residuals": solution.residual_calls, "jacobian": solution.jacobian_calls}
         sides = (("lower", solution.at_low), ("upper", solution.at_high))
@@ -225,7 +223,7 @@ class FitResult:
         return result
 
     def error_through(self, function: Callable[[Densities], ArrayLike]) -> Floats:
-        """Uncertainty of anything that is computed from densities at the start, to first order.
+        """Uncertainty of anything computed from densities at the start, to first order.
 
         Parameters
         ----------
@@ -235,8 +233,7 @@ class FitResult:
         Returns
         -------
         ndarray
-            The axes of the answer without the first. Exact to first order where the answer is linear in the
-            densities; otherwise differences over one uncertainty to either side.
+            The axes of the answer without the first; by differences over one uncertainty to either side.
 
         Raises
         ------
@@ -331,20 +328,10 @@ class FitResult:
         _, values, right, size = scaled(part)
         top = values[0] if values[0] > 0.0 else 1.0
         found = [
-            self._direction(free, right[j] / size, float(values[j] / top))
+            BlindDirection.of(self._problem, self.parameters, free, right[j] / size, float(values[j] / top))
             for j in np.flatnonzero(values <= BLIND * top)
         ]
         return tuple(found[::-1])
-
-    def _direction(self, free: Any, along: Floats, singular: float) -> BlindDirection:
-        whole = np.zeros(len(self.names))
-        whole[free] = along / along[np.argmax(abs(along))]
-        shape = self._problem.shape
-        by = shape.jacobian(self._of_shape(self.parameters))
-        change = np.tensordot(whole[: len(shape.names)], by, axes=(0, 0))
-        largest = abs(change).max()
-        parts = {name: float(part) for name, part in zip(self.names, whole, strict=True) if part != 0.0}
-        return BlindDirection(singular, parts, change / largest if largest > 0.0 else change)
 
     def _of_shape(self, parameters: Floats) -> Floats:
         return parameters[: len(self._problem.shape.names)]
@@ -378,9 +365,8 @@ class FitResult:
 
         Parameters
         ----------
-        path : path-like
-        copy : bool
-            Read into memory instead of mapping the file: for network file systems.
+        path, copy
+            As for `Ensemble.load`.
 
         Returns
         -------
