@@ -5,6 +5,7 @@ The public names in the order of a calculation. Importing this package imports n
 
 from __future__ import annotations
 
+from . import corrections as corrections
 from .below import Below
 from .build import build_operators, evolve
 from .densities import Densities
@@ -17,7 +18,7 @@ from .fitting.least_squares import fit
 from .fitting.replicas import fit_replicas
 from .forward import ForwardMap, forward_map
 from .grid import ChebyshevGrid
-from .kernels import SplittingKernel, matching_element, splitting_function
+from .kernels import CoefficientFunction, SplittingKernel, matching_element, splitting_function
 from .measurements import Measurements
 from .moments import moment, sum_rule
 from .observables import structure_function
@@ -29,6 +30,7 @@ __all__ = [
     "Below",
     "ChebyshevGrid",
     "ChiSquare",
+    "CoefficientFunction",
     "Coupling",
     "Densities",
     "Electroweak",

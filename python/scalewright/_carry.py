@@ -8,6 +8,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import ArrayLike
 
 from . import _check, _flows
 from ._check import Floats, Integers, refuse, show
@@ -16,6 +17,7 @@ from .below import Below
 from .densities import Densities
 from .errors import InputError
 from .grid import ChebyshevGrid
+from .theory import Theory
 
 #: Bytes of results that a stream makes at once: combinations of flavours are formed once for as many scales.
 PART = 130_000_000
@@ -100,6 +102,21 @@ def _picked(densities: Densities, route: Route, missing: str) -> Floats:
         if flavour in held:
             picked[:, place] = values[:, held[flavour]]
     return picked
+
+
+def asked_scales(
+    theory: Theory, route: Route, source: Source, q2: ArrayLike | None, nf: ArrayLike | None
+) -> tuple[Floats, Integers]:
+    """Return scales and numbers of flavours that the source serves; those of the route where `q2` is None."""
+    if q2 is None:
+        if nf is not None:
+            raise InputError("nf: give q2 with it; without q2 all scales of the set are meant")
+        return route.q2, route.nf
+    asked = _check.scales("q2", q2)
+    counts = theory.nf_at(asked) if nf is None else _check.flavour_counts("nf", nf, asked.size)
+    _check.distinct_scales("q2", asked, counts)
+    source.refuse(asked, counts)
+    return asked, counts
 
 
 def place(out: object, shape: tuple[int, ...], given: Floats) -> Floats:

@@ -19,7 +19,9 @@ __all__ = [
     "coefficient_function",
     "coefficient_matrix",
     "compose",
+    "convolution_matrix",
     "evolve",
+    "light_rows",
     "massive_coefficient",
     "massive_rows",
     "matching_element",
@@ -71,6 +73,10 @@ class Theory:
     ) -> Theory: ...
     # at mu_r^2, for the nf given, elementwise
     def alpha_s(self, mu2: NDArray[np.float64], nf: NDArray[np.int64]) -> NDArray[np.float64]: ...
+    # with respect to "alpha_s", "charm", "bottom" or "top", thresholds fixed, or "ln_q2", that of mu2
+    def alpha_s_derivative(
+        self, parameter: str, mu2: NDArray[np.float64], nf: NDArray[np.int64]
+    ) -> NDArray[np.float64]: ...
     # of a factorisation scale; a scale on a threshold counts as above
     def nf_at(self, q2: NDArray[np.float64]) -> NDArray[np.int64]: ...
 
@@ -93,6 +99,24 @@ class Evolution:
     def values(
         self, q2: NDArray[np.float64], nf: NDArray[np.int64], threads: int
     ) -> tuple[NDArray[np.float64], NDArray[np.float64]]: ...
+    # with respect to "alpha_s", "charm", "bottom" or "top", thresholds fixed, or "ln_q2", that of the output;
+    # served as the set itself
+    def derivative(self, parameter: str, threads: int) -> Evolution: ...
+    # rows (point, 13, node) as of light_rows, at scales (scale,) of points; protons (point,) the fraction of
+    # protons in each target; written to rows `places` (point,) of out (row, flavour, node)
+    def pull_back(
+        self,
+        rows: NDArray[np.float64],
+        *,
+        q2: NDArray[np.float64],
+        nf: NDArray[np.int64],
+        scale_of: NDArray[np.int64],
+        protons: NDArray[np.float64],
+        flavours: NDArray[np.int64],
+        places: NDArray[np.int64],
+        out: NDArray[np.float64],
+        threads: int,
+    ) -> None: ...
 
 # intrinsic: heavy flavours above start_nf whose input is allowed; threads 0: all; further: user kernels as
 # (order k, nf, channel, regular values at quadrature_z, plus coefficients, local)
@@ -196,8 +220,36 @@ def coefficient_matrix(
     grid: Grid, order: int, structure_function: str, coefficient: str, nf: int
 ) -> NDArray[np.float64]: ...
 
+# the same of a kernel of the user: regular values at quadrature_z, plus coefficients, local part
+def convolution_matrix(
+    grid: Grid, regular: NDArray[np.float64], plus: NDArray[np.float64], local: float
+) -> NDArray[np.float64]: ...
+
 # (point, node): from nodal values of the gluon or of the light quark to the contribution at each point; x and
 # q2 (point,), mass in GeV. RangeError where chi < x_min; zero where chi >= 1
 def massive_rows(
     grid: Grid, what: str, x: NDArray[np.float64], q2: NDArray[np.float64], mass: float
 ) -> NDArray[np.float64]: ...
+
+# matrices (term, node, node), and to each its structure function (0 to 2: F2, FL, xF3), its part (0 to 3:
+# "ns+", "ns-", "pure singlet", "gluon") and its column of powers (point, power); f2, fl, xf3 (point, node),
+# weights of nodal values; even, odd, even3, odd3 (point, 6), couplings; out (point, 13, node): gluon,
+# q + qbar, q - qbar
+def light_rows(
+    grid: Grid,
+    *,
+    matrices: NDArray[np.float64],
+    functions: NDArray[np.int64],
+    parts: NDArray[np.int64],
+    orders: NDArray[np.int64],
+    f2: NDArray[np.float64],
+    fl: NDArray[np.float64],
+    xf3: NDArray[np.float64],
+    powers: NDArray[np.float64],
+    even: NDArray[np.float64],
+    odd: NDArray[np.float64],
+    even3: NDArray[np.float64],
+    odd3: NDArray[np.float64],
+    nf: int,
+    out: NDArray[np.float64],
+) -> None: ...

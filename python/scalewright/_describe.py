@@ -1,15 +1,17 @@
-"""What a theory says of itself: every option, and every convention in force.
+"""What a theory says of itself, every option and every convention in force; and what operators say.
 
-Knows the theory by its attributes alone, so that it stands below `theory`.
+Knows both by their attributes alone, so that it stands below them.
 """
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from ._check import show_all
 from ._display import brief, brief_all, screen, table
 
 if TYPE_CHECKING:
+    from .operators import Operators
     from .theory import Theory
 
 _HEAVY = ("charm", "bottom", "top")
@@ -28,6 +30,20 @@ def option_lines(theory: Theory) -> list[tuple[str, str]]:
         ("A_Hg at a^2", _element(theory)),
         ("hard scales", _hard(theory)),
         ("coefficients", _coefficients(theory)),
+    ]
+
+
+def operator_lines(operators: Operators) -> list[tuple[str, str]]:
+    """Return what a set of operators is, as (name, sentence)."""
+    nodes, names, route = operators.grid.nodes, operators.block_names, operators._route
+    kind = "any scale in between" if operators.live else "these scales only"
+    return [
+        ("theory", repr(operators.theory)),
+        ("from", route.start_words),
+        ("to", f"{route.end_words}; {kind}"),
+        ("grid", repr(operators.grid)),
+        ("blocks", f"{len(names)} of {nodes} x {nodes} a scale: {show_all(names, 4)}".replace("'", "")),
+        ("steps", f"{operators.steps}, largest relative error estimate {operators.error:.1e}"),
     ]
 
 

@@ -14,7 +14,7 @@ import numpy as np
 
 from ._check import Floats, Integers, show, show_all
 from ._display import brief
-from .errors import RangeError
+from .errors import InputError, RangeError
 
 if TYPE_CHECKING:
     from . import _core
@@ -119,6 +119,11 @@ class Live:
         self.flow_names = tuple(evolution.flow_names)
         self.error, self.steps = evolution.error, evolution.steps
 
+    @property
+    def evolution(self) -> _core.Evolution:
+        """The compiled core's solution."""
+        return self._evolution
+
     def refuse(self, q2: Floats, nf: Integers) -> None:
         """Raise a `RangeError` if a scale is not served."""
         ranges = self._evolution.ranges()
@@ -133,6 +138,10 @@ class Live:
         """Return blocks (scale, block, node, node) and flows (scale, flow, node)."""
         self.refuse(q2, nf)
         return self._evolution.values(q2, nf, threads)
+
+    def derivative(self, parameter: str, threads: int) -> Live:
+        """Return the source of derivatives, at the cost of a build."""
+        return Live(self._evolution.derivative(parameter, threads))
 
 
 @dataclass(frozen=True, eq=False)
@@ -165,6 +174,13 @@ class Held:
         if places == list(range(self.route.q2.size)):  # all of them in order: no copy
             return self.values, self.flow_values
         return self.values[places], self.flow_values[places]
+
+    def derivative(self, parameter: str, threads: int) -> Live:
+        """Raise an `InputError`: arrays do not know what they were made from."""
+        raise InputError(
+            f"parameter = {show(parameter)}: operators that were loaded, unpickled or composed have no "
+            "derivatives; build them with build_operators"
+        )
 
 
 #: What blocks and flows come from.

@@ -1,4 +1,4 @@
-"""Splitting functions and threshold matching, point by point; and splitting functions of one's own.
+"""Splitting functions and threshold matching, point by point; and kernels of one's own.
 
 A kernel K(z) has three parts, K = regular + sum_k plus[k] [ln^k(1-z)/(1-z)]_+ + local delta(1-z), where the
 plus distribution refers to the whole of [0, 1]. Splitting functions are coefficients of a^(k+1),
@@ -28,7 +28,13 @@ from numpy.typing import ArrayLike
 from . import _check
 from ._check import Floats
 
-__all__ = ["KernelValues", "SplittingKernel", "matching_element", "splitting_function"]
+__all__ = [
+    "CoefficientFunction",
+    "KernelValues",
+    "SplittingKernel",
+    "matching_element",
+    "splitting_function",
+]
 
 CHANNELS = ("ns+", "ns-", "ns-sea", "pure singlet", "qg", "gq", "gg")
 
@@ -184,31 +190,8 @@ def _points(z: ArrayLike, one_minus_z: ArrayLike | None) -> tuple[Floats, Floats
 
 
 @dataclass(frozen=True)
-class SplittingKernel:
-    """A splitting function of one's own: one channel of one further order.
-
-    Parameters
-    ----------
-    regular : callable
-        ``regular(z, nf)`` with an array z (n,) in (0, 1) and a number of flavours; returns (n,), or one
-        number for all. Coefficient of a^(k+1), a = alpha_s/(4 pi).
-    plus : sequence of float, or callable of nf
-        Coefficient k multiplies [ln^k(1-z)/(1-z)]_+.
-    local : float, or callable of nf
-        Coefficient of delta(1-z).
-
-    Raises
-    ------
-    InputError
-        If `regular` cannot be called, or `plus` or `local` are neither finite numbers nor callables.
-
-    Examples
-    --------
-    >>> kernel = SplittingKernel(lambda z, nf: nf * z, plus=(4.0,), local=lambda nf: 0.5 * nf)
-    >>> regular, plus, local = kernel.evaluate([0.25, 0.5], 4)
-    >>> regular.tolist(), plus.tolist(), local
-    ([1.0, 2.0], [4.0], 2.0)
-    """
+class _Kernel:
+    """A function of z and nf in three parts, of one's own."""
 
     regular: Callable[[Floats, int], ArrayLike]
     plus: ArrayLike | Callable[[int], ArrayLike] = ()
@@ -249,6 +232,64 @@ class SplittingKernel:
         if callable(local):
             local = _check.raised("local", local, nf)
         return KernelValues(regular, _coefficients("plus", plus), _check.real("local", local))
+
+
+@dataclass(frozen=True)
+class SplittingKernel(_Kernel):
+    """A splitting function of one's own: one channel of one further order.
+
+    Parameters
+    ----------
+    regular : callable
+        ``regular(z, nf)`` with an array z (n,) in (0, 1) and a number of flavours; returns (n,), or one
+        number for all. Coefficient of a^(k+1), a = alpha_s/(4 pi).
+    plus : sequence of float, or callable of nf
+        Coefficient k multiplies [ln^k(1-z)/(1-z)]_+.
+    local : float, or callable of nf
+        Coefficient of delta(1-z).
+
+    Raises
+    ------
+    InputError
+        If `regular` cannot be called, or `plus` or `local` are neither finite numbers nor callables.
+
+    Examples
+    --------
+    >>> kernel = SplittingKernel(lambda z, nf: nf * z, plus=(4.0,), local=lambda nf: 0.5 * nf)
+    >>> regular, plus, local = kernel.evaluate([0.25, 0.5], 4)
+    >>> regular.tolist(), plus.tolist(), local
+    ([1.0, 2.0], [4.0], 2.0)
+    """
+
+
+@dataclass(frozen=True)
+class CoefficientFunction(_Kernel):
+    """A coefficient function of one's own: one part of F2, FL or xF3 at one further order.
+
+    Parameters
+    ----------
+    regular : callable
+        ``regular(z, nf)`` with an array z (n,) in (0, 1) and a number of flavours; returns (n,), or one
+        number for all. Coefficient of a^k at mu_r = mu_f = Q, a = alpha_s/(4 pi); what multiplies x f(x) in
+        F2, FL and xF3. "pure singlet" and "gluon" have the mean squared charge taken out and nf in.
+    plus : sequence of float, or callable of nf
+        Coefficient k multiplies [ln^k(1-z)/(1-z)]_+.
+    local : float, or callable of nf
+        Coefficient of delta(1-z).
+
+    Raises
+    ------
+    InputError
+        If `regular` cannot be called, or `plus` or `local` are neither finite numbers nor callables.
+
+    Examples
+    --------
+    The gluon in FL at order a, 16 nf TR z (1 - z), TR = 1/2:
+
+    >>> gluon = CoefficientFunction(lambda z, nf: 8 * nf * z * (1 - z))
+    >>> gluon.evaluate([0.5], 3).regular.tolist()
+    [6.0]
+    """
 
 
 def _coefficients(name: str, value: object) -> Floats:

@@ -26,8 +26,10 @@ from . import _check
 from ._check import Floats
 from ._measured.rows import NUCLEON_M2
 
-__all__ = ["REGIMES", "Regimes", "inelasticity", "invariant_mass2", "regimes"]
+__all__ = ["BOUNDARIES", "REGIMES", "Regimes", "inelasticity", "invariant_mass2", "regimes", "x_limits"]
 
+#: Arguments of `regimes` that say where one ends.
+BOUNDARIES = ("hadronic_scale", "resonance", "endpoint", "low_q2", "low_x")
 REGIMES = ("resonance", "endpoint", "low Q^2", "low x", "inclusive")
 
 
@@ -107,6 +109,41 @@ def inelasticity(x: ArrayLike, q2: ArrayLike, s: float) -> Floats:
     y = np.asarray(scales / (points * energy))
     _check.refuse_where("y", y, y > 1.0 + 1e-12, "y = Q^2/(x (s - m_p^2)) must lie in (0, 1]")
     return y[()]
+
+
+def x_limits(q2: ArrayLike, s: float, *, w2: float = NUCLEON_M2) -> tuple[Floats, Floats]:
+    """Return the least and the largest x that can be measured.
+
+    Parameters
+    ----------
+    q2 : array_like
+        Q^2 in GeV^2.
+    s : float
+        Squared centre-of-mass energy in GeV^2: y <= 1 gives the least x.
+    w2 : float
+        Least W^2 in GeV^2, m_p^2 or more, which gives the largest x.
+
+    Returns
+    -------
+    low, high : ndarray
+        Q^2/(s - m_p^2) and Q^2/(Q^2 + W^2 - m_p^2); nothing can be measured where low exceeds high.
+
+    Raises
+    ------
+    InputError
+        If an argument lies outside its range.
+
+    Examples
+    --------
+    >>> low, high = x_limits(100.0, 1e5, w2=10.0)
+    >>> round(float(low), 8), round(float(high), 6)
+    (0.00100001, 0.916425)
+    """
+    scales = _check.real_array("q2", q2)
+    _check.refuse_where("q2", scales, scales <= 0.0, "q2 must lie in (0, inf) GeV^2")
+    energy = _check.real("s", s, above=NUCLEON_M2, unit="GeV^2") - NUCLEON_M2
+    mass = _check.real("w2", w2, least=NUCLEON_M2, unit="GeV^2") - NUCLEON_M2
+    return np.asarray(scales / energy)[()], np.asarray(scales / (scales + mass))[()]
 
 
 def regimes(

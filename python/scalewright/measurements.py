@@ -256,7 +256,8 @@ class Measurements(Questions):
                 words, inside = in_range(name, given, getattr(rows, name), rows.place)
                 conditions[words] = self._of_all_rows(inside)
         if keep is not None:
-            conditions[str(reason)] = self._chosen(keep)
+            chosen, words = self._chosen(keep), str(reason)
+            conditions[words] = chosen & conditions[words] if words in conditions else chosen
         tables, cuts = apply_cuts(self._tables, conditions)
         return Measurements(tables, (*self.cuts, *cuts))
 
@@ -296,8 +297,8 @@ class Measurements(Questions):
         Returns
         -------
         PseudoData
-            (truth + sum of additive shifts) times the product of (1 + multiplicative shifts); negative values
-            are kept and counted.
+            (truth + sum of additive shifts) times the product over sources of (1 + multiplicative shift);
+            negative values are kept and counted.
 
         Raises
         ------

@@ -133,7 +133,7 @@ def moment(
     nf = int(problem.nf[0])
     of_nodes = densities.grid.handle().moment_weights(n - 1.0)[np.newaxis]
     weights = light_weights(problem, points, nf, False)
-    made = light_rows(problem.setting, {measure: of_nodes}, weights, problem.a, nf)
+    made = light_rows(problem.setting, {measure: of_nodes}, weights, problem.setting.powers(problem.a), nf)
     flavours = densities.flavours
     row = with_target(flavour_rows(made, flavours), points.protons, flavours)
     values = at_scale(densities, float(problem.muf2[0]), nf)

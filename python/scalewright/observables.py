@@ -6,6 +6,7 @@ for a table of points and many input densities. Both use the same rows.
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from types import SimpleNamespace
 
 import numpy as np
@@ -13,15 +14,19 @@ from numpy.typing import ArrayLike
 
 from . import _check
 from ._check import Floats, show
+from ._corrected.bound import Bound
 from ._observed.carried import scale_groups, with_target
+from ._observed.further import checked_further
 from ._observed.point_rows import point_rows
 from ._observed.points import Points
-from ._observed.problem import Problem
+from ._observed.problem import INTRINSIC, Problem
 from ._observed.pullback import flavour_rows
 from ._route import SAME_SCALE
+from .corrections import Correction
 from .densities import Densities
 from .electroweak import Electroweak
 from .errors import InputError
+from .kernels import CoefficientFunction
 from .theory import Theory
 
 __all__ = ["at_scale", "structure_function"]
@@ -45,6 +50,8 @@ def structure_function(
     electroweak: Electroweak | None = None,
     target_mass: bool = False,
     subtraction: str = "damped",
+    further: Mapping[str, Sequence[Mapping[str, CoefficientFunction]]] | None = None,
+    corrections: Sequence[Correction] | Correction = (),
 ) -> Floats:
     """Return a structure function or cross section.
 
@@ -71,8 +78,10 @@ def structure_function(
         The part where the current couples to that quark.
     y, s : array_like, float, optional
         For cross sections: inelasticity, or squared centre-of-mass energy in GeV^2.
-    electroweak, target_mass, subtraction
+    electroweak, target_mass, subtraction, further
         As for `forward_map`.
+    corrections
+        As for `ForwardMap.predict`.
 
     Returns
     -------
@@ -82,8 +91,8 @@ def structure_function(
     Raises
     ------
     InputError
-        If an argument is wrong, or the densities have no such scale, another number of flavours or a flavour
-        missing.
+        If an argument is wrong, or the densities have no such scale, another number of flavours, a flavour
+        missing, or a heavy one below its threshold.
     RangeError
         If x lies below the grid, or the coupling is too large.
 
@@ -103,7 +112,9 @@ def structure_function(
         _check.refuse("densities", densities, f"densities must be Densities, not {type(densities).__name__}")
     points, shape = _points(measure, x, q2, y, s, current, exchange, beam, polarisation, target, tagged)
     electroweak = Electroweak.effective() if electroweak is None else electroweak
-    problem = Problem(theory, densities.grid, electroweak, points, target_mass, subtraction)
+    problem = Problem(
+        theory, densities.grid, electroweak, points, target_mass, subtraction, checked_further(further)
+    )
     scales, counts, group = scale_groups(problem)
     flavours = densities.flavours
     parts = []
@@ -116,7 +127,8 @@ def structure_function(
     result = np.empty((parts[0][1].shape[0], len(points)))
     for members, values in parts:
         result[:, members] = values
-    return result.reshape(result.shape[0], *shape)
+    bound = Bound(corrections, SimpleNamespace(points=points, weights=problem.factors))
+    return bound.corrected(result, bound.start).reshape(result.shape[0], *shape)
 
 
 def _points(
@@ -176,5 +188,8 @@ def at_scale(densities: Densities, q2: float, nf: int) -> Floats:
     missing = [f for f in (21, *range(1, nf + 1), *range(-nf, 0)) if f not in densities.flavours]
     if missing:
         raise InputError(f"densities have no flavour {_check.show_all(missing)}, active at nf = {nf}")
-    values = densities.values
-    return values if values.ndim == 3 else values[same[0]]
+    values = densities.values if densities.values.ndim == 3 else densities.values[same[0]]
+    for place, flavour in enumerate(densities.flavours):
+        if flavour != 21 and abs(flavour) > nf and values[:, place].any():
+            _check.refuse("densities.flavours", flavour, f"not active at nf = {nf} and not zero: {INTRINSIC}")
+    return values

@@ -14,12 +14,12 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from . import _check, _composed
-from ._carry import Task, matched, thread_count
-from ._check import Floats, Integers, show_all
+from ._carry import Task, asked_scales, matched, thread_count
+from ._check import Floats, Integers
+from ._describe import operator_lines
 from ._display import screen, table
 from ._route import Held, Live, Route, Source
 from .densities import Densities
-from .errors import InputError
 from .files.whole import PathLike
 from .grid import ChebyshevGrid
 from .theory import Theory
@@ -27,6 +27,7 @@ from .theory import Theory
 __all__ = ["Operators"]
 
 Scales: TypeAlias = ArrayLike | None
+DIRECTIONS = ("alpha_s", "charm", "bottom", "top", "ln_q2")
 
 
 class Operators:
@@ -132,6 +133,34 @@ class Operators:
         """Whether scales between those of `q2` are served too."""
         return isinstance(self._source, Live)
 
+    def derivative(self, parameter: str, *, threads: int | None = None) -> Floats:
+        """Derivative of the blocks at the scales `q2`, exact; threshold scales stay where they are.
+
+        Parameters
+        ----------
+        parameter : {"alpha_s", "charm", "bottom", "top", "ln_q2"}
+            alpha_s where the theory gives it, the mass of a quark in GeV, or ln q2 of the output.
+        threads : int, optional
+            As for `apply`.
+
+        Returns
+        -------
+        ndarray, (scale, block, node, node)
+            As `blocks`.
+
+        Raises
+        ------
+        InputError
+            If the parameter is unknown, or the set is not live.
+
+        Notes
+        -----
+        By the chain rule from those of the coupling and of the matching; costs about as much as a build.
+        """
+        _check.choice("parameter", parameter, DIRECTIONS)
+        count = thread_count(threads)
+        return self._source.derivative(parameter, count).at(self.q2, self.nf, count)[0]
+
     # ---- applying ---------------------------------------------------------------------------------
 
     def apply(
@@ -226,23 +255,11 @@ class Operators:
     ) -> Task:
         """Check the arguments of one application."""
         given = matched(densities, self._grid, self._route, missing)
-        asked, counts = self._asked(q2, nf)
+        asked, counts = asked_scales(self._theory, self._route, self._source, q2, nf)
         made = self._route.made(counts) if flavours is None else _check.partons("flavours", flavours)
         count = thread_count(threads)
         route, source, before = self._route, self._source, densities.below
         return Task(self._grid, route, source, given, before, asked, counts, made, count)
-
-    def _asked(self, q2: Scales, nf: Scales) -> tuple[Floats, Integers]:
-        """Return scales and numbers of flavours, distinct and served by arrays if not live."""
-        if q2 is None:
-            if nf is not None:
-                raise InputError("nf: give q2 with it; without q2 all scales of the set are meant")
-            return self.q2, self.nf
-        asked = _check.scales("q2", q2)
-        counts = self._theory.nf_at(asked) if nf is None else _check.flavour_counts("nf", nf, asked.size)
-        _check.distinct_scales("q2", asked, counts)
-        self._source.refuse(asked, counts)
-        return asked, counts
 
     # ---- composing --------------------------------------------------------------------------------
 
@@ -374,22 +391,10 @@ class Operators:
         """One line."""
         return f"Operators({self._theory.order}, {self._route}, {len(self.block_names)} blocks)"
 
-    def _lines(self) -> list[tuple[str, str]]:
-        nodes, names = self._grid.nodes, self.block_names
-        kind = "any scale in between" if self.live else "these scales only"
-        return [
-            ("theory", repr(self._theory)),
-            ("from", self._route.start_words),
-            ("to", f"{self._route.end_words}; {kind}"),
-            ("grid", repr(self._grid)),
-            ("blocks", f"{len(names)} of {nodes} x {nodes} a scale: {show_all(names, 4)}".replace("'", "")),
-            ("steps", f"{self.steps}, largest relative error estimate {self.error:.1e}"),
-        ]
-
     def __str__(self) -> str:
         """One screen."""
-        return screen("Operators", self._lines())
+        return screen("Operators", operator_lines(self))
 
     def _repr_html_(self) -> str:
         """Return a table, for notebooks."""
-        return table("Operators", self._lines())
+        return table("Operators", operator_lines(self))

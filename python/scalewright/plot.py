@@ -6,7 +6,7 @@ matplotlib is changed.
 
 from __future__ import annotations
 
-import os
+import io
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, TypeAlias
 
@@ -26,8 +26,8 @@ Flavours: TypeAlias = Sequence[int | str]
 
 # Distinct for readers who do not tell red from green, and in print: M. Okabe and K. Ito, "Color universal
 # design", 2008 (values recalled from memory).
-_COLOURS = ("#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#000000")
-_LINES = ("-", "--", "-.", ":")
+COLOURS = ("#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#000000")
+LINES = ("-", "--", "-.", ":")
 _POINTS = 300
 _ONE_SIGMA = 68.27
 
@@ -86,7 +86,7 @@ def plot_densities(
     'x'
     """
     ax = new_axes(ax)
-    points = _points(densities, x)
+    points = curve_points(densities, x)
     factors = _factors(scale_by, flavours)
     q2 = float(np.ravel(densities.q2)[0]) if q2 is None and densities.scales == 1 else q2
     for place, (flavour, factor) in enumerate(zip(flavours, factors, strict=True)):
@@ -96,7 +96,7 @@ def plot_densities(
     ax.set_xlim(points.min(), 1.0)
     ax.set_xlabel("x")
     ax.set_ylabel("x f(x)")
-    ax.set_title(f"{_number(q2)} GeV$^2$")
+    ax.set_title(f"{show_number(q2)} GeV$^2$")
     ax.legend(frameon=False)
     return ax
 
@@ -136,13 +136,13 @@ def plot_against_q2(
         If matplotlib is not installed.
     """
     ax = new_axes(ax)
-    _densities(densities)
+    check_densities(densities)
     points = np.atleast_1d(_check.x_values("x", x))
     q2, nf = np.atleast_1d(densities.q2), np.atleast_1d(densities.nf)
     order = np.lexsort((nf, q2))
     values = densities.at(q2[order], points, flavour, nf=nf[order])
     for place, point in enumerate(points):
-        _band(ax, q2[order], values[:, :, place].T, interval, place, f"x = {_number(point)}")
+        _band(ax, q2[order], values[:, :, place].T, interval, place, f"x = {show_number(point)}")
     ax.set_xscale("log")
     ax.set_xlabel("$\\mu_f^2$ (GeV$^2$)")
     ax.set_ylabel(f"x f(x), {flavour}")
@@ -150,38 +150,10 @@ def plot_against_q2(
     return ax
 
 
-def demo_picture(start: Densities, evolved: Densities, path: str | os.PathLike[str]) -> None:
-    """Draw what `scalewright demo` computed: the input, and the result at its largest scale.
-
-    Parameters
-    ----------
-    start : Densities
-        Of one scale.
-    evolved : Densities
-        Of several.
-    path : path-like
-        Where to write; PNG.
-    """
-    import io
-
-    from .files.whole import write_whole
-
-    figure = new_figure(11.0, 4.6)
-    left, right = figure.subplots(1, 2)
-    names, factors = ("u_v", "d_v", "sea", "g"), (1.0, 1.0, 0.1, 0.1)
-    x = np.geomspace(1e-4, 0.99, _POINTS)
-    plot_densities(start, names, scale_by=factors, x=x, ax=left)
-    plot_densities(evolved, names, q2=float(np.max(evolved.q2)), scale_by=factors, x=x, ax=right)
-    for ax in (left, right):
-        ax.set_ylim(0.0, 1.2)
-    figure.suptitle(f"{start.replicas} replicas around the published input, NNLO: median and 68 per cent")
-    image = io.BytesIO()
-    figure.savefig(image, format="png", dpi=120)
-    write_whole(path, image.getvalue())
-
-
-def new_figure(width: float, height: float) -> Any:
+def new_figure(width: float, height: float, layout: str | None = "constrained") -> Any:
     """Return a figure without window and global state, sides in inches: it works without a screen.
+
+    `layout` None leaves margins to the caller: with many panels, finding them takes most of the time.
 
     Raises
     ------
@@ -192,7 +164,25 @@ def new_figure(width: float, height: float) -> Any:
         from matplotlib.figure import Figure
     except ImportError as error:
         raise ImportError("pictures need matplotlib: pip install 'scalewright[plot]'") from error
-    return Figure(figsize=(width, height), layout="constrained")
+    chosen: Any = layout
+    return Figure(figsize=(width, height), layout=chosen)
+
+
+def png_of(figure: Any, dpi: int = 100) -> bytes:
+    """Return a figure as PNG."""
+    image = io.BytesIO()
+    figure.savefig(image, format="png", dpi=dpi)
+    return image.getvalue()
+
+
+def svg_of(figure: Any) -> bytes:
+    """Return a figure as SVG; equal pictures make equal bytes."""
+    from matplotlib import rc_context
+
+    image = io.BytesIO()
+    with rc_context({"svg.hashsalt": "scalewright"}):
+        figure.savefig(image, format="svg", metadata={"Date": None})
+    return image.getvalue()
 
 
 def new_axes(ax: Any) -> Any:
@@ -210,14 +200,15 @@ def new_axes(ax: Any) -> Any:
     return ax
 
 
-def _densities(densities: object) -> None:
+def check_densities(densities: object) -> None:
+    """Refuse what is not densities."""
     if not isinstance(densities, Densities):
         refuse("densities", densities, f"densities must be Densities, not {type(densities).__name__}")
 
 
-def _points(densities: Densities, x: ArrayLike | None) -> Floats:
+def curve_points(densities: Densities, x: ArrayLike | None) -> Floats:
     """Return the points of a curve, rising."""
-    _densities(densities)
+    check_densities(densities)
     if x is not None:
         return np.sort(np.atleast_1d(_check.x_values("x", x)))
     low = densities.grid.x_min
@@ -239,7 +230,7 @@ def _factors(scale_by: ArrayLike, flavours: Flavours) -> Floats:
 def _band(ax: Any, x: Floats, values: Floats, interval: float, place: int, label: str) -> None:
     """Draw the median of (replica, point), and the central interval if there is more than one replica."""
     share = _check.real("interval", interval, above=0.0, most=100.0)
-    colour, line = _COLOURS[place % len(_COLOURS)], _LINES[place % len(_LINES)]
+    colour, line = COLOURS[place % len(COLOURS)], LINES[place % len(LINES)]
     if values.shape[0] > 1:
         low, high = np.percentile(values, [50.0 - share / 2.0, 50.0 + share / 2.0], axis=0)
         ax.fill_between(x, low, high, color=colour, alpha=0.25, linewidth=0.0)
@@ -253,6 +244,6 @@ def _label(flavour: int | str, factor: float) -> str:
     return name if factor == 1.0 else f"{show(factor)} {name}"
 
 
-def _number(value: float | None) -> str:
+def show_number(value: float | None) -> str:
     """Write a number as a title shows it: 2, 10000, 8315.18, 1e-05."""
     return f"{value:.6g}"

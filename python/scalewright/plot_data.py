@@ -8,7 +8,8 @@ the axes it is given, or makes new ones, and returns them; no setting of matplot
 from __future__ import annotations
 
 import os
-from typing import TYPE_CHECKING
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -17,12 +18,12 @@ from . import _check
 from ._check import Floats, refuse, show_all
 from .fitting.chi_square import ChiSquare
 from .measurements import Measurements
-from .plot import new_axes
+from .plot import new_axes, new_figure, png_of
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-__all__ = ["plot_data", "plot_ratio"]
+__all__ = ["data_figure", "plot_data", "plot_ratio"]
 
 _GREY = "0.55"
 _COLUMNS = 5
@@ -94,6 +95,7 @@ def plot_ratio(
     *,
     q2: float,
     table: str | int = 0,
+    chi_square: ChiSquare | None = None,
     ax: Axes | None = None,
 ) -> Axes:
     """Draw data over prediction against x at one Q^2, as measured and with common sources at their best fit.
@@ -107,6 +109,8 @@ def plot_ratio(
         Of the bin, in GeV^2.
     table : str or int
         Title of the table, or its number.
+    chi_square : ChiSquare, optional
+        With the reference of multiplicative errors that is in force; by default they multiply the data.
     ax : matplotlib axes, optional
         Where to draw.
 
@@ -124,44 +128,58 @@ def plot_ratio(
         If matplotlib is not installed.
     """
     line = _prediction(measurements, prediction)
-    moved = _moved(measurements, line)
-    return _ratio(measurements, line, moved, _members(measurements, table), q2, new_axes(ax))
+    drawn = _Drawn.of(measurements, line, chi_square)
+    return _ratio(measurements, drawn, _members(measurements, table), q2, new_axes(ax))
 
 
-def data_picture(
+def data_figure(
     measurements: Measurements,
     prediction: ArrayLike,
-    path: str | os.PathLike[str],
     *,
     table: str | int = 0,
-) -> None:
-    """Draw data over prediction of one table, a panel for each Q^2, and write it as PNG.
+    chi_square: ChiSquare | None = None,
+) -> Any:
+    """Draw data over prediction of one table, a panel for each Q^2, into a new figure.
 
     Parameters
     ----------
     measurements : Measurements
     prediction : array_like, (datum,)
-    path : path-like
-        Where to write.
+        Not 0.
     table : str or int
         Title of the table, or its number.
+    chi_square : ChiSquare, optional
+        With the reference of multiplicative errors that is in force; by default they multiply the data.
+
+    Returns
+    -------
+    matplotlib figure
+
+    Raises
+    ------
+    InputError
+        As `plot_ratio`.
+    ImportError
+        If matplotlib is not installed.
     """
-    import io
-
-    from .files.whole import write_whole
-    from .plot import new_figure
-
     chosen = _members(measurements, table)
     line = _prediction(measurements, prediction)
-    moved = _moved(measurements, line)
+    drawn = _Drawn.of(measurements, line, chi_square)
     bins = np.unique(measurements.q2[chosen])
     rows = -(-bins.size // _COLUMNS)
-    figure = new_figure(2.6 * _COLUMNS, 1.0 + 1.7 * rows)
+    width, height = 2.6 * _COLUMNS, 1.2 + 1.7 * rows
+    figure = new_figure(width, height, layout=None)
     panels = figure.subplots(rows, _COLUMNS, sharex=True, squeeze=False)
+    figure.subplots_adjust(
+        left=1.0 / width, right=1.0 - 0.15 / width, bottom=0.65 / height, top=1.0 - 0.75 / height,
+        wspace=0.3, hspace=0.42,
+    )  # fmt: skip
     for q2, panel in zip(bins, panels.flat, strict=False):
-        _ratio(measurements, line, moved, chosen, float(q2), panel)
+        _ratio(measurements, drawn, chosen, float(q2), panel)
         panel.set(xlabel="", ylabel="")
         panel.set_title(f"{q2:.6g} GeV$^2$", fontsize=9)
+        panel.tick_params(labelsize=8)
+        panel.minorticks_off()  # a hundred logarithmic ticks in each of many panels take seconds
     for panel in panels.flat[bins.size :]:
         panel.set_axis_off()
     for panel in panels.flat[max(bins.size - _COLUMNS, 0) :]:  # lowest of their columns
@@ -171,21 +189,58 @@ def data_picture(
     figure.suptitle(
         f"{_title(measurements, chosen)}: open as measured, full after the best-fit shifts of common sources"
     )
-    image = io.BytesIO()
-    figure.savefig(image, format="png", dpi=110)
-    write_whole(path, image.getvalue())
+    return figure
 
 
-def _ratio(
-    measurements: Measurements, line: Floats, moved: Floats, chosen: NDArray[np.intp], q2: float, ax: Axes
-) -> Axes:
+def data_picture(
+    measurements: Measurements,
+    prediction: ArrayLike,
+    path: str | os.PathLike[str],
+    *,
+    table: str | int = 0,
+    chi_square: ChiSquare | None = None,
+) -> None:
+    """Write what `data_figure` draws as PNG.
+
+    Parameters
+    ----------
+    measurements, prediction, table, chi_square
+        As for `data_figure`.
+    path : path-like
+        Where to write.
+    """
+    from .files.whole import write_whole
+
+    figure = data_figure(measurements, prediction, table=table, chi_square=chi_square)
+    write_whole(path, png_of(figure, 110))
+
+
+@dataclass(frozen=True)
+class _Drawn:
+    """What is drawn of each datum: prediction, value after shifts, whole and own uncertainty."""
+
+    line: Floats
+    moved: Floats
+    whole: Floats
+    own: Floats
+
+    @classmethod
+    def of(cls, measurements: Measurements, line: Floats, chi_square: ChiSquare | None) -> _Drawn:
+        in_force = ChiSquare(measurements) if chi_square is None else chi_square
+        own, shifts = measurements.nuisance(in_force.reference)
+        moved = measurements.value
+        if shifts.shape[1]:
+            moved = moved - shifts @ in_force.shifts(line)
+        return cls(line, moved, np.sqrt(np.diagonal(in_force.covariance)), own)
+
+
+def _ratio(measurements: Measurements, drawn: _Drawn, chosen: NDArray[np.intp], q2: float, ax: Axes) -> Axes:
     """Draw one bin."""
-    points = _bin(measurements, chosen, q2)
+    points, line = _bin(measurements, chosen, q2), drawn.line
     zero = line[points] == 0.0
     _check.refuse_where("prediction", line[points], zero, "prediction must not be 0")
     x, scale = measurements.x[points], line[points]
-    whole = np.sqrt(np.diagonal(measurements.covariance()))[points]
-    own = measurements.nuisance()[0][points]
+    whole, own, moved = drawn.whole[points], drawn.own[points], drawn.moved[points]
     ax.axhline(1.0, color=_GREY, linewidth=1.0, zorder=0)
     ax.errorbar(
         x, measurements.value[points] / scale, whole / abs(scale),
@@ -193,7 +248,7 @@ def _ratio(
     )  # fmt: skip
     # a little to the right, so that the two bars of a datum do not hide each other
     ax.errorbar(
-        1.08 * x, moved[points] / scale, own / abs(scale),
+        1.08 * x, moved / scale, own / abs(scale),
         fmt="o", color="black", markersize=3, linewidth=1.6, label="after shifts",
     )  # fmt: skip
     ax.set_xscale("log")
@@ -201,14 +256,6 @@ def _ratio(
     ax.set_ylabel("data / prediction")
     ax.set_title(f"{_title(measurements, chosen)}, {q2:.6g} GeV$^2$")
     return ax
-
-
-def _moved(measurements: Measurements, line: Floats) -> Floats:
-    """Return the data with all common sources at their best fit."""
-    shifts = measurements.nuisance()[1]
-    if not shifts.shape[1]:
-        return measurements.value
-    return measurements.value - shifts @ ChiSquare(measurements).shifts(line)
 
 
 def _members(measurements: Measurements, table: str | int) -> NDArray[np.intp]:

@@ -9,7 +9,22 @@ import sys
 import pytest
 from house.tree import ROOT
 
-BENCHES = ("accuracy", "apply", "build", "evolve", "memory", "plain", "unit")
+BENCHES = (
+    "accuracy",
+    "apply",
+    "build",
+    "closure",
+    "ensemble",
+    "evolve",
+    "fit",
+    "forward",
+    "memory",
+    "plain",
+    "plain_forward",
+    "quoted_error",
+    "unit",
+    "world_fit",
+)
 
 
 @pytest.mark.parametrize("bench", BENCHES)

@@ -65,6 +65,7 @@ GRID = ChebyshevGrid.from_panels([0.0, 1.0, 11.0], [10, 12])
 ONE = Densities(GRID, q2=2.0, nf=3, flavours=(21, 2, -2), values=np.ones((3, GRID.nodes)))
 THEORY = Theory(order="LO")
 KERNEL = sw.SplittingKernel(lambda z, nf: z)
+OWN = sw.CoefficientFunction(lambda z, nf: z)
 
 DESCRIPTION = {
     "title": "A",
@@ -84,6 +85,7 @@ MIXING = ELECTROWEAK.mixing
 SEVEN = (21, 1, 2, 3, -1, -2, -3)
 FULL = Densities(GRID, q2=2.0, nf=3, flavours=SEVEN, values=np.ones((7, GRID.nodes)))
 THREE = Theory(order="LO", flavours=3)
+OPERATORS = sw.build_operators(THREE, GRID, start_q2=2.0, q2=[10.0])
 FMAP = sw.forward_map(THREE, GRID, start_q2=2.0, points=MEASURED)
 ASKED = {
     "q2": 2.0,
@@ -230,15 +232,18 @@ CALLS = {
             "electroweak": None,
             "target_mass": False,
             "subtraction": "damped",
+            "further": {"F2": [{"gluon": OWN}]},
             "tolerance": 1e-9,
             "threads": 1,
         },
     ),
-    "ForwardMap.predict": (FMAP.predict, {"densities": FULL}),
+    "ForwardMap.predict": (FMAP.predict, {"densities": FULL, "corrections": ()}),
+    "ForwardMap.describe": (FMAP.describe, {"corrections": (), "boundaries": None}),
+    "ForwardMap.orders": (FMAP.orders, {"boundaries": None}),
     "ForwardMap.predict_rows": (FMAP.predict_rows, {"densities": FULL}),
-    "ForwardMap.numerical_error": (FMAP.numerical_error, {"densities": FULL}),
+    "ForwardMap.numerical_error": (FMAP.numerical_error, {"densities": FULL, "corrections": ()}),
     "ForwardMap.derivative": (FMAP.derivative, {"parameter": "alpha_s"}),
-    "ForwardMap.differences": (FMAP.differences, {"parameter": "alpha_s"}),
+    "Operators.derivative": (OPERATORS.derivative, {"parameter": "alpha_s", "threads": 1}),
     "structure_function": (
         sw.structure_function,
         {
@@ -248,6 +253,8 @@ CALLS = {
             "s": None,
             "target_mass": False,
             "subtraction": "damped",
+            "further": {"F2": [{"gluon": OWN}]},
+            "corrections": (),
         }
         | ASKED,
     ),
@@ -256,6 +263,8 @@ CALLS = {
         sw.sum_rule,
         {"name": "Adler", "q2": 2.0, "densities": FULL, "theory": THREE, "electroweak": None},
     ),
+    "CoefficientFunction": (sw.CoefficientFunction, {"regular": lambda z, nf: z, "plus": (), "local": 0.0}),
+    "CoefficientFunction.evaluate": (OWN.evaluate, {"z": [0.5], "nf": 4}),
     "SplittingKernel": (sw.SplittingKernel, {"regular": lambda z, nf: z, "plus": (), "local": 0.0}),
     "SplittingKernel.evaluate": (KERNEL.evaluate, {"z": [0.5], "nf": 4}),
     "splitting_function": (

@@ -9,8 +9,9 @@ import time
 import pytest
 import scalewright as sw
 from cli.conftest import COMMAND
+from cli.fit_case import write_case
 
-COMMANDS = ("demo", "evolve", "info")
+COMMANDS = ("demo", "evolve", "predict", "fit", "closure", "info")
 
 
 def test_help_shows_an_example(run):
@@ -69,12 +70,15 @@ def test_info_names_what_is_not_intact(run, tmp_path, start):
     assert "pipe: cannot be read: not a plain file" in run("info", "pipe", status=1).stderr
 
 
-def test_progress_is_drawn_on_a_terminal_and_taken_away(on_terminal, tmp_path, start):
-    drawn = on_terminal("demo", "--replicas", "2", "--out", "demo")
-    assert "comparing tables [" in drawn
+def test_progress_is_drawn_on_a_terminal_and_taken_away(on_terminal, tmp_path):
+    write_case(tmp_path)
+    text = (tmp_path / "job.toml").read_text().replace('report = "fit.html"', "")
+    (tmp_path / "job.toml").write_text(text)
+    drawn = on_terminal("fit", "job.toml")
+    assert "replicas [" in drawn and "evolving replicas [" in drawn
     assert drawn.endswith("\r\x1b[K")
     assert "\n" not in drawn
-    assert on_terminal("demo", "--replicas", "2", "--out", "demo", "--quiet") == ""
+    assert on_terminal("fit", "job.toml", "--quiet") == ""
 
 
 def test_a_reader_that_leaves_early_is_no_error(tmp_path, start):
@@ -106,7 +110,7 @@ def test_an_interrupt_ends_in_one_line(tmp_path):
         out, said = child.communicate(timeout=60)
     assert child.returncode == 1, (out, said)
     assert said.decode() == "scalewright: interrupted\n"
-    assert not (tmp_path / "demo" / "demo.h5").exists()
+    assert not (tmp_path / "demo" / "fit.h5").exists()
 
 
 @pytest.mark.parametrize(

@@ -126,6 +126,44 @@ def test_pulls_are_differences_over_uncertainties(run, tmp_path, write):
     np.testing.assert_allclose(column(rows, "pull"), pulls, rtol=1e-12)
 
 
+def test_orders_regimes_and_what_is_not_corrected_are_said(run, tmp_path, write):
+    write(
+        ('beam = "e+"', 'beam = "e+"\ntarget = "deuteron"'), ("[output]", "[regimes]\nlow_x = 0.02\n[output]")
+    )
+    done = run("predict", "job.toml")
+    rows = result(tmp_path / "out.csv")
+    assert [row["order of light F2"] for row in rows] == ["NLO"] * 4
+    heavy = [row["order of heavy F2"] for row in rows]
+    assert heavy == ["charm massless NLO, bottom absent"] * 2 + ["massless NLO"] * 2
+    assert {row["order of FL"] for row in rows} == {"a^1"}
+    assert [row["regime"] for row in rows] == ["low x"] * 2 + ["inclusive"] * 2
+    for words in (
+        "no correction for the deuteron (4 rows)",
+        "no higher twist",
+        "regimes      2 low x, 2 inclus",
+    ):
+        assert words in done.stdout, words
+
+
+def test_known_factors_multiply_and_their_uncertainty_is_common(run, tmp_path, start, write):
+    factor = '[[correction]]\nkind = "known factor"\ntarget = "deuteron"\nfile = "factor.csv"\n'
+    write(('beam = "e+"', 'beam = "e+"\ntarget = "deuteron"'), ("[output]", factor + "[output]"))
+    (tmp_path / "factor.csv").write_text("x,factor,model\n0.001,1.0,0.0\n0.3,0.9,0.02\n")
+    done = run("predict", "job.toml")
+    table, plain = expected(tmp_path, start)
+    slope = (table.x - 0.001) / 0.299
+    rows = result(tmp_path / "out.csv")
+    np.testing.assert_allclose(column(rows, "prediction"), plain[0] * (1 - 0.1 * slope), rtol=1e-12)
+    shift = plain[0] * 0.02 * slope
+    chi_square = sw.ChiSquare(table, theory=np.outer(shift, shift))
+    np.testing.assert_allclose(
+        column(rows, "uncertainty"), np.sqrt(np.diagonal(chi_square.covariance)), rtol=1e-12
+    )
+    assert f"{chi_square.value(plain[0] * (1 - 0.1 * slope)):.1f}" in done.stdout
+    assert "R_deuteron: KnownFactor for deuteron, 1 parameter" in done.stdout
+    assert "no correction for the deuteron" not in done.stdout
+
+
 def test_the_reference_may_be_the_prediction(run, tmp_path, start, write):
     write(("[output]", '[chi_square]\nreference = "prediction"\nform = "nuisance"\n[output]'))
     done = run("predict", "job.toml")
@@ -270,6 +308,14 @@ WRONG = {
     "subtraction": (
         [("[output]", '[prediction]\nsubtraction = "dampened"\n[output]')],
         "job.toml: [prediction]: subtraction = 'dampened': subtraction must be one of",
+    ),
+    "a correction of no kind": (
+        [("[output]", '[[correction]]\nkind = "higher twists"\n[output]')],
+        'job.toml: [correction 1]: kind = \'higher twists\': kind must be one of "known factor", "higher',
+    ),
+    "an unknown boundary": (
+        [("[output]", "[regimes]\nlow_q = 2\n[output]")],
+        "job.toml: [regimes] low_q: unknown key",
     ),
     "form": (
         [("[output]", '[chi_square]\nform = "matrix"\n[output]')],

@@ -40,6 +40,23 @@ def moody(x, p):
     return law(x, p)
 
 
+class Twofold(Exception):
+    """Can be sent to another process, but not be read there: it is made from two arguments, kept as one."""
+
+    def __init__(self, first, second):
+        super().__init__(f"{first}, {second}")
+
+
+class Closed:
+    """Can be sent to another process, but not be read there."""
+
+    def __getstate__(self):
+        return {"needs": "a library"}
+
+    def __setstate__(self, state):
+        raise Twofold("no", state["needs"])
+
+
 def run_and_die(journal, after):
     """Fit replicas, and be killed once so many are done."""
     from fitting.problems import fmap
@@ -53,5 +70,21 @@ def run_and_die(journal, after):
     raise SystemExit(f"{fmap()} was not stopped")
 
 
+def run_on_dask_and_die(journal, after, address):
+    """As `run_and_die`, with the workers of a cluster."""
+    from distributed import Client
+    from fitting.runs import bent_problem, replicas_of
+
+    def watch(done, total):
+        if done >= after:
+            os.kill(os.getpid(), signal.SIGKILL)
+
+    with Client(address) as client:
+        replicas_of(bent_problem(), executor=client, chunk=1, journal=journal, progress=watch)
+    raise SystemExit("the run was not stopped")
+
+
 if __name__ == "__main__":
-    run_and_die(sys.argv[1], int(sys.argv[2]))
+    run_and_die(sys.argv[1], int(sys.argv[2])) if len(sys.argv) == 3 else run_on_dask_and_die(
+        sys.argv[1], int(sys.argv[2]), sys.argv[3]
+    )

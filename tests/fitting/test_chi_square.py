@@ -103,6 +103,23 @@ def test_the_nuisance_parameters_are_at_their_minimum(form):
 
 
 @pytest.mark.parametrize("form", ["covariance", "nuisance"])
+def test_shifted_pulls_leave_to_the_theory_what_its_covariance_explains(form):
+    # without it their squares and those of the shifts added up to twice chi-square
+    measured = table(5, matrix=False)
+    prediction = measured.value * np.random.default_rng(1).uniform(0.9, 1.1, len(measured))
+    sigma, shifts = measured.nuisance()
+    wave = 0.1 * measured.value * np.stack([np.ones(len(measured)), np.linspace(-1, 1, len(measured))])
+    both = np.concatenate([shifts, wave.T], axis=1)
+    system = np.concatenate([both / sigma[:, None], np.eye(both.shape[1])])
+    target = np.concatenate([(measured.value - prediction) / sigma, np.zeros(both.shape[1])])
+    best = np.linalg.lstsq(system, target, rcond=None)[0]
+    chi2 = ChiSquare(measured, form, theory=wave.T @ wave)
+    pulls = chi2.pulls(prediction, shifted=True)
+    np.testing.assert_allclose(pulls, (system @ best - target)[: sigma.size] * -1, rtol=1e-8, atol=1e-9)
+    np.testing.assert_allclose(chi2.shifts(prediction), best[: shifts.shape[1]], rtol=1e-8, atol=1e-9)
+
+
+@pytest.mark.parametrize("form", ["covariance", "nuisance"])
 def test_whitening_is_the_root_of_the_inverse(form):
     measured = table(7)
     chi2 = ChiSquare(measured, form)
@@ -187,6 +204,18 @@ def test_one_datum_without_own_error_is_fine_in_the_covariance_form():
     expected = residual @ np.linalg.solve(covariance, residual)
     assert chi2.value(1.0 - residual) == pytest.approx(expected, rel=1e-12)
     assert np.isnan(chi2.pulls(1.0 - residual, shifted=True)).tolist() == [True, False, False]
+
+
+@pytest.mark.filterwarnings("ignore:overflow encountered")
+@pytest.mark.parametrize("form", ["covariance", "nuisance"])
+@pytest.mark.parametrize("unit", [1e-160, 1e156, 1e300])
+def test_uncertainties_whose_squares_are_lost_are_refused(form, unit):
+    # chi-square 1 was 1.012 in the first unit and, in the form "nuisance", 0 in the last
+    points = {"x": [0.1], "q2": [2.0], "value": [1.0 * unit], "stat": [0.1 * unit]}
+    stat = {"column": "stat", "given_in": "value", "scales_with": "nothing"}
+    kind = {"title": "T", "measures": "F2", "exchange": "photon", "uncertainty": [stat]}
+    with pytest.raises(InputError, match="datum 1: its square is no float of full precision"):
+        ChiSquare(Measurements.from_columns(kind, points), form)
 
 
 def test_a_multiplicative_error_of_a_prediction_zero_is_refused():

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 import scalewright as sw
 from scalewright import InputError, StoreError
+from scalewright.fitting import _statistics
 from scalewright.fitting.ensemble import Ensemble
 from scipy import stats
 
@@ -74,6 +75,14 @@ def test_sampling_errors_are_the_spread_over_many_ensembles(law):
         assert errors.mean() == pytest.approx(values.std(ddof=1), rel=0.15), name
 
 
+@pytest.mark.parametrize(("level", "few", "enough"), [(0.95, 38, 40), (0.6827, 5, 6)])
+def test_the_error_of_an_interval_is_unknown_where_replicas_are_too_few(level, few, enough):
+    # 20 normal replicas gave 0.41 of the true spread of the ends of the 95 per cent interval
+    values = np.random.default_rng(1).normal(size=(enough, 1))
+    assert all(end.error > 0 for end in ensemble_of(values).interval("p0", level))
+    assert all(np.isnan(end.error) for end in ensemble_of(values[:few]).interval("p0", level))
+
+
 def test_quantities_have_any_shape():
     ensemble = ensemble_of(drawn(4))
     x = GRID.x[[1, 3, 5]]
@@ -90,6 +99,50 @@ def test_what_does_not_vary_has_no_correlation():
     ensemble = ensemble_of(np.stack([np.arange(5.0), np.full(5, 2.0)], axis=1))
     assert np.isnan(ensemble.correlation("p0", "p1").value)
     assert ensemble.std("p1") == (0.0, 0.0)
+
+
+def test_intervals_of_a_gaussian_are_its_deviations():
+    ensemble = ensemble_of(np.random.default_rng(8).normal(size=4000))
+    # 68.27 and 95.45 per cent: one and two standard deviations of a Gaussian
+    for level, deviations in ((0.6827, 1.0), (0.9545, 2.0)):
+        low, high = ensemble.interval("p0", level)
+        assert abs(low.value + deviations) < 4 * low.error
+        assert abs(high.value - deviations) < 4 * high.error
+
+
+@pytest.mark.parametrize("weighted", [False, True])
+def test_a_matrix_of_correlations_is_every_one_of_them(weighted):
+    rng = np.random.default_rng(9)
+    a, b = rng.normal(size=(300, 2, 3)), rng.normal(size=(300, 4))
+    b[:, 0] = a[:, 0, 0]
+    b[:, 1] += 0.5 * a[:, 1, 2]
+    ensemble = ensemble_of(np.arange(300.0), weights=rng.uniform(size=300) if weighted else None)
+    found = ensemble.correlation_matrix(a, b)
+    one_by_one = ensemble.correlation(a[:, :, :, None], b[:, None, None, :])
+    assert found.value.shape == (2, 3, 4)
+    np.testing.assert_allclose(found.value, one_by_one.value, rtol=1e-12, atol=1e-13)
+    # sums of fourth powers of order one that cancel where the correlation is 1
+    np.testing.assert_allclose(found.error, one_by_one.error, rtol=1e-9, atol=1e-8)
+    alone = ensemble.correlation_matrix("p0")
+    assert alone.value == pytest.approx(1.0, rel=1e-14)
+    rows = ensemble.correlation_matrix(b)
+    np.testing.assert_allclose(rows.value, rows.value.T, rtol=1e-13)
+
+
+def test_statistics_of_many_numbers_are_those_of_each(monkeypatch):
+    values = np.random.default_rng(10).normal(size=(50, 7, 9))
+    ensemble = ensemble_of(np.arange(50.0), weights=np.arange(1.0, 51.0))
+
+    def all_of_them():
+        return [ensemble.mean(values), ensemble.std(values), *ensemble.interval(values, 0.95)]
+
+    whole = all_of_them()
+    monkeypatch.setattr(_statistics, "_ELEMENTS", 500)  # ten columns at a time
+    for one, other in zip(whole, all_of_them(), strict=True):
+        for a, b in zip(one, other, strict=True):
+            np.testing.assert_allclose(a, b, rtol=1e-12, atol=1e-15)
+            assert a.shape == (7, 9)
+    assert ensemble.mean(values[:, :0]).value.shape == (0, 9)
 
 
 # ---- reweighting ---------------------------------------------------------------------------------------
@@ -141,6 +194,33 @@ def test_large_chi_squares_do_not_underflow():
         np.testing.assert_allclose(weights, [0.5, 0.5, 0.0], atol=1e-12)
 
 
+def test_unweighted_replicas_say_what_weighted_ones_did():
+    prior = np.random.default_rng(6).normal(size=4000)
+    weighted = ensemble_of(prior).reweighted(((prior - 1.0) / 0.5) ** 2, "Giele-Keller")
+    plain = weighted.unweighted()
+    assert plain.replicas == int(weighted.effective_replicas)
+    assert plain.effective_replicas == pytest.approx(plain.replicas, rel=1e-12)
+    for what in (plain.mean, plain.std):
+        # Bayes' theorem, as above
+        exact = {plain.mean: 0.8, plain.std: np.sqrt(0.2)}[what]
+        assert abs(what("p0").value - exact) < 4 * what("p0").error
+    # likely replicas several times, with all that belongs to them
+    numbers, times = np.unique(plain.index, return_counts=True)
+    expected = weighted.weights[numbers] * plain.replicas
+    assert (abs(times - expected) <= 1.0).all()
+    np.testing.assert_array_equal(plain.parameters, weighted.parameters[plain.index])
+    np.testing.assert_array_equal(plain.densities.values[:, 0], weighted.densities.values[plain.index, 0])
+
+
+def test_equal_weights_are_unweighted_as_they_are():
+    ensemble = full()
+    equal = Ensemble(ensemble.densities, parameters=ensemble.parameters, names=ensemble.names)
+    assert_equal(equal, equal.unweighted())
+    thrice = equal.unweighted(90)
+    np.testing.assert_array_equal(np.unique(thrice.index, return_counts=True)[1], 3)
+    assert thrice.mean("p0").value == pytest.approx(equal.mean("p0").value, rel=1e-12)
+
+
 # ---- files and words -----------------------------------------------------------------------------------
 
 
@@ -187,6 +267,33 @@ def test_another_kind_of_file_is_refused(tmp_path):
         Ensemble.load(path)
 
 
+def test_a_lattice_holds_replicas_without_weights(tmp_path):
+    ensemble, path = full(), tmp_path / "e.csv"
+    with pytest.raises(InputError, match=r"a lattice holds no weights: write that of unweighted\(\)"):
+        ensemble.to_csv(path)
+    plain = ensemble.unweighted(12)
+    plain.to_csv(path)
+    with pytest.warns(sw.ResolutionWarning, match="g is resolved to"):  # five nodes a panel
+        again = sw.Densities.from_csv(path, GRID)
+    np.testing.assert_array_equal(again.values, plain.densities.values)
+
+
+def few_failed():
+    return ensemble_of(drawn(1, 200), failed={7: "x"})
+
+
+def test_every_summary_warns_of_many_failed_fits():
+    ensemble = full()
+    changed = ensemble.reweighted(np.ones(30), "Giele-Keller", least=1.0).unweighted()
+    for one in (ensemble, changed):
+        for text in (str(one), repr(one), one._repr_html_()):
+            assert "more than 1 per cent" in text
+    few = few_failed()
+    for text in (str(few), repr(few)):
+        assert "more than" not in text
+        assert "1 f" in text
+
+
 def test_ensembles_print_and_pickle():
     ensemble = full()
     text = str(ensemble)
@@ -194,10 +301,10 @@ def test_ensembles_print_and_pickle():
     assert "3 pseudo-data were negative, and kept" in text
     assert "are effective" in text
     assert "sampling" in text
-    assert repr(ensemble) == "Ensemble(30 replicas, 2 parameters, 2 failed)"
+    assert repr(few_failed()) == "Ensemble(200 replicas, 2 parameters, 1 failed)"
     assert ensemble._repr_html_().startswith("<pre>Ensemble")
     assert_equal(ensemble, pickle.loads(pickle.dumps(ensemble)))
-    few = ensemble_of(drawn(1, 200), failed={7: "x"})
+    few = few_failed()
     assert "WARNING" not in str(few)
     assert "1 fits failed and are left out" in str(few)
     for odd in (ensemble_of([[1.0]]), Ensemble(ensemble.densities)):
@@ -214,6 +321,10 @@ def test_an_ensemble_is_carried_to_other_scales():
     np.testing.assert_array_equal(at, ops.apply(densities).at(100.0, [0.1, 0.3], "g"))
     assert ensemble.mean(at).value.shape == (2,)
     assert ensemble.weights[4] == 5 / 15
+    parts = list(Ensemble(densities, weights=[1, 2, 3, 4, 5]).stream(ops, threads=1))
+    assert [part.densities.q2 for part in parts] == [10.0, 100.0]
+    np.testing.assert_array_equal(parts[1].at([0.1, 0.3], "g"), at)
+    np.testing.assert_array_equal(parts[1].weights, ensemble.weights)
 
 
 def test_nothing_can_be_changed():
@@ -238,6 +349,8 @@ WRONG = {
     "one weight": (lambda: ensemble_of(np.ones(3), weights=[0, 1, 0]).std("p0"), "need at least two"),
     "broadcast": (lambda: full().correlation(np.ones((30, 2)), np.ones((30, 3))), "cannot be broadcast"),
     "operators": (lambda: full().evolved(None), "operators must be Operators"),
+    "stream": (lambda: full().stream(None), "operators must be Operators"),
+    "unweighted": (lambda: full().unweighted(0), "replicas must be from 1"),
     "method": (lambda: full().reweighted(np.ones(30), "bayes"), "method must be one of"),
     "chi2": (lambda: full().reweighted(-np.ones(30), "Giele-Keller"), "must not be negative"),
     "chi2 shape": (lambda: full().reweighted(np.ones(3), "Giele-Keller"), "shape"),

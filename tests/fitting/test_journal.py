@@ -9,9 +9,11 @@ import sys
 import numpy as np
 import pytest
 import scalewright as sw
+from fitting.problems import FLAVOURS, GRID, fmap, points, quick_shape, truth
 from fitting.runs import COUNT, assert_same_bits, bent_problem, replicas_of
 from scalewright import StoreError
 from scalewright.fitting import _journal
+from scalewright.fitting.shapes import FunctionShape
 
 
 @pytest.mark.skipif(not hasattr(signal, "SIGKILL"), reason="this system cannot kill")
@@ -70,6 +72,37 @@ def test_a_damaged_record_and_what_follows_is_computed_again(serial, written, tm
     assert_same_bits(serial, found)
 
 
+def small_journal(path):
+    """Write a journal of three replicas of no fit in particular."""
+    fit = {"seed": 1, "start": [1.0, 2.0]}
+    with _journal.Journal(path, fit) as book:
+        book.append([_journal.Outcome(i, np.arange(2.0), 1.0, 2.0, 3, 0, "") for i in range(3)])
+    return fit, path.read_bytes()
+
+
+@pytest.mark.parametrize("zeros", [8, 100, 4096])
+def test_zeros_that_a_power_cut_left_at_the_end_are_dropped(tmp_path, zeros):
+    # eight of them were an empty record of right sum, and the journal could not be opened again
+    path = tmp_path / "run.journal"
+    fit, whole = small_journal(path)
+    path.write_bytes(whole + bytes(zeros))
+    with _journal.Journal(path, fit) as book:
+        assert sorted(book.outcomes) == [0, 1, 2]
+    assert path.read_bytes() == whole
+
+
+def test_a_journal_whose_first_record_is_damaged_is_refused_and_kept(tmp_path):
+    # it was emptied without a word
+    path = tmp_path / "run.journal"
+    fit, whole = small_journal(path)
+    flipped = bytearray(whole)
+    flipped[40] ^= 0x10
+    path.write_bytes(flipped)
+    with pytest.raises(StoreError, match="its first record is damaged"):
+        _journal.Journal(path, fit)
+    assert path.read_bytes() == flipped
+
+
 def test_a_full_journal_is_not_computed_again_and_can_be_extended(serial, written, tmp_path):
     found, known = resumed(tmp_path, written)
     assert known == COUNT
@@ -97,6 +130,43 @@ def test_a_journal_of_another_fit_is_refused_and_kept(written, tmp_path):
         with pytest.raises(StoreError, match="this journal is of another fit"):
             run()
         assert path.read_bytes() == written, name
+
+
+def other_model(kind="nothing", correlated=True):
+    """Return chi-square with a common error of one size and several kinds."""
+    x, q2 = points()
+    value = truth(quick_shape())
+    own = {"name": "own", "size": 0.02, "given_in": "value", "scales_with": "nothing"}
+    common = {"column": "common", "given_in": "value", "scales_with": kind, "correlated": correlated}
+    about = {"title": "Run 1", "measures": "F2", "exchange": "photon", "uncertainty": [own, common]}
+    return sw.ChiSquare(
+        sw.Measurements.from_columns(about, {"x": x, "q2": q2, "value": value, "common": 0.05 * value})
+    )
+
+
+def steeper():
+    """Return a shape of the names, start and prediction there of another one, but not of its slopes."""
+    shape = quick_shape()
+    return FunctionShape(
+        GRID, FLAVOURS, lambda x, p: 2 * shape(p) - shape(shape.start), shape.start, names=shape.names
+    )
+
+
+@pytest.mark.parametrize(
+    ("chi2", "shape"),
+    [
+        (lambda: other_model("value"), quick_shape),
+        (lambda: other_model(correlated=False), quick_shape),
+        (other_model, steeper),
+    ],
+    ids=["multiplicative", "independent", "slopes"],
+)
+def test_a_journal_of_a_fit_with_other_correlations_or_slopes_is_refused(tmp_path, chi2, shape):
+    # equal values, errors, start and prediction there: replicas of two fits were mixed
+    path, begin = tmp_path / "run.journal", quick_shape().start
+    replicas_of((fmap(), other_model(), quick_shape()), 2, workers=1, journal=path, start=begin)
+    with pytest.raises(StoreError, match="this journal is of another fit"):
+        replicas_of((fmap(), chi2(), shape()), 4, workers=1, journal=path, start=begin)
 
 
 def test_a_file_that_is_no_journal_is_refused_and_kept(tmp_path):

@@ -16,6 +16,7 @@ from fitting.problems import (
     linear_shape,
     measured,
     points,
+    quick_shape,
     truth,
     twin_shape,
 )
@@ -265,6 +266,16 @@ def test_a_callback_watches_and_stops(bent):
     assert result.chi2 == pytest.approx(seen[-1][1], rel=1e-12)
 
 
+def test_a_shape_without_free_parameters_has_a_chi_square_and_nothing_else():
+    # this was a ValueError of numpy
+    shape = quick_shape().restricted(fixed=["a", "b", "c"])
+    chi2 = chi_square(truth(quick_shape()), seed=1)
+    result = fit(fmap(), chi2, shape)
+    assert result.converged and result.names == ()
+    assert result.chi2 == pytest.approx(chi2.value(truth(quick_shape())), rel=1e-12)
+    assert result.covariance.shape == (0, 0)
+
+
 def test_a_start_at_the_minimum_stays_there(bent):
     shape, chi2, first = bent
     result = fit(fmap(), chi2, shape, start=first.parameters)
@@ -325,6 +336,9 @@ WRONG = {
     "start": (lambda: fitted(start=[1.0]), "the shape of start must be"),
     "start nan": (lambda: fitted(start=np.full(6, np.nan)), "start must be finite"),
     "start unknown": (lambda: fitted(start={"g.c": 1.0}), "no free parameter of this name"),
+    # these were an AssertionError, and a ValueError of scipy
+    "start far": (lambda: fitted(start={"dbar.c0": 1e300}), "start: chi-square is not finite"),
+    "start infinite": (lambda: fitted(start={"dbar.c0": 1e308}), "start: chi-square is not finite"),
     "start out": (
         lambda: fit(fmap(), chi_square(truth(bent_shape())), bent_shape(), start={"g.fall": -3}),
         r"start\[g.fall\] = -3: must lie in",

@@ -170,6 +170,14 @@ def test_restrictions_can_be_stacked():
     assert len(twice.names) == len(power_law().names) - 2
 
 
+def test_a_prior_of_what_is_tied_later_is_not_forgotten():
+    known = power_law().restricted(priors={"ubar.power": (-0.1, 0.01)})
+    with pytest.raises(InputError, match=r"tied = 'ubar.power': it has a prior"):
+        known.restricted(tied={"ubar.power": "dbar.power"})
+    assert known.restricted(tied={"dbar.power": "ubar.power"}).priors == {"ubar.power": (-0.1, 0.01)}
+    assert known.restricted(fixed=["ubar.power"]).priors == {}  # a constant of chi-square
+
+
 @pytest.mark.parametrize("name", SHAPES)
 def test_shapes_can_be_pickled(name):
     shape = SHAPES[name]

@@ -13,6 +13,7 @@ PUBLIC = [
     "Below",
     "ChebyshevGrid",
     "ChiSquare",
+    "CoefficientFunction",
     "Coupling",
     "Densities",
     "Electroweak",

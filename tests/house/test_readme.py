@@ -11,7 +11,7 @@ from house.tree import README, ROOT
 
 DEVELOPERS = ROOT / "DEVELOPERS.md"
 BLOCK = re.compile(r"^```(\w+)\n(.*?)^```$", re.MULTILINE | re.DOTALL)
-COMMANDS = ("demo", "evolve", "predict", "info")
+COMMANDS = ("demo", "evolve", "predict", "fit", "closure", "info")
 
 
 def blocks(path: Path, language: str) -> list[str]:

@@ -164,6 +164,33 @@ def test_a_mistake_in_columns_is_named(make, points, matrices, changes, message)
         make(points, matrices, **changes)
 
 
+#: A word in a column, and what is said.
+WORDS = [
+    ("measures", "F4", "must be one of"),
+    ("current", "weak", 'must be one of "neutral", "charged"'),
+    ("exchange", "Z", 'must be one of "photon", "photon+Z", "W"'),
+    ("beam", "e", 'must be one of "e-", "e+"'),
+    ("target", "lead", 'must be one of "proton"'),
+    ("target", "z=3 a=2", "or z and a with 0 <= z <= a"),
+    ("tagged", "top", 'must be one of "charm", "bottom"'),
+]
+
+
+@pytest.mark.parametrize(("key", "word", "allowed"), WORDS)
+def test_a_wrong_word_in_a_column_is_named_by_line_and_column(run, key, word, allowed):
+    csv = run.with_suffix(".csv")
+    lines = CSV.splitlines()
+    head = next(line for line in TOML.splitlines() if line.startswith("[columns]"))
+    kept = [line for line in TOML.splitlines() if not line.startswith(key)]
+    run.write_text("\n".join(kept).replace(head, f'{head}\n{key} = "words"'))
+    good = {"measures": "F2", "current": "neutral", "exchange": "photon", "beam": "e+", "target": "proton"}
+    words = ["words", good.get(key, ""), *[word] * (len(lines) - 2)]
+    csv.write_text("\n".join(f"{line},{w}" for line, w in zip(lines, words, strict=True)) + "\n")
+    with pytest.raises(InputError, match=re.escape(f"{csv}: line 3, column words = ")) as caught:
+        Measurements.read(run)
+    assert allowed in str(caught.value)
+
+
 LABELS = [
     (("low = 0.25", "lo = 0.25"), None, "[datum 1] numerator: no row 'lo'; did you mean \"low\"?"),
     (

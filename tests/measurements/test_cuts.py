@@ -38,6 +38,11 @@ def test_a_cut_that_removes_nothing_still_counts(make):
     assert kept == make() and [cut.removed for cut in kept.cuts] == [0]
 
 
+def test_a_reason_in_the_words_of_a_limit_does_not_undo_the_limit(make):
+    kept = make().cut(x=(None, 0.25), keep=[False, True, True], reason="x <= 0.25")
+    assert kept.value.tolist() == [2.0] and [cut.removed for cut in kept.cuts] == [2]
+
+
 @pytest.mark.parametrize(
     ("limits", "message"),
     [

@@ -108,6 +108,19 @@ def test_a_repair_is_reported(make):
     assert "repaired: an eigenvalue moved by" in make(None, [BROKEN], covariance=[part]).describe()
 
 
+@pytest.mark.parametrize("repair", ["clip", "nearest"])
+def test_a_rounded_covariance_beyond_correlation_one_is_repaired_on_request(make, repair):
+    # variances 0.00994 and 0.01004, correlation 0.9999: printed with two digits the correlation is 1.005
+    matrix = np.array([[0.0099, 0.01], [0.01, 0.01]])
+    kind = {"kind": "covariance", "given_in": "value", "scales_with": "nothing", "repair": repair}
+    points = {"x": [0.1, 0.2], "q2": [1.0, 1.0], "value": [1.0, 2.0], "stat": [0.1, 0.1]}
+    table = make(points, [matrix], covariance=[kind])
+    # the nearest matrix of unit diagonal and no negative eigenvalue has correlation 1
+    size = np.sqrt([0.0099, 0.01])
+    np.testing.assert_allclose(table.covariance(), np.outer(size, size) + 0.01 * np.eye(2), rtol=1e-9)
+    assert "repaired: an eigenvalue moved by 0.00504" in table.describe()
+
+
 def test_rounding_below_zero_is_no_reason_to_refuse(make):
     ones = np.ones((3, 3))  # eigenvalues 3, 0, 0 in exact arithmetic, and about -1e-16 here
     table = make(None, [ones], covariance=[{"kind": "correlation", "of": "stat"}])
@@ -133,3 +146,20 @@ def test_independent_part_and_sources_rebuild_the_matrix():
     own, shifts = part.nuisance(np.full(6, 2.0))
     assert (own > 0.0).all()
     np.testing.assert_allclose(np.diag(own) + shifts @ shifts.T, 4.0 * full, rtol=1e-12)  # eigensystem of 6
+
+
+def test_what_is_drawn_does_not_depend_on_the_choice_of_eigenvectors(monkeypatch):
+    # equal correlations have one eigenvalue n - 1 times: any basis of that space is as good, and another
+    # number of threads gives another one; replicas of one seed were other replicas then
+    matrix = np.full((5, 5), 0.3) + 0.7 * np.eye(5)
+    plain = Correlated("m", np.ones(5), matrix, False).draw(np.random.default_rng(1), (4, 5))
+    eigh = np.linalg.eigh
+
+    def turned(one):
+        values, vectors = eigh(one)
+        mix = np.linalg.qr(np.random.default_rng(2).normal(size=(4, 4)))[0]
+        return values, np.concatenate([vectors[:, :4] @ mix, -vectors[:, 4:]], axis=1)
+
+    monkeypatch.setattr(np.linalg, "eigh", turned)
+    again = Correlated("m", np.ones(5), matrix, False).draw(np.random.default_rng(1), (4, 5))
+    np.testing.assert_allclose(again, plain, rtol=0, atol=1e-14)  # sums of five numbers of order one

@@ -57,6 +57,16 @@ def test_common_sources_move_all_tables_together(make):
     assert abs(factor[0] - 1.0) > 1e-3
 
 
+def test_two_columns_of_one_source_multiply_once(make):
+    # 1 + (sum of sizes) b, as the covariance has it: as a product of two factors the mean of
+    # pseudo-data was moved by the product of the sizes, here by a quarter
+    half = {"size": 50.0, "given_in": "percent", "scales_with": "value", "shared_as": "l"}
+    twice = make(uncertainty=[half | {"name": "one"}, half | {"name": "two"}])
+    once = make(uncertainty=[half | {"name": "both", "size": 100.0}])
+    drawn, same = (table.pseudo_data(np.random.default_rng(1), replicas=5).values for table in (twice, once))
+    np.testing.assert_allclose(drawn, same, rtol=1e-14)
+
+
 def test_negative_values_are_kept_and_counted(make):
     table = make(uncertainty=[{"name": "a", "size": 10.0, "given_in": "value", "scales_with": "nothing"}])
     drawn = table.pseudo_data(np.random.default_rng(3), replicas=200)

@@ -127,3 +127,25 @@ def test_massive_with_a_variable_number_of_flavours_is_refused():
         sw.InputError, match=r'flavours = .3, 5.: heavy_quarks="massive" needs a fixed number'
     ):
         sw.Theory(heavy_quarks="massive")
+
+
+@pytest.mark.parametrize(
+    ("scheme", "flavours"), [("matched", (3, 5)), ("massive", 3), ("massless", (3, 5))]
+)  # fmt: skip
+def test_an_intrinsic_heavy_input_is_refused(grid, start, scheme, flavours):
+    theory = sw.Theory(order="NLO", heavy_quarks=scheme, flavours=flavours)
+    values = np.concatenate([start.values, start.values[:, -2:]], axis=1)
+    charmed = sw.Densities(grid, q2=1.5, nf=3, flavours=(*start.flavours, 4, -4), values=values)
+    message = (
+        r"densities.flavours = 4: not active at nf = 3 and not zero: an intrinsic heavy input is not impl"
+    )
+    rows = SimpleNamespace(x=[0.1], q2=[20.0], measure="F2", exchange="photon")
+    fmap = sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
+    with pytest.raises(sw.InputError, match=message):
+        fmap.predict(charmed)
+    with pytest.raises(sw.InputError, match=message):
+        sw.structure_function("F2", x=0.1, q2=1.5, densities=charmed, theory=theory, exchange="photon")
+    # zeros are no input
+    silent = np.concatenate([start.values, 0.0 * start.values[:, -2:]], axis=1)
+    none = sw.Densities(grid, q2=1.5, nf=3, flavours=(*start.flavours, 4, -4), values=silent)
+    np.testing.assert_array_equal(fmap.predict(none), fmap.predict(start))

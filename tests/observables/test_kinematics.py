@@ -26,6 +26,18 @@ def test_regimes_have_the_boundaries_that_are_asked_for():
     assert str(everything) == "2 inclusive"
 
 
+def test_limits_of_x_are_where_y_is_one_and_w2_the_least():
+    q2, s = np.array([2.0, 300.0, 9e4]), 1e5
+    low, high = kinematics.x_limits(q2, s, w2=12.5)
+    np.testing.assert_allclose(kinematics.inelasticity(low * (1 + 1e-14), q2, s), 1.0, rtol=1e-13)
+    np.testing.assert_allclose(kinematics.invariant_mass2(high, q2), 12.5, rtol=1e-10)
+    assert (kinematics.x_limits(q2, s)[1] == 1.0).all()  # elastic
+    with pytest.raises(sw.InputError, match=r"w2 = 0.5: w2 must lie in \[0.88"):
+        kinematics.x_limits(q2, s, w2=0.5)
+    with pytest.raises(sw.InputError, match=r"q2 = 0 at index 1"):
+        kinematics.x_limits([1.0, 0.0], s)
+
+
 def test_bad_kinematics_are_refused():
     with pytest.raises(
         sw.InputError, match=r"y = 2.* at index 1: y = Q\^2/\(x \(s - m_p\^2\)\) must lie in \(0, 1\]"

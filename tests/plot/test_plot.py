@@ -7,7 +7,7 @@ import scalewright as sw
 matplotlib = pytest.importorskip("matplotlib")
 matplotlib.use("Agg")
 from matplotlib import pyplot as plt  # noqa: E402
-from scalewright.plot import demo_picture, plot_against_q2, plot_densities  # noqa: E402
+from scalewright.plot import plot_against_q2, plot_densities  # noqa: E402
 
 
 @pytest.fixture(autouse=True)
@@ -94,14 +94,3 @@ def test_what_is_not_densities_is_named():
         plot_densities(3)
     with pytest.raises(sw.InputError, match="densities must be Densities, not int"):
         plot_against_q2(3, "g", [0.1])
-
-
-def test_the_picture_of_the_demo_is_a_png_without_a_window(grid, tmp_path):
-    rng = np.random.default_rng(1)
-    flavours = (21, 1, -1, 2, -2, 3, -3)
-    values = rng.uniform(size=(1, 4, 7, grid.nodes))
-    start = sw.Densities(grid, q2=2.0, nf=3, flavours=flavours, values=values[0])
-    evolved = sw.Densities(grid, q2=[1e4], nf=[3], flavours=flavours, values=values)
-    demo_picture(start, evolved, tmp_path / "a.png")
-    assert (tmp_path / "a.png").read_bytes().startswith(b"\x89PNG\r\n\x1a\n")
-    assert plt.get_fignums() == []

@@ -9,6 +9,7 @@ use scalewright_core::coupling::beta::beta;
 use scalewright_core::coupling::decoupling::Decoupling;
 use scalewright_core::coupling::masses::MassKind;
 use scalewright_core::coupling::running::{ALPHA_S_LIMIT, Running};
+use scalewright_core::coupling::sensitivity::Parameter;
 use scalewright_core::numerics::gauss_legendre::gauss_legendre;
 use scalewright_core::theory::{Assumptions, Theory};
 use settings::{KINDS, at_the_z, benchmark, close};
@@ -25,6 +26,38 @@ fn alpha_s_agrees_with_the_published_benchmark() {
         let b = Theory::new(benchmark(order, 3, 5, 3)).unwrap().alpha_s(1e4, 5).unwrap();
         assert!((a - fixed[order]).abs() < 5e-7, "order {order}: {a}");
         assert!((b - variable[order]).abs() < 5e-7, "order {order}: {b}");
+    }
+}
+
+/// At one loop `1/a` runs linearly and nothing jumps: `d alpha_s(mu)/d alpha_s(given) = (alpha_s(mu)/alpha_s(given))^2`
+/// through any thresholds, and masses do not enter. Tolerance: rounding of some ten factors.
+#[test]
+fn at_one_loop_the_derivative_is_the_squared_ratio() {
+    let theory = Theory::new(at_the_z(1, MassKind::Pole)).unwrap();
+    for (mu2, nf) in [(1.5, 3), (10.0, 4), (8315.0, 5), (1e6, 6)] {
+        let ratio = theory.alpha_s(mu2, nf).unwrap() / 0.118;
+        close(theory.alpha_s_derivative(Parameter::AlphaS, mu2, nf).unwrap(), ratio * ratio, 1e-13);
+        for heavy in 4..=6 {
+            let slope = theory.alpha_s_derivative(Parameter::Mass(heavy), mu2, nf).unwrap();
+            assert!(slope.abs() < 1e-18, "{slope}");
+        }
+    }
+}
+
+/// The beta function of nf + 1 flavours at the upward relation is the total derivative of that relation, to the order
+/// that running with `loops` loops keeps: what is left falls like `a^(loops+1)`.
+#[test]
+fn slopes_of_the_step_agree_with_running_on_both_sides() {
+    for loops in 2..=5 {
+        let left = |a: f64| {
+            let step = Decoupling::new(4, loops, MassKind::Pole, 0.7);
+            let (below, above) = (Running::new(4, loops), Running::new(5, loops));
+            let total = step.by_logarithm(a) + step.by_coupling(a) * below.slope(a);
+            (total - above.slope(step.up(a).unwrap())).abs()
+        };
+        // Halved coupling, at least as many powers of a half; the next power is not yet negligible.
+        let falls = (left(4e-3) / left(2e-3)).log2();
+        assert!((falls - (loops + 1) as f64).abs() < 0.5, "{loops} loops: a^{falls}");
     }
 }
 

@@ -2,7 +2,8 @@
 
 use scalewright_core::numerics::blocks::{Factors, Matrix, multiply_add};
 use scalewright_core::numerics::chebyshev::{Nodes, coefficients};
-use scalewright_core::numerics::matrix_ode::{Span, Step};
+use scalewright_core::numerics::left_product::{Rows, Sampled, Way, multiply_left, runs};
+use scalewright_core::numerics::matrix_ode::{Dense, Span, Step};
 
 /// Asserts that every entry differs by at most `tolerance`.
 #[track_caller]
@@ -105,6 +106,56 @@ fn each_sweep_gains_and_the_estimate_tells() {
         before = estimate;
     }
     assert!(before < 1e-6, "{before}");
+}
+
+/// Values at the nodes of rows from `first` on.
+fn rows_from(solution: &Dense, first: usize, cols: usize) -> Matrix {
+    let count = solution.nodes().points().len();
+    let values: Vec<f64> = (0..count).flat_map(|node| solution.values_at(node)[first * cols..].to_vec()).collect();
+    let size = values.len() / count;
+    Matrix::from_values(count, size, values)
+}
+
+/// Rows at their own `s` times `exp(s [[-2, 0], [3, 1]])`, whichever way; a row that ends after the first entry, and the
+/// columns of the second panel, whose first row is zero. Rounding of numbers up to 10.
+#[test]
+fn rows_from_the_left_find_the_exponential_at_their_own_place() {
+    let step = Step::new(&span(0.0, 1.0, 24), &[0, 1, 2], |_| matrix([[-2.0, 0.0], [3.0, 1.0]]));
+    let s = [0.2, 0.2, 0.7, 0.9];
+    let values = Matrix::from_values(4, 2, vec![1.0, 0.0, 2.0, -1.0, 0.5, 3.0, -1.0, 1.0]);
+    let product = |row: usize, column: usize| {
+        let solution = exponential(s[row], -2.0, 1.0, 3.0);
+        values.row(row)[0] * solution[column] + values.row(row)[1] * solution[2 + column]
+    };
+    let (whole, second) =
+        (step.solve(&Matrix::identity(2), 0, 0), step.solve(&Matrix::from_values(2, 1, vec![0.0, 1.0]), 1, 0));
+    let (whole_rows, second_rows) = (rows_from(&whole, 0, 2), rows_from(&second, 1, 1));
+    for way in [Way::Evaluated, Way::AtNodes] {
+        let rows = Rows { s: &s, ends: &[1, 2, 2, 2], values: &values, way };
+        let mut target = Matrix::zeros(4, 2);
+        Sampled { nodes: whole.nodes(), values: &whole_rows, first: 0, cols: 2 }.multiply_left(&rows, &mut target);
+        let expected: Vec<f64> = (0..4).flat_map(|row| [product(row, 0), product(row, 1)]).collect();
+        assert_near(target.values(), &expected, 1e-12);
+        let mut target = Matrix::zeros(4, 1);
+        Sampled { nodes: second.nodes(), values: &second_rows, first: 1, cols: 1 }.multiply_left(&rows, &mut target);
+        let expected: Vec<f64> = (0..4).map(|row| product(row, 1)).collect();
+        assert_near(target.values(), &expected, 1e-12);
+    }
+    let rows = Rows { s: &s, ends: &[1, 2, 2, 2], values: &values, way: Way::AtNodes };
+    let constant = matrix([[1.0, 0.0], [4.0, 2.0]]);
+    let mut target = Matrix::zeros(4, 2);
+    multiply_left(constant.part(0..2, 0..2), 0, &rows, &mut target);
+    assert_near(target.values(), &[1.0, 0.0, -2.0, -2.0, 12.5, 6.0, 3.0, 2.0], 1e-14);
+    // Its first column alone, from the second row on.
+    let mut target = Matrix::zeros(4, 1);
+    multiply_left(constant.part(1..2, 0..2), 1, &rows, &mut target);
+    assert_near(target.values(), &[0.0, -4.0, 12.0, 4.0], 1e-14);
+}
+
+#[test]
+fn runs_are_neighbours_that_are_equal() {
+    assert_eq!(runs(&[3, 3, 1, 3]).collect::<Vec<_>>(), [0..2, 2..3, 3..4]);
+    assert_eq!(runs::<usize>(&[]).count(), 0);
 }
 
 /// An overflowing solution is no accurate one.

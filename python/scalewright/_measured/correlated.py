@@ -69,25 +69,30 @@ class Correlated:
         return size[:, None] * self.matrix * size
 
     @cached_property
-    def _parts(self) -> tuple[float, Floats]:
-        """Return c and A (datum, source) with R = c + A A^T: each datum for itself, and the rest."""
+    def _parts(self) -> tuple[float, Floats, Floats]:
+        """Return c and A (datum, source) with R = c + A A^T, each datum for itself and the rest; and |A|.
+
+        The last is the symmetric root of A A^T: unlike A it does not depend on the choice of eigenvectors,
+        which is another on every machine where eigenvalues are equal.
+        """
         values, vectors = np.linalg.eigh(self.matrix)
         # Half of the smallest eigenvalue: the larger c, the better both forms of chi-square agree, but the
         # rest must stay safely positive.
         own = 0.5 * max(float(values[0]), 0.0)
         own = own if own > _rounding(values) else 0.0
-        return own, vectors * np.sqrt(np.clip(values - own, 0.0, None))
+        shifts = vectors * np.sqrt(np.clip(values - own, 0.0, None))
+        return own, shifts, shifts @ vectors.T
 
     def nuisance(self, reference: Floats) -> tuple[Floats, Floats]:
         """Return variances of independent errors (datum,) and shifts (datum, source) of equal covariance."""
-        own, shifts = self._parts
+        own, shifts, _ = self._parts
         size = self.at(reference)
         return own * size**2, size[:, None] * shifts
 
     def draw(self, rng: np.random.Generator, shape: tuple[int, int]) -> Floats:
         """Return normal numbers of unit variance with these correlations, (replica, datum)."""
-        own, shifts = self._parts
-        drawn: Floats = np.sqrt(own) * rng.standard_normal(shape) + rng.standard_normal(shape) @ shifts.T
+        own, _, root = self._parts
+        drawn: Floats = np.sqrt(own) * rng.standard_normal(shape) + rng.standard_normal(shape) @ root
         return drawn
 
 
@@ -95,7 +100,9 @@ def _rounding(values: Floats) -> float:
     return float(_ROUNDING * values.size * np.finfo(float).eps * max(float(values[-1]), 0.0))
 
 
-def correlations(matrix: Floats, place: Callable[[int], str]) -> tuple[Floats, Floats]:
+def correlations(
+    matrix: Floats, place: Callable[[int], str], *, repair: str | None = None
+) -> tuple[Floats, Floats]:
     """Take a covariance matrix apart into standard deviations and correlations.
 
     Parameters
@@ -104,6 +111,8 @@ def correlations(matrix: Floats, place: Callable[[int], str]) -> tuple[Floats, F
         As it was read.
     place : callable
         Number of a row -> where it stands, for messages.
+    repair : str, optional
+        What will be done with it; without, correlations must lie in [-1, 1].
 
     Returns
     -------
@@ -131,7 +140,9 @@ def correlations(matrix: Floats, place: Callable[[int], str]) -> tuple[Floats, F
         raise InputError(f"{place(row)}, column {column + 1}: {what}")
     result = 0.5 * (scaled + scaled.T)
     np.fill_diagonal(result, 1.0)
-    for row, column in np.argwhere(np.abs(result) > 1.0 + _MIRRORED)[:1]:
+    # covariances of few digits may say 1.01 where the correlation is 0.999: a repair mends that, too
+    beyond = np.abs(result) > 1.0 + _MIRRORED
+    for row, column in np.argwhere(beyond)[: 1 if repair is None else 0]:
         what = f"correlation {show(result[row, column])} with row {column + 1}: must lie in [-1, 1]"
         raise InputError(f"{place(row)}: {what}")
     return size, result

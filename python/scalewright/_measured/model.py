@@ -89,18 +89,23 @@ def nuisance(tables: Sequence[Table], reference: Floats) -> tuple[Floats, Floats
 
 
 def pseudo_data(tables: Sequence[Table], rng: np.random.Generator, truth: Floats, replicas: int) -> Floats:
-    """Return (replica, datum): (truth + additive shifts) times the product of (1 + multiplicative ones)."""
+    """Return (replica, datum): (truth + additive shifts) times the product over sources of (1 + shift)."""
     names = shared_sources(tables)
     drawn = dict(zip(names, rng.standard_normal((len(names), replicas, 1)), strict=True))
     shift, factor = np.zeros((replicas, truth.size)), np.ones((replicas, truth.size))
     for table, where in _slices(tables):
         parts: list[Uncertainty | Correlated] = [*table.uncertainties, *table.correlated]
+        factors: dict[object, Floats] = {}
         for part in parts:
             moves = part.size * _draws(part, drawn, rng, (replicas, len(table)))
             if part.multiplicative:
-                factor[:, where] *= 1.0 + moves
+                # columns of one source are one error, of the sum of their sizes, as in the covariance
+                one = getattr(part, "source", None) or part
+                factors[one] = factors[one] + moves if one in factors else moves
             else:
                 shift[:, where] += moves
+        for moves in factors.values():
+            factor[:, where] *= 1.0 + moves
     return (truth + shift) * factor
 
 

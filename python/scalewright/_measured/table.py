@@ -151,7 +151,10 @@ class Table:
         """Return what one matrix says; the uncertainty that it correlates is taken out of `found`."""
         name = str(part.text("name", None) or part.text("file"))
         kind = choice(part, "kind", ("covariance", "correlation"))
-        size, correlations = _correlated.correlations(matrix, lambda row: f"{name}: row {row + 1}")
+        repair = choice(part, "repair", _correlated.REPAIRS, default=None)
+        size, correlations = _correlated.correlations(
+            matrix, lambda row: f"{name}: row {row + 1}", repair=repair
+        )
         if kind == "correlation":
             for key in ("given_in", "scales_with"):
                 if part.get(key, None) is not None:
@@ -173,7 +176,6 @@ class Table:
                 for row in np.flatnonzero((printed == 0.0) & (size != 0.0))[:1]:
                     raise InputError(f"{self.place(row)}: {name} scales with the value, which is 0")
                 size = size / np.where(printed == 0.0, 1.0, printed)
-        repair = choice(part, "repair", _correlated.REPAIRS, default=None)
         mended, moved = _correlated.repaired(correlations, repair, name)
         return Correlated(name, size, mended, multiplicative, moved)
 

@@ -1,22 +1,33 @@
-"""The matrix of a table: rows of all points carried back to the input, scale by scale in bounded memory."""
+"""The matrix of a table: rows of all points carried back to the input, some points at a time.
+
+The operators of single scales are never made: the compiled core multiplies rows by what it holds of the
+evolution, so that memory is that of the rows of some points and the time next to independent of the number of
+scales.
+"""
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
+from functools import partial
+from typing import TypeAlias
 
 import numpy as np
 
+from .._carry import thread_count
 from .._check import Floats, Integers
+from .._route import Live
 from ..build import build_operators
 from ..operators import Operators
 from .point_rows import point_rows
 from .problem import Problem
-from .pullback import flavour_rows, pulled_back
+from .pullback import CHANNELS
 
-__all__ = ["carried_matrix", "scale_groups"]
+__all__ = ["built", "carried", "carried_matrix", "live", "scale_groups", "with_target"]
 
-#: Scales whose operators are held at a time, and points whose rows are unless one scale has more: some 30 MB.
-_SCALES, _POINTS = 32, 512
+RowsOf: TypeAlias = Callable[[Integers, int, Floats], Floats]
+
+#: Points whose rows are held at a time: some 4 MB.
+_POINTS = 512
 
 
 def scale_groups(problem: Problem) -> tuple[Floats, Integers, Integers]:
@@ -47,8 +58,24 @@ def carried_matrix(
     matrix : ndarray, (row, flavour, node)
     operators : Operators
     """
-    q2, nf, group = scale_groups(problem)
-    operators = build_operators(
+    operators = built(problem, start_q2=start_q2, start_nf=start_nf, tolerance=tolerance, threads=threads)
+    rows = partial(point_rows, problem)
+    return carried(problem, live(operators), operators._route.active, rows, threads), operators
+
+
+def live(operators: Operators) -> Live:
+    """Return the solution that `build_operators` has made."""
+    source = operators._source
+    assert isinstance(source, Live)
+    return source
+
+
+def built(
+    problem: Problem, *, start_q2: float, start_nf: int | None, tolerance: float | None, threads: int | None
+) -> Operators:
+    """Return operators that serve the scales of all points."""
+    q2, nf, _ = scale_groups(problem)
+    return build_operators(
         problem.theory,
         problem.grid,
         start_q2=start_q2,
@@ -58,39 +85,52 @@ def carried_matrix(
         tolerance=tolerance,
         threads=threads,
     )
-    flavours = operators._route.active
+
+
+def carried(
+    problem: Problem, source: Live, flavours: tuple[int, ...], rows: RowsOf, threads: int | None
+) -> Floats:
+    """Return the matrix (row, flavour, node) on the input of rows at the scales of their points.
+
+    Parameters
+    ----------
+    problem : Problem
+    source : Live
+        Operators that `build_operators` has made, or their derivative.
+    flavours : tuple of int
+        PDG numbers of the input.
+    rows : callable
+        (points, number of flavours, where to write) -> (point, 13, node): `point_rows`, or a derivative.
+    threads : int, optional
+        As for `build_operators`.
+    """
+    q2, nf, group = scale_groups(problem)
     matrix = np.empty((len(problem.points), len(flavours), problem.grid.nodes))
-    members = [np.flatnonzero(group == scale) for scale in range(q2.size)]
-    for chunk in _chunks(nf, [part.size for part in members]):
-        blocks, _ = operators._source.at(q2[chunk], nf[chunk], 0)
-        together = np.concatenate([members[scale] for scale in chunk])
-        rows = point_rows(problem, together, int(nf[chunk[0]]))
-        start = 0
-        for place, scale in enumerate(chunk):
-            named = dict(zip(operators.block_names, blocks[place], strict=True))
-            some = members[scale]
-            back = pulled_back(rows[start : start + some.size], named, operators.light)
-            back = flavour_rows(back, flavours)
-            matrix[some] = with_target(back, problem.points.protons[some], flavours)
-            start += some.size
-    return matrix, operators
+    room = np.empty((min(_POINTS, group.size), CHANNELS, problem.grid.nodes))
+    for members in _chunks(nf, group):
+        scales, scale_of = np.unique(group[members], return_inverse=True)
+        of_points = rows(members, int(nf[scales[0]]), room[: members.size])
+        source.evolution.pull_back(
+            of_points,
+            q2=q2[scales],
+            nf=nf[scales],
+            scale_of=scale_of.astype(np.int64),
+            protons=problem.points.protons[members],
+            flavours=np.asarray(flavours, dtype=np.int64),
+            places=members,
+            out=matrix,
+            threads=thread_count(threads),
+        )
+    return matrix
 
 
-def _chunks(nf: Integers, sizes: list[int]) -> Iterator[Integers]:
-    """Yield scales that share a number of flavours, few enough to hold their operators and rows at once."""
-    start = 0
-    while start < nf.size:
-        end, points = start + 1, sizes[start]
-        while (
-            end < nf.size
-            and nf[end] == nf[start]
-            and end - start < _SCALES
-            and points + sizes[end] <= _POINTS
-        ):
-            points += sizes[end]
-            end += 1
-        yield np.arange(start, end)
-        start = end
+def _chunks(nf: Integers, group: Integers) -> Iterator[Integers]:
+    """Yield points that share a number of flavours, by growing scale, few enough to hold their rows."""
+    order = np.argsort(group, kind="stable")
+    for count in np.unique(nf):
+        some = order[nf[group[order]] == count]
+        for start in range(0, some.size, _POINTS):
+            yield some[start : start + _POINTS]
 
 
 def with_target(rows: Floats, protons: Floats, flavours: tuple[int, ...]) -> Floats:

@@ -32,7 +32,7 @@ def single_rows(
     shares: Floats,
     x: Floats,
     q2: Floats,
-    a: Floats,
+    powers: Floats,
     nf: int,
     mass: float,
     negative: Booleans,
@@ -44,7 +44,9 @@ def single_rows(
     setting : Setting
     shares : ndarray, (point, 3)
         Weights of F2, FL, xF3 in what is measured.
-    x, q2, a : ndarray, (point,)
+    x, q2 : ndarray, (point,)
+    powers : ndarray, (point, power)
+        a(mu_r)^k, k = 0 and 1, or its derivative.
     nf : int
         Active flavours: charm comes from d and s, and from b where that is active.
     mass : float
@@ -61,6 +63,7 @@ def single_rows(
     open_ = xi < 1.0
     at_xi[open_] = grid.cardinals(xi[open_])
     t = -float(np.log(setting.muf2_ratio))
+    zeroth, first = _two(powers)
     quark_part, gluon_part = (np.zeros((x.size, grid.nodes)) for _ in range(2))
     flipped_quark, flipped_gluon = (np.zeros((x.size, grid.nodes)) for _ in range(2))
     p_qq, p_qg = splitting(grid, 0, "ns+", nf), splitting(grid, 0, "qg", nf) / (2.0 * nf)
@@ -71,15 +74,15 @@ def single_rows(
         if not share.any():
             continue
         leading = factor[:, np.newaxis] * at_xi
-        quark, gluon = leading, np.zeros_like(leading)
+        quark, gluon = zeroth * leading, np.zeros_like(leading)
         if setting.highest[function] >= 1:
             name = function.removeprefix("x")
             parts = [
                 _core.massive_rows(grid.handle(), f"charged {name} {of}", x, q2, mass)
                 for of in ("quark", "gluon")
             ]
-            quark = leading + a[:, np.newaxis] * (parts[0] + t * leading @ p_qq)
-            gluon = a[:, np.newaxis] * (parts[1] + t * leading @ p_qg)
+            quark = quark + first * (parts[0] + t * leading @ p_qq)
+            gluon = first * (parts[1] + t * leading @ p_qg)
         if function == "xF3":
             flipped_quark, flipped_gluon = share * quark, share * gluon
         else:
@@ -91,7 +94,7 @@ def limit_rows(
     setting: Setting,
     nodal: dict[str, Floats],
     q2: Floats,
-    a: Floats,
+    powers: Floats,
     nf: int,
     mass: float,
     negative: Booleans,
@@ -106,24 +109,31 @@ def limit_rows(
     grid, t = setting.grid, -float(np.log(setting.muf2_ratio))
     p_qq, p_qg = splitting(grid, 0, "ns+", nf), splitting(grid, 0, "qg", nf) / (2.0 * nf)
     logarithm = np.log(q2 / mass**2)[:, np.newaxis]
+    zeroth, first = _two(powers)
     sums = {name: [np.zeros((q2.size, grid.nodes)) for _ in range(2)] for name in ("even", "odd")}
     for function in FUNCTIONS:
         w = nodal[function]
         if not w.any():
             continue
         leading = np.zeros_like(w) if function == "FL" else w
-        quark, gluon = leading, np.zeros_like(w)
+        quark, gluon = zeroth * leading, np.zeros_like(w)
         if setting.highest[function] >= 1:
             matrices = at_q(setting, function, nf)
-            quark = leading + a[:, np.newaxis] * (w @ matrices["ns+"][1] + t * leading @ p_qq)
+            quark = quark + first * (w @ matrices["ns+"][1] + t * leading @ p_qq)
             sign = {"F2": 1.0, "FL": 0.0, "xF3": -1.0}[function]
             hard = np.zeros_like(w) if function == "xF3" else w @ matrices["gluon"][1] / nf
-            gluon = a[:, np.newaxis] * (hard + (sign * logarithm * w + t * leading) @ p_qg)
+            gluon = first * (hard + (sign * logarithm * w + t * leading) @ p_qg)
         target = sums["odd" if function == "xF3" else "even"]
         target[0], target[1] = target[0] + quark, target[1] + gluon
     return _placed(
         setting, nf, negative, (sums["even"][0], sums["even"][1]), (sums["odd"][0], sums["odd"][1])
     )
+
+
+def _two(powers: Floats) -> tuple[Floats, Floats]:
+    """Return what multiplies a^0 and a^1, (point, 1) each."""
+    first = powers[:, 1:2] if powers.shape[1] > 1 else np.zeros_like(powers)
+    return powers[:, :1], first
 
 
 def _placed(

@@ -34,7 +34,7 @@ HEAVY = (4, 5)
 
 
 def pair_rows(
-    setting: Setting, shares: Floats, x: Floats, q2: Floats, a: Floats, quark: int, mass: float
+    setting: Setting, shares: Floats, x: Floats, q2: Floats, powers: Floats, quark: int, mass: float
 ) -> Floats:
     """Return the rows of a pair made by a photon on a gluon, (point, 13, node).
 
@@ -43,8 +43,10 @@ def pair_rows(
     setting : Setting
     shares : ndarray, (point, 3)
         Weights of F2, FL, xF3 in what is measured.
-    x, q2, a : ndarray, (point,)
-        Q^2 in GeV^2, a(mu_r).
+    x, q2 : ndarray, (point,)
+        Q^2 in GeV^2.
+    powers : ndarray, (point, power)
+        a(mu_r)^k, k = 0 and 1, or its derivative.
     quark : int
         PDG number.
     mass : float
@@ -56,12 +58,20 @@ def pair_rows(
     for place, function in enumerate(FUNCTIONS[:2]):
         if setting.highest[function] >= 1 and shares[:, place].any():
             made = _core.massive_rows(setting.grid.handle(), f"{function} gluon", x, q2, mass)
-            rows[:, GLUON] += (CHARGES[quark - 1] ** 2 * a * shares[:, place])[:, np.newaxis] * made
+            rows[:, GLUON] += (CHARGES[quark - 1] ** 2 * powers[:, 1] * shares[:, place])[
+                :, np.newaxis
+            ] * made
     return rows
 
 
 def beyond_pair(
-    setting: Setting, nodal: Mapping[str, Floats], q2: Floats, a: Floats, nf: int, quark: int, mass: float
+    setting: Setting,
+    nodal: Mapping[str, Floats],
+    q2: Floats,
+    powers: Floats,
+    nf: int,
+    quark: int,
+    mass: float,
 ) -> Floats:
     """Return massless rows of a photon coupled to a heavy quark less the massless limit of the massive ones.
 
@@ -70,8 +80,10 @@ def beyond_pair(
     setting : Setting
     nodal : mapping
         Structure function -> (point, node), weights at nodes.
-    q2, a : ndarray, (point,)
-        Q^2 in GeV^2, a(mu_r).
+    q2 : ndarray, (point,)
+        Q^2 in GeV^2.
+    powers : ndarray, (point, power)
+        a(mu_r)^k, k = 0 and 1, or its derivative.
     nf : int
         Active flavours, `quark` among them.
     quark, mass : int, float
@@ -87,25 +99,27 @@ def beyond_pair(
     even[:, quark - 1] = charge2
     nothing = np.zeros_like(even)
     photon = {name: nodal[name] for name in FUNCTIONS[:2]}
-    rows = light_rows(short, photon, Weights(even, nothing, nothing, nothing), a, nf)
+    rows = light_rows(short, photon, Weights(even, nothing, nothing, nothing), powers, nf)
     logarithm = np.log(q2 / mass**2)[:, np.newaxis]
     for function, of_nodes in photon.items():
         if short.highest[function] >= 1:
             limit = of_nodes @ at_q(setting, function, nf)["gluon"][1]
             if function == "F2":
                 limit = limit + logarithm * (of_nodes @ splitting(setting.grid, 0, "qg", nf))
-            rows[:, GLUON] -= charge2 / nf * a[:, np.newaxis] * limit
+            rows[:, GLUON] -= charge2 / nf * powers[:, 1, np.newaxis] * limit
     return rows
 
 
 def to_first_order(setting: Setting) -> Setting:
     """Return the same with no power of a above the first."""
-    return replace(setting, highest={name: min(power, 1) for name, power in setting.highest.items()})
+    first = {name: min(power, 1) for name, power in setting.highest.items()}
+    return replace(setting, highest=first, further={})
 
 
 def at_q(setting: Setting, function: str, nf: int) -> dict[str, Floats]:
     """Return coefficient matrices to order a at mu_r = mu_f = Q."""
-    first = replace(setting, highest={name: 1 for name in FUNCTIONS}, mur2_ratio=1.0, muf2_ratio=1.0)
+    powers = dict.fromkeys(FUNCTIONS, 1)
+    first = replace(setting, highest=powers, mur2_ratio=1.0, muf2_ratio=1.0, further={})
     return first.matrices(function, nf)
 
 

@@ -109,13 +109,9 @@ class Points:
         columns = {
             name: _column(getattr(rows, name, default), count, name) for name, default in _DEFAULTS.items()
         }
-        entries = [
-            _entry({name: column[row] for name, column in columns.items()}, place[row])
-            for row in range(count)
-        ]
-        lists: list[list[Any]] = [list(column) for column in zip(*entries, strict=True)]
-        if not lists:
+        if count == 0:
             raise InputError("points: there must be at least one")
+        lists = _together(columns) or _one_by_one(columns, place)
         x, q2, y, s, polarisation, measure, beam, is_charged, is_photon, tag, protons, target = lists
         return cls(
             _real(x),
@@ -166,12 +162,12 @@ _DEFAULTS: dict[str, object] = {
 }
 
 
-def _real(values: list[Any]) -> Floats:
+def _real(values: Sequence[Any] | Floats) -> Floats:
     return np.asarray(values, dtype=np.float64)
 
 
 def _picked(values: tuple[str, ...], numbers: NDArray[Any]) -> tuple[str, ...]:
-    return tuple(values[number] for number in numbers)
+    return tuple(map(values.__getitem__, numbers.tolist()))
 
 
 def _attribute(rows: Any, name: str) -> Any:
@@ -189,6 +185,59 @@ def _column(given: Any, count: int, name: str) -> Sequence[Any]:
     if len(given) != count:
         raise InputError(f"points.{name}: there are {len(given)} entries for {count} points")
     return given.tolist() if isinstance(given, np.ndarray) else list(given)
+
+
+def _one_by_one(columns: dict[str, Sequence[Any]], place: Sequence[str]) -> list[Any]:
+    """Return the columns of `Points` but the last, every point checked by itself."""
+    entries = [
+        _entry({name: column[row] for name, column in columns.items()}, place[row])
+        for row in range(len(place))
+    ]
+    return [list(column) for column in zip(*entries, strict=True)]
+
+
+def _together(columns: dict[str, Sequence[Any]]) -> list[Any] | None:
+    """Return the same by column, combinations of words checked once each; None if anything is not right.
+
+    Who wants to know what is wrong asks `_one_by_one`.
+    """
+    numbers = {name: _floats(columns[name]) for name in ("x", "q2", "y", "s", "polarisation")}
+    x, q2, y, s, spin = numbers.values()
+    if x is None or q2 is None or y is None or s is None or spin is None:
+        return None
+    spin = np.where(np.isnan(spin), 0.0, spin)
+    words = zip(*(columns[name] for name in _WORDS), (spin != 0.0).tolist(), strict=True)
+    known: dict[Any, tuple[Any, ...]] = {}
+    entries = []
+    try:
+        for row, word in enumerate(words):
+            if word not in known:
+                known[word] = _checked({name: column[row] for name, column in columns.items()})
+            entries.append(known[word])
+    except (InputError, TypeError):  # or a target that cannot be hashed
+        return None
+    *_, measure, beam, charged, photon, tag, protons, target = zip(*entries, strict=True)
+    good = (x > 0.0) & (x <= 1.0) & (q2 > 0.0) & (q2 < np.inf) & (np.abs(spin) <= 1.0) & ~np.isinf(y)
+    good &= np.isnan(s) | ((s > NUCLEON_M2) & (s < np.inf))
+    if not good.all():
+        return None
+    from_s = q2 / (x * (s - NUCLEON_M2))
+    good = ~(np.abs(y - from_s) > _WRONG_Y * from_s)
+    y = np.where(np.isnan(s), y, from_s)
+    needed = np.isin(np.array(measure), NEED_Y)
+    good &= ~needed | ((y >= _LEAST_Y) & (y <= 1.0 + _ROUNDING))
+    y = np.where(needed | ((y > 0.0) & (y <= 1.0)), y, np.nan)
+    return [x, q2, y, s, spin, measure, beam, charged, photon, tag, protons, target] if good.all() else None
+
+
+_WORDS = ("measure", "current", "exchange", "beam", "target", "tagged")
+
+
+def _floats(column: Sequence[Any]) -> Floats | None:
+    """Return numbers with nan for None; None where an entry is neither."""
+    if not set(map(type, column)) <= {float, int, np.float64, type(None)}:
+        return None
+    return np.array([np.nan if value is None else value for value in column], dtype=np.float64)
 
 
 def _entry(given: dict[str, Any], place: str) -> tuple[Any, ...]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -13,15 +13,20 @@ from ..electroweak import Electroweak
 from ..errors import InputError, RangeError
 from ..grid import ChebyshevGrid
 from ..theory import ORDERS, Theory
+from .further import Further
 from .light import HIGHEST
 from .measures import FUNCTIONS, measure_weights
 from .points import Points
 from .rows import Setting
 
-__all__ = ["Problem"]
+__all__ = ["INTRINSIC", "Problem"]
 
+#: R. Ball et al., arXiv:1510.00009, has the parts that would be needed.
+INTRINSIC = "an intrinsic heavy input is not implemented in structure functions"
 #: alpha_s at mu_r^2 above which a series in it means nothing (common practice, no source).
 _STRONG = 1.0
+#: Highest power of a whose logarithms of mu_r and mu_f follow from the splitting functions known.
+_LOGARITHMS = 3
 
 
 @dataclass(frozen=True, eq=False)
@@ -38,6 +43,8 @@ class Problem:
         Whether target mass is kept.
     subtraction : {"damped", "chi", "plain"}
         How "matched" treats what is beyond massive near threshold.
+    further : mapping
+        Structure function -> coefficient functions of the user beyond the order of the theory.
     """
 
     theory: Theory
@@ -46,6 +53,7 @@ class Problem:
     points: Points
     target_mass: bool = False
     subtraction: str = "damped"
+    further: Further = field(default_factory=dict)
 
     def __post_init__(self) -> None:
         for name, kind in (("theory", Theory), ("grid", ChebyshevGrid), ("electroweak", Electroweak)):
@@ -55,6 +63,8 @@ class Problem:
         if not isinstance(self.target_mass, bool):
             _check.refuse("target_mass", self.target_mass, "target_mass must be True or False")
         _check.choice("subtraction", self.subtraction, ("damped", "chi", "plain"))
+        if not self.theory.hard_mur2_ratio == self.theory.hard_muf2_ratio == 1.0:
+            self.refuse_unknown_logarithms("hard_mur2_ratio and hard_muf2_ratio must be 1")
         self.points.refuse_outside(self.grid)
         self._refuse_unknown_orders()
         self._refuse_strong()
@@ -72,8 +82,11 @@ class Problem:
     @cached_property
     def a(self) -> Floats:
         """a(mu_r) = alpha_s/(4 pi), (point,)."""
-        mur2 = self.points.q2 * self.theory.hard_mur2_ratio
-        return np.asarray(self.theory.alpha_s(mur2, self.nf) / (4.0 * np.pi))
+        # tables come in bins of Q^2: the running is solved once for each
+        pairs = np.stack([self.points.q2 * self.theory.hard_mur2_ratio, self.nf], axis=1)
+        distinct, inverse = np.unique(pairs, axis=0, return_inverse=True)
+        mur2, nf = distinct[:, 0].copy(), distinct[:, 1].astype(np.int64)
+        return np.asarray(self.theory.alpha_s(mur2, nf) / (4.0 * np.pi))[inverse.reshape(-1)]
 
     @cached_property
     def highest(self) -> dict[str, int]:
@@ -86,7 +99,12 @@ class Problem:
         """What the rows of all points share."""
         theory = self.theory
         return Setting(
-            self.grid, self.electroweak, self.highest, theory.hard_mur2_ratio, theory.hard_muf2_ratio
+            self.grid,
+            self.electroweak,
+            self.highest,
+            theory.hard_mur2_ratio,
+            theory.hard_muf2_ratio,
+            self.further,
         )
 
     @cached_property
@@ -106,6 +124,16 @@ class Problem:
                 f'{self.points.place[row]}: FL at a^3 (fl_counting="own" at NNLO) is known here for photon '
                 f"exchange with nf = 3, and not for nf = {self.nf[row]} or other bosons"
             )
+
+    def refuse_unknown_logarithms(self, allowed: str) -> None:
+        """Refuse logarithms of scales where further orders need splitting functions that are not known."""
+        for function, orders in self.further.items():
+            power = self.highest[function] + len(orders)
+            if orders and power > _LOGARITHMS:
+                raise InputError(
+                    f"further[{function!r}]: to a^{power}: beyond a^{_LOGARITHMS} logarithms are not "
+                    f"known: {allowed}"
+                )
 
     def _refuse_strong(self) -> None:
         """Refuse points whose coupling is too large for a series, or has no solution."""

@@ -3,6 +3,9 @@
 A row acts on the gluon, on q + qbar and on q - qbar of six quarks: axes (point, 13, node) in the order gluon,
 plus 1 to 6, minus 1 to 6. Flavours that act alike along the whole route, the light ones, differ from their
 mean by what evolves with the non-singlet blocks; so a row on them is split into its mean and what is left.
+
+Which one when: `_core.Evolution.pull_back` does it for a live set of operators, many scales at once; the
+functions here for blocks at hand.
 """
 
 from __future__ import annotations
@@ -13,9 +16,10 @@ import numpy as np
 
 from .._check import Floats
 
-__all__ = ["GLUON", "MINUS", "PLUS", "flavour_rows", "pulled_back"]
+__all__ = ["CHANNELS", "GLUON", "MINUS", "PLUS", "flavour_rows", "pulled_back"]
 
 GLUON, PLUS, MINUS = 0, slice(1, 7), slice(7, 13)
+CHANNELS = 13
 _HEAVY = {4: "charm", 5: "bottom", 6: "top"}
 
 

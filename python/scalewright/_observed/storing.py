@@ -45,7 +45,11 @@ def save(
     ------
     StoreError
         If it cannot be written.
+    InputError
+        If coefficient functions of the user are in it: a function cannot be stored.
     """
+    if any(problem.further.values()):
+        raise InputError("further: a map with coefficient functions of your own cannot be stored")
     arrays: dict[str, Any] = {
         "/matrix": matrix,
         "/flavours": np.asarray(flavours),

@@ -11,16 +11,19 @@ import numpy as np
 
 from .. import _check
 from .._check import Floats, refuse, show
+from ..corrections import Correction
 from ..densities import Densities
 from ..electroweak import Electroweak
 from ..errors import InputError, StoreError
 from ..files import toml
-from ..files.csv import Lattice, write_lattice
 from ..files.toml import Section
 from ..files.whole import PathLike
 from ..grid import ChebyshevGrid
+from ..kinematics import BOUNDARIES
 from ..measurements import Measurements
 from ..theory import Theory
+from .correction_job import read_corrections
+from .written import write_table
 
 _STORED = (".h5", ".hdf5")
 _TABLE = ".csv"
@@ -122,6 +125,10 @@ class PredictJob:
         The data, after cuts.
     target_mass, subtraction
         As for `forward_map`.
+    corrections
+        Higher twist, deuteron and nuclear factors.
+    boundaries
+        Of the regimes, where they are not those by default.
     form, reference
         Of chi-square; `reference` is "data" or "prediction".
     file
@@ -137,6 +144,8 @@ class PredictJob:
     measured: Measurements
     target_mass: bool
     subtraction: str
+    corrections: list[Correction]
+    boundaries: dict[str, float]
     form: str
     reference: str
     file: str
@@ -159,16 +168,18 @@ def read_predict_job(path: PathLike) -> PredictJob:
         If the job or a file that it names cannot be read.
     """
     top = toml.load(path).only(
-        "theory", "electroweak", "grid", "input", "data", "prediction", "chi_square", "output"
-    )
+        "theory", "electroweak", "grid", "input", "data", "prediction", "correction", "regimes", "chi_square",
+        "output",
+    )  # fmt: skip
     theory = Theory.from_dict(top.get("theory"), top.section("theory").where())
     source = top.section("input").only("file", "q2", "nf", "interpolate", "missing")
     data = top.section("data").only("file", "cut")
+    corrections, boundaries = read_corrections(path, top), _boundaries(top)
     prediction = top.section("prediction", {}).only("target_mass", "subtraction")
     chi_square = top.section("chi_square", {}).only("form", "reference")
     output = top.section("output").only("file", "picture")
-    file = _result(path, output, "file", _TABLE)
-    picture = None if output.get("picture", None) is None else _result(path, output, "picture", _PICTURE)
+    file = result_file(path, output, "file", _TABLE)
+    picture = None if output.get("picture", None) is None else result_file(path, output, "picture", _PICTURE)
     with prediction.blame():
         how = prediction.get("subtraction", "damped")
         subtraction = _check.choice("subtraction", how, ("damped", "chi", "plain"))
@@ -176,26 +187,27 @@ def read_predict_job(path: PathLike) -> PredictJob:
         form = _check.choice("form", chi_square.get("form", "covariance"), ("covariance", "nuisance"))
         held = chi_square.get("reference", "data")
         reference = _check.choice("reference", held, ("data", "prediction"))
-    target_mass = _yes_or_no(prediction, "target_mass")
-    electroweak = _electroweak(top.section("electroweak", {}))
+    target_mass = yes_or_no(prediction, "target_mass")
+    electroweak = read_electroweak(top.section("electroweak", {}))
     given = _whole(_given(path, top, source), source)
-    measured = _measured(path, data)
+    measured = read_measured(path, data)
     return PredictJob(
-        top, theory, electroweak, given, measured, target_mass, subtraction, form, reference, file, picture
-    )
+        top, theory, electroweak, given, measured, target_mass, subtraction, corrections, boundaries, form,
+        reference, file, picture,
+    )  # fmt: skip
 
 
-def _result(path: PathLike, output: Section, key: str, ending: str) -> str:
+def result_file(path: PathLike, output: Section, key: str, ending: str) -> str:
     """Return the name of a file to be written; refuse one that cannot be before any work is done."""
     file = toml.beside(path, output.text(key))
     if os.path.splitext(file)[1].lower() != ending:
         with output.blame():
             refuse(key, file, f"must end in {ending}")
-    _refuse_no_folder(output, key, file)
+    refuse_no_folder(output, key, file)
     return file
 
 
-def _electroweak(section: Section) -> Electroweak:
+def read_electroweak(section: Section) -> Electroweak:
     """Return the named set of inputs, with the numbers that are given."""
     with section.blame():
         name = _check.choice("inputs", section.get("inputs", "effective"), tuple(_ELECTROWEAK))
@@ -206,7 +218,7 @@ def _electroweak(section: Section) -> Electroweak:
         return make(**numbers)
 
 
-def _measured(path: PathLike, data: Section) -> Measurements:
+def read_measured(path: PathLike, data: Section) -> Measurements:
     """Read the tables and cut them."""
     names = data.get("file")
     names = [names] if isinstance(names, str) else names
@@ -229,6 +241,14 @@ def _range(value: Any) -> Any:
     return tuple(None if isinstance(v, float) and np.isinf(v) else v for v in value)
 
 
+def _boundaries(top: Section) -> dict[str, float]:
+    """Return where regimes end, as far as the job says it."""
+    section = top.section("regimes", {}).only(*BOUNDARIES)
+    with section.blame():
+        given = {name: section.get(name) for name in BOUNDARIES if section.get(name, None) is not None}
+        return {name: _check.real(name, value, least=0.0) for name, value in given.items()}
+
+
 def _whole(given: Densities, source: Section) -> Densities:
     """Return the densities with every active flavour, those that are missing 0 if the job says so."""
     with source.blame():
@@ -243,7 +263,7 @@ def _whole(given: Densities, source: Section) -> Densities:
     return Densities(given.grid, q2=q2, nf=nf, flavours=(*given.flavours, *absent), values=values)
 
 
-def _yes_or_no(section: Section, key: str) -> bool:
+def yes_or_no(section: Section, key: str) -> bool:
     """Return true or false, false where nothing is said."""
     value = section.get(key, False)
     if not isinstance(value, bool):
@@ -251,7 +271,8 @@ def _yes_or_no(section: Section, key: str) -> bool:
     return value
 
 
-def _refuse_no_folder(output: Section, key: str, file: str) -> None:
+def refuse_no_folder(output: Section, key: str, file: str) -> None:
+    """Refuse a file whose folder does not exist."""
     if not os.path.isdir(os.path.dirname(file) or "."):
         raise StoreError(f"{output.where(key)} = {file!r}: the folder does not exist")
 
@@ -260,7 +281,7 @@ def _points(output: Section, file: str) -> Floats | None:
     """Return the x of a table; refuse a result that cannot be written before any work is done."""
     with output.blame():
         kind = _kind("file", file)
-        _refuse_no_folder(output, "file", file)
+        refuse_no_folder(output, "file", file)
         x = output.get("x", None)
         if x is None:
             return None
@@ -289,7 +310,7 @@ def _given(path: PathLike, top: Section, source: Section) -> Densities:
         section = top.section("grid", {}).only("x_min", "resolution")
         with section.blame():
             grid = ChebyshevGrid(section.get("x_min", 1e-7), section.get("resolution", "standard"))
-        densities = Densities.from_csv(file, grid, interpolate=_yes_or_no(source, "interpolate"))
+        densities = Densities.from_csv(file, grid, interpolate=yes_or_no(source, "interpolate"))
     with source.blame():
         q2 = source.get("q2", None)
         return densities.scale(None if q2 is None else _check.scale("q2", q2), source.get("nf", None))
@@ -325,10 +346,5 @@ def write_densities(densities: Densities, file: str, x: Floats | None) -> None:
     """
     if _kind("file", file) in _STORED:
         densities.save(file)
-    elif x is None:
-        densities.to_csv(file)
     else:
-        values = densities.grid.interpolate(densities.values, x)
-        replicas = tuple(range(densities.replicas))
-        q2, nf = np.atleast_1d(densities.q2), np.atleast_1d(densities.nf)
-        write_lattice(file, Lattice(q2, nf, replicas, densities.flavours, x, np.atleast_1d(values)))
+        write_table(densities, file, x)

@@ -14,9 +14,9 @@ from collections.abc import Sequence
 from typing import TextIO
 
 from ..errors import InputError, RangeError, ResolutionWarning, ScalewrightError
-from . import demo, evolve, info, predict
+from . import closure, demo, evolve, fit, info, predict
 
-COMMANDS = (demo, evolve, predict, info)
+COMMANDS = (demo, evolve, predict, fit, closure, info)
 COULD_NOT, ASKED_WRONGLY = 1, 2
 
 

@@ -4,18 +4,18 @@ from __future__ import annotations
 
 import argparse
 import time
-from collections.abc import Sequence
 from importlib.util import find_spec
 
 import numpy as np
 
 from .._check import Floats
+from ..corrections import covariance
 from ..densities import Densities
-from ..files.cells import Cells, write_cells
 from ..fitting.chi_square import ChiSquare
-from ..forward import forward_map
+from ..forward import ForwardMap, forward_map
 from .jobs import PredictJob, read_predict_job
 from .report import Report, chi_square_summary
+from .written import write_predictions
 
 NAME = "predict"
 SUMMARY = "predict measured tables from densities, as a job file says"
@@ -43,6 +43,11 @@ with job.toml:
   file = "run1.toml"                  # a description of measured points, or a list of them
   cut = { q2 = [3.5, inf] }           # also x, w2, y: least and most
 
+  # [[correction]]                    # none by default; "higher twist" and "target factor" too
+  # kind = "known factor"
+  # target = "deuteron"               # { z = 26, a = 56 }; or a list of them
+  # file = "deuteron.csv"             # columns x, factor; others are its uncertainties
+
   [chi_square]
   reference = "data"                  # "prediction": what multiplicative errors multiply
 
@@ -65,16 +70,23 @@ def run(options: argparse.Namespace) -> None:
         raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
     start = time.perf_counter()
     with job.place.blame():
-        predicted, error = _predicted(job)
+        fmap, mean = _mapped(job)
+        predicted = fmap.predict(job.given, job.corrections)
+        error = fmap.numerical_error(mean, job.corrections)[0]
         prediction = predicted.mean(axis=0)
         reference = prediction if job.reference == "prediction" else None
-        chi_square = ChiSquare(job.measured, job.form, reference)
-    _write(job, predicted, error, chi_square)
+        theory = covariance(fmap, job.corrections, mean) if job.corrections else None
+        chi_square = ChiSquare(job.measured, job.form, reference, theory)
+        orders = fmap.orders(job.boundaries).of_data(fmap.data)
+        described = fmap.describe(job.corrections, job.boundaries)
+    spread = predicted.std(axis=0, ddof=1) if predicted.shape[0] > 1 else None
+    write_predictions(job.file, chi_square, prediction, error, spread, orders)
     report.say(f"{job.file}: {job.measured!r}, predicted")
     report.say(f"  from {job.given!r}")
     report.say(f"  with {job.theory!r}")
     report.say(f"  in {time.perf_counter() - start:.2f} s")
     part = float((error / np.sqrt(np.diagonal(chi_square.covariance))).max())
+    report.say("\n".join(f"  {line.strip()}" for line in described.splitlines()[1:]))
     report.say(f"  numerical errors at most {part:.1g} of the uncertainty of a datum")
     for cut in job.measured.cuts:
         report.say(f"  cut {cut}")
@@ -84,8 +96,8 @@ def run(options: argparse.Namespace) -> None:
     _draw(job, prediction, report)
 
 
-def _predicted(job: PredictJob) -> tuple[Floats, Floats]:
-    """Return predictions, (replica, datum), and the numerical error of their mean, (datum,)."""
+def _mapped(job: PredictJob) -> tuple[ForwardMap, Densities]:
+    """Return the map, and the mean of the densities."""
     given = job.given
     q2, nf = float(np.ravel(given.q2)[0]), int(np.ravel(given.nf)[0])
     fmap = forward_map(
@@ -99,36 +111,7 @@ def _predicted(job: PredictJob) -> tuple[Floats, Floats]:
         subtraction=job.subtraction,
     )
     values = given.values.reshape(-1, *given.values.shape[-2:]).mean(axis=0)
-    mean = Densities(given.grid, q2=q2, nf=nf, flavours=given.flavours, values=values)
-    return fmap.predict(given), fmap.numerical_error(mean)[0]
-
-
-def _write(job: PredictJob, predicted: Floats, error: Floats, chi_square: ChiSquare) -> None:
-    """Write predictions beside the data, one line a datum."""
-    measured = job.measured
-    prediction = predicted.mean(axis=0)
-    sigma = np.sqrt(np.diagonal(chi_square.covariance))
-    columns: dict[str, Sequence[str]] = {
-        "table": [measured.tables[number] for number in measured.table_of],
-        "x": _numbers(measured.x),
-        "q2": _numbers(measured.q2),
-        "y": _numbers(measured.y),
-        "value": _numbers(measured.value),
-        "uncertainty": _numbers(sigma),
-        "prediction": _numbers(prediction),
-        "numerical error": _numbers(error),
-    }
-    if predicted.shape[0] > 1:
-        columns["spread"] = _numbers(predicted.std(axis=0, ddof=1))
-    columns["pull"] = _numbers(chi_square.pulls(prediction))
-    columns["pull after shifts"] = _numbers(chi_square.pulls(prediction, shifted=True))
-    rows = tuple(zip(*columns.values(), strict=True))
-    write_cells(job.file, Cells(tuple(columns), rows, job.file, tuple(range(2, len(rows) + 2))))
-
-
-def _numbers(values: Floats) -> list[str]:
-    """Return numbers with every bit, nothing where there is none."""
-    return ["" if np.isnan(value) else repr(value) for value in values.tolist()]
+    return fmap, Densities(given.grid, q2=q2, nf=nf, flavours=given.flavours, values=values)
 
 
 def _draw(job: PredictJob, prediction: Floats, report: Report) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 from collections.abc import Sequence
 
 import numpy as np
@@ -33,6 +34,10 @@ class Report:
     def table(self, head: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
         """Print a table: the first column to the left, the others to the right."""
         self.say(table(head, rows))
+
+    def note(self, text: str) -> None:
+        """Print a line on standard error, quiet or not: what a user must know of work that ended early."""
+        print(f"scalewright: {text}", file=sys.stderr)
 
     def progress(self, label: str) -> Line | None:
         """Return what a long call reports to; nothing is drawn where standard error is no terminal."""

@@ -28,7 +28,7 @@ Array: TypeAlias = NDArray[Any]
 Attribute: TypeAlias = str | int | float
 
 FORMAT_VERSION = 1
-KINDS = ("operators", "densities", "forward map", "ensemble")
+KINDS = ("operators", "densities", "forward map", "ensemble", "fit")
 
 _BLOCK = 512
 # The first byte and the two kinds of line end show a transfer that took the file for text.
@@ -50,7 +50,7 @@ class Summary:
     path
         The file.
     kind
-        "operators", "densities", "forward map" or "ensemble".
+        "operators", "densities", "forward map", "ensemble" or "fit".
     size
         Bytes.
     format_version
@@ -82,7 +82,7 @@ def write(
     path
         The target; an old file is replaced only by a complete new one.
     kind
-        What the file holds: "operators", "densities", "forward map" or "ensemble".
+        What the file holds: "operators", "densities", "forward map", "ensemble" or "fit".
     arrays
         HDF5 path ("/grid/edges") to an array of floats, integers or text, of any rank.
     attributes

@@ -84,6 +84,10 @@ class Section:
             raise InputError(f"{self.where(key)}: missing")
         return default
 
+    def names(self) -> tuple[str, ...]:
+        """Return the keys that stand here, in their order."""
+        return tuple(self._values)
+
     def text(self, key: str, default: Any = _REQUIRED) -> Any:
         """Return a value that must be text; see `get`."""
         value = self.get(key, default)

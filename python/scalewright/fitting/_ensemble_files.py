@@ -9,6 +9,7 @@ name                         content
 /replicas/chi2, chi2_data    (replica,), nan where unknown
 /replicas/parameters, names  (replica, parameter), (parameter,)
 /failed/index, reasons       (failed,)
+/notes/sentences             (sentence,)
 ============================ ======================================
 """
 
@@ -29,6 +30,7 @@ __all__ = ["PARTS", "load", "save"]
 #: What an ensemble has besides densities.
 PARTS = (
     "parameters", "names", "weights", "index", "chi2", "chi2_data", "data", "failed", "seed", "negative",
+    "notes",
 )  # fmt: skip
 _ARRAYS = ("parameters", "weights", "index", "chi2", "chi2_data")
 _NO_SEED = -1
@@ -43,6 +45,7 @@ def save(path: PathLike, densities: Densities, parts: Mapping[str, Any]) -> None
     arrays["/replicas/names"] = np.asarray(parts["names"], dtype=np.str_)
     arrays["/failed/index"] = np.asarray(list(parts["failed"]), dtype=np.int64)
     arrays["/failed/reasons"] = np.asarray(list(parts["failed"].values()), dtype=np.str_)
+    arrays["/notes/sentences"] = np.asarray(parts["notes"], dtype=np.str_)
     seed = _NO_SEED if parts["seed"] is None else parts["seed"]
     notes = {"data": parts["data"], "negative": parts["negative"], "seed": str(seed)}
     hdf5.write(path, "ensemble", arrays, {**attributes, **notes})
@@ -59,6 +62,8 @@ def load(path: PathLike, copy: bool) -> tuple[Densities, dict[str, Any]]:
         parts["names"] = tuple(arrays["/replicas/names"].tolist())
         indices, reasons = arrays["/failed/index"].tolist(), arrays["/failed/reasons"].tolist()
         parts["failed"] = dict(zip(indices, reasons, strict=True))
+        # files of the first release have none
+        parts["notes"] = tuple(arrays["/notes/sentences"].tolist()) if "/notes/sentences" in arrays else ()
         parts |= {name: int(attributes[name]) for name in ("data", "negative", "seed")}
     except KeyError as error:
         raise StoreError(f"{shown(path)}: holds no {error.args[0]}") from error

@@ -96,7 +96,8 @@ class Journal:
     Raises
     ------
     StoreError
-        If the file is no journal, belongs to another fit, is in use, or cannot be read or written.
+        If the file is no journal, belongs to another fit or does not say to which, is in use, or cannot be
+        read or written.
     """
 
     def __init__(self, path: PathLike, fit: Mapping[str, Any]) -> None:
@@ -149,8 +150,12 @@ class Journal:
             raise StoreError(f"{shown(self._path)}: not a journal of scalewright")
         records = list(_records(data))
         if not records:
+            first = _MAGIC + _record(json.dumps(fit).encode())
+            if len(data) > len(first):  # no kill while the first record was written leaves so much
+                what = "its first record is damaged, so that nobody knows which fit the others are of"
+                raise StoreError(f"{shown(self._path)}: {what}")
             self._cut(0)
-            self._write(_MAGIC + _record(json.dumps(fit).encode()))
+            self._write(first)
             return fit
         try:
             known = json.loads(records[0][1])
@@ -202,7 +207,8 @@ def _records(data: bytes) -> Iterator[tuple[int, bytes]]:
         length, check = _HEAD.unpack_from(data, place)
         end = place + _HEAD.size + length
         payload = data[place + _HEAD.size : end]
-        if length > _LONGEST or end > len(data) or zlib.crc32(payload) != check:
+        # zeros, which a power cut leaves where nothing was written yet, would be an empty sealed record
+        if not 0 < length <= _LONGEST or end > len(data) or zlib.crc32(payload) != check:
             return
         yield end, payload
         place = end

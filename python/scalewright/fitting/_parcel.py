@@ -16,7 +16,8 @@ import tempfile
 from dataclasses import dataclass
 from typing import Any
 
-from ..errors import InputError
+from ..errors import InputError, StoreError
+from ..files.whole import reason, shown
 
 __all__ = ["Missing", "Parcel", "Ticket"]
 
@@ -49,6 +50,8 @@ class Parcel:
     ------
     InputError
         If it cannot be pickled.
+    StoreError
+        If the file cannot be written.
     """
 
     def __init__(self, content: object) -> None:
@@ -70,8 +73,10 @@ class Parcel:
                 for part in parts:
                     file.write(b"\0" * (-file.tell() % _ALIGNMENT))
                     file.write(part)
-        except BaseException:
+        except BaseException as error:
             shutil.rmtree(self._folder, ignore_errors=True)
+            if isinstance(error, OSError):
+                raise StoreError(f"{shown(path)}: cannot be written: {reason(error)}") from error
             raise
         self.ticket = Ticket(secrets.token_hex(16), path)
 
@@ -93,8 +98,9 @@ _opened: dict[str, Any] = {}
 
 def content(ticket: Ticket) -> Any:
     """Return the object of a ticket, or `Missing`."""
-    if ticket.name in _opened:
-        return _opened[ticket.name]
+    known = _opened.get(ticket.name)
+    if known is not None:
+        return known
     if ticket.data is not None:
         data = memoryview(ticket.data)
     else:
@@ -103,9 +109,10 @@ def content(ticket: Ticket) -> Any:
                 data = memoryview(mmap.mmap(file.fileno(), 0, access=mmap.ACCESS_READ))
         except OSError:
             return Missing()
-    _opened.clear()
-    _opened[ticket.name] = _unpacked(data)
-    return _opened[ticket.name]
+    made = _unpacked(data)
+    _opened.clear()  # threads of one worker may meet here: each then has a view of the same
+    _opened[ticket.name] = made
+    return made
 
 
 def _unpacked(data: memoryview) -> Any:

@@ -141,9 +141,11 @@ class _Run:
             ticket, indices = self._waiting[0]
             try:
                 future = self._engine.submit(_task, ticket, indices)
-            except (BrokenExecutor, RuntimeError) as error:
+            except Exception as error:
                 if not self._owned:
                     raise self._broken(error) from error
+                if not isinstance(error, BrokenExecutor | RuntimeError):
+                    raise
                 return False
             self._waiting.popleft()
             self._flying[future] = indices
@@ -211,7 +213,15 @@ class _Run:
 
 def _task(ticket: Ticket, indices: list[int]) -> list[Outcome] | Missing:
     """Compute some replicas in a worker."""
-    work = content(ticket)
+    unread = ""
+    try:
+        work = content(ticket)
+    except Exception as error:
+        unread = f"{type(error).__name__}: {error}"
+    # As words, and outside of the handler: an exception that cannot be read elsewhere would end the engine,
+    # and some engines send what an exception came from as well.
+    if unread:
+        raise InputError(f"shape cannot be read in a worker: {unread}")
     if isinstance(work, Missing):
         return work
     return [work.replica(index) for index in indices]

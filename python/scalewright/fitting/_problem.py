@@ -1,8 +1,9 @@
 """What a fit minimises: whitened residuals, and their exact derivative, as functions of its parameters.
 
-The parameters are those of the shape, then those of the theory, which move the map to first order from the
-values it was built with. Where data are sums of rows the map is whitened once, and a step costs one product;
-where they are ratios, rows are predicted, combined and whitened at each step.
+The parameters are those of the shape, then those of corrections, then those of the theory, which move the map
+to first order from the values it was built with. Where data are sums of rows the map is whitened once, and a
+step costs one product; where they are ratios, or corrections have parameters, rows are predicted, combined
+and whitened at each step.
 """
 
 from __future__ import annotations
@@ -15,6 +16,8 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats, show
+from .._corrected.bound import Bound, Correction, checked
+from .._corrected.selection import without_factor
 from ..errors import InputError
 from ..flavours import flavour_name
 from ..grid import ChebyshevGrid
@@ -56,26 +59,45 @@ class Distance(Protocol):
 
 
 class _Rows:
-    """A map, and derivatives of it by theory parameters, flattened: (map, row, flavour x node)."""
+    """A map, and derivatives of it by theory parameters, flattened: (map, row, flavour x node).
 
-    def __init__(self, fmap: Map, parameters: Sequence[str]) -> None:
+    Corrections without parameters are part of the maps, and of what rows are without densities.
+    """
+
+    def __init__(self, fmap: Map, parameters: Sequence[str], corrections: Bound) -> None:
         maps = [fmap.matrix, *(_derivative(fmap, name) for name in parameters)]
         self.maps = [np.asarray(one, dtype=np.float64).reshape(len(fmap.matrix), -1) for one in maps]
+        self.corrections, self.added = corrections, np.zeros(len(fmap.matrix))
+        if corrections.parts and not corrections.names:
+            factor, self.added = corrections.values(corrections.start)
+            self.maps = [factor[:, np.newaxis] * one for one in self.maps]
         combination = getattr(fmap, "data", None)
         plain = combination is None or bool(getattr(combination, "is_identity", False))
         self.combination: Any = None if plain else combination
 
     @property
     def is_linear(self) -> bool:
-        """Whether no datum is a ratio of rows."""
-        return self.combination is None or bool(self.combination.is_linear)
+        """Whether no datum is a ratio of rows, and no correction has parameters."""
+        return not self.corrections.names and (self.combination is None or bool(self.combination.is_linear))
 
-    def rows(self, values: Floats, moved: Floats) -> Floats:
+    def plain(self, values: Floats, moved: Floats) -> Floats:
         """Predict rows from x f(x), (flavour x node), and theory parameters counted from the map's."""
         result = product(self.maps[0], values)
         for change, one in zip(moved, self.maps[1:], strict=True):
             result = result + change * product(one, values)
         return result
+
+    def rows(self, plain: Floats, q: Floats) -> Floats:
+        """Return rows with corrections, of their parameters, from plain ones."""
+        return self.corrections.corrected(plain, q) if self.corrections.names else plain + self.added
+
+    def columns(self, plain: Floats, q: Floats, of_shape: Floats, of_theory: Floats) -> Floats:
+        """Return the derivative of `rows`, (row, parameter), from that of plain ones."""
+        if not self.corrections.names:
+            return np.concatenate([of_shape, of_theory], axis=1)
+        factor = self.corrections.values(q)[0][:, np.newaxis]
+        between = self.corrections.jacobian(plain, q)
+        return np.concatenate([factor * of_shape, between, factor * of_theory], axis=1)
 
     def data(self, rows: Floats) -> Floats:
         """Combine rows into data."""
@@ -100,7 +122,9 @@ class Problem:
     theory : sequence of names, or mapping
         Theory parameters, or those with the values that the map was built with.
     priors : mapping
-        Name -> (value, standard deviation), besides those of the shape.
+        Name -> (value, standard deviation), besides those of the shape and of the corrections.
+    corrections : sequence of Correction
+        See `scalewright.corrections`.
     compressed : bool
         Whether residuals of the data may be replaced by fewer with the same sum of squares.
 
@@ -113,6 +137,10 @@ class Problem:
     ----------
     count, rows : int
         Number of data, and of the residuals they make; those of the priors come after them.
+    notes : tuple of str
+        Deuterons and nuclei that nothing corrects.
+    first_theory : int
+        Place of the first theory parameter.
     """
 
     def __init__(
@@ -123,39 +151,50 @@ class Problem:
         theory: Theory = (),
         priors: Mapping[str, tuple[float, float]] | None = None,
         *,
+        corrections: Sequence[Correction] | Correction = (),
         compressed: bool = True,
     ) -> None:
         if not isinstance(shape, Shape):
             _check.refuse("shape", shape, "shape must be a Shape: see scalewright.fitting.shapes")
+        self.theory = getattr(fmap, "theory", None)
         self.shape, self._order = shape, _order(fmap, shape)
         self.reference = _reference(fmap, theory)
         self.q2, self.nf = float(fmap.start_q2), int(fmap.start_nf)
-        self._source: _Rows | None = _Rows(fmap, list(self.reference))
+        self.corrections = Bound(corrections, fmap)
+        targets = getattr(getattr(fmap, "points", None), "target", ())
+        self.notes = tuple(without_factor(targets, checked(corrections)))
+        self._source: _Rows | None = _Rows(fmap, list(self.reference), self.corrections)
         self._chi2: Distance | None = chi2
         at_zero = np.zeros(len(fmap.matrix))
         self._whitened: list[Floats] | None = None
         self._space: Space | None = None
         if self._source.is_linear:
-            self.offset = chi2.residuals(self._source.data(at_zero))
+            self.offset = chi2.residuals(self._source.data(self._source.added))
             along = (self._source.tangent(at_zero, one) for one in self._source.maps)
             self._whitened = [chi2.whiten(one) for one in along]
             self.rows = self.count = int(self.offset.size)
             if compressed:
                 self._compress()
         else:
-            self.rows = self.count = int(self._source.combination.data)
+            source = self._source.combination
+            self.rows = self.count = len(fmap.matrix) if source is None else int(source.data)
         self._lay_parameters(priors or {})
 
     def _lay_parameters(self, priors: Mapping[str, tuple[float, float]]) -> None:
-        """Put the parameters of the shape and of the theory behind one another, with bounds and priors."""
-        self.names = (*self.shape.names, *self.reference)
+        """Put parameters of shape, corrections and theory behind one another, with bounds and priors."""
+        own = self.corrections
+        self.names = (*self.shape.names, *own.names, *self.reference)
+        for name in own.names:
+            if self.names.count(name) > 1:
+                _check.refuse("corrections", name, "the shape has a parameter of this name")
+        self.first_theory = len(self.names) - len(self.reference)
         known = np.array(list(self.reference.values()))
-        self.start: Floats = np.concatenate([self.shape.start, known])
+        self.start: Floats = np.concatenate([self.shape.start, own.start, known])
         low, high = self.shape.bounds
         # a coupling and a mass are positive; how far the first order reaches, the user must judge
-        self.low: Floats = np.concatenate([low, np.zeros(known.size)])
-        self.high: Floats = np.concatenate([high, np.full(known.size, np.inf)])
-        both = self.shape.priors | {name: prior(name, pair) for name, pair in priors.items()}
+        self.low: Floats = np.concatenate([low, own.low, np.zeros(known.size)])
+        self.high: Floats = np.concatenate([high, own.high, np.full(known.size, np.inf)])
+        both = self.shape.priors | own.priors | {name: prior(name, pair) for name, pair in priors.items()}
         for name in both:
             if name not in self.names:
                 near = _check.nearest(name, self.names)
@@ -209,15 +248,16 @@ class Problem:
                     result = result - change * product(one, values)
             else:
                 source, chi2 = self._parts()
-                result = chi2.residuals(source.data(source.rows(values, moved)))
+                rows = source.rows(source.plain(values, moved), self._of_corrections(parameters))
+                result = chi2.residuals(source.data(rows))
         whole = np.concatenate([result, self._pulls(parameters)])
         return whole if shift is None else whole + shift
 
     def jacobian(self, parameters: Floats) -> Floats:
         """Return the derivative of `residuals`, (residual, parameter)."""
         moved, count = self._moved(parameters), len(self.shape.names)
-        along = self.shape.jacobian(parameters[:count])[:, self._order].reshape(count, -1)
         maps = self._whitened if self._whitened is not None else self._parts()[0].maps
+        along = self.shape.jacobian(parameters[:count])[:, self._order].reshape(count, maps[0].shape[1])
         columns = product(maps[0], along)
         for change, one in zip(moved, maps[1:], strict=True):
             if change != 0.0:
@@ -225,10 +265,13 @@ class Problem:
         whole = columns
         if self._whitened is None or moved.size:
             values = self.values(parameters)
-            whole = np.concatenate([columns, *(product(one, values)[:, None] for one in maps[1:])], axis=1)
+            of_theory = [np.zeros((len(columns), 0)), *(product(one, values)[:, None] for one in maps[1:])]
+            whole = np.concatenate([columns, *of_theory], axis=1)
         if self._whitened is None:
             source, chi2 = self._parts()
-            whole = chi2.whiten(source.tangent(source.rows(values, moved), whole))
+            plain, q = source.plain(values, moved), self._of_corrections(parameters)
+            along = source.columns(plain, q, columns, np.concatenate(of_theory, axis=1))
+            whole = chi2.whiten(source.tangent(source.rows(plain, q), along))
         of_priors = np.zeros((len(self._prior_place), len(self.names)))
         of_priors[np.arange(len(self._prior_place)), self._prior_place] = 1.0 / self._prior_width
         return np.concatenate([-whole, of_priors])
@@ -240,11 +283,15 @@ class Problem:
     def prediction(self, parameters: Floats) -> Floats:
         """Return the data predicted, (datum,)."""
         source, _ = self._parts()
-        return source.data(source.rows(self.values(parameters), self._moved(parameters)))
+        plain = source.plain(self.values(parameters), self._moved(parameters))
+        return source.data(source.rows(plain, self._of_corrections(parameters)))
 
     def _moved(self, parameters: Floats) -> Floats:
         """Return theory parameters counted from those of the map."""
-        return parameters[len(self.shape.names) :] - self.start[len(self.shape.names) :]
+        return parameters[self.first_theory :] - self.start[self.first_theory :]
+
+    def _of_corrections(self, parameters: Floats) -> Floats:
+        return parameters[len(self.shape.names) : self.first_theory]
 
     def _pulls(self, parameters: Floats) -> Floats:
         return np.asarray((parameters[self._prior_place] - self._prior_value) / self._prior_width)

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import html
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
 
@@ -15,60 +14,18 @@ from .. import _check
 from .._check import Floats, show
 from ..densities import Densities
 from ..errors import InputError
-from ..flavours import combination
+from ..files.whole import PathLike
+from ..theory import Theory
+from ._answers import BlindDirection, Profile, ends, propagated, weights_of
+from ._bend import map_curvature
 from ._curvature import curvature
 from ._problem import Problem
+from ._result_files import load, save
 from ._solve import BLIND, Solution, scaled, solve
 
 __all__ = ["BlindDirection", "FitResult", "Profile"]
 
-#: Parts of a direction that are shown.
-_SHOWN = 0.1
-
 Rebuild = Callable[[Mapping[str, float]], Problem]
-
-
-@dataclass(frozen=True, eq=False)
-class BlindDirection:
-    """A direction of the parameters along which the data do not change.
-
-    Parameters
-    ----------
-    singular_value : float
-        In parts of the largest, parameters in units of their own effect.
-    parameters : dict
-        Name -> part, the largest 1.
-    values : ndarray, (flavour, node)
-        How x f(x) changes along it, in the order of the shape, the largest change 1 (or all 0).
-    """
-
-    singular_value: float
-    parameters: dict[str, float]
-    values: Floats
-
-    def __str__(self) -> str:
-        parts = [f"{part:+.3g} {name}" for name, part in self.parameters.items() if abs(part) >= _SHOWN]
-        return f"{' '.join(parts)} (singular value {self.singular_value:.1e})"
-
-
-@dataclass(frozen=True, eq=False)
-class Profile:
-    """Chi-square against one parameter, all others fitted again.
-
-    Parameters
-    ----------
-    name : str
-    values, chi2 : ndarray, (point,)
-        Chi-square of data and priors.
-    parameters : ndarray, (point, parameter)
-    converged : ndarray of bool, (point,)
-    """
-
-    name: str
-    values: Floats
-    chi2: Floats
-    parameters: Floats
-    converged: Any
 
 
 class FitResult:
@@ -77,7 +34,7 @@ class FitResult:
     Attributes
     ----------
     names : tuple of str
-        Parameters of the shape, then of the theory.
+        Parameters of the shape, then of corrections, then of the theory.
     parameters : ndarray, (parameter,)
     chi2, chi2_priors : float
         Of the data, and of the priors.
@@ -105,16 +62,13 @@ class FitResult:
         self.delta_chi2, self.rebuilt = delta_chi2, rebuilt
         self.data = problem.count
         squares = solution.residuals**2
-        self.chi2, self.chi2_priors = (
-            float(squares[: problem.rows].sum()),
-            float(squares[problem.rows :].sum()),
-        )
+        self.chi2 = float(squares[: problem.rows].sum())
+        self.chi2_priors = float(squares[problem.rows :].sum())
         self.converged, self.distance = solution.converged, solution.distance
         self.calls = {"residuals": solution.residual_calls, "jacobian": solution.jacobian_calls}
         sides = (("lower", solution.at_low), ("upper", solution.at_high))
         self.at_bounds = {self.names[place]: side for side, at in sides for place in np.flatnonzero(at)}
-        for array in (self.parameters,):
-            array.flags.writeable = False
+        self.parameters.flags.writeable = False
 
     # ---- values ----------------------------------------------------------------------------------------
 
@@ -136,6 +90,25 @@ class FitResult:
     def prediction(self) -> Floats:
         """The data predicted, (datum,)."""
         return self._problem.prediction(self.parameters)
+
+    @property
+    def theory(self) -> Theory | None:
+        """What was assumed, theory parameters at their fitted values; None where the map did not say."""
+        from .maps import theory_at
+
+        assumed = self._problem.theory
+        at = {name: self.value(name) for name in self._problem.reference}
+        return None if assumed is None else theory_at(assumed, at)
+
+    @property
+    def solved(self) -> dict[str, float]:
+        """What sum rules determine: name -> value."""
+        return self._problem.shape.solved(self._of_shape(self.parameters))
+
+    @property
+    def map_at(self) -> dict[str, float]:
+        """Theory parameters that were fitted -> where the map of the fit is exact."""
+        return dict(self._problem.reference)
 
     # ---- uncertainties ---------------------------------------------------------------------------------
 
@@ -160,7 +133,8 @@ class FitResult:
     def covariance(self) -> Floats | None:
         """Covariance of the parameters, (parameter, parameter), or None where there is none.
 
-        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`. Rows and columns of
+        Twice the inverse of the second derivatives of chi-square, times `delta_chi2`; those of the map with
+        respect to theory parameters are among them if the fit knows how to rebuild it. Rows and columns of
         parameters on a bound are 0: the covariance is that of the others with these where they are. None if
         the search has not ended at a minimum, or if neither data nor priors see some direction.
         """
@@ -193,6 +167,11 @@ class FitResult:
 
         room = np.minimum(self.parameters - problem.low, problem.high - self.parameters)
         matrix, unsettled = curvature(gradient, self.parameters, axes, room)
+        if self._rebuild is not None and problem.reference:
+            of_theory = axes[-len(problem.reference) :]
+            errors = np.linalg.norm(of_theory, axis=1)
+            bend = map_curvature(problem, self.parameters, errors, self._rebuild)
+            matrix += of_theory.T @ bend @ of_theory
         values, vectors = np.linalg.eigh(matrix)
         return None if (values <= 0.0).any() else (values, vectors, unsettled)
 
@@ -236,17 +215,39 @@ class FitResult:
             If there is no covariance, or a flavour or x is wrong.
         """
         shape = self._problem.shape
-        root = self._root()[: len(shape.names)]
-        active = range(1, max(self._problem.nf, *map(abs, set(shape.flavours) - {21}), 1) + 1)
-        weights = combination(flavour, active)
-        jacobian = shape.jacobian(self._of_shape(self.parameters))
-        for number in weights:
-            if number not in shape.flavours:
-                _check.refuse("flavour", flavour, f"the shape has no flavour {number}")
+        root, jacobian = self._root[: len(shape.names)], shape.jacobian(self._of_shape(self.parameters))
+        weights = weights_of(self._problem, flavour)
         along = sum(weight * jacobian[:, shape.flavours.index(n)] for n, weight in weights.items())
         changes = np.atleast_2d(self._problem.shape.grid.interpolate(root.T @ along, np.ravel(x)))
         result: Floats = np.linalg.norm(changes, axis=0).reshape(np.shape(x))[()]
         return result
+
+    def error_through(self, function: Callable[[Densities], ArrayLike]) -> Floats:
+        """Uncertainty of anything computed from densities at the start, to first order.
+
+        Parameters
+        ----------
+        function : callable
+            Densities -> array_like, (replica, ...), such as ``lambda d: d.moment("g", 2)``.
+
+        Returns
+        -------
+        ndarray
+            The axes of the answer without the first; by differences over one uncertainty to either side.
+
+        Raises
+        ------
+        InputError
+            If there is no covariance.
+        """
+        return propagated(self.densities, self.changes, function)
+
+    @property
+    def changes(self) -> Floats:
+        """How x f(x) changes along the axes of the error ellipsoid, (direction, flavour, node)."""
+        shape = self._problem.shape
+        jacobian = shape.jacobian(self._of_shape(self.parameters))
+        return np.tensordot(self._root[: len(shape.names)].T, jacobian, axes=1)
 
     def eigenvectors(self) -> Densities:
         """Densities at the ends of the axes of the error ellipsoid.
@@ -262,17 +263,11 @@ class FitResult:
         InputError
             If there is no covariance, or an end lies beyond a bound.
         """
-        root = self._root()
-        ends = [self.parameters, *(self.parameters + sign * r for r in root.T for sign in (1.0, -1.0))]
-        for name, low, high in zip(self.names, self._problem.low, self._problem.high, strict=True):
-            place = self._place(name)
-            for end in ends:
-                if not low <= end[place] <= high:
-                    limits = f"an end of the ellipsoid lies beyond [{show(float(low))}, {show(float(high))}]"
-                    _check.refuse(name, float(end[place]), limits)
-        shape = self._problem.shape
-        sets = np.stack([self._of_shape(end) for end in ends])
-        return shape.densities(sets, q2=self._problem.q2, nf=self._problem.nf)
+        return self._eigenvectors
+
+    @cached_property
+    def _eigenvectors(self) -> Densities:
+        return ends(self._problem, self.parameters, self._root)
 
     def profile(self, name: str, values: ArrayLike) -> Profile:
         """Fit again with one parameter held at each of some values.
@@ -305,14 +300,15 @@ class FitResult:
     def _held(self, place: int, value: float) -> Solution:
         """Fit with one parameter held."""
         problem = self._problem
-        if self._rebuild is not None and place >= len(problem.shape.names):
-            at = dict(zip(problem.reference, self.parameters[len(problem.shape.names) :], strict=True))
+        if self._rebuild is not None and place >= problem.first_theory:
+            at = dict(zip(problem.reference, self.parameters[problem.first_theory :], strict=True))
             at[self.names[place]] = value
             problem = self._rebuild({key: float(number) for key, number in at.items()})
         return solve(problem, self.parameters, held={place: value})
 
+    @cached_property
     def _root(self) -> Floats:
-        """Return R with R R^T = covariance, (parameter, direction), the longest direction first."""
+        """R with R R^T = covariance, (parameter, direction), the longest direction first."""
         covariance = self.covariance
         if covariance is None:
             raise InputError(f"there is no covariance: {'; '.join(self.status)}")
@@ -332,20 +328,10 @@ class FitResult:
         _, values, right, size = scaled(part)
         top = values[0] if values[0] > 0.0 else 1.0
         found = [
-            self._direction(free, right[j] / size, float(values[j] / top))
+            BlindDirection.of(self._problem, self.parameters, free, right[j] / size, float(values[j] / top))
             for j in np.flatnonzero(values <= BLIND * top)
         ]
         return tuple(found[::-1])
-
-    def _direction(self, free: Any, along: Floats, singular: float) -> BlindDirection:
-        whole = np.zeros(len(self.names))
-        whole[free] = along / along[np.argmax(abs(along))]
-        shape = self._problem.shape
-        by = shape.jacobian(self._of_shape(self.parameters))
-        change = np.tensordot(whole[: len(shape.names)], by, axes=(0, 0))
-        largest = abs(change).max()
-        parts = {name: float(part) for name, part in zip(self.names, whole, strict=True) if part != 0.0}
-        return BlindDirection(singular, parts, change / largest if largest > 0.0 else change)
 
     def _of_shape(self, parameters: Floats) -> Floats:
         return parameters[: len(self._problem.shape.names)]
@@ -355,6 +341,47 @@ class FitResult:
             known = f"there are {_check.show_all(self.names)}{_check.nearest(name, self.names)}"
             _check.refuse("name", name, f"no parameter of this name; {known}")
         return self.names.index(name)
+
+    # ---- files -----------------------------------------------------------------------------------------
+
+    def save(self, path: PathLike) -> None:
+        """Store what was found, whole or not at all.
+
+        Parameters
+        ----------
+        path : path-like
+            The file, HDF5 in a checked wrapping.
+
+        Raises
+        ------
+        StoreError
+            If it cannot be written; an old file at `path` is untouched then.
+        """
+        save(path, self)
+
+    @classmethod
+    def load(cls, path: PathLike, *, copy: bool = False) -> FitResult:
+        """Read what `save` wrote, after checking that no bit of the file has changed.
+
+        Parameters
+        ----------
+        path, copy
+            As for `Ensemble.load`.
+
+        Returns
+        -------
+        FitResult
+            All answers as before, to the last bit; `profile` needs the map and is refused.
+
+        Raises
+        ------
+        StoreError
+            If the file is not ours, damaged, of a newer format, or does not hold a fit.
+        """
+        arguments, known = load(path, copy)
+        result = cls(rebuild=None, **arguments)
+        result.__dict__.update(known)
+        return result
 
     # ---- in words --------------------------------------------------------------------------------------
 

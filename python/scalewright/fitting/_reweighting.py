@@ -12,10 +12,10 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from .. import _check
-from .._check import Floats
+from .._check import Floats, Integers
 from ..errors import InputError
 
-__all__ = ["METHODS", "effective", "normalised", "reweighted"]
+__all__ = ["METHODS", "effective", "normalised", "places", "reweighted"]
 
 METHODS = ("Giele-Keller", "1012.0836")
 
@@ -65,6 +65,13 @@ def normalised(given: ArrayLike | None, count: int) -> Floats:
     total = weights.sum()
     # those that are normalised keep their bits
     return weights if abs(total - 1.0) < 1e-12 else weights / total
+
+
+def places(weights: Floats, count: int) -> Integers:
+    """Return which replicas `count` of equal weight are, in rising order (arXiv:1108.1758)."""
+    ends = np.cumsum(weights)
+    marks = (np.arange(count) + 0.5) / count * ends[-1]
+    return np.asarray(np.minimum(np.searchsorted(ends, marks, side="left"), weights.size - 1))
 
 
 def effective(weights: Floats) -> float:

@@ -11,7 +11,7 @@ from typing import Protocol
 
 import numpy as np
 
-from .._check import Floats
+from .._check import Floats, show
 from .._measured.correlated import heaviest
 from ..errors import InputError
 
@@ -55,6 +55,7 @@ class Cholesky:
         self._size = np.sqrt(np.diagonal(covariance))
         for datum in np.flatnonzero(~(self._size > 0.0))[:1]:
             raise InputError(f"covariance: datum {datum + 1} has no uncertainty")
+        _refuse_lost(self._size)
         scaled = covariance / self._size[:, None] / self._size
         # Fortran order: LAPACK works in place and makes no copy of its own
         factor, failed = lapack.dpotrf(np.asfortranarray(scaled), lower=1, clean=1)
@@ -112,6 +113,7 @@ class LowRank:
         for datum in np.flatnonzero(~(sigma > 0.0))[:1]:
             what = 'has no uncertainty of its own: use form = "covariance"'
             raise InputError(f"nuisance: datum {datum + 1} {what}")
+        _refuse_lost(sigma)
         self._sigma = sigma
         self._left, self._values, self._right = np.linalg.svd(shifts / sigma[:, None], full_matrices=False)
         # 1 - 1/sqrt(1 + S^2) without cancellation at small S
@@ -135,6 +137,15 @@ class LowRank:
     def log_determinant(self) -> float:
         """The logarithm of det C."""
         return float(2.0 * np.log(self._sigma).sum() + np.log1p(self._values**2).sum())
+
+
+def _refuse_lost(size: Floats) -> None:
+    """Refuse uncertainties whose squares have overflowed or lost digits."""
+    with np.errstate(over="ignore", under="ignore"):
+        square = size**2
+    for datum in np.flatnonzero(~np.isfinite(square) | (square < np.finfo(float).tiny))[:1]:
+        what = "its square is no float of full precision; choose another unit"
+        raise InputError(f"uncertainty {show(size[datum])} of datum {datum + 1}: {what}")
 
 
 def _divided(array: Floats, size: Floats) -> Floats:

@@ -34,7 +34,7 @@ def status(result: FitResult, problem: Problem, solution: Solution) -> tuple[str
     if result.covariance is not None and result._curvature is not None and result._curvature[2]:
         count, of = result._curvature[2], len(solution.free)
         lines.append(f"along {count} of {of} directions chi-square is no parabola: uncertainties are linear")
-    lines += _theory(result, problem)
+    lines += [*_theory(result, problem), *getattr(problem, "notes", ())]
     if not problem.shape.exact_jacobian:
         lines.append("the derivative of the shape is made of differences")
     return tuple(lines)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import html
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -11,21 +11,22 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats, Integers, show
+from ..below import Below
 from ..densities import Densities
 from ..errors import InputError
 from ..files.whole import PathLike
 from ..operators import Operators
-from . import _ensemble_files, _reweighting, _statistics
+from . import _ensemble_files, _reweighting
+from ._ensemble_statistics import Statistics
 from ._statistics import Estimate
 
 __all__ = ["Ensemble", "Estimate"]
 
 #: Part of the fits that may fail before every summary warns.
 _MANY_FAILED = 0.01
-_ONE_SIGMA = 0.6827
 
 
-class Ensemble:
+class Ensemble(Statistics):
     """Replicas of densities, with the parameters they were made from, and weights.
 
     Parameters
@@ -51,6 +52,8 @@ class Ensemble:
         Of the pseudo-data.
     negative : int
         How many pseudo-data were negative.
+    notes : sequence of str
+        What else is to be known, in sentences.
 
     Raises
     ------
@@ -83,6 +86,7 @@ class Ensemble:
         failed: Mapping[int, str] | None = None,
         seed: int | None = None,
         negative: int = 0,
+        notes: Sequence[str] = (),
     ) -> None:
         if not isinstance(densities, Densities):
             _check.refuse("densities", densities, "densities must be Densities")
@@ -106,6 +110,7 @@ class Ensemble:
         self.failed = dict(sorted((failed or {}).items()))
         self.seed = None if seed is None else _check.whole("seed", seed, least=0)
         self.negative = _check.whole("negative", negative, least=0)
+        self.notes = tuple(str(note) for note in notes)
 
     # ---- what there is ---------------------------------------------------------------------------------
 
@@ -161,95 +166,6 @@ class Ensemble:
             The axes of `x` last.
         """
         return self.densities.at(None if q2 is None else _check.scale("q2", q2), x, flavour, nf)
-
-    # ---- statistics ------------------------------------------------------------------------------------
-
-    def mean(self, quantity: str | ArrayLike) -> Estimate:
-        """Mean of a quantity.
-
-        Parameters
-        ----------
-        quantity : str or array_like, (replica, ...)
-            Name of a parameter, or anything computed from each replica, such as ``at(...)`` or a prediction.
-
-        Returns
-        -------
-        Estimate
-            Value and sampling error, the axes of the quantity without the first.
-
-        Raises
-        ------
-        InputError
-            If there are fewer than two replicas, or the quantity does not have one entry for each.
-        """
-        return _statistics.mean(self._of_each("quantity", quantity), self.weights)
-
-    def std(self, quantity: str | ArrayLike) -> Estimate:
-        """Standard deviation of a quantity.
-
-        Parameters
-        ----------
-        quantity : str or array_like, (replica, ...)
-            As for `mean`.
-
-        Returns
-        -------
-        Estimate
-        """
-        return _statistics.deviation(self._of_each("quantity", quantity), self.weights)
-
-    def interval(self, quantity: str | ArrayLike, level: float = _ONE_SIGMA) -> tuple[Estimate, Estimate]:
-        """Central interval of a quantity.
-
-        Parameters
-        ----------
-        quantity : str or array_like, (replica, ...)
-            As for `mean`.
-        level : float
-            Part of the replicas inside, in (0, 1).
-
-        Returns
-        -------
-        low, high : Estimate
-        """
-        inside = _check.real("level", level, above=0.0, below=1.0)
-        values = self._of_each("quantity", quantity)
-        low, high = (_statistics.quantile(values, self.weights, 0.5 * (1 + s * inside)) for s in (-1, 1))
-        return low, high
-
-    def correlation(self, one: str | ArrayLike, other: str | ArrayLike) -> Estimate:
-        """Correlation of two quantities, element by element.
-
-        Parameters
-        ----------
-        one, other : str or array_like, (replica, ...)
-            As for `mean`; the axes behind the first are broadcast, so that ``a[:, :, None]`` and
-            ``b[:, None, :]`` give a matrix.
-
-        Returns
-        -------
-        Estimate
-            nan where one of them does not vary.
-        """
-        first, second = self._of_each("one", one), self._of_each("other", other)
-        most = max(first.ndim, second.ndim)
-        first, second = (a.reshape(len(a), *(1,) * (most - a.ndim), *a.shape[1:]) for a in (first, second))
-        try:
-            np.broadcast_shapes(first.shape, second.shape)
-        except ValueError:
-            _check.refuse("other", second, f"its axes cannot be broadcast to {first.shape}")
-        return _statistics.correlation(first, second, self.weights)
-
-    def _of_each(self, name: str, quantity: str | ArrayLike) -> Floats:
-        """Return a checked quantity, (replica, ...)."""
-        if self.replicas < 2 or self.weights.max() >= 1.0:
-            raise InputError(f"{self.replicas} replica of weight: statistics need at least two")
-        if isinstance(quantity, str):
-            return self.parameter(quantity)
-        array = _check.real_array(name, quantity)
-        if array.ndim == 0 or len(array) != self.replicas:
-            _check.refuse(name, array, f"the first axis must have {self.replicas} replicas")
-        return array
 
     # ---- new ensembles ---------------------------------------------------------------------------------
 
@@ -307,6 +223,64 @@ class Ensemble:
             _check.refuse("operators", operators, "operators must be Operators")
         return self._with(densities=operators.apply(self.densities, **options))
 
+    def stream(self, operators: Operators, **options: Any) -> Iterator[Ensemble]:
+        """Yield the ensemble at the scales of some operators one after another: needs memory for one only.
+
+        Parameters
+        ----------
+        operators : Operators
+        options
+            As for `Operators.stream`, such as ``q2=[10.0, 100.0]``.
+
+        Yields
+        ------
+        Ensemble
+            Of one scale each.
+        """
+        if not isinstance(operators, Operators):
+            _check.refuse("operators", operators, "operators must be Operators")
+        return (self._with(densities=part) for part in operators.stream(self.densities, **options))
+
+    def unweighted(self, replicas: int | None = None) -> Ensemble:
+        """Return replicas of equal weight that stand for weighted ones, the likely ones several times.
+
+        Parameters
+        ----------
+        replicas : int, optional
+            How many; by default the effective number, rounded down.
+
+        Returns
+        -------
+        Ensemble
+            Weights are equal; a replica that is taken n times appears n times, with its `index`.
+
+        Raises
+        ------
+        InputError
+            If `replicas` is not a whole number from 1.
+
+        Notes
+        -----
+        R. Ball et al., arXiv:1108.1758, section 3 (recalled from memory): marks at equal distances on the
+        line of the summed weights; each takes the replica in whose part it falls. Here they stand in the
+        middle of equal parts, so that equal weights give the replicas themselves; nothing is drawn at random.
+        Sampling errors take what is taken several times for independent replicas and come out too small:
+        ask the weighted ensemble for them.
+        """
+        most = int(self.effective_replicas * (1.0 + 1e-12))  # of N equal weights it is N to rounding
+        count = most if replicas is None else _check.whole("replicas", replicas, least=1, most=10**7)
+        taken = _reweighting.places(self.weights, count)
+        held = self.densities
+        below = held.below
+        if below is not None:
+            below = Below(below.momentum[:, taken], below.number[:, taken])
+        made = Densities(
+            held.grid, q2=held.q2, nf=held.nf, flavours=held.flavours,
+            values=held.values[..., taken, :, :], below=below,
+        )  # fmt: skip
+        each = {name: getattr(self, name)[taken] for name in ("parameters", "index", "chi2", "chi2_data")}
+        return self._with(densities=made, weights=None, **each)
+
     def _with(self, **changed: Any) -> Ensemble:
         kept = {name: getattr(self, name) for name in _ensemble_files.PARTS}
         kept |= {"densities": self.densities, **changed}
@@ -351,18 +325,41 @@ class Ensemble:
         densities, parts = _ensemble_files.load(path, copy)
         return cls(densities, **parts)
 
+    def to_csv(self, path: PathLike) -> None:
+        """Write the replicas as a lattice; its columns are told in `scalewright.files.csv`.
+
+        Parameters
+        ----------
+        path : path-like
+
+        Raises
+        ------
+        InputError
+            If replicas have weights, which a lattice does not hold: write those of `unweighted`.
+        StoreError
+            If the file cannot be written.
+        """
+        if self.weights.min() != self.weights.max():
+            raise InputError("a lattice holds no weights: write that of unweighted()")
+        self.densities.to_csv(path)
+
     # ---- in words --------------------------------------------------------------------------------------
+
+    @property
+    def _too_many_failed(self) -> bool:
+        return len(self.failed) > _MANY_FAILED * (self.replicas + len(self.failed))
 
     def __repr__(self) -> str:
         """One line."""
-        lost = f", {len(self.failed)} failed" if self.failed else ""
+        much = ", more than 1 per cent: see failed" if self._too_many_failed else ""
+        lost = f", {len(self.failed)} failed{much}" if self.failed else ""
         return f"Ensemble({self.replicas} replicas, {len(self.names)} parameters{lost})"
 
     def __str__(self) -> str:
         """One screen."""
         total = self.replicas + len(self.failed)
         lines = ["Ensemble", f"  {self.replicas} replicas of {total}"]
-        if len(self.failed) > _MANY_FAILED * total:
+        if self._too_many_failed:
             lines.append(f"  WARNING: {len(self.failed)} fits failed, more than 1 per cent: see failed")
         elif self.failed:
             lines.append(f"  {len(self.failed)} fits failed and are left out: see failed")
@@ -370,6 +367,7 @@ class Ensemble:
             lines.append(f"  weighted: {self.effective_replicas:.1f} are effective")
         if self.negative:
             lines.append(f"  {self.negative} pseudo-data were negative, and kept")
+        lines += [f"  {note}" for note in self.notes]
         for what, values in (("pseudo-data", self.chi2), ("the data", self.chi2_data)):
             if self.data and np.isfinite(values).all():
                 lines.append(f"  mean chi-square {self.weights @ values:.5g} to {what}, for {self.data} data")

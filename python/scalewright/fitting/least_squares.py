@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -10,13 +10,15 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats
+from .._corrected.bound import Correction
 from ..errors import InputError
 from ._problem import Distance, Map, Problem, Theory
 from ._result import BlindDirection, FitResult, Profile
+from ._settling import NotSettledError, Settling
 from ._shape import Shape
 from ._solve import Callback, Solution, solve
 
-__all__ = ["BlindDirection", "FitResult", "Profile", "fit"]
+__all__ = ["BlindDirection", "FitResult", "NotSettledError", "Profile", "fit"]
 
 #: The map is built anew until theory parameters lie within this part of their uncertainty of its own, or so
 #: often.
@@ -31,6 +33,7 @@ def fit(
     start: ArrayLike | Mapping[str, float] | None = None,
     theory: Theory = (),
     priors: Mapping[str, tuple[float, float]] | None = None,
+    corrections: Sequence[Correction] | Correction = (),
     rebuild: Callable[[Mapping[str, float]], Map] | None = None,
     delta_chi2: float = 1.0,
     evaluations: int | None = None,
@@ -53,6 +56,9 @@ def fit(
         does not say it itself.
     priors : mapping
         Name -> (value, standard deviation), besides those of the shape.
+    corrections : sequence of Correction
+        Higher twist, deuteron and nuclear factors, see `scalewright.corrections`; their parameters are fitted
+        as well.
     rebuild : callable, optional
         ``f({"alpha_s": value, ...})`` returning the map for other theory parameters. With it the fit is
         repeated until they lie within 0.01 of their uncertainty of those of the map; without it their effect
@@ -73,7 +79,10 @@ def fit(
     ------
     InputError
         If the parts do not fit each other, there are more parameters than data and priors, or a start lies
-        outside its bounds.
+        outside its bounds or where chi-square is not finite.
+    NotSettledError
+        An `InputError`: if theory parameters have not settled after 10 maps, or `rebuild` raises. The last
+        fit is its attribute `result`.
 
     Notes
     -----
@@ -106,20 +115,24 @@ def fit(
     for name, function in (("rebuild", rebuild), ("callback", callback)):
         if function is not None:
             _check.function(name, function)
-    problem = Problem(fmap, chi2, shape, theory, priors)
+    problem = Problem(fmap, chi2, shape, theory, priors, corrections=corrections)
     problem.check_enough()
     begin = starting(problem, start)
-    again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors)
+    again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors, corrections)
     solution = solve(problem, begin, evaluations=evaluations, callback=callback)
-    rebuilt = 0
+    rebuilt, settling = 0, Settling()
     while again is not None and _is_far(problem, solution):
+        last = FitResult(problem, solution, delta_chi2, rebuilt, again)
         if rebuilt == _REBUILDS:
             moved = _check.show_all(problem.reference)
-            raise InputError(f"rebuild: {moved} has not settled after {rebuilt} maps")
-        count = len(shape.names)
-        at = dict(zip(problem.reference, solution.parameters[count:].tolist(), strict=True))
-        problem = again(at)
-        solution = solve(problem, solution.parameters, evaluations=evaluations, callback=callback)
+            raise NotSettledError(f"rebuild: {moved} has not settled after {rebuilt} maps", last)
+        begin = np.array(solution.parameters)
+        found = begin[problem.first_theory :] = settling.next(*_moves(problem, solution))
+        try:
+            problem = again(dict(zip(problem.reference, found.tolist(), strict=True)))
+        except InputError as error:
+            raise NotSettledError(str(error), last) from error
+        solution = solve(problem, begin, evaluations=evaluations, callback=callback)
         rebuilt += 1
     return FitResult(problem, solution, delta_chi2, rebuilt, again)
 
@@ -127,16 +140,18 @@ def fit(
 class _Rebuilder:
     """The problem of a fit, for other theory parameters."""
 
-    def __init__(self, rebuild: Any, chi2: Distance, shape: Shape, priors: Any) -> None:
+    def __init__(self, rebuild: Any, chi2: Distance, shape: Shape, priors: Any, corrections: Any) -> None:
         self._rebuild, self._chi2, self._shape, self._priors = rebuild, chi2, shape, priors
+        self._corrections = corrections
 
     def __call__(self, at: Mapping[str, float]) -> Problem:
         fmap = _check.raised("rebuild", self._rebuild, dict(at))
-        return Problem(fmap, self._chi2, self._shape, dict(at), self._priors)
+        own = self._corrections
+        return Problem(fmap, self._chi2, self._shape, dict(at), self._priors, corrections=own)
 
 
 def starting(problem: Problem, start: Any) -> Floats:
-    """Return where to begin, checked against the bounds."""
+    """Return where to begin, checked against the bounds; chi-square must be finite there."""
     begin = np.array(problem.start)
     if isinstance(start, Mapping):
         for name, value in start.items():
@@ -150,15 +165,24 @@ def starting(problem: Problem, start: Any) -> Floats:
         if not low <= value <= high:
             limits = f"must lie in [{_check.show(float(low))}, {_check.show(float(high))}]"
             _check.refuse(f"start[{name}]", float(value), limits)
+    with np.errstate(over="ignore", invalid="ignore"):
+        residuals = problem.residuals(begin)
+        if not np.isfinite(residuals @ residuals):
+            raise InputError("start: chi-square is not finite there: begin nearer to the data")
     return begin
 
 
 def _is_far(problem: Problem, solution: Solution) -> bool:
     """Say whether theory parameters lie further from those of the map than a small part of their error."""
-    count = len(problem.shape.names)
-    moved = solution.parameters[count:] - problem.start[count:]
-    if not moved.any():
+    if not problem.reference:
         return False
+    at, found, errors = _moves(problem, solution)
+    return bool((abs(found - at) > _CLOSE * errors).any())
+
+
+def _moves(problem: Problem, solution: Solution) -> tuple[Floats, Floats, Floats]:
+    """Return theory parameters of the map, of the fit, and their uncertainties to first order."""
+    first = problem.first_theory
     inverse = np.linalg.pinv(solution.jacobian.T @ solution.jacobian, hermitian=True)
-    errors = np.sqrt(np.maximum(np.diagonal(inverse)[count:], 0.0))
-    return bool((abs(moved) > _CLOSE * errors).any())
+    errors = np.sqrt(np.maximum(np.diagonal(inverse)[first:], 0.0))
+    return problem.start[first:], solution.parameters[first:], np.where(errors > 0.0, errors, 1.0)

@@ -6,7 +6,7 @@ they finish, nor a kill and a new start change a bit of it.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
 from contextlib import closing
 from typing import TYPE_CHECKING, Any
 
@@ -15,17 +15,20 @@ from numpy.typing import ArrayLike
 
 from .. import _check
 from .._check import Floats
+from .._corrected.bound import Correction
 from .._progress import Progress, watcher
-from ..errors import ScalewrightError
+from ..errors import InputError, ScalewrightError
 from ..files.whole import PathLike
+from ._dask import Client, as_executor, threads
 from ._journal import Journal, Outcome
+from ._neglected import notes as neglected
 from ._problem import Map, Problem, Theory
 from ._shape import Shape
 from ._solve import solve
 from ._stopping import Stopping
 from .chi_square import ChiSquare
 from .ensemble import Ensemble
-from .least_squares import starting
+from .least_squares import fit, starting
 
 if TYPE_CHECKING:
     from ._pool import Engine
@@ -47,12 +50,14 @@ def fit_replicas(
     start: ArrayLike | Mapping[str, float] | None = None,
     theory: Theory = (),
     priors: Mapping[str, tuple[float, float]] | None = None,
-    executor: Engine = None,
+    rebuild: Callable[[Mapping[str, float]], Map] | None = None,
+    executor: Engine | Client = None,
     workers: int | None = None,
     chunk: int | None = None,
     journal: PathLike | None = None,
     progress: Progress = False,
     evaluations: int | None = None,
+    corrections: Sequence[Correction] | Correction = (),
     validation: float = 0.0,
     patience: int = 5,
     limit: float = 3600.0,
@@ -63,17 +68,24 @@ def fit_replicas(
     ----------
     fmap : ForwardMap
     chi2 : ChiSquare
-        Pseudo-data are drawn around its measurements; its covariance serves all replicas.
+        Pseudo-data are drawn around its measurements, from the errors of these and from its covariance of the
+        theory (as in arXiv:1906.10698, recalled from memory); its covariance serves all replicas.
     shape : Shape
     replicas : int
         How many in all, those of the journal included.
     seed : int
         Replica i draws from ``numpy.random.SeedSequence(seed, spawn_key=(i,))``.
-    start, theory, priors, evaluations
+    start, theory, priors, corrections, evaluations
         As for `fit`. By default each replica starts from the best fit to the data; with `validation` from the
         start of the shape. The values of priors are drawn, like data.
-    executor : Executor, or callable that makes one, optional
-        By default a pool of processes of our own.
+    rebuild : callable, optional
+        As for `fit`: the data are fitted first with maps built anew until theory parameters settle, and all
+        replicas start there, with the last map. It moves to first order in each of them; `Ensemble.notes`
+        says by how much the neglected curvature of the map would move a fit one uncertainty away. Without
+        `rebuild` theory parameters move to first order from those of `fmap`, however far that is.
+    executor : Executor, callable that makes one, or Dask client, optional
+        By default a pool of processes of our own. For several machines a ``distributed.Client``, or its
+        ``get_executor()``: Dask replaces workers that are lost.
     workers : int, optional
         Processes of our own pool; 1 stays in this process. By default all processors, or, for another
         executor, as many as it says it has.
@@ -99,16 +111,20 @@ def fit_replicas(
     Raises
     ------
     InputError
-        As `fit`; if the shape cannot be sent to other processes.
+        As `fit`; if the shape cannot be sent to other processes; if `rebuild` meets `validation`.
     StoreError
         If the journal is of another fit or cannot be written; what was computed before is in it.
     ScalewrightError
-        If workers die again and again, nothing comes back within `limit`, or all fits failed.
+        If workers die again and again, nothing comes back within `limit`, all fits failed, or with `rebuild`
+        that to the data did.
 
     Notes
     -----
     Bits are equal for any number of workers that run with the same number of BLAS threads as this process.
-    For many workers set OPENBLAS_NUM_THREADS=1, or its like, before Python starts.
+    For many workers set OPENBLAS_NUM_THREADS=1, or its like, before Python starts; Dask sets it for its own.
+
+    Workers of one machine map one file with all that replicas have in common; a worker that does not see the
+    file gets its bytes with its first tasks, and keeps them.
 
     Examples
     --------
@@ -134,28 +150,41 @@ def fit_replicas(
     if not isinstance(chi2, ChiSquare):
         _check.refuse("chi2", chi2, f"chi2 must be a ChiSquare, not {type(chi2).__name__}")
     stopping = Stopping.of(validation, patience)
-    problem = Problem(fmap, chi2, shape, theory, priors, compressed=stopping is None)
-    if stopping is None:
-        problem.check_enough()
-    begin = starting(problem, start)
-    if start is None and stopping is None:
-        central = solve(problem, begin, evaluations=evaluations)
-        begin = central.parameters if central.converged else begin
+    notes: tuple[str, ...] = ()
+    if rebuild is not None:
+        if stopping is not None:
+            raise InputError("rebuild: there is no fit to all data to settle on with validation")
+        central = fit(fmap, chi2, shape, start=start, theory=theory, priors=priors, rebuild=rebuild,
+                      corrections=corrections, evaluations=evaluations)  # fmt: skip
+        if not central.converged:
+            raise ScalewrightError(f"rebuild: the fit to the data has {central.status[0]}")
+        problem, begin, notes = central._problem, central.parameters, neglected(central, chi2)
+    else:
+        problem = Problem(
+            fmap, chi2, shape, theory, priors, corrections=corrections, compressed=stopping is None
+        )
+        if stopping is None:
+            problem.check_enough()
+        begin = starting(problem, start)
+        if start is None and stopping is None:
+            first = solve(problem, begin, evaluations=evaluations)
+            begin = first.parameters if first.converged else begin
     work = _Work(problem, chi2, _check.whole("seed", seed, least=0), begin, evaluations, stopping)
-    size = _workers(executor, workers)
+    engine: Engine = as_executor(executor)
+    size = _workers(engine, workers)
     limit = _check.real("limit", limit, above=0.0)
     if chunk is None:
         chunk = min(_LARGEST_CHUNK, max(1, count // (_TASKS * size)))
     chunk = _check.whole("chunk", chunk, least=1)
     report = watcher(progress, "replicas")
-    options: dict[str, Any] = {"executor": executor, "workers": size, "chunk": chunk, "limit": limit}
+    options: dict[str, Any] = {"executor": engine, "workers": size, "chunk": chunk, "limit": limit}
     if journal is None:
         outcomes = _all(work, count, {}, None, report, options)
     else:
         with Journal(journal, work.described()) as book:
             work.begin = np.array(book.fit["start"])
             outcomes = _all(work, count, book.outcomes, book, report, options)
-    return _gathered(problem, [outcomes[index] for index in range(count)], work.seed)
+    return _gathered(problem, [outcomes[index] for index in range(count)], work.seed, notes)
 
 
 class _Work:
@@ -168,13 +197,19 @@ class _Work:
         self._problem, self._chi2, self.seed = problem.compact(), chi2, seed
         self.begin, self._evaluations, self._stopping = begin, evaluations, stopping
         self._at_start = problem.prediction(begin)
+        self._theory_root: Floats | None = None
+        if chi2._theory is not None:
+            values, vectors = np.linalg.eigh(chi2._theory)
+            seen = values > 16.0 * values.size * np.finfo(float).eps * values[-1]  # the others are rounding
+            # the symmetric root: no other is the same wherever a run goes on
+            self._theory_root = (vectors[:, seen] * np.sqrt(values[seen])) @ vectors[:, seen].T
 
     def replica(self, index: int) -> Outcome:
         """Draw and fit one replica; what goes wrong becomes its reason."""
         rng = np.random.default_rng(np.random.SeedSequence(self.seed, spawn_key=(index,)))
         measured, problem = self._chi2.measurements, self._problem
-        pseudo = measured.pseudo_data(rng)
-        moved = problem.shift(self._chi2.whiten(pseudo.values - measured.value))
+        values = self._drawn(rng)
+        moved = problem.shift(self._chi2.whiten(values - measured.value))
         shift = np.concatenate([moved, -rng.normal(size=len(problem.priors))])
         try:
             if self._stopping is None:
@@ -192,7 +227,15 @@ class _Work:
         except Exception as error:  # a shape may raise anything; the other replicas go on
             reason, at = f"{type(error).__name__}: {error}", np.full(len(problem.names), np.nan)
             chi2, chi2_data, steps = np.nan, np.nan, 0
-        return Outcome(index, at, chi2, chi2_data, steps, pseudo.negative, reason)
+        return Outcome(index, at, chi2, chi2_data, steps, int((values < 0.0).sum()), reason)
+
+    def _drawn(self, rng: np.random.Generator) -> Floats:
+        """Return pseudo-data, (datum,)."""
+        values = self._chi2.measurements.pseudo_data(rng).values
+        if self._theory_root is None:
+            return values
+        # what chi-square forgives, replicas must vary: else they spread less than it says
+        return np.asarray(values + self._theory_root @ rng.normal(size=values.size))
 
     def described(self) -> dict[str, Any]:
         """Say which fit this is, for the journal."""
@@ -204,10 +247,19 @@ class _Work:
             "values": self._chi2.measurements.value.tolist(),
             "errors": np.sqrt(np.diagonal(self._chi2.covariance)).tolist(),
             "prediction": self._at_start.tolist(),
+            **self._fingerprint(),
             "bounds": [[_finite(v) for v in side] for side in (problem.low, problem.high)],
             "priors": [[name, *pair] for name, pair in problem.priors.items()],
             "evaluations": self._evaluations,
             "stopping": None if self._stopping is None else self._stopping.described(),
+        }
+
+    def _fingerprint(self) -> dict[str, Any]:
+        """Say what values, errors and prediction leave open: the rest of error model and shape."""
+        slopes = self._problem.jacobian(self.begin)
+        return {
+            "pseudo-data": self._drawn(np.random.default_rng(0)).tolist(),
+            "derivative": np.linalg.norm(slopes, axis=0).tolist(),
         }
 
 
@@ -234,7 +286,9 @@ def _all(
     return found
 
 
-def _gathered(problem: Problem, outcomes: list[Outcome], seed: int) -> Ensemble:
+def _gathered(
+    problem: Problem, outcomes: list[Outcome], seed: int, notes: tuple[str, ...]
+) -> Ensemble:  # fmt: skip
     """Return the ensemble of what converged."""
     good = [outcome for outcome in outcomes if not outcome.reason]
     failed = {outcome.index: outcome.reason for outcome in outcomes if outcome.reason}
@@ -248,7 +302,7 @@ def _gathered(problem: Problem, outcomes: list[Outcome], seed: int) -> Ensemble:
         parameters=parameters, names=problem.names, index=[outcome.index for outcome in good],
         chi2=[outcome.chi2 for outcome in good], chi2_data=[outcome.chi2_data for outcome in good],
         data=problem.count, failed=failed, seed=seed,
-        negative=sum(outcome.negative for outcome in outcomes),
+        negative=sum(outcome.negative for outcome in outcomes), notes=notes,
     )  # fmt: skip
 
 
@@ -260,7 +314,7 @@ def _workers(executor: Engine, workers: int | None) -> int:
         _check.refuse("executor", executor, "executor must be an Executor, or a function that makes one")
     if workers is not None:
         return _check.whole("workers", workers, least=1, most=10**5)
-    said = getattr(executor, "_max_workers", None)
+    said = getattr(executor, "_max_workers", None) or threads(executor)
     return said if isinstance(said, int) and said > 0 else processors()
 
 

@@ -9,7 +9,8 @@ from __future__ import annotations
 
 from ._function_shape import FunctionShape
 from ._network import Network
-from ._power_law import PowerLaw, Term
+from ._power_law import PowerLaw
 from ._shape import Restricted, Shape
+from ._terms import Term
 
 __all__ = ["FunctionShape", "Network", "PowerLaw", "Restricted", "Shape", "Term"]

@@ -7,7 +7,7 @@ use crate::grid::Grid;
 use crate::kernels::{Parts, channel, distances, parts};
 use numpy::{PyArrayDyn, PyReadonlyArray1};
 use pyo3::prelude::*;
-use scalewright_core::convolution::{coefficients_on, kernels_on, massive_rows as core_rows};
+use scalewright_core::convolution::{coefficients_on, convolve_values, kernels_on, massive_rows as core_rows};
 use scalewright_core::kernels::coefficients::{self, Coefficient, Massive, StructureFunction};
 use scalewright_core::kernels::splitting;
 use scalewright_core::numerics::blocks::Matrix;
@@ -44,6 +44,20 @@ pub fn coefficient_matrix(
     let nf = count(py, "nf", nf)?;
     let set = detached::run(py, ALL, None, |watch| coefficients_on(&grid.core, watch))?;
     square(py, &set.matrix(order, function, coefficient, nf as f64))
+}
+
+/// A kernel of the user, its regular part at the points of `Grid.quadrature_z`.
+#[pyfunction]
+pub fn convolution_matrix(
+    py: Python<'_>,
+    grid: &Grid,
+    regular: PyReadonlyArray1<'_, f64>,
+    plus: PyReadonlyArray1<'_, f64>,
+    local: f64,
+) -> PyResult<Py<PyArrayDyn<f64>>> {
+    let (regular, plus) = (slice(py, "regular", &regular)?, slice(py, "plus", &plus)?);
+    let kernel = detached::run(py, ALL, None, |watch| convolve_values(&grid.core, regular, plus, local, watch))?;
+    square(py, &kernel.matrix)
 }
 
 #[pyfunction]

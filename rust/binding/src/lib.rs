@@ -6,7 +6,9 @@ mod detached;
 mod errors;
 mod grid;
 mod kernels;
+mod observables;
 mod operators;
+mod sensitivity;
 mod theory;
 
 use pyo3::prelude::*;
@@ -16,12 +18,15 @@ use pyo3::prelude::*;
 mod _core {
     #[pymodule_export]
     use crate::coefficients::{
-        coefficient_function, coefficient_matrix, massive_coefficient, massive_rows, splitting_matrix,
+        coefficient_function, coefficient_matrix, convolution_matrix, massive_coefficient, massive_rows,
+        splitting_matrix,
     };
     #[pymodule_export]
     use crate::grid::Grid;
     #[pymodule_export]
     use crate::kernels::{matching_element, splitting_function};
+    #[pymodule_export]
+    use crate::observables::light_rows;
     #[pymodule_export]
     use crate::operators::{Evolution, apply, build, compose, evolve};
     #[pymodule_export]

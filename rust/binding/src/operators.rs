@@ -5,6 +5,7 @@ use crate::detached::run;
 use crate::errors::input;
 use crate::grid::Grid;
 use crate::kernels::channel;
+use crate::sensitivity::direction;
 use crate::theory::Theory;
 use numpy::{PyArrayDyn, PyReadonlyArray1, PyReadonlyArrayDyn, PyReadwriteArrayDyn, PyUntypedArrayMethods};
 use pyo3::prelude::*;
@@ -12,6 +13,7 @@ use scalewright_core::apply as core_apply;
 use scalewright_core::convolution::convolve_values;
 use scalewright_core::evolution::FurtherKernel;
 use scalewright_core::numerics::blocks::Matrix;
+use scalewright_core::observables as core_observables;
 use scalewright_core::thresholds::{self, BuildOptions};
 
 /// A live set, dense in scale along its route.
@@ -136,6 +138,60 @@ impl Evolution {
         let shape = [count_scales, self.core.names().len(), self.nodes, self.nodes];
         let flow_shape = [count_scales, self.core.flow_names().len(), self.nodes];
         Ok((handed_over(py, &shape, blocks)?, handed_over(py, &flow_shape, flows)?))
+    }
+
+    /// The derivative with respect to a parameter, served as the set itself.
+    fn derivative(&self, py: Python<'_>, parameter: &str, threads: i64) -> PyResult<Self> {
+        let direction = direction(py, parameter)?;
+        let core = run(py, count(py, "threads", threads)?, None, move |watch| self.core.derivative(direction, watch))?;
+        Ok(Self { core, nodes: self.nodes })
+    }
+
+    /// Rows (point, 13, node) at scales of points, carried back to the input: rows `places` of out (row, flavour, node).
+    #[pyo3(signature = (rows, *, q2, nf, scale_of, protons, flavours, places, out, threads))]
+    #[expect(clippy::too_many_arguments, reason = "keyword arguments of Python")]
+    fn pull_back(
+        &self,
+        py: Python<'_>,
+        rows: PyReadonlyArrayDyn<'_, f64>,
+        q2: PyReadonlyArray1<'_, f64>,
+        nf: PyReadonlyArray1<'_, i64>,
+        scale_of: PyReadonlyArray1<'_, i64>,
+        protons: PyReadonlyArray1<'_, f64>,
+        flavours: PyReadonlyArray1<'_, i64>,
+        places: PyReadonlyArray1<'_, i64>,
+        mut out: PyReadwriteArrayDyn<'_, f64>,
+        threads: i64,
+    ) -> PyResult<()> {
+        let asked = scales(py, &q2, &nf)?;
+        let (points, shape) = (rows.shape().first().copied().unwrap_or(0), out.shape().to_vec());
+        let expected = [points, core_observables::CHANNELS, self.nodes];
+        if rows.shape() != expected {
+            return Err(input(py, format!("rows has shape {:?}: it must be {expected:?}", rows.shape())));
+        }
+        let (flavours, protons) = (slice(py, "flavours", &flavours)?, slice(py, "protons", &protons)?);
+        let indices = |name, array: &PyReadonlyArray1<'_, i64>| -> PyResult<Vec<usize>> {
+            slice(py, name, array)?.iter().map(|&value| count(py, name, value)).collect()
+        };
+        let (scale_of, places) = (indices("scale_of", &scale_of)?, indices("places", &places)?);
+        if [protons.len(), scale_of.len(), places.len()] != [points; 3]
+            || shape.get(1..) != Some(&[flavours.len(), self.nodes][..])
+        {
+            let message = format!("scale_of, protons and places must have {points} entries, out {shape:?} must fit");
+            return Err(input(py, message));
+        }
+        let batch = core_observables::Batch {
+            rows: block(py, "rows", &rows, 3)?,
+            scales: &asked,
+            scale_of: &scale_of,
+            protons,
+            flavours,
+            places: &places,
+        };
+        let target = out.as_slice_mut().map_err(|_| input(py, "out: the array must be C-ordered".into()))?;
+        run(py, count(py, "threads", threads)?, None, |watch| {
+            core_observables::pull_back(&self.core, &batch, target, watch)
+        })
     }
 }
 

@@ -2,10 +2,13 @@
 
 use crate::arrays::{copied, count, slice};
 use crate::errors::{exception, input};
+use crate::sensitivity::direction;
 use numpy::{PyArray1, PyReadonlyArray1};
 use pyo3::prelude::*;
 use scalewright_core::coupling::masses::{MassKind, Masses};
+use scalewright_core::error::Result as CoreResult;
 use scalewright_core::theory::{Assumptions, Theory as CoreTheory};
+use scalewright_core::thresholds::Direction;
 
 /// Everything assumed, checked.
 #[pyclass(frozen, module = "scalewright._core")]
@@ -59,16 +62,21 @@ impl Theory {
         mu2: PyReadonlyArray1<'_, f64>,
         nf: PyReadonlyArray1<'_, i64>,
     ) -> PyResult<Bound<'py, PyArray1<f64>>> {
-        let (mu2, nf) = (slice(py, "mu2", &mu2)?, slice(py, "nf", &nf)?);
-        let values: Vec<f64> = mu2
-            .iter()
-            .zip(nf)
-            .map(|(&mu2, &nf)| {
-                let nf = count(py, "nf", nf)?;
-                self.core.alpha_s(mu2, nf).map_err(|error| exception(py, &error))
-            })
-            .collect::<PyResult<_>>()?;
-        Ok(copied(py, &values))
+        elementwise(py, &mu2, &nf, |mu2, nf| self.core.alpha_s(mu2, nf))
+    }
+
+    fn alpha_s_derivative<'py>(
+        &self,
+        py: Python<'py>,
+        parameter: &str,
+        mu2: PyReadonlyArray1<'_, f64>,
+        nf: PyReadonlyArray1<'_, i64>,
+    ) -> PyResult<Bound<'py, PyArray1<f64>>> {
+        let direction = direction(py, parameter)?;
+        elementwise(py, &mu2, &nf, |mu2, nf| match direction {
+            Direction::Parameter(parameter) => self.core.alpha_s_derivative(parameter, mu2, nf),
+            Direction::Scale => self.core.alpha_s_slope(mu2, nf),
+        })
     }
 
     fn nf_at<'py>(&self, py: Python<'py>, q2: PyReadonlyArray1<'_, f64>) -> PyResult<Bound<'py, PyArray1<i64>>> {
@@ -76,6 +84,21 @@ impl Theory {
         let nf: Vec<i64> = q2.iter().map(|&q2| i64::try_from(self.core.nf_at(q2)).unwrap_or(0)).collect();
         Ok(copied(py, &nf))
     }
+}
+
+/// `value(mu2, nf)` of each pair.
+fn elementwise<'py>(
+    py: Python<'py>,
+    mu2: &PyReadonlyArray1<'_, f64>,
+    nf: &PyReadonlyArray1<'_, i64>,
+    value: impl Fn(f64, usize) -> CoreResult<f64>,
+) -> PyResult<Bound<'py, PyArray1<f64>>> {
+    let values: Vec<f64> = slice(py, "mu2", mu2)?
+        .iter()
+        .zip(slice(py, "nf", nf)?)
+        .map(|(&mu2, &nf)| value(mu2, count(py, "nf", nf)?).map_err(|error| exception(py, &error)))
+        .collect::<PyResult<_>>()?;
+    Ok(copied(py, &values))
 }
 
 fn three(py: Python<'_>, name: &str, array: &PyReadonlyArray1<'_, f64>) -> PyResult<[f64; 3]> {

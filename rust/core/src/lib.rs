@@ -15,7 +15,8 @@
 //! - [`convolution`]: a formula and a grid make a matrix;
 //! - [`evolution`]: from scale to scale at fixed nf;
 //! - [`thresholds`]: from one nf to the next, and the finished set of operators;
-//! - [`apply`]: operators applied to densities, and to other operators.
+//! - [`apply`]: operators applied to densities, and to other operators;
+//! - [`observables`]: structure functions at points, and their rows carried back to the input.
 #![deny(missing_docs)]
 
 pub mod apply;
@@ -27,6 +28,7 @@ pub mod evolution;
 pub mod grid;
 pub mod kernels;
 pub mod numerics;
+pub mod observables;
 pub mod theory;
 pub mod threads;
 pub mod thresholds;

@@ -8,6 +8,7 @@ use std::f64::consts::PI;
 use crate::coupling::beta::{MOST_LOOPS, beta};
 use crate::coupling::masses::{MassKind, Masses};
 use crate::coupling::running::ALPHA_S_LIMIT;
+use crate::coupling::sensitivity::Parameter;
 use crate::coupling::{FEWEST, MOST, Reference, RunningCoupling, Step};
 use crate::error::{Result, require};
 
@@ -162,6 +163,35 @@ impl Theory {
     /// As [`Theory::a`].
     pub fn alpha_s(&self, mu_r2: f64, nf: usize) -> Result<f64> {
         Ok(4.0 * PI * self.a(mu_r2, nf)?)
+    }
+
+    /// `d alpha_s^(nf)(mu_r^2)/dp`, threshold scales held fixed.
+    ///
+    /// # Errors
+    /// As [`Theory::a`].
+    pub fn alpha_s_derivative(&self, parameter: Parameter, mu_r2: f64, nf: usize) -> Result<f64> {
+        positive("q2", mu_r2, "GeV^2")?;
+        flavours("nf", nf)?;
+        Ok(4.0 * PI * self.coupling.derivative(parameter, mu_r2, nf)?)
+    }
+
+    /// `d alpha_s^(nf)/d ln mu_r^2` at `mu_r2`.
+    ///
+    /// # Errors
+    /// As [`Theory::a`].
+    pub fn alpha_s_slope(&self, mu_r2: f64, nf: usize) -> Result<f64> {
+        positive("q2", mu_r2, "GeV^2")?;
+        flavours("nf", nf)?;
+        Ok(4.0 * PI * self.coupling.running_slope(mu_r2, nf)?)
+    }
+
+    /// What `beta(a)` is multiplied with to give `da^(nf)/dp` at any scale, threshold scales held fixed.
+    ///
+    /// # Errors
+    /// Those of [`Theory::a`] on the way from the reference.
+    pub fn shift(&self, parameter: Parameter, nf: usize) -> Result<f64> {
+        flavours("nf", nf)?;
+        self.coupling.shift(parameter, nf)
     }
 
     /// Factorisation scale `mu_f^2` (GeV^2) where [`Theory::a_at_factorisation`] is `a`.

@@ -74,6 +74,26 @@ impl KernelSet {
         self.derived.lock().unwrap_or_else(PoisonError::into_inner).insert(label, Arc::clone(&made));
         made
     }
+
+    /// Derivative of [`KernelSet::matching`] with respect to the logarithm.
+    pub fn matching_slope(
+        &self,
+        order: usize,
+        element: Element,
+        kind: MassKind,
+        form: HeavyGluonForm,
+        log: f64,
+        nl: f64,
+    ) -> Convolved {
+        let mut sum = Convolved::zeros(self.nodes);
+        if let Some(powers) = self.matching.get(&(order, element, kind, form)) {
+            for (power, terms) in powers.iter().enumerate().skip(1) {
+                let factor = power as f64 * log.powi(power as i32 - 1);
+                add_at_nf(&mut sum, factor, terms, nl);
+            }
+        }
+        sum
+    }
 }
 
 /// The set of a grid, computed the first time an equal grid asks.

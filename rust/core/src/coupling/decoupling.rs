@@ -20,16 +20,17 @@ const HIGHEST: usize = 4;
 pub struct Decoupling {
     /// `p_0 = 1, p_1, ...` at the logarithm in use.
     series: Vec<f64>,
+    /// Their derivatives with respect to the logarithm.
+    slopes: Vec<f64>,
 }
 
 impl Decoupling {
     /// The relation from `nl` to `nl + 1` flavours for running with `loops` loops, `log = ln(mu^2/m^2)`.
     pub fn new(nl: usize, loops: usize, kind: MassKind, log: f64) -> Self {
-        let series = polynomials(nl, loops.saturating_sub(1).min(HIGHEST), kind)
-            .iter()
-            .map(|p| p.iter().rev().fold(0.0, |sum, c| sum * log + c))
-            .collect();
-        Self { series }
+        let polynomials = polynomials(nl, loops.saturating_sub(1).min(HIGHEST), kind);
+        let value = |p: &Vec<f64>| p.iter().rev().fold(0.0, |sum, c| sum * log + c);
+        let slope = |p: &Vec<f64>| (1..p.len()).rev().fold(0.0, |sum, j| sum * log + j as f64 * p[j]);
+        Self { series: polynomials.iter().map(value).collect(), slopes: polynomials.iter().map(slope).collect() }
     }
 
     /// `p_0 = 1, p_1, ...` at the logarithm in use, as many as the number of loops.
@@ -66,6 +67,16 @@ impl Decoupling {
             }
         }
         Err(too_large(above))
+    }
+
+    /// Derivative of `a^(nl+1)` with respect to `a = a^(nl)`.
+    pub fn by_coupling(&self, a: f64) -> f64 {
+        self.value_and_slope(a).1
+    }
+
+    /// Derivative of `a^(nl+1)` with respect to `ln(mu^2/m^2)` at fixed `a = a^(nl)`.
+    pub fn by_logarithm(&self, a: f64) -> f64 {
+        a * self.slopes.iter().rev().fold(0.0, |sum, p| sum * a + p)
     }
 
     /// The upward relation and its derivative.

@@ -3,12 +3,14 @@
 //! - [`beta`](mod@beta): coefficients of the beta function;
 //! - [`running`]: the coupling between two scales at a fixed number of flavours;
 //! - [`decoupling`]: its step at a heavy-quark threshold;
-//! - [`masses`]: pole and MS-bar masses.
+//! - [`masses`]: pole and MS-bar masses;
+//! - [`sensitivity`]: how the coupling moves with what it is given.
 
 pub mod beta;
 pub mod decoupling;
 pub mod masses;
 pub mod running;
+pub mod sensitivity;
 
 use crate::coupling::decoupling::Decoupling;
 use crate::coupling::masses::MassKind;
@@ -48,6 +50,10 @@ pub struct RunningCoupling {
     /// One a number of flavours, from [`FEWEST`]: the equation, and one scale where its solution is known, or
     /// why there is none.
     stretches: Vec<(Running, Result<Reference>)>,
+    /// Place of the stretch of the reference.
+    home: usize,
+    /// To 4, 5 and 6 flavours.
+    steps: [(Step, Decoupling); MOST - FEWEST],
 }
 
 impl RunningCoupling {
@@ -58,21 +64,21 @@ impl RunningCoupling {
     pub fn new(reference: Reference, steps: [Step; 3], loops: usize) -> Self {
         let home = reference.nf.clamp(FEWEST, MOST) - FEWEST;
         let running: Vec<Running> = (FEWEST..=MOST).map(|nf| Running::new(nf, loops)).collect();
-        let step_at = |lower: usize| {
-            let s = steps[lower];
-            let log = (s.q2 / s.mass2).ln();
-            (s.q2, Decoupling::new(FEWEST + lower, loops, s.kind, log))
-        };
+        let steps = std::array::from_fn(|lower| {
+            let step: Step = steps[lower];
+            let log = (step.q2 / step.mass2).ln();
+            (step, Decoupling::new(FEWEST + lower, loops, step.kind, log))
+        });
         let mut known = vec![Ok(reference); running.len()];
         for i in home..MOST - FEWEST {
-            let (q2, step) = step_at(i);
-            known[i + 1] = carry(&known[i], &running[i], q2, i + 1, |a| step.up(a));
+            let (at, step) = &steps[i];
+            known[i + 1] = carry(&known[i], &running[i], at.q2, i + 1, |a| step.up(a));
         }
         for i in (0..home).rev() {
-            let (q2, step) = step_at(i);
-            known[i] = carry(&known[i + 1], &running[i + 1], q2, i, |a| step.down(a));
+            let (at, step) = &steps[i];
+            known[i] = carry(&known[i + 1], &running[i + 1], at.q2, i, |a| step.down(a));
         }
-        Self { stretches: running.into_iter().zip(known).collect() }
+        Self { stretches: running.into_iter().zip(known).collect(), home, steps }
     }
 
     /// `a^(nf)(mu_r^2)`; `nf` outside of 3 to 6 is taken as the nearest of them.

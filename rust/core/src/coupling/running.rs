@@ -42,6 +42,11 @@ impl Running {
         &self.beta
     }
 
+    /// `da/d ln mu^2` where the coupling is `a`.
+    pub fn slope(&self, a: f64) -> f64 {
+        -a * a * self.beta.iter().rev().fold(0.0, |sum, b| sum * a + b)
+    }
+
     /// `ln(mu_to^2/mu_from^2)` between the scales where the coupling is `a_from` and `a_to` (both positive).
     pub fn log_scale(&self, a_from: f64, a_to: f64) -> f64 {
         let b0 = self.beta[0];

@@ -23,6 +23,7 @@ pub enum Sector {
 }
 
 /// A splitting function of a further order, or a correction to a known one, brought by the user.
+#[derive(Debug, Clone)]
 pub struct FurtherKernel {
     /// It multiplies `a^(order+1)`.
     pub order: usize,
@@ -103,6 +104,12 @@ impl FixedFlavour {
             }
         }
         sum
+    }
+
+    /// `d ln a/d ln mu^2` at `s = ln a`.
+    pub fn slope(&self, s: f64) -> f64 {
+        let a = s.exp();
+        -a * self.beta.iter().rev().fold(0.0, |sum, beta| sum * a + beta)
     }
 
     /// Panels of the rows of a sector; the last one is the row of what lies below `x_min`.

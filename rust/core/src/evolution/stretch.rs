@@ -41,7 +41,8 @@ pub struct Stretch {
 /// Steps of equal length in `s = ln a`.
 #[derive(Debug, Clone, Copy)]
 pub struct Division {
-    from: f64,
+    /// Start in s.
+    pub from: f64,
     to: f64,
     /// Number of steps, none for a length of zero.
     pub count: usize,

@@ -6,5 +6,6 @@ mod collocation;
 mod dense;
 pub mod endpoint;
 pub mod gauss_legendre;
+pub mod left_product;
 pub mod matrix_ode;
 pub mod polylog;

@@ -36,8 +36,9 @@ pub struct Columns {
     pub channels: [Option<Matrix>; CHANNELS],
 }
 
-/// What evolves alone: the part that holds all flavours, and each heavy flavour less its share of the light sum.
-pub type Combinations = ((Sector, Matrix), Vec<(usize, Sector, Matrix)>);
+/// What evolves alone, each with its equations: the part that holds all flavours, and side by side each active heavy
+/// flavour less its share of the light sum.
+pub type Combinations = ((Sector, Matrix), Option<(Sector, Matrix)>);
 
 impl Columns {
     /// Columns with nothing in them: `rows` with the last one for what flows below `x_min`.
@@ -108,8 +109,13 @@ impl Columns {
         sum
     }
 
-    /// What evolves alone at nf: the part that holds all flavours, and each heavy flavour less its share of the light
-    /// sum.
+    /// Heavy flavours that are active at nf; none in families of differences.
+    pub fn active(&self, nf: usize) -> Vec<usize> {
+        let held_alone = matches!(self.family, Family::Plus | Family::Minus);
+        (self.lightest_heavy()..=nf).filter(|_| held_alone).collect()
+    }
+
+    /// What evolves alone at nf.
     pub fn combinations(&self, nf: usize, offsets: &[usize]) -> Combinations {
         let (sum, difference) = match self.family {
             Family::Plus => (Sector::Singlet, Sector::NsPlus),
@@ -123,15 +129,28 @@ impl Columns {
             Family::NsPlus | Family::NsMinus => self.light_sum().clone(),
         };
         let share = -1.0 / self.light as f64;
-        let differences = (self.lightest_heavy()..=nf)
-            .filter(|_| matches!(self.family, Family::Plus | Family::Minus))
-            .map(|flavour| {
-                let mut deviation = self.heavy(flavour).cloned().unwrap_or_else(|| self.empty());
-                deviation.add_scaled(share, self.light_sum());
-                (flavour, difference, deviation)
-            })
-            .collect();
-        ((sum, whole), differences)
+        let deviation = |flavour| {
+            let mut deviation = self.heavy(flavour).cloned().unwrap_or_else(|| self.empty());
+            deviation.add_scaled(share, self.light_sum());
+            deviation
+        };
+        let differences: Vec<Matrix> = self.active(nf).into_iter().map(deviation).collect();
+        ((sum, whole), (!differences.is_empty()).then(|| (difference, side_by_side(&differences))))
+    }
+
+    /// Adds `factor` times columns of the same kind; a channel that only they hold is taken over.
+    pub fn add_scaled(&mut self, factor: f64, other: &Self) {
+        for (own, other) in self.channels.iter_mut().zip(&other.channels) {
+            if let Some(other) = other {
+                own.get_or_insert_with(|| Matrix::zeros(other.rows(), other.cols())).add_scaled(factor, other);
+            }
+        }
+    }
+
+    /// Zeros in every channel of these.
+    pub fn nothing(&self) -> Self {
+        let zeros = |own: &Option<Matrix>| own.as_ref().map(|own| Matrix::zeros(own.rows(), own.cols()));
+        Self { channels: self.channels.each_ref().map(zeros), ..*self }
     }
 
     /// Moves all momentum below `x_min` to the gluon's last row.
@@ -176,4 +195,11 @@ fn pack(gluon: &Matrix, singlet: &Matrix, offsets: &[usize]) -> Matrix {
     }
     pair.row_mut(2 * n).copy_from_slice(gluon.row(n));
     pair
+}
+
+/// Matrices of equal height beside each other.
+fn side_by_side(parts: &[Matrix]) -> Matrix {
+    let rows = parts.first().map_or(0, Matrix::rows);
+    let values = (0..rows).flat_map(|i| parts.iter().flat_map(move |part| part.row(i))).copied().collect();
+    Matrix::from_values(rows, parts.iter().map(Matrix::cols).sum(), values)
 }

@@ -19,26 +19,26 @@ use std::sync::OnceLock;
 /// The matching at one threshold.
 pub struct Crossing {
     /// Flavours below.
-    nf: usize,
+    pub(super) nf: usize,
     /// `A` of each element, without unity, and its last row: what goes below `x_min`.
-    quark: Both,
-    gluon_gluon: Invertible,
-    gluon_quark: Matrix,
-    gluon_heavy: Matrix,
-    heavy_gluon: Matrix,
-    heavy_quark: Matrix,
-    heavy_heavy: Both,
+    pub(super) quark: Both,
+    pub(super) gluon_gluon: Invertible,
+    pub(super) gluon_quark: Matrix,
+    pub(super) gluon_heavy: Matrix,
+    pub(super) heavy_gluon: Matrix,
+    pub(super) heavy_quark: Matrix,
+    pub(super) heavy_heavy: Both,
 }
 
 /// An element that acts on sums (momentum is counted below `x_min`) and on differences (number is).
-struct Both {
-    momentum: Invertible,
-    number: Invertible,
+pub(super) struct Both {
+    pub(super) momentum: Invertible,
+    pub(super) number: Invertible,
 }
 
 /// An element `A`; `1 + A` is factored when its inverse is first asked for.
-struct Invertible {
-    matrix: Matrix,
+pub(super) struct Invertible {
+    pub(super) matrix: Matrix,
     factors: OnceLock<Factors>,
 }
 
@@ -51,15 +51,19 @@ impl Crossing {
         let q2 = theory.threshold_q2(nf + 1);
         let a = theory.a(q2, nf + 1)?;
         let log = (q2 / theory.mass2(nf + 1)).ln();
-        let form = if theory.compact_heavy_gluon() { HeavyGluonForm::Compact } else { HeavyGluonForm::Exact };
-        let element = |element: Element| {
+        let form = heavy_gluon_form(theory);
+        Ok(Self::of(nf, |element| {
             let mut sum = Convolved::zeros(nodes);
             for order in 1..=theory.order() {
                 let part = kernels.matching(order, element, theory.mass_kind(), form, log, nf as f64);
                 sum.add_scaled(a.powi(order as i32), &part);
             }
             sum
-        };
+        }))
+    }
+
+    /// From each element, without unity.
+    pub(super) fn of(nf: usize, element: impl Fn(Element) -> Convolved) -> Self {
         let momentum = |kernel: &Convolved| kernel.matrix.with_last_row(&kernel.momentum_below);
         let number = |kernel: &Convolved| kernel.matrix.with_last_row(&kernel.number_below);
         let one = |name: Element| momentum(&element(name));
@@ -67,7 +71,7 @@ impl Crossing {
             let kernel = element(name);
             Both { momentum: Invertible::new(momentum(&kernel)), number: Invertible::new(number(&kernel)) }
         };
-        Ok(Self {
+        Self {
             nf,
             quark: both(Element::LightQuark),
             gluon_gluon: Invertible::new(one(Element::GluonGluon)),
@@ -76,7 +80,7 @@ impl Crossing {
             heavy_gluon: one(Element::HeavyGluon),
             heavy_quark: one(Element::HeavyQuark),
             heavy_heavy: both(Element::HeavyHeavy),
-        })
+        }
     }
 
     /// From nf to nf + 1.
@@ -152,8 +156,13 @@ impl Crossing {
     }
 }
 
+/// The form of `A_Hg^(2)` that a theory asks for.
+pub(super) fn heavy_gluon_form(theory: &Theory) -> HeavyGluonForm {
+    if theory.compact_heavy_gluon() { HeavyGluonForm::Compact } else { HeavyGluonForm::Exact }
+}
+
 /// `target += factor element source`.
-fn add(target: &mut Matrix, factor: f64, element: &Matrix, source: &Matrix) {
+pub(super) fn add(target: &mut Matrix, factor: f64, element: &Matrix, source: &Matrix) {
     let (rows, cols) = (target.rows(), target.cols());
     multiply_add(
         target.part_mut(0..rows, 0..cols),
@@ -181,7 +190,7 @@ impl Invertible {
     }
 
     /// `target <- (1 + A)^-1 target`.
-    fn shrink(&self, target: &mut Matrix) {
+    pub(super) fn shrink(&self, target: &mut Matrix) {
         let factors = self.factors.get_or_init(|| {
             let mut sum = Matrix::identity(self.matrix.rows());
             sum.add_scaled(1.0, &self.matrix);

@@ -20,6 +20,7 @@ pub enum Output {
 }
 
 /// Where the blocks and flows of a family stand in the lists of all.
+#[derive(Debug, Clone)]
 pub struct Layout {
     /// The family.
     pub family: Family,

@@ -2,13 +2,17 @@
 
 use super::columns::{CHANNELS, CHARM_PLACE, Columns, Family, GLUON_PLACE, LIGHT_PLACE};
 use super::inputs::Output;
-use crate::evolution::{CHARM, Division, Stretch, StretchSolution, place};
-use crate::numerics::blocks::Matrix;
+use super::split::Split;
+use crate::evolution::{CHARM, Division, Sector, Stretch, StretchSolution, place};
+use crate::numerics::blocks::{Matrix, view};
 use crate::numerics::chebyshev::Nodes;
+use crate::numerics::left_product::{Rows, Sampled, multiply_left};
 
 /// Columns along one leg.
 pub struct LegColumns {
     division: Division,
+    /// Number of active flavours.
+    nf: usize,
     /// What does not evolve on this leg: heavy flavours that are not active.
     inactive: Columns,
     /// One a step; one in all where the leg has no length.
@@ -35,18 +39,16 @@ impl LegColumns {
     pub fn new(start: Columns, stretch: &Stretch, nf: usize, offsets: &[usize], first: usize, judged: usize) -> Self {
         let ((sector, whole), differences) = start.combinations(nf, offsets);
         // Differences obey the same equations: they are carried side by side.
-        let carry_differences = || {
-            let parts: Vec<&Matrix> = differences.iter().map(|(_, _, deviation)| deviation).collect();
-            let first_one = differences.first();
-            first_one.map(|(_, sector, _)| stretch.solve_judged(*sector, side_by_side(&parts), first, judged))
-        };
-        let (sum, difference) = rayon::join(|| stretch.solve_judged(sector, whole, first, judged), carry_differences);
-        let heavy: Vec<usize> = differences.iter().map(|(flavour, _, _)| *flavour).collect();
-        let split = Split::new(&start, &heavy, nf, offsets, offsets[first]);
+        let (sum, difference) = rayon::join(
+            || stretch.solve_judged(sector, whole, first, judged),
+            || differences.map(|(sector, all)| stretch.solve_judged(sector, all, first, judged)),
+        );
         let errors = if judged > 0 { errors(&start, &sum, difference.as_ref(), offsets) } else { vec![] };
+        let split = Split::new(&start, nf, offsets, offsets[first]);
         Self {
             division: stretch.division(),
-            pieces: split.pieces(&sum, difference.as_ref()),
+            nf,
+            pieces: pieces(&split, &sum, difference.as_ref()),
             inactive: start.inactive(nf),
             shape: (start.light_sum().rows(), start.light_sum().cols()),
             first_row: offsets[first],
@@ -78,11 +80,7 @@ impl LegColumns {
     /// Hands over one density at several scales: index of the scale, and the rows from `first` on; `room` is room to
     /// work in.
     pub fn output(&self, output: Output, s: &[f64], room: &mut Vec<f64>, mut put: impl FnMut(usize, &[f64])) {
-        let channel = match output {
-            Output::Gluon => GLUON_PLACE,
-            Output::Light => LIGHT_PLACE,
-            Output::Heavy(flavour) => flavour - CHARM + CHARM_PLACE,
-        };
+        let channel = channel_of(output);
         if let Some(constant) = &self.inactive.channels[channel] {
             let values = &constant.values()[self.first_row * constant.cols()..];
             (0..s.len()).for_each(|index| put(index, values));
@@ -111,10 +109,113 @@ impl LegColumns {
         }
     }
 
+    /// `target += row * density(s)` for rows that all act within one step on one density; `target` may hold fewer
+    /// columns than are carried.
+    pub fn multiply_left(&self, output: Output, step: usize, rows: &Rows, target: &mut Matrix) {
+        let (channel, first, (height, cols)) = (channel_of(output), self.first_row, self.shape);
+        if let Some(constant) = &self.inactive.channels[channel] {
+            multiply_left(constant.part(first..height, 0..cols), first, rows, target);
+        }
+        let piece = &self.pieces[step];
+        match (&piece.channels[channel], &piece.nodes) {
+            (Some(values), Some(nodes)) => Sampled { nodes, values, first, cols }.multiply_left(rows, target),
+            (Some(values), None) => multiply_left(view(values.row(0), height - first, cols), first, rows, target),
+            (None, _) => {}
+        }
+    }
+
+    /// The step that holds `s`.
+    pub fn step_of(&self, s: f64) -> usize {
+        self.division.step_of(s)
+    }
+
+    /// The columns where the leg is entered.
+    pub fn at_start(&self) -> Columns {
+        let mut start = self.inactive.clone();
+        start.add_scaled(1.0, &self.at_node(&self.pieces[0], 0));
+        start
+    }
+
+    /// Another function of s: `map(sector, s, C)` of each combination that evolves alone, nothing of what does not
+    /// evolve. As accurate as the map is smooth in s.
+    #[must_use]
+    pub fn mapped(&self, offsets: &[usize], map: impl Fn(Sector, f64, &Matrix) -> Matrix) -> Self {
+        let pieces = self.pieces.iter().map(|piece| self.mapped_piece(piece, offsets, &map)).collect();
+        Self { pieces, inactive: self.inactive.nothing(), errors: vec![], ..*self }
+    }
+
+    fn mapped_piece(&self, piece: &Piece, offsets: &[usize], map: impl Fn(Sector, f64, &Matrix) -> Matrix) -> Piece {
+        let start = [self.division.from];
+        let points = piece.nodes.as_ref().map_or(&start[..], Nodes::points);
+        let split = Split::new(&self.at_node(piece, 0), self.nf, offsets, self.first_row);
+        let channels = split.channels(points.len(), |node| {
+            let ((sector, sum), differences) = self.at_node(piece, node).combinations(self.nf, offsets);
+            let map = |sector, columns: &Matrix| map(sector, points[node], columns).values().to_vec();
+            (map(sector, &sum), differences.map(|(sector, all)| map(sector, &all)))
+        });
+        Piece { nodes: piece.nodes.clone(), channels }
+    }
+
+    /// How these columns move with a parameter.
+    ///
+    /// `entered` is how those at the start of the leg do there, at a fixed scale; `moving` is `A(s) C ds/dp`, made of
+    /// these columns. What the start moves away from under the columns is carried on with what enters; `stretch`,
+    /// `offsets` and `first` as for [`LegColumns::new`], with the steps of these columns.
+    #[must_use]
+    pub fn derivative(entered: Columns, mut moving: Self, stretch: &Stretch, offsets: &[usize], first: usize) -> Self {
+        let mut carried = entered;
+        carried.add_scaled(-1.0, &moving.at_node(&moving.pieces[0], 0));
+        let carried = Self::new(carried, stretch, moving.nf, offsets, first, 0);
+        for (piece, own) in moving.pieces.iter_mut().zip(&carried.pieces) {
+            for (values, own) in piece.channels.iter_mut().flatten().zip(own.channels.iter().flatten()) {
+                values.add_scaled(1.0, own);
+            }
+        }
+        Self { inactive: carried.inactive, ..moving }
+    }
+
+    /// What evolves, at a node of a step.
+    fn at_node(&self, piece: &Piece, node: usize) -> Columns {
+        let (rows, cols) = self.shape;
+        let channels = piece.channels.each_ref().map(|channel| {
+            channel.as_ref().map(|values| {
+                let mut matrix = Matrix::zeros(rows, cols);
+                matrix.values_mut()[self.first_row * cols..].copy_from_slice(values.row(node));
+                matrix
+            })
+        });
+        Columns { channels, ..self.inactive }
+    }
+
     /// Estimated error of the judged columns relative to each value at the nodes named, over the whole leg.
     pub fn error(&self, nodes: &[usize]) -> f64 {
         nodes.iter().filter_map(|&node| self.errors.get(node)).copied().fold(0.0, f64::max)
     }
+}
+
+/// Where a density stands among the channels.
+fn channel_of(output: Output) -> usize {
+    match output {
+        Output::Gluon => GLUON_PLACE,
+        Output::Light => LIGHT_PLACE,
+        Output::Heavy(flavour) => flavour - CHARM + CHARM_PLACE,
+    }
+}
+
+/// Flavours at the nodes of every step.
+fn pieces(split: &Split, sum: &StretchSolution, difference: Option<&StretchSolution>) -> Vec<Piece> {
+    if sum.steps().is_empty() {
+        let start = |_| (sum.start().values(), difference.map(|solution| solution.start().values()));
+        return vec![Piece { nodes: None, channels: split.channels(1, start) }];
+    }
+    let piece = |index: usize| {
+        let step = &sum.steps()[index];
+        let channels = split.channels(step.nodes().points().len(), |node| {
+            (step.values_at(node), difference.map(|solution| solution.steps()[index].values_at(node)))
+        });
+        Piece { nodes: Some(step.nodes().clone()), channels }
+    };
+    (0..sum.steps().len()).map(piece).collect()
 }
 
 /// Estimated errors at each node.
@@ -128,114 +229,4 @@ fn errors(start: &Columns, sum: &StretchSolution, difference: Option<&StretchSol
         difference.map_or(of_sum, |solution| of_sum.max(solution.error(&[node])))
     };
     (0..offsets[offsets.len() - 1]).map(error).collect()
-}
-
-/// How flavours follow from their sum and what each heavy one differs from its share of the light sum.
-///
-/// With `d_h = h - L/light` and `Sigma = L + sum_h h`: `L = (light/nf) (Sigma - sum_h d_h)`.
-struct Split<'a> {
-    family: Family,
-    light: usize,
-    heavy: &'a [usize],
-    nf: usize,
-    /// Number of columns.
-    cols: usize,
-    /// Where the rows from the first that is not zero stand in the sum, gluon and sum of quarks; the gluon only of the
-    /// plus family.
-    rows: Vec<(Option<usize>, Option<usize>)>,
-    first_row: usize,
-}
-
-impl<'a> Split<'a> {
-    fn new(start: &Columns, heavy: &'a [usize], nf: usize, offsets: &[usize], first_row: usize) -> Self {
-        let nodes = offsets[offsets.len() - 1];
-        let rows = (first_row..=nodes).map(|row| match start.family {
-            // All momentum below `x_min` is held with the gluon.
-            Family::Plus if row == nodes => (Some(2 * nodes), None),
-            Family::Plus => (Some(place(offsets, 0, row)), Some(place(offsets, 1, row))),
-            _ => (None, Some(row)),
-        });
-        let rows = rows.collect();
-        Self { family: start.family, light: start.light, heavy, nf, cols: start.light_sum().cols(), rows, first_row }
-    }
-
-    fn pieces(&self, sum: &StretchSolution, difference: Option<&StretchSolution>) -> Vec<Piece> {
-        if sum.steps().is_empty() {
-            let mut channels = [const { vec![] }; CHANNELS];
-            self.add(sum.start().values(), difference.map(|solution| solution.start().values()), &mut channels);
-            return vec![self.piece(None, 1, channels)];
-        }
-        (0..sum.steps().len())
-            .map(|index| {
-                let step = &sum.steps()[index];
-                let count = step.nodes().points().len();
-                let mut channels = self.room(count);
-                for node in 0..count {
-                    let differences = difference.map(|solution| solution.steps()[index].values_at(node));
-                    self.add(step.values_at(node), differences, &mut channels);
-                }
-                self.piece(Some(step.nodes().clone()), count, channels)
-            })
-            .collect()
-    }
-
-    /// Room for the values of every channel that evolves.
-    fn room(&self, count: usize) -> [Vec<f64>; CHANNELS] {
-        std::array::from_fn(|channel| {
-            let held = match channel {
-                GLUON_PLACE => self.family == Family::Plus,
-                LIGHT_PLACE => true,
-                heavy => self.heavy.contains(&(heavy - CHARM_PLACE + CHARM)),
-            };
-            Vec::with_capacity(if held { count * self.rows.len() * self.cols } else { 0 })
-        })
-    }
-
-    fn piece(&self, nodes: Option<Nodes>, count: usize, channels: [Vec<f64>; CHANNELS]) -> Piece {
-        let size = self.rows.len() * self.cols;
-        let stacked = |values: Vec<f64>| (!values.is_empty()).then(|| Matrix::from_values(count, size, values));
-        Piece { nodes, channels: channels.map(stacked) }
-    }
-
-    /// Appends the channels at one scale; differences stand side by side.
-    fn add(&self, sum: &[f64], differences: Option<&[f64]>, channels: &mut [Vec<f64>; CHANNELS]) {
-        let cols = self.cols;
-        let wide = self.heavy.len() * cols;
-        let mut mean = vec![0.0; cols];
-        for (index, &(gluon, quarks)) in self.rows.iter().enumerate() {
-            if let Some(row) = gluon {
-                channels[GLUON_PLACE].extend_from_slice(&sum[row * cols..(row + 1) * cols]);
-            }
-            let Some(quarks) = quarks.map(|row| &sum[row * cols..(row + 1) * cols]) else {
-                channels[LIGHT_PLACE].extend(std::iter::repeat_n(0.0, cols));
-                let heavy = self.heavy.iter().map(|flavour| flavour - CHARM + CHARM_PLACE);
-                heavy.for_each(|channel| channels[channel].extend(std::iter::repeat_n(0.0, cols)));
-                continue;
-            };
-            if matches!(self.family, Family::NsPlus | Family::NsMinus) {
-                channels[LIGHT_PLACE].extend_from_slice(quarks);
-                continue;
-            }
-            let row = self.first_row + index;
-            let own = differences.map_or(&[][..], |differences| &differences[row * wide..(row + 1) * wide]);
-            mean.copy_from_slice(quarks);
-            for own in own.chunks_exact(cols) {
-                mean.iter_mut().zip(own).for_each(|(mean, own)| *mean -= own);
-            }
-            for mean in &mut mean {
-                *mean /= self.nf as f64;
-            }
-            channels[LIGHT_PLACE].extend(mean.iter().map(|mean| self.light as f64 * mean));
-            for (own, flavour) in own.chunks_exact(cols).zip(self.heavy) {
-                channels[flavour - CHARM + CHARM_PLACE].extend(own.iter().zip(&mean).map(|(own, mean)| own + mean));
-            }
-        }
-    }
-}
-
-/// Matrices of equal height beside each other.
-fn side_by_side(parts: &[&Matrix]) -> Matrix {
-    let rows = parts.first().map_or(0, |part| part.rows());
-    let values = (0..rows).flat_map(|i| parts.iter().flat_map(move |part| part.row(i))).copied().collect();
-    Matrix::from_values(rows, parts.iter().map(|part| part.cols()).sum(), values)
 }

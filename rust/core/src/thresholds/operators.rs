@@ -8,6 +8,7 @@ use super::prepared::{Prepared, carried, scale};
 use super::probes;
 use super::route::Route;
 use crate::error::Result;
+use crate::evolution::Plan;
 use crate::grid::Grid;
 use crate::theory::Theory;
 use crate::threads::costly_first;
@@ -22,11 +23,15 @@ const PARTS: usize = 4;
 
 /// A set of operators, dense in scale along its route.
 pub struct Evolution {
-    theory: Theory,
-    nodes: usize,
-    route: Route,
-    chunks: Vec<Chunk>,
+    pub(super) theory: Theory,
+    pub(super) grid: Grid,
+    /// What was asked, and how accurate its steps are; nothing where this is a derivative.
+    pub(super) made: Option<(BuildOptions, Plan)>,
+    pub(super) route: Route,
+    pub(super) chunks: Vec<Chunk>,
     layouts: Vec<Layout>,
+    /// Heavy flavours of the input.
+    pub(super) heavy: Vec<usize>,
     names: Vec<String>,
     flow_names: Vec<String>,
     error: f64,
@@ -34,13 +39,12 @@ pub struct Evolution {
 }
 
 /// Columns that belong to one panel of input nodes: they are carried along the whole route by themselves.
-struct Chunk {
-    family: Family,
-    /// Nodes of the input: the columns of each input channel, one channel after the other.
-    owned: Range<usize>,
-    /// Rows before this are zero.
-    first_row: usize,
-    legs: Vec<LegColumns>,
+pub(super) struct Chunk {
+    pub(super) family: Family,
+    /// Panel of the input nodes: rows of those before it are zero. The columns of each input channel, one channel after
+    /// the other, and after them probes with the first panel.
+    pub(super) panel: usize,
+    pub(super) legs: Vec<LegColumns>,
 }
 
 /// Builds the set.
@@ -62,9 +66,11 @@ pub fn build(theory: &Theory, grid: &Grid, options: &BuildOptions, watch: &dyn W
     let inputs = made.inputs;
     Ok(Evolution {
         theory: theory.clone(),
-        nodes: grid.nodes(),
+        grid: grid.clone(),
+        made: Some((options.clone(), made.plan)),
         chunks,
         layouts: inputs.layouts(&families),
+        heavy: inputs.heavy.clone(),
         names: inputs.block_names(&families),
         flow_names: inputs.flow_names(&families),
         error: made.error,
@@ -93,14 +99,31 @@ fn carry_units(theory: &Theory, grid: &Grid, prepared: &Prepared, inputs: &Input
         let legs = prepared.carry(theory, &start, panel, probes)?;
         watch.one_of(tasks.len());
         let errors: Vec<f64> = legs.iter().map(|leg| leg.error(&judged)).collect();
-        let (owned, first_row) = (grid.owned(panel), grid.offsets()[panel]);
-        Ok((Chunk { family, owned, first_row, legs }, errors))
+        Ok((Chunk { family, panel, legs }, errors))
     })?;
     let (chunks, errors) = carried.into_iter().unzip();
     Ok(((families, chunks), errors))
 }
 
 impl Evolution {
+    /// The same with other columns, one list of legs a chunk.
+    pub(super) fn with_legs(&self, legs: Vec<Vec<LegColumns>>) -> Self {
+        let with = |(chunk, legs): (&Chunk, _)| Chunk { family: chunk.family, panel: chunk.panel, legs };
+        Self {
+            theory: self.theory.clone(),
+            grid: self.grid.clone(),
+            made: None,
+            route: self.route.clone(),
+            chunks: self.chunks.iter().zip(legs).map(with).collect(),
+            layouts: self.layouts.clone(),
+            heavy: self.heavy.clone(),
+            names: self.names.clone(),
+            flow_names: self.flow_names.clone(),
+            error: self.error,
+            steps: self.steps,
+        }
+    }
+
     /// Names of the blocks, each `output<-input`, or `ns+`, `ns-` for differences among light flavours.
     pub fn names(&self) -> &[String] {
         &self.names
@@ -136,7 +159,7 @@ impl Evolution {
     /// # Errors
     /// [`crate::error::Error::OutOfRange`] for a scale that is not on the route; [`crate::error::Error::Interrupted`].
     pub fn values(&self, asked: &[(f64, usize)], watch: &dyn Watch) -> Result<(Vec<f64>, Vec<f64>)> {
-        let n = self.nodes;
+        let n = self.grid.nodes();
         let (block, flow) = (self.names.len() * n * n, self.flow_names.len() * n);
         let mut blocks = vec![0.0; asked.len() * block];
         let mut flows = vec![0.0; asked.len() * flow];
@@ -166,7 +189,8 @@ impl Evolution {
             for chunk in &self.chunks {
                 for layout in self.layouts.iter().filter(|layout| layout.family == chunk.family) {
                     for (row, &output) in layout.outputs.iter().enumerate() {
-                        let to = Target { nodes: self.nodes, chunk, layout, row };
+                        let owned = self.grid.owned(chunk.panel);
+                        let to = Target { nodes: self.grid.nodes(), owned, layout, row };
                         chunk.legs[leg].output(output, &s, &mut room, |place, values| {
                             let index = here[place];
                             to.write_block(values, &mut blocks[index * block..(index + 1) * block]);
@@ -186,20 +210,21 @@ impl Evolution {
 /// Where an output of a chunk goes in blocks and flows.
 struct Target<'a> {
     nodes: usize,
-    chunk: &'a Chunk,
+    /// Nodes of the input; rows before the first of them are zero.
+    owned: Range<usize>,
     layout: &'a Layout,
     /// Which output.
     row: usize,
 }
 
 impl Target<'_> {
-    /// Writes the rows from that of the chunk's first node on, but for the last.
+    /// Writes the rows from that of the first node owned on, but for the last.
     fn write_block(&self, values: &[f64], blocks: &mut [f64]) {
-        let (n, owned) = (self.nodes, &self.chunk.owned);
-        let rows = n - self.chunk.first_row;
+        let (n, owned) = (self.nodes, &self.owned);
+        let rows = n - owned.start;
         for input in 0..self.layout.inputs {
             let first = (self.layout.first_block + self.row * self.layout.inputs + input) * n * n;
-            let block = blocks[first..first + n * n].chunks_exact_mut(n).skip(self.chunk.first_row);
+            let block = blocks[first..first + n * n].chunks_exact_mut(n).skip(owned.start);
             for (target, row) in block.zip(values.chunks_exact(values.len() / (rows + 1))) {
                 target[owned.clone()].copy_from_slice(&row[input * owned.len()..(input + 1) * owned.len()]);
             }
@@ -208,8 +233,8 @@ impl Target<'_> {
 
     /// Writes the last row, what has flowed below `x_min`.
     fn write_flow(&self, values: &[f64], flows: &mut [f64]) {
-        let (n, owned) = (self.nodes, &self.chunk.owned);
-        let cols = values.len() / (n - self.chunk.first_row + 1);
+        let (n, owned) = (self.nodes, &self.owned);
+        let cols = values.len() / (n - owned.start + 1);
         let last = &values[values.len() - cols..];
         for input in 0..self.layout.inputs {
             let first = (self.layout.first_flow + self.row * self.layout.inputs + input) * n;

@@ -9,6 +9,7 @@ use crate::grid::Grid;
 const HIGHEST_ORDER: usize = 8;
 
 /// What is to be built.
+#[derive(Debug, Clone)]
 pub struct BuildOptions {
     /// Scale of the input, GeV^2.
     pub start_q2: f64,

@@ -17,14 +17,15 @@ use std::collections::BTreeMap;
 
 /// How many times the degree of the steps is raised before a build gives up.
 const MOST_REFINEMENTS: u32 = 3;
+
 /// Everything that serves all columns of a route.
 pub struct Prepared {
     /// The route.
     pub route: Route,
     /// One a leg.
-    stretches: Vec<Stretch>,
+    pub(super) stretches: Vec<Stretch>,
     /// One a leg; none for those that leave the start.
-    crossings: Vec<Option<Crossing>>,
+    pub(super) crossings: Vec<Option<Crossing>>,
     offsets: Vec<usize>,
 }
 
@@ -110,6 +111,8 @@ pub fn scale(theory: &Theory, q2: f64, nf: usize) -> Result<f64> {
 
 /// A route, what was carried along it, and how well.
 pub struct Carried<T> {
+    /// How accurate the steps were made in the end.
+    pub plan: Plan,
     /// The route made ready.
     pub prepared: Prepared,
     /// What the input consists of.
@@ -146,7 +149,7 @@ pub fn carried<T>(
         let of_legs = legs.map(|(index, leg)| (errors.iter().map(|each| each[index]).fold(0.0, f64::max), leg.nf));
         let (error, nf) = of_legs.fold((0.0, 0), |worst, leg| if leg.0 > worst.0 { leg } else { worst });
         if error <= options.tolerance {
-            return Ok(Carried { prepared, inputs, columns, error });
+            return Ok(Carried { plan, prepared, inputs, columns, error });
         }
         if refinement == MOST_REFINEMENTS {
             let (tolerance, steps) = (options.tolerance, prepared.steps());

@@ -1,0 +1,1 @@
+"""Private parts of `scalewright.corrections`."""

@@ -1,0 +1,416 @@
+"""`scalewright fit`: a job gives what Python gives, everything asked for is written, mistakes are named."""
+
+import csv
+import os
+import signal
+import subprocess
+import time
+from types import SimpleNamespace
+
+import numpy as np
+import pytest
+import scalewright as sw
+from cli.conftest import COMMAND
+from cli.fit_case import GRID, THEORY, shape, write_case
+from scalewright.fitting.least_squares import FitResult
+from scalewright.fitting.maps import Maps
+from scalewright.fitting.reference import settle_reference
+
+
+@pytest.fixture(scope="module")
+def finished(tmp_path_factory):
+    """Run the job once; its tests look at what it left."""
+    folder = tmp_path_factory.mktemp("fit")
+    write_case(folder)
+    done = subprocess.run(
+        [*COMMAND, "fit", "job.toml"], cwd=folder, capture_output=True, text=True, timeout=110, check=False
+    )
+    assert done.returncode == 0, done.stderr
+    return folder, done
+
+
+@pytest.fixture
+def write(tmp_path):
+    """Write the case with a job changed as a test asks, and nothing drawn."""
+
+    def written(*changes):
+        write_case(tmp_path)
+        for old, new in (*changes, ('report = "fit.html"', "")):
+            for name in ("job.toml", "run1.toml", "run1.csv"):
+                text = (tmp_path / name).read_text()
+                (tmp_path / name).write_text(text.replace(old, new))
+
+    return written
+
+
+@pytest.fixture
+def run(tmp_path, capsys, monkeypatch):
+    """Run in this process, which has loaded everything already, in the folder of the job."""
+    from scalewright.cli.main import main
+
+    monkeypatch.chdir(tmp_path)
+
+    def runner(*arguments, status=0):
+        found = main(list(arguments))
+        out, said = capsys.readouterr()
+        assert found == status, (found, out, said)
+        return SimpleNamespace(stdout=out, stderr=said)
+
+    return runner
+
+
+def rows(path):
+    with path.open(newline="") as file:
+        return list(csv.DictReader(file))
+
+
+def by_hand(folder):
+    """Return the fit of the job by Python alone."""
+    table = sw.Measurements.read(folder / "run1.toml")
+    restricted = shape().restricted(
+        fixed={"g.power": 0.1, "g.fall": 5.0, "d_v.fall": 4.0}, tied={"d_v.power": "u_v.power"},
+        bounds={"u_v.fall": (1, 10)}, start={"u_v.fall": 3.4}, priors={"ubar.power": (0.1, 0.05)},
+    )  # fmt: skip
+    maps = Maps(THEORY, GRID, start_q2=2.0, points=table)
+    found = []
+
+    def once(chi2):
+        start = found[-1].parameters if found else None
+        at = maps(found[-1].map_at if found else None)
+        rebuild = maps if found else None
+        found.append(sw.fit(at, chi2, restricted, theory=["alpha_s"], start=start, rebuild=rebuild))
+        return found[-1].prediction
+
+    settle_reference(sw.ChiSquare(table), once)
+    return found[-1]
+
+
+def test_a_job_gives_what_python_gives(finished):
+    folder, done = finished
+    result, own = FitResult.load(folder / "fit.h5"), by_hand(folder)
+    np.testing.assert_array_equal(result.parameters, own.parameters)
+    np.testing.assert_array_equal(result.covariance, own.covariance)
+    assert result.names == own.names and result.theory == own.theory
+    assert f"  all                 24          {own.chi2:.1f}\n" in done.stdout
+    assert done.stderr == ""
+    assert len(done.stdout.splitlines()) <= 40
+
+
+def test_the_law_is_found_again(finished):
+    result = FitResult.load(finished[0] / "fit.h5")
+    free = [0.7, 3.5, 0.1, 7.0, 0.3, 0.3]
+    pulls = (result.parameters - free) / result.errors
+    # one draw of seven correlated parameters: 4 standard deviations of each
+    assert (abs(pulls) < 4.0).all(), pulls
+    assert result.chi2 < 24 + 4 * np.sqrt(2 * 24)
+
+
+def test_everything_that_is_asked_for_is_written(finished):
+    folder, done = finished
+    for name in ("fit.h5", "replicas.h5", "densities.csv", "parameters.csv", "predictions.csv", "fit.html"):
+        assert f"{name}: " in done.stdout
+        assert (folder / name).stat().st_size > 0
+    ensemble = sw.Ensemble.load(folder / "replicas.h5")
+    assert ensemble.replicas == 6 and ensemble.seed == 3
+    lattice = rows(folder / "densities.csv")
+    assert {row["q2"] for row in lattice} == {"10.0", "50.0"}
+    assert {float(row["x"]) for row in lattice} == {0.01, 0.1, 0.5}
+    assert len(lattice) == 2 * 3 * 7 * 6
+    predictions = rows(folder / "predictions.csv")
+    result = FitResult.load(folder / "fit.h5")
+    np.testing.assert_array_equal([float(row["prediction"]) for row in predictions], result.prediction)
+
+
+def test_parameters_are_listed_with_what_the_sum_rules_determine(finished):
+    folder, _ = finished
+    listed = {row["name"]: row for row in rows(folder / "parameters.csv")}
+    result, ensemble = FitResult.load(folder / "fit.h5"), sw.Ensemble.load(folder / "replicas.h5")
+    assert list(listed)[: len(result.names)] == list(result.names)
+    assert {name for name, row in listed.items() if row["state"] == "sum rule"} == {
+        "u_v.c0",
+        "d_v.c0",
+        "g.c0",
+    }
+    assert float(listed["alpha_s"]["uncertainty"]) == result.error("alpha_s")
+    assert float(listed["alpha_s"]["replica mean"]) == ensemble.parameter("alpha_s").mean()
+
+
+def test_each_replica_is_evolved_by_its_own_coupling(finished):
+    folder, _ = finished
+    ensemble = sw.Ensemble.load(folder / "replicas.h5")
+    lattice = rows(folder / "densities.csv")
+    for replica in (0, 5):
+        theory = sw.Theory(
+            order="LO",
+            coupling=sw.Coupling(float(ensemble.parameter("alpha_s")[replica]), q2=2.0, nf=3),
+            flavours=3,
+        )
+        start = ensemble.densities
+        one = sw.Densities(
+            GRID, q2=2.0, nf=3, flavours=start.flavours, values=start.values[replica : replica + 1]
+        )
+        ops = sw.build_operators(theory, GRID, start_q2=2.0, q2=[10.0, 50.0])
+        expected = ops.apply(one).at(50.0, [0.01, 0.1, 0.5], "u")[0]
+        found = {
+            float(row["x"]): float(row["value"])
+            for row in lattice
+            if (row["q2"], row["flavour"], row["replica"]) == ("50.0", "2", str(replica))
+        }
+        # the same operations in another order
+        np.testing.assert_allclose([found[0.01], found[0.1], found[0.5]], expected, rtol=1e-12)
+
+
+def test_a_finished_run_goes_on_from_its_journal(run, tmp_path, write):
+    write(("number = 6", "number = 3"))
+    run("fit", "job.toml")
+    size = (tmp_path / "fit.journal").stat().st_size
+    few = sw.Ensemble.load(tmp_path / "replicas.h5")
+    write()
+    run("fit", "job.toml")
+    many = sw.Ensemble.load(tmp_path / "replicas.h5")
+    assert (tmp_path / "fit.journal").stat().st_size > size
+    np.testing.assert_array_equal(many.parameters[:3], few.parameters)
+    write(("percent", "value"))
+    done = run("fit", "job.toml", status=1)
+    assert "this journal is of another fit: its " in done.stderr
+    assert "the same command goes on" not in done.stderr
+
+
+def test_an_interrupt_keeps_what_was_computed(tmp_path):
+    write_case(tmp_path)
+    text = (tmp_path / "job.toml").read_text().replace("number = 6", "number = 100000")
+    (tmp_path / "job.toml").write_text(text)
+    journal = tmp_path / "fit.journal"
+    with subprocess.Popen(
+        [*COMMAND, "fit", "job.toml"], cwd=tmp_path, stdout=subprocess.PIPE, stderr=subprocess.PIPE,
+        preexec_fn=lambda: signal.signal(signal.SIGINT, signal.default_int_handler),
+    ) as child:  # fmt: skip
+        for _ in range(1000):  # at most 100 s
+            if journal.exists() and journal.stat().st_size > 10_000:
+                break
+            time.sleep(0.1)
+        child.send_signal(signal.SIGINT)
+        out, said = child.communicate(timeout=60)
+    assert child.returncode == 1, (out, said)
+    lines = said.decode().splitlines()
+    assert "the same command goes on from there" in lines[0]
+    assert lines[1:] == ["scalewright: interrupted"]
+    assert not (tmp_path / "fit.h5").exists()
+
+
+def test_a_fit_to_the_data_alone_needs_no_replicas(run, tmp_path, write):
+    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
+    write((text, ""), ('ensemble = "replicas.h5"', ""), ('theory = ["alpha_s"]', ""))
+    done = run("fit", "job.toml")
+    assert FitResult.load(tmp_path / "fit.h5").names[-1] == "ubar.c0"
+    assert "replicas" not in done.stdout
+    assert len(rows(tmp_path / "densities.csv")) == 2 * 3 * 7
+
+
+def test_a_network_is_fitted_with_validation(run, tmp_path, write):
+    text = (tmp_path / "job.toml").read_text() if (tmp_path / "job.toml").exists() else ""
+    write()
+    text = (tmp_path / "job.toml").read_text()
+    head, rest = text.split("[shape]")
+    _, tail = rest.split("[fit]")
+    shaped = """[shape]
+kind = "network"
+start_q2 = 2.0
+hidden = [2]
+seed = 1
+relations = ["dbar = ubar", "s = sbar", "s = 0.5*ubar"]
+momentum = "g"
+numbers = { u_v = 2, d_v = 1 }
+[shape.terms]
+g = { power = 0.1, fall = 5 }
+u_v = { power = 0.7, fall = 3.5 }
+d_v = { power = 0.7, fall = 4 }
+ubar = { power = 0.1, fall = 7 }
+[fit]
+evaluations = 30
+"""
+    tail = tail.replace('theory = ["alpha_s"]', "").replace(
+        "seed = 3", "seed = 3\nvalidation = 0.3\npatience = 2"
+    )
+    (tmp_path / "job.toml").write_text(head + shaped + tail)
+    done = run("fit", "job.toml")
+    assert sw.Ensemble.load(tmp_path / "replicas.h5").names[0].startswith("weight[")
+    assert "replicas of 6" in done.stdout
+
+
+WRONG = {
+    "no shape": ([("[shape]", "[shap]")], 'job.toml: shap: unknown key; did you mean "shape"?'),
+    "unknown kind": (
+        [("start_q2 = 2.0", 'start_q2 = 2.0\nkind = "spline"')],
+        "[shape]: kind = 'spline': kind must be",
+    ),
+    "no start": ([("start_q2 = 2.0", "")], "job.toml: [shape] start_q2: missing"),
+    "negative start": ([("start_q2 = 2.0", "start_q2 = -2.0")], "job.toml: [shape]: start_q2 = -2"),
+    "a network's key": ([("start_q2 = 2.0", "start_q2 = 2.0\nhidden = [3]")], "[shape] hidden: unknown key"),
+    "unknown flavour": ([("u_v = { power", "u_w = { power")], "job.toml: [shape]"),
+    "a term without power": (
+        [("g = { power = 0.1, fall = 5 }", "g = { fall = 5 }")],
+        "[shape.terms.g] power: missing",
+    ),
+    "a word for a power": (
+        [("g = { power = 0.1, fall", 'g = { power = "low", fall')],
+        "job.toml: [shape.terms.g]: power = 'low'",
+    ),
+    "a flavour undetermined": (
+        [('"dbar = ubar", ', "")],
+        "job.toml: [shape]: terms: 7 flavours need as many",
+    ),
+    "an impossible sum rule": (
+        [("numbers = { u_v = 2", "numbers = { g = 2")],
+        "job.toml: [shape]: numbers = 'g': only differences",
+    ),
+    "momentum of no term": (
+        [('momentum = "g"', 'momentum = "q"')],
+        "job.toml: [shape]: momentum = 'q': must be a term",
+    ),
+    "relations that are text": (
+        [('["dbar = ubar", "s = sbar", "s = 0.5*ubar"]', '"s = sbar"')],
+        "[shape] relations = 's = sbar': must be a list",
+    ),
+    "unknown parameter": (
+        [("d_v.fall = { fixed", "d_v.fal = { fixed")],
+        "job.toml: [parameters]: fixed = 'd_v.fal': no parameter of this name",
+    ),
+    "unknown restriction": (
+        [("{ start = 3.4, bounds", "{ begin = 3.4, bounds")],
+        "job.toml: [parameters.u_v.fall] begin: unknown key",
+    ),
+    "bounds that cross": (
+        [("bounds = [1, 10]", "bounds = [10, 1]")],
+        "job.toml: [parameters]: bounds[u_v.fall]",
+    ),
+    "start outside": (
+        [("bounds = [1, 10]", "bounds = [4, 10]")],
+        "job.toml: [parameters]: start[u_v.fall] = 3.4",
+    ),
+    "bounds of one": (
+        [("bounds = [1, 10]", "bounds = 10")],
+        "[parameters.u_v.fall] bounds = 10: must be two numbers",
+    ),
+    "a prior of no width": (
+        [("prior = [0.1, 0.05]", "prior = [0.1, 0]")],
+        "job.toml: [parameters]: priors[ubar.power]",
+    ),
+    "tied to nothing": (
+        [('tied = "u_v.power"', 'tied = "u_v.pow"')],
+        "job.toml: [parameters]: tied = 'u_v.pow'",
+    ),
+    "fixed = false": (
+        [("d_v.fall = { fixed = true", "d_v.fall = { fixed = false")],
+        "[parameters.d_v.fall] fixed = false",
+    ),
+    "a coupling that is not free": (
+        [('theory = ["alpha_s"]', ""), ("[fit]", "alpha_s = { prior = [0.3, 0.1] }\n[fit]")],
+        "[parameters.alpha_s]: alpha_s is not free: name it in [fit] theory",
+    ),
+    "bounds of a coupling": (
+        [("[fit]", "alpha_s = { bounds = [0.3, 0.4] }\n[fit]")],
+        "[parameters.alpha_s] bounds: unknown key",
+    ),
+    "unknown theory parameter": (
+        [('["alpha_s"]', '["alphas"]')],
+        "[fit]: theory = 'alphas': theory must be one of",
+    ),
+    "theory as text": ([('["alpha_s"]', '"alpha_s"')], "[fit] theory = 'alpha_s': must be a list of"),
+    "theory twice": (
+        [('["alpha_s"]', '["alpha_s", "alpha_s"]')],
+        "[fit]: theory = 'alpha_s': stands there twice",
+    ),
+    "one replica": (
+        [("number = 6", "number = 1")],
+        "job.toml: [replicas]: number = 1: number must be from 2",
+    ),
+    "no seed": ([("seed = 3", "")], "job.toml: [replicas] seed: missing"),
+    "workers": ([("workers = 1", "workers = 0")], "[replicas]: workers = 0: workers must be from 1"),
+    "nothing to write": (
+        [
+            (JOB_OUT, "")
+            for JOB_OUT in (
+                'result = "fit.h5"',
+                'ensemble = "replicas.h5"',
+                'densities = "densities.csv"',
+                "q2 = [10.0, 50.0]",
+                "x = [0.01, 0.1, 0.5]",
+                'parameters = "parameters.csv"',
+                'predictions = "predictions.csv"',
+            )
+        ],
+        "job.toml: [output]: nothing to write: name one of result, ensemble",
+    ),
+    "one file twice": ([('"predictions.csv"', '"parameters.csv"')], "[output] predictions = "),
+    "a wrong ending": ([('"fit.h5"', '"fit.csv"')], "job.toml: [output]: result = "),
+    "ensemble of no replicas": (
+        [('[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n', "")],
+        "[output] ensemble: there are no replicas: add a table [replicas]",
+    ),
+    "x below the grid": ([("x = [0.01, 0.1", "x = [0.001, 0.1")], "job.toml: [output]: x = 0.001 at index 0"),
+    "scales of no densities": (
+        [('densities = "densities.csv"', "")],
+        "[output] q2: only for the file of densities",
+    ),
+    "chi-square": (
+        [("[shape]", '[chi_square]\nreference = "truth"\n[shape]')],
+        "[chi_square]: reference = 'truth': reference must be one of",
+    ),
+    "more parameters than data": (
+        [("[shape]", "[data.cut]\nx = [0.5, 1]\nq2 = [90, inf]\n[shape]")],
+        "job.toml: shape: 6 parameters for 1 data and 1 priors",
+    ),
+    "nothing left": (
+        [("[shape]", "[data.cut]\nx = [0.9, 1]\n[shape]")],
+        "[data.cut]: nothing left after cuts",
+    ),
+    "a nan cell": ([("0.02,4,", "0.02,nan,")], "run1.csv: line 2"),
+}
+
+
+@pytest.mark.parametrize("case", WRONG)
+def test_what_is_asked_wrongly_is_named(tmp_path, write, capsys, case):
+    from scalewright.cli.main import main
+
+    changes, says = WRONG[case]
+    write(*changes)
+    assert main(["fit", str(tmp_path / "job.toml")]) == 2
+    out, said = capsys.readouterr()
+    assert says in said.replace(str(tmp_path) + os.sep, ""), said
+    assert said.startswith("scalewright: ") and said.count("\n") == 1 and out == ""
+    assert not list(tmp_path.glob("*.h5"))
+
+
+def test_what_cannot_be_done_is_named(run, tmp_path, write):
+    write(('"fit.h5"', '"none/fit.h5"'))
+    assert (
+        "[output] result = 'none/fit.h5': the folder does not exist"
+        in run("fit", "job.toml", status=1).stderr
+    )
+    write(("[output]", "[output]\npictures = 'run1.toml'"))
+    assert (
+        "[output] pictures = 'run1.toml': the folder cannot be made"
+        in run("fit", "job.toml", status=1).stderr
+    )
+
+
+def test_a_fit_that_does_not_converge_ends_with_status_1(run, tmp_path, write):
+    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
+    data = '[chi_square]\nreference = "data"\n[fit]\nevaluations = 1'
+    write((text, ""), ('ensemble = "replicas.h5"', ""), ("[fit]", data))
+    done = run("fit", "job.toml", status=1)
+    assert "not converged: stopped after" in done.stderr and "what was found is written" in done.stderr
+    assert not FitResult.load(tmp_path / "fit.h5").converged
+
+
+def test_the_example_of_the_help_is_a_job_that_is_understood(run, tmp_path, write):
+    from scalewright.cli.fit_job import read_fit_job
+
+    text = run("fit", "--help").stdout.split("with job.toml:\n")[1]
+    write()
+    (tmp_path / "job.toml").write_text("\n".join(line.strip() for line in text.splitlines()))
+    job = read_fit_job(tmp_path / "job.toml")
+    assert job.free == ("alpha_s",) and job.replicas.number == 100
+    assert set(job.files) == {"result", "ensemble", "densities", "parameters", "predictions", "report"}
+    assert job.shape.full(job.shape.start).size == len(job.shape.shape.names)
