@@ -128,13 +128,14 @@ def _report(job: FitJob, results: Results, carried: Densities | None) -> None:
     notes = {
         "electroweak inputs": job.electroweak.describe().removeprefix("electroweak inputs: "),
         "target mass": "kept" if job.target_mass else "neglected",
-        "subtraction of massive quarks": job.subtraction,
         "reference of multiplicative errors": "the data"
         if job.reference == "data"
         else "an earlier prediction",
         "shape": repr(job.shape),
         "corrections": ", ".join(map(repr, job.corrections)) or "none",
     }
+    if job.theory.heavy_quarks == "matched":
+        notes["what is beyond the massive part"] = job.subtraction
     if job.free:
         names = ", ".join(job.free)
         notes["replicas"] = f"move {names} to first order around the best fit, thresholds fixed"

@@ -55,7 +55,7 @@ def assumptions(page: Page, told: Told) -> None:
         ["uncertainties stand for", f"a rise of chi-square by {told.result.delta_chi2:g}"],
         *([name, words] for name, words in told.notes.items()),
     ]
-    page.table(["what", ""], rows)
+    page.table(["what", ""], rows, words=True)
 
 
 def convergence(page: Page, told: Told) -> None:

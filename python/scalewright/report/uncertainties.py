@@ -88,7 +88,7 @@ def replicas(page: Page, told: Told) -> None:
     page.verbatim(str(ensemble))
     if ensemble.failed:
         rows = [[str(index), reason] for index, reason in ensemble.failed.items()]
-        page.table(["replica", "why it failed"], rows, "failed fits, left out of all statistics")
+        page.table(["replica", "why it failed"], rows, "failed fits, left out of all statistics", words=True)
     else:
         page.say("No fit failed.")
     if not told.pictures or ensemble.replicas < 3:
