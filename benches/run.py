@@ -22,8 +22,15 @@ BENCHES = {
     "build": "Building operators",
     "apply": "Applying them",
     "evolve": "One density without operators",
+    "forward": "The map from input to predictions",
+    "fit": "Fits",
+    "ensemble": "Ensembles",
     "plain": "Against plain numpy",
+    "plain_forward": "Predictions in plain numpy",
     "memory": "Memory",
+    "quoted_error": "The numerical error that is quoted",
+    "closure": "Closure test",
+    "world_fit": "F2 of the world",
     "accuracy": "Accuracy",
 }
 

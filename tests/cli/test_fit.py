@@ -207,6 +207,21 @@ def test_a_fit_to_the_data_alone_needs_no_replicas(run, tmp_path, write):
     assert len(rows(tmp_path / "densities.csv")) == 2 * 3 * 7
 
 
+def test_higher_twist_is_fitted_where_the_job_asks_for_it(run, tmp_path, write):
+    twist = '[[correction]]\nkind = "higher twist"\ntarget = "proton"\npolynomial = { degree = 0 }\n[output]'
+    write(("[output]", twist), ("number = 6", "number = 2"))
+    run("fit", "job.toml")
+    result = FitResult.load(tmp_path / "fit.h5")
+    assert result.names[-2:] == ("h_proton.c0", "alpha_s")
+    # the law has none; four standard deviations
+    assert abs(result.value("h_proton.c0")) < 4.0 * result.error("h_proton.c0")
+    listed = {row["name"]: row for row in rows(tmp_path / "parameters.csv")}
+    assert float(listed["h_proton.c0"]["value"]) == result.value("h_proton.c0")
+    written = rows(tmp_path / "predictions.csv")
+    assert [float(row["prediction"]) for row in written] == result.prediction.tolist()
+    assert all(float(row["spread"]) > 0.0 < float(row["numerical error"]) for row in written)
+
+
 def test_a_network_is_fitted_with_validation(run, tmp_path, write):
     text = (tmp_path / "job.toml").read_text() if (tmp_path / "job.toml").exists() else ""
     write()

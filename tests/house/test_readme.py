@@ -21,11 +21,20 @@ def blocks(path: Path, language: str) -> list[str]:
 
 def test_the_python_examples_run_one_after_another(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.chdir(tmp_path)
+    _write_run1(tmp_path)
     examples = blocks(README, "python")
     assert examples
     names: dict[str, object] = {"__name__": "readme"}
     for example in examples:
         exec(compile(example, str(README), "exec"), names)
+
+
+def _write_run1(folder: Path) -> None:
+    """Write the table that the examples read: one of those that ship, under the name used there."""
+    campaign = ROOT / "python" / "scalewright" / "data" / "campaign"
+    description = (campaign / "nc_positron_low.toml").read_text("utf-8")
+    (folder / "run1.toml").write_text(description.replace("nc_positron_low.csv", "run1.csv"), "utf-8")
+    (folder / "run1.csv").write_bytes((campaign / "nc_positron_low.csv").read_bytes())
 
 
 def test_there_is_one_command_for_the_tests_and_one_for_the_main_job() -> None:

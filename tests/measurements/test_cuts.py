@@ -48,6 +48,8 @@ def test_a_reason_in_the_words_of_a_limit_does_not_undo_the_limit(make):
     [
         ({"x": (0.5, None)}, r"nothing left after cuts: 0\.5 <= x: removed 3 \(3 of A\)"),
         ({"x": (None, None)}, r"x = \(None, None\): x must be \(least, most\), one of them may be None"),
+        ({"x": (-np.inf, None)}, r"x = \(-inf, None\): x must be \(least, most\)"),
+        ({"x": (np.inf, None)}, "x = inf: x must lie in"),
         ({"x": 0.3}, r"x = 0\.3: x must be \(least, most\)"),
         (
             {"q2": (5.0, 1.0)},

@@ -44,9 +44,11 @@ class Cut:
 
 def in_range(name: str, given: object, values: Floats, place: Sequence[str]) -> tuple[str, NDArray[np.bool_]]:
     """Return the condition in words, and which of `values` meet it."""
-    if not isinstance(given, tuple | list) or len(given) != 2 or (given[0] is None and given[1] is None):
+    if not isinstance(given, tuple | list) or len(given) != 2:
         _check.refuse(name, given, f"{name} must be (least, most), one of them may be None")
-    least, most = (None if limit is None else _check.real(name, limit) for limit in given)
+    least, most = _limit(name, given[0], -np.inf), _limit(name, given[1], np.inf)
+    if least is None and most is None:
+        _check.refuse(name, tuple(given), f"{name} must be (least, most), one of them may be None")
     if least is not None and most is not None and least > most:
         _check.refuse(name, tuple(given), f"{name} must be (least, most): the first is above the second")
     for row in np.flatnonzero(np.isnan(values))[:1]:
@@ -59,6 +61,13 @@ def in_range(name: str, given: object, values: Floats, place: Sequence[str]) -> 
     low = "" if least is None else f"{show(least)} <= "
     high = "" if most is None else f" <= {show(most)}"
     return f"{low}{name}{high}", keep
+
+
+def _limit(name: str, given: object, nowhere: float) -> float | None:
+    """Return a limit, None where there is none: left out, or infinite on the side that excludes nothing."""
+    if given is None or (isinstance(given, float) and given == nowhere):
+        return None
+    return _check.real(name, given)
 
 
 def apply_cuts(

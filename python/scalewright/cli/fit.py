@@ -54,6 +54,11 @@ with job.toml:
   dbar.c0 = { tied = ["ubar.c0", 1.0] }
   alpha_s = { prior = [0.118, 0.01] }
 
+  [[correction]]                      # none by default; also "known factor", "target factor"
+  kind = "higher twist"
+  target = "proton"
+  polynomial = { degree = 1 }
+
   [fit]
   theory = ["alpha_s"]                # also "charm", "bottom"
 

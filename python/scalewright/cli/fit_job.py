@@ -8,6 +8,7 @@ from typing import Any
 
 from .. import _check
 from .._check import Floats
+from ..corrections import Correction
 from ..electroweak import Electroweak
 from ..errors import InputError
 from ..files import toml
@@ -19,12 +20,13 @@ from ..fitting.shapes import Shape
 from ..grid import ChebyshevGrid
 from ..measurements import Measurements
 from ..theory import Theory
+from .correction_job import read_corrections
 from .jobs import read_electroweak, read_measured, refuse_no_folder, result_file, yes_or_no
 from .shape_job import Start, read_parameters, read_shape, read_start
 
 SECTIONS = (
-    "theory", "electroweak", "grid", "data", "prediction", "chi_square", "shape", "parameters", "fit",
-    "replicas", "output",
+    "theory", "electroweak", "grid", "data", "prediction", "chi_square", "shape", "parameters", "correction",
+    "fit", "replicas", "output",
 )  # fmt: skip
 #: Files that a fit writes, and their endings.
 ENDINGS = {
@@ -86,6 +88,8 @@ class FitJob:
         Theory parameters that are fitted too.
     priors
         Of those.
+    corrections
+        Higher twist, deuteron and nuclear factors; their free parameters are fitted too.
     delta_chi2, evaluations
         As for `fit`.
     replicas
@@ -111,6 +115,7 @@ class FitJob:
     shape: Shape
     free: tuple[str, ...]
     priors: dict[str, tuple[float, float]]
+    corrections: list[Correction]
     delta_chi2: float
     evaluations: int | None
     replicas: ReplicaJob | None
@@ -163,7 +168,8 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = (), *, writes: bool = T
         files, pictures, q2, x = _output(path, top, start, grid, replicas is not None)
     return FitJob(
         top, theory, electroweak, grid, read_measured(path, data), target_mass, subtraction, form, reference,
-        start, shape, free, priors, delta_chi2, evaluations, replicas, files, pictures, q2, x,
+        start, shape, free, priors, read_corrections(path, top), delta_chi2, evaluations, replicas,
+        files, pictures, q2, x,
     )  # fmt: skip
 
 

@@ -82,7 +82,7 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
 def _fit_once(job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None) -> FitResult:
     """Fit with one reference; from the second time on the map follows theory parameters."""
     options: dict[str, Any] = {"priors": job.priors, "delta_chi2": job.delta_chi2, "theory": job.free}
-    options["evaluations"] = job.evaluations
+    options |= {"evaluations": job.evaluations, "corrections": job.corrections}
     if last is None:
         return fit(maps(), chi_square, job.shape, **options)
     rebuild = maps if job.free else None
@@ -111,11 +111,24 @@ def replicas_of(job: FitJob, fitted: Fitted, report: Report, label: str = "repli
     progress = report.progress(label)
     return fit_replicas(
         fitted.fmap, fitted.chi_square, job.shape, replicas=asked.number, seed=asked.seed, theory=job.free,
-        priors=job.priors, workers=asked.workers, journal=asked.journal,
+        priors=job.priors, corrections=job.corrections, workers=asked.workers, journal=asked.journal,
         progress=False if progress is None else progress, evaluations=job.evaluations,
         validation=asked.validation, patience=asked.patience,
         start=fitted.result.parameters if fitted.result.converged and not asked.validation else None,
     )  # fmt: skip
+
+
+def spread_of(fitted: Fitted, ensemble: Ensemble) -> Floats:
+    """Return the standard deviation of predictions over replicas, (datum,), each with all its parameters."""
+    predictions = [fitted.result._problem.prediction(row) for row in ensemble.parameters]
+    return np.asarray(np.std(predictions, axis=0, ddof=1))
+
+
+def numerical_error(job: FitJob, fitted: Fitted) -> Floats:
+    """Return the numerical error of predictions, (datum,), at the minimum."""
+    found = dict(zip(fitted.result.names, fitted.result.parameters.tolist(), strict=True))
+    corrections = [one.at(found) if found.keys() & set(one.names) else one for one in job.corrections]
+    return np.asarray(fitted.fmap.numerical_error(fitted.result.densities, corrections)[0])
 
 
 def evolved(job: FitJob, fitted: Fitted, ensemble: Ensemble | None, q2: Floats, report: Report) -> Densities:

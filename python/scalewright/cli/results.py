@@ -16,7 +16,7 @@ from ..fitting.ensemble import Ensemble
 from ..fitting.functionals import Functional
 from ..report import fit_report
 from .fit_job import FitJob
-from .fitted import Fitted, evolved, fit_data, replicas_of
+from .fitted import Fitted, evolved, fit_data, numerical_error, replicas_of, spread_of
 from .report import Report, chi_square_summary
 from .written import write_parameters, write_predictions, write_table
 
@@ -96,7 +96,7 @@ def write_all(job: FitJob, results: Results, report: Report) -> None:
         write_parameters(files["parameters"], fitted.result, ensemble)
         results.files.append(f"{files['parameters']}: parameters")
     if "predictions" in files:
-        _predictions(files["predictions"], results)
+        _predictions(files["predictions"], job, results)
         results.files.append(f"{files['predictions']}: predictions and pulls")
     carried = _densities(job, results, report)
     if "report" in files:
@@ -106,11 +106,10 @@ def write_all(job: FitJob, results: Results, report: Report) -> None:
         results.files.append(f"{job.pictures}: {_pictures(job, results, carried)} pictures")
 
 
-def _predictions(file: str, results: Results) -> None:
-    fitted, spread = results.fitted, None
-    if results.ensemble is not None:
-        spread = fitted.fmap.predict(results.ensemble.densities).std(axis=0, ddof=1)
-    error = fitted.fmap.numerical_error(fitted.result.densities)[0]
+def _predictions(file: str, job: FitJob, results: Results) -> None:
+    fitted = results.fitted
+    spread = None if results.ensemble is None else spread_of(fitted, results.ensemble)
+    error = numerical_error(job, fitted)
     write_predictions(file, fitted.chi_square, fitted.result.prediction, error, spread)
 
 
@@ -129,12 +128,14 @@ def _report(job: FitJob, results: Results, carried: Densities | None) -> None:
     notes = {
         "electroweak inputs": job.electroweak.describe().removeprefix("electroweak inputs: "),
         "target mass": "kept" if job.target_mass else "neglected",
-        "subtraction of massive quarks": job.subtraction,
         "reference of multiplicative errors": "the data"
         if job.reference == "data"
         else "an earlier prediction",
         "shape": repr(job.shape),
+        "corrections": ", ".join(map(repr, job.corrections)) or "none",
     }
+    if job.theory.heavy_quarks == "matched":
+        notes["what is beyond the massive part"] = job.subtraction
     if job.free:
         names = ", ".join(job.free)
         notes["replicas"] = f"move {names} to first order around the best fit, thresholds fixed"

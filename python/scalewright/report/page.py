@@ -22,7 +22,7 @@ a { color: #111; }
 table { border-collapse: collapse; font: 13px Helvetica, Arial, sans-serif; margin: 1em 0; }
 caption { text-align: left; font-style: italic; padding-bottom: .3em; }
 th, td { padding: .15em .8em; text-align: right; border-bottom: 1px solid #ccc; }
-th { border-bottom: 1px solid #333; } th:first-child, td:first-child { text-align: left; }
+th { border-bottom: 1px solid #333; } th:first-child, td:first-child, .words td { text-align: left; }
 pre { font: 12px/1.35 Menlo, Consolas, monospace; background: #f4f4f4; padding: .7em; overflow-x: auto; }
 figure { margin: 1em 0; } img { max-width: 100%; } figcaption { font-style: italic; }
 .warning { border: 2px solid #111; padding: .4em .8em; font-weight: bold; }
@@ -69,12 +69,15 @@ class Page:
         """Add text as it stands."""
         self._parts.append(f"<pre>{html.escape(text)}</pre>")
 
-    def table(self, head: Sequence[str], rows: Sequence[Sequence[str]], caption: str = "") -> None:
-        """Add a table: the first column to the left, the others to the right."""
+    def table(
+        self, head: Sequence[str], rows: Sequence[Sequence[str]], caption: str = "", *, words: bool = False
+    ) -> None:
+        """Add a table: the first column to the left, the others, of numbers, to the right; or `words`."""
         above = f"<caption>{html.escape(caption)}</caption>" if caption else ""
         top = "".join(f"<th>{html.escape(word)}</th>" for word in head)
         body = "".join(f"<tr>{''.join(f'<td>{html.escape(word)}</td>' for word in row)}</tr>" for row in rows)
-        self._parts.append(f"<table>{above}<tr>{top}</tr>{body}</table>")
+        kind = ' class="words"' if words else ""
+        self._parts.append(f"<table{kind}>{above}<tr>{top}</tr>{body}</table>")
 
     def figure(self, figure: Any, caption: str, *, dots: bool = False) -> None:
         """Add a picture made by matplotlib: lines, or dots (PNG) where there are very many of them."""
@@ -86,7 +89,7 @@ class Page:
 
     def text(self) -> str:
         """Return the page."""
-        links = "".join(f'<a href="#{place}">{html.escape(title)}</a>' for place, title in self._places)
+        links = "\n".join(f'<a href="#{place}">{html.escape(title)}</a>' for place, title in self._places)
         title = html.escape(self.title)
         head = f'<meta charset="utf-8"><title>{title}</title><style>{_STYLE}</style>'
         body = "\n".join([f"<h1>{title}</h1>", f"<nav>{links}</nav>", *self._parts])

@@ -3,15 +3,12 @@
 from __future__ import annotations
 
 import platform
-from typing import TYPE_CHECKING
 
 import numpy as np
 
 from . import figures
 from .page import Page
-
-if TYPE_CHECKING:
-    from .fit import Told
+from .told import Told
 
 _MANY_FAILED = 0.01
 
@@ -55,7 +52,7 @@ def assumptions(page: Page, told: Told) -> None:
         ["uncertainties stand for", f"a rise of chi-square by {told.result.delta_chi2:g}"],
         *([name, words] for name, words in told.notes.items()),
     ]
-    page.table(["what", ""], rows)
+    page.table(["what", ""], rows, words=True)
 
 
 def convergence(page: Page, told: Told) -> None:

@@ -2,16 +2,12 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
-
 import numpy as np
 
 from ..fitting.functionals import Functional
 from . import figures
 from .page import Page
-
-if TYPE_CHECKING:
-    from .fit import Told
+from .told import Told
 
 _UNITS = {"charm": " (GeV)", "bottom": " (GeV)"}
 
@@ -88,7 +84,7 @@ def replicas(page: Page, told: Told) -> None:
     page.verbatim(str(ensemble))
     if ensemble.failed:
         rows = [[str(index), reason] for index, reason in ensemble.failed.items()]
-        page.table(["replica", "why it failed"], rows, "failed fits, left out of all statistics")
+        page.table(["replica", "why it failed"], rows, "failed fits, left out of all statistics", words=True)
     else:
         page.say("No fit failed.")
     if not told.pictures or ensemble.replicas < 3:
