@@ -56,6 +56,8 @@ impl Theory {
     /// # Errors
     /// [`Error::Argument`] for what is not allowed. A Landau pole between the coupling's reference and a scale
     /// shows only when a coupling beyond it is asked for.
+    ///
+    /// [`Error::Argument`]: crate::error::Error::Argument
     pub fn new(given: Assumptions) -> Result<Self> {
         check_numbers(&given)?;
         check_scales(&given)?;
@@ -143,6 +145,9 @@ impl Theory {
     /// # Errors
     /// [`Error::Argument`] for a scale or nf that is not allowed, or a coupling too large for the step at a
     /// threshold; [`Error::LandauPole`] on the way from the reference.
+    ///
+    /// [`Error::Argument`]: crate::error::Error::Argument
+    /// [`Error::LandauPole`]: crate::error::Error::LandauPole
     pub fn a(&self, mu_r2: f64, nf: usize) -> Result<f64> {
         positive("q2", mu_r2, "GeV^2")?;
         flavours("nf", nf)?;
@@ -198,6 +203,8 @@ impl Theory {
     ///
     /// # Errors
     /// As [`Theory::a`]; [`Error::Argument`] for `a` not above 0 or beyond the largest coupling followed.
+    ///
+    /// [`Error::Argument`]: crate::error::Error::Argument
     pub fn factorisation_scale(&self, a: f64, nf: usize) -> Result<f64> {
         flavours("nf", nf)?;
         coupling_value("a", a, ALPHA_S_LIMIT / (4.0 * PI))?;

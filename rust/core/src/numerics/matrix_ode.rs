@@ -4,7 +4,7 @@
 //! `E_j = E_0 + (h/2) sum_k S_jk A(s_k) E_k`, S the integration matrix. This is implicit (stiff parts of A do no harm) and
 //! converges geometrically in m. Row panel p depends on the panels before it alone: the system is solved panel by
 //! panel. Were A constant, m/2 systems of `n_p` unknowns would give the `m n_p` unknowns of a panel
-//! ([`super::collocation`]); since A moves little within a step, a few sweeps of the same on what is left of the
+//! (`collocation`); since A moves little within a step, a few sweeps of the same on what is left of the
 //! right-hand side do. What they miss falls like a power series in the change of A, faster than geometrically, by a
 //! factor of some hundred to thousand in the first sweeps.
 
