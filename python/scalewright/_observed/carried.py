@@ -32,9 +32,8 @@ _POINTS = 512
 
 def scale_groups(problem: Problem) -> tuple[Floats, Integers, Integers]:
     """Return the distinct (mu_f^2, nf), and to which of them each point belongs."""
-    pairs = np.stack([problem.muf2, problem.nf.astype(float)], axis=1)
-    distinct, group = np.unique(pairs, axis=0, return_inverse=True)
-    return distinct[:, 0].copy(), distinct[:, 1].astype(np.int64), group.reshape(-1)
+    q2, nf, group = problem.groups
+    return q2 * problem.theory.hard_muf2_ratio, nf, group
 
 
 def carried_matrix(

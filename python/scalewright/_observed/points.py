@@ -224,7 +224,7 @@ def _together(columns: dict[str, Sequence[Any]]) -> list[Any] | None:
     from_s = q2 / (x * (s - NUCLEON_M2))
     good = ~(np.abs(y - from_s) > _WRONG_Y * from_s)
     y = np.where(np.isnan(s), y, from_s)
-    needed = np.isin(np.array(measure), NEED_Y)
+    needed = np.array([one in NEED_Y for one in measure])
     good &= ~needed | ((y >= _LEAST_Y) & (y <= 1.0 + _ROUNDING))
     y = np.where(needed | ((y > 0.0) & (y <= 1.0)), y, np.nan)
     return [x, q2, y, s, spin, measure, beam, charged, photon, tag, protons, target] if good.all() else None

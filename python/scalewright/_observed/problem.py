@@ -70,6 +70,15 @@ class Problem:
         self._refuse_strong()
 
     @cached_property
+    def groups(self) -> tuple[Floats, Integers, Integers]:
+        """The distinct Q^2 in GeV^2, their numbers of flavours, and to which of them each point belongs.
+
+        Tables come in bins of Q^2: what follows from a scale is computed once for each.
+        """
+        q2, group = np.unique(self.points.q2, return_inverse=True)
+        return q2, self.theory.nf_at(q2 * self.theory.hard_muf2_ratio), group
+
+    @cached_property
     def muf2(self) -> Floats:
         """mu_f^2 in GeV^2, (point,)."""
         return self.points.q2 * self.theory.hard_muf2_ratio
@@ -77,16 +86,15 @@ class Problem:
     @cached_property
     def nf(self) -> Integers:
         """Number of active flavours of densities, coupling and coefficients, (point,)."""
-        return self.theory.nf_at(self.muf2)
+        _, nf, group = self.groups
+        return nf[group]
 
     @cached_property
     def a(self) -> Floats:
         """a(mu_r) = alpha_s/(4 pi), (point,)."""
-        # tables come in bins of Q^2: the running is solved once for each
-        pairs = np.stack([self.points.q2 * self.theory.hard_mur2_ratio, self.nf], axis=1)
-        distinct, inverse = np.unique(pairs, axis=0, return_inverse=True)
-        mur2, nf = distinct[:, 0].copy(), distinct[:, 1].astype(np.int64)
-        return np.asarray(self.theory.alpha_s(mur2, nf) / (4.0 * np.pi))[inverse.reshape(-1)]
+        q2, nf, group = self.groups
+        alpha = self.theory.alpha_s(q2 * self.theory.hard_mur2_ratio, nf)
+        return np.asarray(alpha / (4.0 * np.pi))[group]
 
     @cached_property
     def highest(self) -> dict[str, int]:
