@@ -26,8 +26,8 @@ def by_flavour(evolved):
     [(2e-4, 5.0, 1.0, 1.0), (0.1, 300.0, 2.0, 0.5), (0.6, 12.0, 1.0, 1.0)],
 )
 def test_charm_of_a_w(grid, start, x, q2, mur, muf, subtraction, beam):
-    # F = F(massive) + D (F(massless) - limit). S: quarks (nu) or antiquarks (nubar) that charm comes from, c:
-    # its antiquark, all times x; t = ln(Q^2/mu_f^2), L = ln(Q^2/m^2). S and C_g/nf g cancel in the difference;
+    # F = F(massive) + D (F(massless) - limit). S: quarks (nu), antiquarks (nubar) that charm comes from, c:
+    # its antiquark, all times x; t = ln(Q^2/mu_f^2), L = ln(Q^2/m^2). S and C_g/nf g cancel in the rest;
     # left is |V|^2 times (1 + a (C_q + t P_qq)) c + a (t - L) P_qg/(2 nf) g in F2/2, minus that with its own
     # C_q in F3/2, and a C_L c in FL/2; at x, or at x (1 + m^2/Q^2) for "chi". The massive part is that of
     # `test_charged_current_charm`
