@@ -74,17 +74,33 @@ def test_own_counting_at_a3_is_refused_beside_photons_with_three_flavours(grid):
         sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
 
 
-def test_operators_reach_the_scales_of_all_ratios(grid, start):
-    # mu_f^2 down to 0.9 GeV^2, below the input at 1.5 and its charm threshold
-    theory = sw.Theory(order="NLO", hard_muf2_ratio=0.25)
-    rows = SimpleNamespace(x=[0.1, 0.1], q2=[3.6, 40.0], measure="F2", exchange="photon")
+@pytest.mark.parametrize("heavy_quarks", ["massless", "matched"])
+@pytest.mark.parametrize("ratio", [0.25, 4.0])
+def test_operators_reach_the_scales_of_all_ratios(grid, start, ratio, heavy_quarks):
+    # with 1/4: mu_f^2 down to 0.9 GeV^2, below the input at 1.5, and 39.5 below the threshold of bottom;
+    # with 4: up to 1.6e5, four times the highest Q^2
+    theory = sw.Theory(order="NLO", hard_muf2_ratio=ratio, heavy_quarks=heavy_quarks)
+    q2 = [3.6, 39.5, 4e4]
+    rows = SimpleNamespace(x=[0.1] * 3, q2=q2, measure="F2", exchange="photon")
     fmap = sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
-    evolved = sw.evolve(theory, start, [0.9, 10.0])
+    evolved = sw.evolve(theory, start, ratio * np.array(q2))
     value = sw.structure_function(
-        "F2", x=[0.1, 0.1], q2=[3.6, 40.0], densities=evolved, theory=theory, exchange="photon"
+        "F2", x=[0.1] * 3, q2=q2, densities=evolved, theory=theory, exchange="photon"
     )
     # tolerance of the steps in scale, 1e-9 each way
     np.testing.assert_allclose(fmap.predict(start), value, rtol=1e-8)
+
+
+def test_an_input_above_all_points_is_carried_back(grid, start):
+    # the input at 100 GeV^2 with five flavours, made of that at 1.5: the same predictions as from there
+    theory = sw.Theory(order="NLO")
+    q2 = np.array([2.0, 12.0, 60.0])
+    rows = SimpleNamespace(x=[0.02, 0.1, 0.3], q2=q2, measure="F2", exchange="photon")
+    low = sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
+    high = sw.forward_map(theory, grid, start_q2=100.0, start_nf=5, points=rows)
+    above = sw.evolve(theory, start, 100.0)
+    # evolution backwards is the inverse: rounding, 2e-15 measured, with room for what an inverse blows up
+    np.testing.assert_allclose(high.predict(above), low.predict(start), rtol=1e-12)
 
 
 def test_a_coupling_too_large_is_refused_by_name(grid):
@@ -92,3 +108,16 @@ def test_a_coupling_too_large_is_refused_by_name(grid):
     rows = SimpleNamespace(x=[0.1, 0.1], q2=[40.0, 1.2], measure="F2", exchange="photon", place=("a", "b"))
     with pytest.raises(sw.RangeError, match=r"^b: "):
         sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
+
+
+def test_a_scale_below_the_reach_of_evolution_is_refused_by_name(grid):
+    theory = sw.Theory(hard_muf2_ratio=0.25)
+    rows = SimpleNamespace(
+        x=[0.1, 0.1], q2=[40.0, 1.0], measure="F2", exchange="photon", place=("a", "run.csv, line 3")
+    )
+    message = r"^run.csv, line 3: q2 = 1, mu_f\^2 = 0.25 GeV\^2: alpha_s grows beyond 5 .* \(Landau pole\)"
+    with pytest.raises(sw.RangeError, match=message):
+        sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
+    with pytest.raises(sw.RangeError, match=r"^alpha_s grows"):  # of the start, not of a point
+        rows.q2 = [40.0, 10.0]
+        sw.forward_map(theory, grid, start_q2=0.05, start_nf=3, points=rows)
