@@ -18,12 +18,12 @@ CASES = [
 X, Q2 = np.array([1e-3, 0.03, 0.4]), 100.0
 
 
-def shift(grid, case, order, alpha, ratios, counting="absolute"):
+def shift(grid, case, order, alpha, ratios, counting="absolute", heavy="massless"):
     """Return the change of predictions with the ratios of scales; the input is given at Q^2."""
-    flavours = 3 if counting == "own" else 4
+    flavours = 3 if counting == "own" or heavy == "massive" else 4
     theory = {
         "order": order, "flavours": flavours, "coupling": sw.Coupling(alpha, q2=Q2, nf=flavours),
-        "fl_counting": counting,
+        "fl_counting": counting, "heavy_quarks": heavy,
     }  # fmt: skip
     rows = SimpleNamespace(x=X, q2=Q2 * np.ones(3), **case)
     start = direct.start(grid, q2=Q2, nf=flavours)
@@ -56,6 +56,19 @@ def test_shifts_of_scales_are_one_order_higher(grid, case, order, ratios):
     # vanishes: the median counts
     falls = np.log2(small / smaller)
     assert abs(np.median(falls) - power) < 0.15
+
+
+@pytest.mark.parametrize("ratios", [(2.0, 1.0), (1.0, 3.0), (0.5, 2.0)])
+@pytest.mark.parametrize("measure", ["F2", "FL", "xF3"])
+@pytest.mark.parametrize("order", ["LO", "NLO"])
+def test_shifts_with_charm_made_by_a_w_are_one_order_higher(grid, measure, order, ratios):
+    # with its mass, FL begins at a^0 too; as above
+    case = {"measure": measure, "current": "charged", "beam": "nu", "tagged": "charm"}
+    small, smaller = (np.abs(shift(grid, case, order, a, ratios, heavy="massive")) for a in (0.004, 0.002))
+    if order == "LO" and ratios[1] == 1.0:
+        assert (small == 0.0).all()
+        return
+    assert abs(np.median(np.log2(small / smaller)) - (1 if order == "LO" else 2)) < 0.15
 
 
 @pytest.mark.parametrize("ratios", [(2.0, 1.0), (1.0, 3.0), (0.5, 2.0)])
