@@ -106,3 +106,22 @@ def test_pairs_with_the_chi_type_variable(grid, start, quark, x, q2):
         value = sw.structure_function(measure, subtraction="chi", **asked)[0]
         scale = charge2 * max(abs(exact), 1e-3 * expected["F2"])
         assert abs(value - charge2 * exact) <= 1e-6 * scale, measure  # standard resolution
+
+
+@pytest.mark.parametrize("order", ["NLO", "NNLO"])
+@pytest.mark.parametrize(("x", "q2"), [(1e-4, 6.0), (0.3, 2e3)])
+def test_what_couples_to_light_quarks_is_massless(grid, start, order, x, q2):
+    # charm and bottom are in it as densities and in loops, by nf
+    theory = sw.Theory(order=order, heavy_quarks="matched")
+    evolved = sw.evolve(theory, start, [q2]).scale(q2)
+    light = np.array([1, 4, 1, 0, 0, 0]) / 9
+    asked = {"x": x, "q2": q2, "densities": evolved, "theory": theory, "exchange": "photon"}
+    for measure in ("F2", "FL"):
+        expected = direct.light(
+            theory, evolved, measure, x, light, np.zeros(6), ["LO", "NLO", "NNLO"].index(order)
+        )
+        whole, charm, bottom = (
+            sw.structure_function(measure, tagged=tag, **asked)[0] for tag in (None, "charm", "bottom")
+        )
+        scale = max(abs(expected), 1e-3 * sw.structure_function("F2", **asked)[0])
+        assert abs(whole - charm - bottom - expected) <= 1e-6 * scale  # standard resolution
