@@ -112,8 +112,8 @@ def test_an_input_above_all_points_is_carried_back(grid, start):
     low = sw.forward_map(theory, grid, start_q2=1.5, start_nf=3, points=rows)
     high = sw.forward_map(theory, grid, start_q2=100.0, start_nf=5, points=rows)
     above = sw.evolve(theory, start, 100.0)
-    # evolution backwards is the inverse: rounding, 2e-15 measured, with room for what an inverse blows up
-    np.testing.assert_allclose(high.predict(above), low.predict(start), rtol=1e-12)
+    # steps in scale, 1e-8 each way
+    np.testing.assert_allclose(high.predict(above), low.predict(start), rtol=2e-8)
 
 
 def test_a_coupling_too_large_is_refused_by_name(grid):
