@@ -7,6 +7,7 @@ mu_f^2.
 
 from __future__ import annotations
 
+import html
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from functools import cached_property
@@ -14,7 +15,7 @@ from typing import Any
 
 import numpy as np
 
-from ._check import Floats, show
+from ._check import Floats
 from ._corrected.bound import Bound, checked
 from ._corrected.reported import described
 from ._measured.combination import Combination
@@ -23,6 +24,7 @@ from ._observed.accuracy import TOLERANCE, RowErrors, finer_grid, row_errors
 from ._observed.carried import carried_matrix
 from ._observed.derivatives import carried_derivative
 from ._observed.further import checked_further
+from ._observed.held import HeldMap
 from ._observed.inputs import input_values
 from ._observed.orders import Orders, orders_of
 from ._observed.points import Points
@@ -38,10 +40,11 @@ from .theory import Theory
 __all__ = ["ForwardMap", "forward_map"]
 
 
-class ForwardMap:
+class ForwardMap(HeldMap):
     """The linear map from input densities to predicted rows, and from rows to data; frozen.
 
-    Made by `forward_map` or `ForwardMap.load`.
+    Made by `forward_map` or `ForwardMap.load`. Two are equal where theory, points, data and every bit of the
+    matrix are.
 
     Attributes
     ----------
@@ -60,41 +63,6 @@ class ForwardMap:
     steps_error : float
         Largest relative error estimate of the steps in scale.
     """
-
-    def __init__(
-        self, problem: Problem, start_q2: float, start_nf: int, flavours: tuple[int, ...], matrix: Floats,
-        data: Combination,
-        steps_error: float,
-    ) -> None:  # fmt: skip
-        self._problem, self.data, self.steps_error = problem, data, steps_error
-        self.start_q2, self.start_nf, self.flavours = start_q2, start_nf, flavours
-        matrix.flags.writeable = False
-        self.matrix = matrix
-
-    @property
-    def theory(self) -> Theory:
-        """What was assumed."""
-        return self._problem.theory
-
-    @property
-    def electroweak(self) -> Electroweak:
-        """Electroweak inputs."""
-        return self._problem.electroweak
-
-    @property
-    def grid(self) -> ChebyshevGrid:
-        """Where x lives."""
-        return self._problem.grid
-
-    @property
-    def points(self) -> Points:
-        """What each row is."""
-        return self._problem.points
-
-    @property
-    def weights(self) -> Floats:
-        """Weights of F2, FL and xF3 in what each row is, (row, 3)."""
-        return self._problem.factors
 
     def orders(self, boundaries: Mapping[str, float] | None = None) -> Orders:
         """Return the formal order of the light, heavy and longitudinal part of each row, and its regime.
@@ -304,10 +272,13 @@ class ForwardMap:
         """Return values (replica, flavour, node) in the order of the map."""
         return input_values(densities, self.grid, (self.start_q2, self.start_nf), self.flavours)
 
-    def __repr__(self) -> str:
-        """One line."""
-        start = f"from {show(self.start_q2)} GeV^2 (nf = {self.start_nf})"
-        return f"ForwardMap({self.theory.order}, {len(self.points)} rows, {self.data.data} data, {start})"
+    def __str__(self) -> str:
+        """One screen."""
+        return self.describe()
+
+    def _repr_html_(self) -> str:
+        """Return the same for notebooks."""
+        return f"<pre>{html.escape(self.describe())}</pre>"
 
 
 def forward_map(

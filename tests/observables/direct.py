@@ -12,6 +12,9 @@ import scalewright as sw
 from scalewright import _core
 from scipy.integrate import cubature
 
+#: Least ln(1/z).
+NEAREST = 1e-12
+
 
 def convolved(density, edges, x, kernels):
     """Return int_x^1 dz C(z) F(x/z) for each kernel and each flavour, (kernel, flavour).
@@ -25,7 +28,9 @@ def convolved(density, edges, x, kernels):
     _, plus, local = zip(*(kernel(np.array([0.5]), np.array([0.5])) for kernel in kernels), strict=True)
 
     def integrand(points):
-        s = points[:, 0]
+        # nearer to z = 1 a difference of densities is rounding alone, which 1/(1 - z) blows up; what lies
+        # there is 1e-12 times ln^3(1e-12) = 2e4 of a slope
+        s = np.maximum(points[:, 0], NEAREST**0.25)
         t = s**4  # takes the logarithms of 1 - z away from the end
         z, y = np.exp(-t), -np.expm1(-t)
         value = density(np.minimum(1.0, np.exp(t - u))).T  # (point, flavour)

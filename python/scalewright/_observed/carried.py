@@ -14,9 +14,10 @@ from typing import TypeAlias
 import numpy as np
 
 from .._carry import thread_count
-from .._check import Floats, Integers
+from .._check import Floats, Integers, show
 from .._route import Live
 from ..build import build_operators
+from ..errors import RangeError
 from ..operators import Operators
 from .point_rows import point_rows
 from .problem import Problem
@@ -72,18 +73,31 @@ def live(operators: Operators) -> Live:
 def built(
     problem: Problem, *, start_q2: float, start_nf: int | None, tolerance: float | None, threads: int | None
 ) -> Operators:
-    """Return operators that serve the scales of all points."""
+    """Return operators that serve the scales of all points.
+
+    Raises
+    ------
+    RangeError
+        If they do not reach the lowest mu_f^2; the message names its point.
+    """
     q2, nf, _ = scale_groups(problem)
-    return build_operators(
-        problem.theory,
-        problem.grid,
-        start_q2=start_q2,
-        start_nf=start_nf,
-        q2=q2,
-        nf=nf,
-        tolerance=tolerance,
-        threads=threads,
-    )
+    try:
+        return build_operators(
+            problem.theory,
+            problem.grid,
+            start_q2=start_q2,
+            start_nf=start_nf,
+            q2=q2,
+            nf=nf,
+            tolerance=tolerance,
+            threads=threads,
+        )
+    except RangeError as error:
+        lowest = int(np.argmin(problem.muf2))
+        if problem.muf2[lowest] > start_q2:  # it is the start that cannot be reached
+            raise
+        at = f"q2 = {show(problem.points.q2[lowest])}, mu_f^2 = {show(problem.muf2[lowest])} GeV^2"
+        raise RangeError(f"{problem.points.place[lowest]}: {at}: {error}") from None
 
 
 def carried(
