@@ -252,3 +252,5 @@ def replica_lines(ensemble: Ensemble, report: Report) -> None:
         report.say(f"  {len(ensemble.failed)} failed, the first of them {index}: {said}{many}")
     if ensemble.negative:
         report.say(f"  {ensemble.negative} pseudo-data were negative, and kept")
+    for note in ensemble.notes:
+        report.say(f"  {note}")
