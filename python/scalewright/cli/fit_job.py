@@ -22,6 +22,7 @@ from ..measurements import Measurements
 from ..theory import Theory
 from .correction_job import read_corrections
 from .jobs import read_electroweak, read_measured, refuse_no_folder, result_file, yes_or_no
+from .scale_job import ScaleVariations, read_variations
 from .shape_job import Start, read_parameters, read_shape, read_start
 
 SECTIONS = (
@@ -80,6 +81,8 @@ class FitJob:
         As for `forward_map`.
     form, reference
         Of chi-square; `reference` is "data" or "prediction".
+    variations
+        Of scales, for a covariance of the theory in chi-square, or None.
     start
         Scale and number of flavours at which the shape stands.
     shape
@@ -111,6 +114,7 @@ class FitJob:
     subtraction: str
     form: str
     reference: str
+    variations: ScaleVariations | None
     start: Start
     shape: Shape
     free: tuple[str, ...]
@@ -163,13 +167,15 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = (), *, writes: bool = T
     start = read_start(shape_section, theory)
     bare = read_shape(shape_section, grid, start.nf)
     shape, priors = read_parameters(top.section("parameters", {}), bare, free)
+    measured = read_measured(path, data)
+    variations = read_variations(top.section("chi_square", {}), measured)
     files, pictures, q2, x = _nothing()
     if writes:
         files, pictures, q2, x = _output(path, top, start, grid, replicas is not None)
     return FitJob(
-        top, theory, electroweak, grid, read_measured(path, data), target_mass, subtraction, form, reference,
-        start, shape, free, priors, read_corrections(path, top), delta_chi2, evaluations, replicas,
-        files, pictures, q2, x,
+        top, theory, electroweak, grid, measured, target_mass, subtraction, form, reference,
+        variations, start, shape, free, priors, read_corrections(path, top), delta_chi2, evaluations,
+        replicas, files, pictures, q2, x,
     )  # fmt: skip
 
 
@@ -183,7 +189,7 @@ def read_prediction(top: Section) -> tuple[bool, str]:
 
 
 def _chi_square(top: Section) -> tuple[str, str]:
-    section = top.section("chi_square", {}).only("form", "reference")
+    section = top.section("chi_square", {}).only("form", "reference", "scale_variations")
     with section.blame():
         form = _check.choice("form", section.get("form", "covariance"), ("covariance", "nuisance"))
         held = section.get("reference", "prediction")

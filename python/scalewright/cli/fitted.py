@@ -19,6 +19,7 @@ from ..fitting.least_squares import FitResult, fit
 from ..fitting.maps import KnownMap, Maps, theory_at
 from ..fitting.reference import settle_reference
 from ..fitting.replicas import fit_replicas
+from ..fitting.theory_covariance import ScaleCovariance
 from ..measurements import Measurements
 from .fit_job import FitJob
 from .report import Report
@@ -38,12 +39,15 @@ class Fitted:
         The map it ended with.
     history
         Chi-squares while the reference settled.
+    scales
+        The covariance of the theory in chi-square, or None.
     """
 
     chi_square: ChiSquare
     result: FitResult
     fmap: KnownMap
     history: tuple[float, ...]
+    scales: ScaleCovariance | None = None
 
 
 def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
@@ -65,6 +69,11 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
     first = ChiSquare(measured, job.form)
     # it takes the map as it comes; fits after it follow theory parameters
     found = [_fit_once(job, maps, first, None)]
+    scales = None
+    if job.variations is not None:  # around a fit that knows nothing of them
+        scales = job.variations.covariance(maps, found[-1], first, job.corrections)
+        first = ChiSquare(measured, job.form, theory=scales.matrix)
+        found.append(_fit_once(job, maps, first, found[-1]))
 
     def once(chi_square: ChiSquare) -> Floats:
         if chi_square is not first:
@@ -74,9 +83,9 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
     if job.reference == "data":
         if job.free:
             found.append(_fit_once(job, maps, first, found[-1]))
-        return Fitted(first, found[-1], _map_of(maps, found[-1]), (found[-1].chi2,))
+        return Fitted(first, found[-1], _map_of(maps, found[-1]), (found[-1].chi2,), scales)
     settled = settle_reference(first, once)
-    return Fitted(settled.chi_square, found[-1], _map_of(maps, found[-1]), settled.history)
+    return Fitted(settled.chi_square, found[-1], _map_of(maps, found[-1]), settled.history, scales)
 
 
 def _fit_once(job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None) -> FitResult:
