@@ -419,6 +419,15 @@ def test_a_fit_that_does_not_converge_ends_with_status_1(run, tmp_path, write):
     assert not FitResult.load(tmp_path / "fit.h5").converged
 
 
+def test_more_starts_are_told(run, tmp_path, write):
+    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
+    data = '[chi_square]\nreference = "data"\n[fit]\nstarts = 3'
+    write((text, ""), ('ensemble = "replicas.h5"', ""), ("[fit]", data))
+    said = run("fit", "job.toml").stdout
+    assert "  from 3 starts: 3 end at this minimum\n" in said
+    assert "from 3 starts: 3 end at this minimum" in FitResult.load(tmp_path / "fit.h5").status
+
+
 def test_the_example_of_the_help_is_a_job_that_is_understood(run, tmp_path, write):
     from scalewright.cli.fit_job import read_fit_job
 

@@ -68,6 +68,7 @@ with job.toml:
 
   [fit]
   theory = ["alpha_s"]                # also "charm", "bottom"
+  starts = 1                          # more searches, and the lowest minimum: there may be several
 
   [replicas]
   number = 100

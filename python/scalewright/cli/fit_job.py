@@ -93,7 +93,7 @@ class FitJob:
         Of those.
     corrections
         Higher twist, deuteron and nuclear factors; their free parameters are fitted too.
-    delta_chi2, evaluations
+    delta_chi2, evaluations, starts
         As for `fit`.
     replicas
         Fits to pseudo-data, or None.
@@ -122,6 +122,7 @@ class FitJob:
     corrections: list[Correction]
     delta_chi2: float
     evaluations: int | None
+    starts: int
     replicas: ReplicaJob | None
     files: dict[str, str]
     pictures: str | None
@@ -160,7 +161,7 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = (), *, writes: bool = T
     data = top.section("data").only("file", "cut")
     target_mass, subtraction = read_prediction(top)
     form, reference = _chi_square(top)
-    free, delta_chi2, evaluations = _fit(top)
+    free, delta_chi2, evaluations, starts = _fit(top)
     replicas = _replicas(path, top)
     electroweak = read_electroweak(top.section("electroweak", {}))
     shape_section, grid = top.section("shape"), _grid(top)
@@ -175,7 +176,7 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = (), *, writes: bool = T
     return FitJob(
         top, theory, electroweak, grid, measured, target_mass, subtraction, form, reference,
         variations, start, shape, free, priors, read_corrections(path, top), delta_chi2, evaluations,
-        replicas, files, pictures, q2, x,
+        starts, replicas, files, pictures, q2, x,
     )  # fmt: skip
 
 
@@ -196,8 +197,8 @@ def _chi_square(top: Section) -> tuple[str, str]:
         return form, _check.choice("reference", held, ("prediction", "data"))
 
 
-def _fit(top: Section) -> tuple[tuple[str, ...], float, int | None]:
-    section = top.section("fit", {}).only("theory", "delta_chi2", "evaluations")
+def _fit(top: Section) -> tuple[tuple[str, ...], float, int | None, int]:
+    section = top.section("fit", {}).only("theory", "delta_chi2", "evaluations", "starts")
     given = section.get("theory", [])
     if not isinstance(given, list):
         known = ", ".join(f'"{name}"' for name in THEORY)
@@ -210,7 +211,8 @@ def _fit(top: Section) -> tuple[tuple[str, ...], float, int | None]:
         delta = _check.real("delta_chi2", section.get("delta_chi2", 1.0), above=0.0)
         most = section.get("evaluations", None)
         evaluations = None if most is None else _check.whole("evaluations", most, least=1)
-    return tuple(given), delta, evaluations
+        starts = _check.whole("starts", section.get("starts", 1), least=1, most=10**6)
+    return tuple(given), delta, evaluations, starts
 
 
 def _replicas(path: PathLike, top: Section) -> ReplicaJob | None:

@@ -91,7 +91,7 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
 def _fit_once(job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None) -> FitResult:
     """Fit with one reference; from the second time on the map follows theory parameters."""
     options: dict[str, Any] = {"priors": job.priors, "delta_chi2": job.delta_chi2, "theory": job.free}
-    options |= {"evaluations": job.evaluations, "corrections": job.corrections}
+    options |= {"evaluations": job.evaluations, "corrections": job.corrections, "starts": job.starts}
     if last is None:
         return fit(maps(), chi_square, job.shape, **options)
     rebuild = maps if job.free else None
