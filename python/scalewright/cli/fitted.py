@@ -10,6 +10,7 @@ from typing import Any
 import numpy as np
 
 from .._check import Floats
+from .._progress import Line
 from ..build import build_operators
 from ..densities import Densities
 from ..errors import InputError, RangeError, ScalewrightError
@@ -50,7 +51,7 @@ class Fitted:
     scales: ScaleCovariance | None = None
 
 
-def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
+def fit_data(job: FitJob, maps: Maps, measured: Measurements, report: Report | None = None) -> Fitted:
     """Fit a job's shape to measurements, the reference of multiplicative errors settled.
 
     Parameters
@@ -60,6 +61,8 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
         Those of the job; what they built last is used again.
     measured : Measurements
         The data of the job, or others at the same points.
+    report : Report, optional
+        Where progress is drawn.
 
     Raises
     ------
@@ -67,31 +70,55 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
         If the parts do not fit each other, or the reference does not settle.
     """
     first = ChiSquare(measured, job.form)
+    line = None if report is None else report.progress("fit to the data")
     # it takes the map as it comes; fits after it follow theory parameters
-    found = [_fit_once(job, maps, first, None)]
+    found = [_fit_once(job, maps, first, None, line)]
     scales = None
     if job.variations is not None:  # around a fit that knows nothing of them
         scales = job.variations.covariance(maps, found[-1], first, job.corrections)
         first = ChiSquare(measured, job.form, theory=scales.matrix)
-        found.append(_fit_once(job, maps, first, found[-1]))
+        found.append(_fit_once(job, maps, first, found[-1], line))
 
     def once(chi_square: ChiSquare) -> Floats:
         if chi_square is not first:
-            found.append(_fit_once(job, maps, chi_square, found[-1]))
+            found.append(_fit_once(job, maps, chi_square, found[-1], line))
         return found[-1].prediction
 
     if job.reference == "data":
         if job.free:
-            found.append(_fit_once(job, maps, first, found[-1]))
+            found.append(_fit_once(job, maps, first, found[-1], line))
         return Fitted(first, found[-1], _map_of(maps, found[-1]), (found[-1].chi2,), scales)
     settled = settle_reference(first, once)
     return Fitted(settled.chi_square, found[-1], _map_of(maps, found[-1]), settled.history, scales)
 
 
-def _fit_once(job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None) -> FitResult:
+def _fit_once(
+    job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None, line: Line | None
+) -> FitResult:
     """Fit with one reference; from the second time on the map follows theory parameters."""
+    if line is not None:
+        line.say("...")
+    try:
+        return _fit_on(job, maps, chi_square, last, line)
+    finally:
+        if line is not None:
+            line.clear()
+
+
+def _fit_on(
+    job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None, line: Line | None
+) -> FitResult:
+    def step(number: int, chi2: float, _: Floats) -> None:
+        if line is not None:
+            line.say(f"step {number}, chi-square {chi2:.6g}")
+
     options: dict[str, Any] = {"priors": job.priors, "delta_chi2": job.delta_chi2, "theory": job.free}
-    options |= {"evaluations": job.evaluations, "corrections": job.corrections, "starts": job.starts}
+    options |= {
+        "evaluations": job.evaluations,
+        "corrections": job.corrections,
+        "starts": job.starts,
+        "callback": step,
+    }
     if last is None:
         return fit(maps(), chi_square, job.shape, **options)
     rebuild = maps if job.free else None

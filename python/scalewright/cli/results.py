@@ -61,7 +61,7 @@ def done(job: FitJob, report: Report, text: str, truth: Mapping[str, float] | No
     """
     _make_folder(job)
     with job.place.blame():
-        fitted = fit_data(job, job.maps(), job.measured)
+        fitted = fit_data(job, job.maps(), job.measured, report)
     try:
         with job.place.blame():
             ensemble = replicas_of(job, fitted, report)
