@@ -133,6 +133,11 @@ def test_parameters_are_listed_with_what_the_sum_rules_determine(finished):
     }
     assert float(listed["alpha_s"]["uncertainty"]) == result.error("alpha_s")
     assert float(listed["alpha_s"]["replica mean"]) == ensemble.parameter("alpha_s").mean()
+    mean, low = ensemble.mean("alpha_s"), ensemble.interval("alpha_s")[0]
+    # sums over one parameter or over all: the same to rounding
+    np.testing.assert_allclose(float(listed["alpha_s"]["sampling error of mean"]), mean.error, rtol=1e-9)
+    np.testing.assert_allclose(float(listed["alpha_s"]["68 per cent from"]), low.value, rtol=1e-9)
+    assert listed["alpha_s"]["95 per cent to"] == ""  # six replicas know nothing of it
 
 
 def test_each_replica_is_evolved_by_its_own_coupling(finished):

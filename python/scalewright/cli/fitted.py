@@ -156,8 +156,7 @@ def replicas_of(job: FitJob, fitted: Fitted, report: Report, label: str = "repli
 
 def spread_of(fitted: Fitted, ensemble: Ensemble) -> Floats:
     """Return the standard deviation of predictions over replicas, (datum,), each with all its parameters."""
-    predictions = [fitted.result._problem.prediction(row) for row in ensemble.parameters]
-    return np.asarray(np.std(predictions, axis=0, ddof=1))
+    return np.asarray(np.std(fitted.result.predict(ensemble.parameters), axis=0, ddof=1))
 
 
 def numerical_error(job: FitJob, fitted: Fitted) -> Floats:
