@@ -159,7 +159,8 @@ def compose(
     second_values: NDArray[np.float64],
 ) -> tuple[list[str], int, NDArray[np.float64]]: ...
 
-# (scale, replica, flavour, node), without operators
+# without operators: (scale, replica, flavour, node); gone below x_min: momentum (scale, replica), numbers
+# (scale, replica, quark)
 def evolve(
     theory: Theory,
     grid: Grid,
@@ -173,7 +174,7 @@ def evolve(
     out_flavours: NDArray[np.int64],
     tolerance: float,
     threads: int,
-) -> NDArray[np.float64]: ...
+) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]: ...
 
 # regular part, coefficients of [ln^k(1-z)/(1-z)]_+, coefficient of delta(1-z)
 def splitting_function(

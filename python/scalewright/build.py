@@ -17,6 +17,7 @@ from ._carry import matched, thread_count
 from ._check import Floats, Integers, refuse
 from ._progress import Progress, watcher
 from ._route import Live, Route
+from .below import Below
 from .densities import Densities
 from .grid import ChebyshevGrid
 from .kernels import CHANNELS, SplittingKernel
@@ -153,7 +154,7 @@ def evolve(
     Returns
     -------
     Densities
-        Values (scale, replica, flavour, node). What lies below x_min is not known: build operators for that.
+        Values (scale, replica, flavour, node), and what lies below x_min where that is known of `densities`.
 
     Raises
     ------
@@ -178,7 +179,7 @@ def evolve(
     route = _route(theory, start_q2, start_nf, q2, nf, _heavy(densities, start_nf))
     given = matched(densities, densities.grid, route, missing)
     made = route.made(route.nf) if flavours is None else _check.partons("flavours", flavours)
-    values = _core.evolve(
+    values, momentum, number = _core.evolve(
         theory.handle(),
         densities.grid.handle(),
         start_q2=route.start_q2,
@@ -191,7 +192,9 @@ def evolve(
         tolerance=_tolerance(tolerance, densities.grid),
         threads=thread_count(threads),
     )
-    return Densities(densities.grid, q2=route.q2, nf=route.nf, flavours=made, values=values)
+    before = densities.below
+    under = None if before is None else Below(before.momentum + momentum, before.number + number)
+    return Densities(densities.grid, q2=route.q2, nf=route.nf, flavours=made, values=values, below=under)
 
 
 def _check_kinds(theory: object, grid: object) -> None:

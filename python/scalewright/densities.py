@@ -11,8 +11,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike
 
-from . import _check, _nodal, _resolution, _stored_densities
-from . import below as _below
+from . import _check, _nodal, _resolution, _stored_densities, below as _below
 from ._check import Floats, Integers
 from ._display import brief, brief_all, count, screen, table
 from ._questions import Questions

@@ -14,7 +14,6 @@ from typing import Any
 
 import numpy as np
 
-from . import _check
 from ._check import Floats, show
 from ._corrected.bound import Bound, checked
 from ._corrected.reported import described
@@ -24,14 +23,13 @@ from ._observed.accuracy import TOLERANCE, RowErrors, finer_grid, row_errors
 from ._observed.carried import carried_matrix
 from ._observed.derivatives import carried_derivative
 from ._observed.further import checked_further
+from ._observed.inputs import input_values
 from ._observed.orders import Orders, orders_of
 from ._observed.points import Points
-from ._observed.problem import INTRINSIC, Problem
-from ._route import SAME_SCALE
+from ._observed.problem import Problem
 from .corrections import Correction
 from .densities import Densities
 from .electroweak import Electroweak
-from .errors import InputError
 from .files.whole import PathLike
 from .grid import ChebyshevGrid
 from .kernels import CoefficientFunction
@@ -304,34 +302,7 @@ class ForwardMap:
 
     def _values(self, densities: Any) -> Floats:
         """Return values (replica, flavour, node) in the order of the map."""
-        if not isinstance(densities, Densities):
-            array = _check.real_array("densities", densities)
-            array = array[np.newaxis] if array.ndim == 2 else array
-            expected = (len(self.flavours), self.grid.nodes)
-            if array.ndim != 3 or array.shape[1:] != expected:
-                _check.refuse(
-                    "densities", array, f"the shape must be (replica, {expected[0]}, {expected[1]})"
-                )
-            return array
-        if densities.grid != self.grid:
-            raise InputError(f"densities.grid = {densities.grid!r}: the map is for {self.grid!r}")
-        if densities.scales != 1:
-            raise InputError(f"densities have {densities.scales} scales: the map starts from one")
-        q2, nf = float(np.ravel(densities.q2)[0]), int(np.ravel(densities.nf)[0])
-        if abs(q2 - self.start_q2) > SAME_SCALE * self.start_q2:
-            _check.refuse("densities.q2", q2, f"the map starts from {show(self.start_q2)} GeV^2")
-        if nf != self.start_nf:
-            _check.refuse("densities.nf", nf, f"the map starts from nf = {self.start_nf}")
-        values = densities.values.reshape(-1, *densities.values.shape[-2:])
-        held = {flavour: place for place, flavour in enumerate(densities.flavours)}
-        for flavour, place in held.items():
-            if flavour not in self.flavours and values[:, place].any():
-                what = f"not active at nf = {nf} and not zero: {INTRINSIC}"
-                _check.refuse("densities.flavours", flavour, what)
-        absent = [flavour for flavour in self.flavours if flavour not in held]
-        if absent:
-            raise InputError(f"densities have no flavour {_check.show_all(absent)}, active at nf = {nf}")
-        return np.ascontiguousarray(values[:, [held[flavour] for flavour in self.flavours]])
+        return input_values(densities, self.grid, (self.start_q2, self.start_nf), self.flavours)
 
     def __repr__(self) -> str:
         """One line."""

@@ -14,6 +14,22 @@ def test_without_operators_the_same_comes_out(theory, ops, many):
     assert direct.below is None
 
 
+@pytest.mark.parametrize("flavours", [4, (3, 5)])
+def test_without_operators_the_same_flows_below_x_min(flavours):
+    grid = sw.ChebyshevGrid(x_min=1e-5)
+    theory = sw.Theory(order="NLO", coupling=sw.Coupling(0.35, q2=2.0, nf=4), flavours=flavours)
+    start = sw.Densities.sample(grid, q2=2.0, nf=theory.start_nf(2.0), functions=functions())
+    direct = sw.evolve(theory, start, [10.0, 1e4], missing="zero")
+    whole = sw.build_operators(theory, grid, start_q2=2.0, q2=[10.0, 1e4]).apply(start, missing="zero")
+    # both solve the same equation to 1e-8; momentum and numbers are of order one
+    np.testing.assert_allclose(direct.below.momentum, whole.below.momentum, rtol=0, atol=2e-8)
+    np.testing.assert_allclose(direct.below.number, whole.below.number, rtol=0, atol=2e-8)
+    # x_min = 1e-5 at standard resolution: what flows below is carried to 1e-7, the goal of the grid
+    np.testing.assert_allclose(direct.momentum(), momentum(), rtol=0, atol=1e-7)
+    np.testing.assert_allclose(direct.number("u"), moment(U_V, 1), rtol=0, atol=1e-7)
+    assert (direct.momentum() - direct.momentum(part="above")).max() > 1e-4
+
+
 def test_evolve_names_what_does_not_fit(theory, many, grid):
     with pytest.raises(sw.InputError, match="densities must be Densities, not int"):
         sw.evolve(theory, 3, [10.0])

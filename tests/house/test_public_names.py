@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import ast
 import subprocess
 import sys
 from importlib.metadata import version
 
 import scalewright
+from house.tree import ROOT
 
 # Adding a name here is a promise to keep it; taking one away breaks somebody's work.
 PUBLIC = [
@@ -58,7 +60,18 @@ def test_nothing_else_looks_public() -> None:
     # In a fresh process: submodules that other tests import appear as attributes.
     code = "import scalewright, types; print(*[n for n, v in vars(scalewright).items() if n[0] != '_' \
         and n not in scalewright.__all__ and not isinstance(v, types.ModuleType)])"
-    assert _run(code).split() == ["annotations"]
+    assert sorted(_run(code).split()) == ["TYPE_CHECKING", "annotations"]
+
+
+def test_type_checkers_read_what_is_loaded() -> None:
+    tree = ast.parse((ROOT / "python" / "scalewright" / "__init__.py").read_text("utf-8"))
+    (checked,) = (node for node in tree.body if isinstance(node, ast.If))
+    imports = [node for node in checked.body if isinstance(node, ast.ImportFrom)]
+    read = {alias.name: node.module for node in imports for alias in node.names}
+    submodules = {"corrections": None, "shapes": "fitting"}
+    assert read == scalewright._HOME_OF | submodules
+    for name in (*PUBLIC, *submodules, "__version__"):
+        assert name in dir(scalewright)
 
 
 def test_the_version_is_that_of_the_package() -> None:

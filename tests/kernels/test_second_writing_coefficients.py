@@ -10,8 +10,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from kernels.second_writing import coefficient_moments as exact
-from kernels.second_writing import coefficients_nnlo, coefficients_older_fits
+from kernels.second_writing import coefficient_moments as exact, coefficients_nnlo, coefficients_older_fits
 from kernels.second_writing.coefficients import NAMES, STRUCTURE_FUNCTIONS, coefficient
 from kernels.second_writing.coefficients_older_fits import add
 from kernels.second_writing.matrix_elements import LEFT, VECTOR, Process, coefficients

@@ -26,8 +26,7 @@ from numpy.typing import NDArray
 from scipy.special import polygamma, psi
 
 from mellin.contours import LARGEST_U
-from mellin.polygamma import derivatives_of_exponential
-from mellin.polygamma import polygamma as complex_polygamma
+from mellin.polygamma import derivatives_of_exponential, polygamma as complex_polygamma
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]

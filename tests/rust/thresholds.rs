@@ -46,7 +46,7 @@ fn carried(
     (in_flavours, values): (&[i64], &[f64]),
     out_flavours: &[i64],
 ) -> Vec<f64> {
-    evolve(theory, grid, options, &Vectors { in_flavours, values, out_flavours }, &Unwatched).unwrap()
+    evolve(theory, grid, options, &Vectors { in_flavours, values, out_flavours }, &Unwatched).unwrap().values
 }
 
 /// What each ask needs: `(nf, lowest, highest)` that are served. Leaves out what is not on the way.
@@ -272,4 +272,18 @@ fn vectors_and_operators_agree() {
             assert!(worst < 1e-12, "{output} at {scale:?}: {worst:.1e}");
         }
     }
+}
+
+/// Flavours that there are none of, and orders that would fill the memory, are refused.
+#[test]
+fn what_cannot_be_carried_is_refused() {
+    let grid = Grid::preset(1e-2, Resolution::Standard).unwrap();
+    let mut refused = options((2.0, 3), &[(2.0, 3)]);
+    let vectors = Vectors { in_flavours: &[7], values: &vec![0.0; grid.nodes()], out_flavours: &[21] };
+    let named = |error: &Error, expected: &str| matches!(error, Error::Argument { name, .. } if *name == expected);
+    assert!(named(&evolve(&variable(0), &grid, &refused, &vectors, &Unwatched).unwrap_err(), "flavour"));
+    let kernel = Convolved::zeros(grid.nodes());
+    refused.further.push(FurtherKernel { order: 9, nf: 3, channel: Channel::NsPlus, kernel });
+    let error = build(&variable(0), &grid, &refused, &Unwatched).err().unwrap();
+    assert!(named(&error, "order"), "{error}");
 }

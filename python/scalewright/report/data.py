@@ -2,15 +2,11 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
-
 import numpy as np
 
 from . import figures
 from .page import Page
-
-if TYPE_CHECKING:
-    from .fit import Told
+from .told import Told
 
 
 def tables(page: Page, told: Told) -> None:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import warnings
-from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -12,9 +11,7 @@ from ..errors import ResolutionWarning
 from ..fitting.functionals import Functional
 from . import figures
 from .page import Page
-
-if TYPE_CHECKING:
-    from .fit import Told
+from .told import Told
 
 _SHARES = ("g", "u_v", "d_v", "sea", "s+", "singlet")
 

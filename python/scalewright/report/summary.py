@@ -3,15 +3,12 @@
 from __future__ import annotations
 
 import platform
-from typing import TYPE_CHECKING
 
 import numpy as np
 
 from . import figures
 from .page import Page
-
-if TYPE_CHECKING:
-    from .fit import Told
+from .told import Told
 
 _MANY_FAILED = 0.01
 #: What a fit or an ensemble says first of what must not be overlooked.

@@ -2,17 +2,13 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
-
 import numpy as np
 
 from ..fitting.ensemble import Ensemble
 from ..fitting.functionals import Functional
 from . import figures
 from .page import Page
-
-if TYPE_CHECKING:
-    from .fit import Told
+from .told import Told
 
 _OF_REPLICAS = ["mean of replicas", "deviation", "68 per cent", "95 per cent"]
 _UNITS = {"charm": " (GeV)", "bottom": " (GeV)"}

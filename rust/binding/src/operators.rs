@@ -275,6 +275,8 @@ pub fn compose(
     Ok((names, light, handed_over(py, &shape, values)?))
 }
 
+/// Values (scale, replica, flavour, node), and what has gone below `x_min`: momentum (scale, replica) and number
+/// (scale, replica, quark).
 #[pyfunction]
 #[pyo3(signature = (theory, grid, *, start_q2, start_nf, densities, in_flavours, q2, nf, out_flavours, tolerance, threads))]
 #[expect(clippy::too_many_arguments, reason = "keyword arguments of Python")]
@@ -291,7 +293,7 @@ pub fn evolve(
     out_flavours: PyReadonlyArray1<'_, i64>,
     tolerance: f64,
     threads: i64,
-) -> PyResult<Py<PyArrayDyn<f64>>> {
+) -> PyResult<(Array, Array, Array)> {
     let asked = scales(py, &q2, &nf)?;
     let shape = densities.shape().to_vec();
     let values = block(py, "densities", &densities, 3)?;
@@ -301,17 +303,19 @@ pub fn evolve(
         let expected = [inputs.len(), grid.nodes()];
         return Err(input(py, format!("densities has shape {shape:?}: after the replicas it must be {expected:?}")));
     }
-    let flavours = inputs.iter().chain(outputs);
-    flavours.copied().try_for_each(core_apply::check_flavour).map_err(|error| crate::errors::exception(py, &error))?;
     let start_nf = count(py, "start_nf", start_nf)?;
     let heavy = |flavour: &i64| (1..=6).contains(&flavour.abs()) && flavour.unsigned_abs() as usize > start_nf;
     let intrinsic = inputs.iter().filter(|flavour| heavy(flavour)).map(|flavour| flavour.unsigned_abs() as usize);
     let options =
         BuildOptions { start_q2, start_nf, asked, intrinsic: intrinsic.collect(), tolerance, further: vec![] };
     let vectors = thresholds::Vectors { in_flavours: inputs, values, out_flavours: outputs };
-    let shape = [options.asked.len(), shape[0], outputs.len(), grid.nodes()];
-    let out = run(py, count(py, "threads", threads)?, None, |watch| {
+    let (scales, replicas) = (options.asked.len(), shape[0]);
+    let found = run(py, count(py, "threads", threads)?, None, |watch| {
         thresholds::evolve(theory, grid, &options, &vectors, watch)
     })?;
-    handed_over(py, &shape, out)
+    Ok((
+        handed_over(py, &[scales, replicas, outputs.len(), grid.nodes()], found.values)?,
+        handed_over(py, &[scales, replicas], found.momentum)?,
+        handed_over(py, &[scales, replicas, 6], found.number)?,
+    ))
 }

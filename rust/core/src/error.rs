@@ -1,5 +1,7 @@
 //! What can go wrong in the core: one variant a cause, the offending value in its fields.
 
+use std::fmt::Display;
+
 /// Why the core could not do what it was asked.
 ///
 /// The binding maps each variant to one Python exception; a variant that means "asked outside what was
@@ -73,3 +75,11 @@ pub enum Error {
 
 /// Result of the core.
 pub type Result<T> = std::result::Result<T, Error>;
+
+/// Refuses an argument that is not allowed.
+pub(crate) fn require(name: &'static str, value: &dyn Display, holds: bool, allowed: &str) -> Result<()> {
+    if holds {
+        return Ok(());
+    }
+    Err(Error::Argument { name, value: value.to_string(), allowed: allowed.to_owned() })
+}

@@ -4,14 +4,13 @@
 //! decided by its factorisation scale alone; the coupling changes flavours at `mu_r^2 = (mu_r^2/mu_f^2) mu_thr^2`.
 
 use std::f64::consts::PI;
-use std::fmt::Display;
 
 use crate::coupling::beta::{MOST_LOOPS, beta};
 use crate::coupling::masses::{MassKind, Masses};
 use crate::coupling::running::ALPHA_S_LIMIT;
 use crate::coupling::sensitivity::Parameter;
 use crate::coupling::{FEWEST, MOST, Reference, RunningCoupling, Step};
-use crate::error::{Error, Result};
+use crate::error::{Result, require};
 
 /// Scales equal to a threshold up to this relative difference count as equal: `m = sqrt(2)` squared in floating
 /// point is above 2 by two units of rounding, and a scale of 2 is then meant to lie on the threshold.
@@ -57,6 +56,8 @@ impl Theory {
     /// # Errors
     /// [`Error::Argument`] for what is not allowed. A Landau pole between the coupling's reference and a scale
     /// shows only when a coupling beyond it is asked for.
+    ///
+    /// [`Error::Argument`]: crate::error::Error::Argument
     pub fn new(given: Assumptions) -> Result<Self> {
         check_numbers(&given)?;
         check_scales(&given)?;
@@ -144,6 +145,9 @@ impl Theory {
     /// # Errors
     /// [`Error::Argument`] for a scale or nf that is not allowed, or a coupling too large for the step at a
     /// threshold; [`Error::LandauPole`] on the way from the reference.
+    ///
+    /// [`Error::Argument`]: crate::error::Error::Argument
+    /// [`Error::LandauPole`]: crate::error::Error::LandauPole
     pub fn a(&self, mu_r2: f64, nf: usize) -> Result<f64> {
         positive("q2", mu_r2, "GeV^2")?;
         flavours("nf", nf)?;
@@ -199,6 +203,8 @@ impl Theory {
     ///
     /// # Errors
     /// As [`Theory::a`]; [`Error::Argument`] for `a` not above 0 or beyond the largest coupling followed.
+    ///
+    /// [`Error::Argument`]: crate::error::Error::Argument
     pub fn factorisation_scale(&self, a: f64, nf: usize) -> Result<f64> {
         flavours("nf", nf)?;
         coupling_value("a", a, ALPHA_S_LIMIT / (4.0 * PI))?;
@@ -253,13 +259,6 @@ fn check_scales(given: &Assumptions) -> Result<()> {
         crossed.windows(2).all(|pair| pair[0] < pair[1]),
         "charm, bottom and top must increase in this order",
     )
-}
-
-fn require(name: &'static str, value: &dyn Display, holds: bool, allowed: &str) -> Result<()> {
-    if holds {
-        return Ok(());
-    }
-    Err(Error::Argument { name, value: value.to_string(), allowed: allowed.to_owned() })
 }
 
 fn positive(name: &'static str, value: f64, unit: &str) -> Result<()> {

@@ -11,8 +11,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from kernels.second_writing import convolution as conv
-from kernels.second_writing import matching_constants as constants
+from kernels.second_writing import convolution as conv, matching_constants as constants
 from kernels.second_writing.parts import (
     CA,
     CF,

@@ -1,8 +1,10 @@
 //! Many replicas through one set of operators, in pieces small enough for the cache.
 
-use super::recombine::{Blocks, Recombination, check_flavour};
+use super::recombine::{Blocks, Channel, Recombination};
+use crate::coupling::MOST;
 use crate::error::{Error, Result};
-use crate::numerics::blocks::{Matrix, View, multiply_add};
+use crate::evolution::check_flavour;
+use crate::numerics::blocks::{Matrix, View, multiply, multiply_add};
 use crate::watch::Watch;
 use rayon::prelude::*;
 
@@ -67,10 +69,13 @@ pub fn apply(batch: &Batch, out: &mut [f64], watch: &dyn Watch) -> Result<()> {
     }
     places.into_par_iter().zip(batch.densities.par_chunks(PIECE * row_in)).try_for_each(|(places, densities)| {
         let combined = combine(&ways, densities, n);
+        let padded = (densities.len() / row_in).next_multiple_of(PADDED);
+        let mut carried = vec![Matrix::zeros(padded, n); combined.len()];
         for (place, set) in places.into_iter().zip(&sets) {
             watch.check()?;
-            let carried = carry(&ways, set, &combined, n);
-            write(&ways, &carried, place, n);
+            let acted = carry(&ways, set, &combined, &mut carried);
+            let held: Vec<Option<&Matrix>> = carried.iter().zip(acted).map(|(to, acted)| acted.then_some(to)).collect();
+            write(&ways, &held, place, n);
         }
         Ok(())
     })
@@ -95,12 +100,13 @@ impl<'a> Block<'a> {
         Self { values: View::from_row_major_slice(values, n, n), reach }
     }
 
-    /// `target += source * block^T`: each row of `source` is a density.
-    fn act(&self, target: &mut Matrix, source: &Matrix) {
+    /// `target = source * block^T`, or adds it where something `acted` before: each row of `source` is a density.
+    fn act(&self, target: &mut Matrix, source: &Matrix, acted: bool) {
         let (replicas, n) = (source.rows(), source.cols());
         for (strip, &reach) in self.reach.iter().enumerate() {
             let rows = strip * STRIP..((strip + 1) * STRIP).min(n);
-            multiply_add(
+            let multiply = if acted { multiply_add } else { multiply };
+            multiply(
                 target.part_mut(0..replicas, rows.clone()),
                 1.0,
                 source.part(0..replicas, 0..reach),
@@ -114,46 +120,123 @@ impl<'a> Block<'a> {
 fn combine(ways: &Recombination, densities: &[f64], n: usize) -> Vec<Option<Matrix>> {
     let row_in = ways.in_flavours * n;
     let replicas = densities.len() / row_in;
-    ways.into_channels
-        .iter()
-        .map(|weights| {
-            let mut combination = Matrix::zeros(replicas.next_multiple_of(PADDED), n);
-            for (replica, density) in densities.chunks(row_in).enumerate() {
-                let target = combination.row_mut(replica);
-                for &(flavour, weight) in weights {
-                    add(target, weight, &density[flavour * n..(flavour + 1) * n]);
+    let mut combined = vec![Matrix::zeros(replicas.next_multiple_of(PADDED), n); ways.channels.len()];
+    let mut quarks = Quarks { even: vec![vec![0.0; n]; 1 + MOST], odd: vec![vec![0.0; n]; 1 + MOST] };
+    for (replica, density) in densities.chunks(row_in).enumerate() {
+        quarks.read(ways, density, n);
+        for (channel, combination) in ways.channels.iter().zip(&mut combined) {
+            let target = combination.row_mut(replica);
+            match *channel {
+                Channel::Gluon => {
+                    if let Some(place) = ways.gluon {
+                        target.copy_from_slice(&density[place * n..(place + 1) * n]);
+                    }
                 }
+                Channel::LightPlus => target.copy_from_slice(&quarks.even[0]),
+                Channel::LightMinus => target.copy_from_slice(&quarks.odd[0]),
+                Channel::HeavyPlus(quark) => target.copy_from_slice(&quarks.even[quark]),
+                Channel::HeavyMinus(quark) => target.copy_from_slice(&quarks.odd[quark]),
+                Channel::DifferencePlus(quark) => off_mean(target, &quarks.even, quark, ways.light),
+                Channel::DifferenceMinus(quark) => off_mean(target, &quarks.odd, quark, ways.light),
             }
-            // What vanishes throughout, such as s - sbar, need not be carried.
-            combination.values().iter().any(|value| *value != 0.0).then_some(combination)
-        })
-        .collect()
+        }
+    }
+    // What vanishes throughout, such as s - sbar, need not be carried.
+    let held = |combination: &Matrix| combination.values().iter().any(|value| *value != 0.0);
+    combined.into_iter().map(|combination| held(&combination).then_some(combination)).collect()
 }
 
-/// Every channel after evolution; `None` where nothing acts on it.
-fn carry(ways: &Recombination, set: &[Block], combined: &[Option<Matrix>], n: usize) -> Vec<Option<Matrix>> {
-    let mut carried: Vec<Option<Matrix>> = vec![None; combined.len()];
+/// `q + qbar` and `q - qbar` of one replica by quark; in place 0 their sums over the light ones.
+struct Quarks {
+    even: Vec<Vec<f64>>,
+    odd: Vec<Vec<f64>>,
+}
+
+impl Quarks {
+    fn read(&mut self, ways: &Recombination, density: &[f64], n: usize) {
+        let at = |place: usize| &density[place * n..(place + 1) * n];
+        self.even[0].fill(0.0);
+        self.odd[0].fill(0.0);
+        for (quark, places) in (1..).zip(&ways.quarks) {
+            let (even, odd) = (&mut self.even[quark], &mut self.odd[quark]);
+            match *places {
+                [Some(quark), Some(antiquark)] => {
+                    let both = at(quark).iter().zip(at(antiquark));
+                    for ((even, odd), (q, other)) in even.iter_mut().zip(odd.iter_mut()).zip(both) {
+                        *even = q + other;
+                        *odd = q - other;
+                    }
+                }
+                [Some(quark), None] => {
+                    even.copy_from_slice(at(quark));
+                    odd.copy_from_slice(at(quark));
+                }
+                [None, Some(antiquark)] => {
+                    even.copy_from_slice(at(antiquark));
+                    odd.iter_mut().zip(at(antiquark)).for_each(|(odd, other)| *odd = -other);
+                }
+                // Zero from the beginning.
+                [None, None] => continue,
+            }
+            if quark <= ways.light {
+                for values in [&mut self.even, &mut self.odd] {
+                    let (sum, quarks) = values.split_at_mut(1);
+                    sum[0].iter_mut().zip(&quarks[quark - 1]).for_each(|(sum, own)| *sum += own);
+                }
+            }
+        }
+    }
+}
+
+/// What a light quark differs from the mean of them.
+fn off_mean(target: &mut [f64], quarks: &[Vec<f64>], quark: usize, light: usize) {
+    let share = 1.0 / light as f64;
+    let both = quarks[quark].iter().zip(&quarks[0]);
+    target.iter_mut().zip(both).for_each(|(value, (own, sum))| *value = own - share * sum);
+}
+
+/// Every channel after evolution, in `carried`; returns which of them hold something.
+fn carry(ways: &Recombination, set: &[Block], combined: &[Option<Matrix>], carried: &mut [Matrix]) -> Vec<bool> {
+    let mut acted = vec![false; carried.len()];
     for &(output, input, block) in &ways.actions {
         if let Some(source) = &combined[input] {
-            let target = carried[output].get_or_insert_with(|| Matrix::zeros(source.rows(), n));
-            set[block].act(target, source);
+            set[block].act(&mut carried[output], source, acted[output]);
+            acted[output] = true;
         }
     }
-    carried
+    acted
 }
 
-fn write(ways: &Recombination, carried: &[Option<Matrix>], out: &mut [f64], n: usize) {
-    let row_out = ways.from_channels.len() * n;
+/// Flavours from channels: `q` and `qbar` are sum and difference of what both have of `q + qbar` and of `q - qbar`.
+fn write(ways: &Recombination, carried: &[Option<&Matrix>], out: &mut [f64], n: usize) {
+    let row_out = ways.out_flavours * n;
+    let (mut even, mut odd) = (vec![0.0; n], vec![0.0; n]);
     for (replica, row) in out.chunks_mut(row_out).enumerate() {
-        for (target, weights) in row.chunks_mut(n).zip(&ways.from_channels) {
-            target.fill(0.0);
-            for &(channel, weight) in weights {
-                if let Some(matrix) = &carried[channel] {
-                    add(target, weight, matrix.row(replica));
+        for parts in &ways.from_channels {
+            sum(&mut even, &parts.even, carried, replica);
+            sum(&mut odd, &parts.odd, carried, replica);
+            for &(place, sign) in &parts.places {
+                let both = even.iter().zip(&odd);
+                for (value, (even, odd)) in row[place * n..(place + 1) * n].iter_mut().zip(both) {
+                    *value = even + sign * odd;
                 }
             }
         }
     }
+}
+
+/// `target` becomes a sum of channels of one replica.
+fn sum(target: &mut [f64], terms: &[(usize, f64)], carried: &[Option<&Matrix>], replica: usize) {
+    let mut held = terms.iter().filter_map(|&(channel, weight)| Some((carried[channel]?.row(replica), weight)));
+    match (held.next(), held.next()) {
+        (Some((one, weight)), Some((other, second))) => {
+            let both = one.iter().zip(other);
+            target.iter_mut().zip(both).for_each(|(sum, (a, b))| *sum = weight * a + second * b);
+        }
+        (Some((one, weight)), None) => target.iter_mut().zip(one).for_each(|(sum, a)| *sum = weight * a),
+        _ => target.fill(0.0),
+    }
+    held.for_each(|(more, weight)| add(target, weight, more));
 }
 
 fn add(target: &mut [f64], weight: f64, source: &[f64]) {

@@ -6,4 +6,6 @@ mod recombine;
 
 pub use batch::{Batch, apply};
 pub use compose::{Composed, Set, compose};
-pub use recombine::{Blocks, check_flavour};
+pub use recombine::Blocks;
+
+pub use crate::evolution::check_flavour;

@@ -4,21 +4,6 @@ use crate::coupling::{FEWEST, MOST};
 use crate::error::{Error, Result};
 use crate::evolution::{CHARM, GLUON, HEAVY_NAMES};
 
-/// Accepts 21 and the quarks +-1 .. +-6.
-///
-/// # Errors
-/// [`Error::Argument`] for another number.
-pub fn check_flavour(flavour: i64) -> Result<()> {
-    if flavour == GLUON || (1..=6).contains(&flavour.unsigned_abs()) {
-        return Ok(());
-    }
-    Err(Error::Argument {
-        name: "flavour",
-        value: flavour.to_string(),
-        allowed: "must be 21 (gluon) or a quark from -6 to 6 without 0 (PDG numbers)".into(),
-    })
-}
-
 /// Where the blocks of a set stand, by what they do.
 #[derive(Debug, Clone)]
 pub struct Blocks {
@@ -147,12 +132,31 @@ impl Blocks {
 pub struct Recombination {
     /// Number of input flavours.
     pub in_flavours: usize,
-    /// For each channel `(index of the input flavour, weight)`.
-    pub into_channels: Vec<Vec<(usize, f64)>>,
+    /// Number of flavours that act alike.
+    pub light: usize,
+    /// Where the gluon stands in the input.
+    pub gluon: Option<usize>,
+    /// Where quark and antiquark stand in the input, from the first quark on.
+    pub quarks: [[Option<usize>; 2]; MOST],
+    /// The combinations that evolve.
+    pub channels: Vec<Channel>,
     /// `(output channel, input channel, block)`.
     pub actions: Vec<(usize, usize, usize)>,
-    /// For each output flavour `(channel, weight)`.
-    pub from_channels: Vec<Vec<(usize, f64)>>,
+    /// Number of output flavours.
+    pub out_flavours: usize,
+    /// The gluon and each quark that is asked for.
+    pub from_channels: Vec<Parts>,
+}
+
+/// What a quark and its antiquark are made of, or the gluon.
+pub struct Parts {
+    quark: usize,
+    /// `(channel, weight)` of what both have of `q + qbar`.
+    pub even: Vec<(usize, f64)>,
+    /// `(channel, weight)` of what the quark has of `q - qbar`.
+    pub odd: Vec<(usize, f64)>,
+    /// Places in the output, with the sign of the odd part.
+    pub places: Vec<(usize, f64)>,
 }
 
 impl Recombination {
@@ -170,10 +174,7 @@ impl Recombination {
             .chain(differences().map(Channel::DifferenceMinus))
             .collect();
         let index = |channel: Channel| channels.iter().position(|known| *known == channel);
-        let into = |channel: &Channel| {
-            let weights = in_flavours.iter().map(|&flavour| weight_in(*channel, flavour, light)).enumerate();
-            weights.filter(|(_, weight)| *weight != 0.0).collect()
-        };
+        let held = |flavour: i64| in_flavours.iter().position(|known| *known == flavour);
         let mut actions = Vec::new();
         for (output, &channel) in channels.iter().enumerate() {
             match channel {
@@ -187,52 +188,48 @@ impl Recombination {
                 }
             }
         }
-        let from = |&flavour: &i64| {
-            let parts = parts_of(flavour, light).into_iter();
-            parts.filter_map(|(channel, weight)| Some((index(channel)?, weight))).collect()
-        };
+        let mut from_channels: Vec<Parts> = Vec::new();
+        for (place, &flavour) in out_flavours.iter().enumerate() {
+            let quark = if flavour == GLUON { 0 } else { flavour.unsigned_abs() as usize };
+            if !from_channels.iter().any(|parts| parts.quark == quark) {
+                let terms = |plus: bool| {
+                    let terms = parts_of(quark, light).into_iter().filter(|(channel, _)| channel.is_plus() == plus);
+                    terms.filter_map(|(channel, weight)| Some((index(channel)?, weight))).collect()
+                };
+                from_channels.push(Parts { quark, even: terms(true), odd: terms(false), places: vec![] });
+            }
+            let own = from_channels.iter_mut().filter(|parts| parts.quark == quark);
+            own.for_each(|parts| parts.places.push((place, flavour.signum() as f64)));
+        }
         Self {
             in_flavours: in_flavours.len(),
-            into_channels: channels.iter().map(into).collect(),
+            light,
+            gluon: held(GLUON),
+            quarks: std::array::from_fn(|quark| [held(quark as i64 + 1), held(-(quark as i64) - 1)]),
             actions,
-            from_channels: out_flavours.iter().map(from).collect(),
+            out_flavours: out_flavours.len(),
+            from_channels,
+            channels,
         }
     }
 }
 
-/// The weight of an input flavour in a channel.
-fn weight_in(channel: Channel, flavour: i64, light: usize) -> f64 {
-    if flavour == GLUON {
-        return f64::from(channel == Channel::Gluon);
-    }
-    let quark = flavour.unsigned_abs() as usize;
-    let sign = if channel.is_plus() { 1.0 } else { flavour.signum() as f64 };
-    let off_mean = |own: usize| f64::from(own == quark) - 1.0 / light as f64;
-    sign * match channel {
-        Channel::LightPlus | Channel::LightMinus => f64::from(quark <= light),
-        Channel::HeavyPlus(own) | Channel::HeavyMinus(own) => f64::from(own == quark),
-        Channel::DifferencePlus(own) | Channel::DifferenceMinus(own) if quark <= light => off_mean(own),
-        Channel::Gluon | Channel::DifferencePlus(_) | Channel::DifferenceMinus(_) => 0.0,
-    }
-}
-
-/// The channels that make up an output flavour: `q = ((q + qbar) + (q - qbar))/2`, a light flavour's parts being its
-/// difference and its share of the light sum.
-fn parts_of(flavour: i64, light: usize) -> Vec<(Channel, f64)> {
-    if flavour == GLUON {
+/// The channels that make up a quark (0: the gluon): `q = ((q + qbar) + (q - qbar))/2`, a light flavour's parts being
+/// its difference and its share of the light sum.
+fn parts_of(quark: usize, light: usize) -> Vec<(Channel, f64)> {
+    const HALF: f64 = 0.5;
+    if quark == 0 {
         return vec![(Channel::Gluon, 1.0)];
     }
-    let quark = flavour.unsigned_abs() as usize;
-    let (plus, minus) = (0.5, 0.5 * flavour.signum() as f64);
     if quark > light {
-        return vec![(Channel::HeavyPlus(quark), plus), (Channel::HeavyMinus(quark), minus)];
+        return vec![(Channel::HeavyPlus(quark), HALF), (Channel::HeavyMinus(quark), HALF)];
     }
-    let share = 1.0 / light as f64;
-    let mut parts = vec![(Channel::LightPlus, share * plus), (Channel::LightMinus, share * minus)];
+    let share = HALF / light as f64;
+    let mut parts = vec![(Channel::LightPlus, share), (Channel::LightMinus, share)];
     let (others, sign) = if quark < light { (quark..quark + 1, 1.0) } else { (1..light, -1.0) };
     for own in others {
-        parts.push((Channel::DifferencePlus(own), sign * plus));
-        parts.push((Channel::DifferenceMinus(own), sign * minus));
+        parts.push((Channel::DifferencePlus(own), sign * HALF));
+        parts.push((Channel::DifferenceMinus(own), sign * HALF));
     }
     parts
 }

@@ -23,10 +23,15 @@ pub(super) fn convolve<'a>(
 /// A polynomial in nf at one nf.
 pub(super) fn at_nf(terms: &[Convolved], nf: f64, nodes: usize) -> Convolved {
     let mut sum = Convolved::zeros(nodes);
-    for (power, term) in terms.iter().enumerate() {
-        sum.add_scaled(nf.powi(power as i32), term);
-    }
+    add_at_nf(&mut sum, 1.0, terms, nf);
     sum
+}
+
+/// Adds `factor` times a polynomial in nf at one nf.
+pub(super) fn add_at_nf(sum: &mut Convolved, factor: f64, terms: &[Convolved], nf: f64) {
+    for (power, term) in terms.iter().enumerate() {
+        sum.add_scaled(factor * nf.powi(power as i32), term);
+    }
 }
 
 /// The distinct regular functions of many kernels, and how many plus distributions they need.

@@ -15,4 +15,4 @@ pub use coefficients::{CoefficientSet, coefficients_on};
 pub use matrices::Convolved;
 pub use points::quadrature_z;
 pub use rows::massive_rows;
-pub use store::{KernelSet, convolve_values, kernels_on};
+pub use store::{Derived, KernelSet, convolve_values, kernels_on};

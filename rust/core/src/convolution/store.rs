@@ -1,6 +1,6 @@
 //! Splitting functions and matching on a grid, one set for each grid.
 
-use super::formulas::{at_nf, convolve};
+use super::formulas::{add_at_nf, at_nf, convolve};
 use super::kept::Kept;
 use super::matrices::{Convolved, Functions, integrate};
 use crate::error::Result;
@@ -8,9 +8,10 @@ use crate::grid::Grid;
 use crate::kernels::kernel::Kernel;
 use crate::kernels::matching::{self, Element, HeavyGluonForm, MassKind};
 use crate::kernels::splitting::{self, Channel};
+use crate::numerics::blocks::Matrix;
 use crate::watch::Watch;
 use std::collections::HashMap;
-use std::sync::Arc;
+use std::sync::{Arc, Mutex, PoisonError};
 
 /// Orders of matching: a^1 and a^2.
 const MATCHING_ORDERS: [usize; 2] = [1, 2];
@@ -24,7 +25,11 @@ pub struct KernelSet {
     splitting: HashMap<(usize, Channel), Vec<Convolved>>,
     matching: HashMap<MatchingKey, [Vec<Convolved>; LOGARITHMS]>,
     nodes: usize,
+    derived: Mutex<HashMap<(usize, usize), Arc<Derived>>>,
 }
+
+/// Matrices that somebody makes of a set, by what they are for.
+pub type Derived = Vec<Vec<Matrix>>;
 
 impl KernelSet {
     /// The splitting function of `a^(order+1)` for nf flavours; zero for an order that is not known.
@@ -50,14 +55,26 @@ impl KernelSet {
         let mut sum = Convolved::zeros(self.nodes);
         if let Some(powers) = self.matching.get(&(order, element, kind, form)) {
             for (power, terms) in powers.iter().enumerate() {
-                sum.add_scaled(log.powi(power as i32), &at_nf(terms, nl, self.nodes));
+                let factor = log.powi(power as i32);
+                if factor != 0.0 {
+                    add_at_nf(&mut sum, factor, terms, nl);
+                }
             }
         }
         sum
     }
-}
 
-impl KernelSet {
+    /// Matrices put together from the splitting functions of the set, computed the first time a label is asked for.
+    pub fn derived(&self, label: (usize, usize), compute: impl FnOnce() -> Derived) -> Arc<Derived> {
+        if let Some(known) = self.derived.lock().unwrap_or_else(PoisonError::into_inner).get(&label) {
+            return Arc::clone(known);
+        }
+        // Computed outside the lock: two threads that ask at once may both compute, and get the same bits.
+        let made = Arc::new(compute());
+        self.derived.lock().unwrap_or_else(PoisonError::into_inner).insert(label, Arc::clone(&made));
+        made
+    }
+
     /// Derivative of [`KernelSet::matching`] with respect to the logarithm.
     pub fn matching_slope(
         &self,
@@ -72,7 +89,7 @@ impl KernelSet {
         if let Some(powers) = self.matching.get(&(order, element, kind, form)) {
             for (power, terms) in powers.iter().enumerate().skip(1) {
                 let factor = power as f64 * log.powi(power as i32 - 1);
-                sum.add_scaled(factor, &at_nf(terms, nl, self.nodes));
+                add_at_nf(&mut sum, factor, terms, nl);
             }
         }
         sum
@@ -120,6 +137,7 @@ fn compute(grid: &Grid, watch: &dyn Watch) -> Result<KernelSet> {
         splitting: splitting.iter().map(|(key, _)| (*key, next())).collect(),
         matching: matching.iter().map(|(key, _)| (*key, std::array::from_fn(|_| next()))).collect(),
         nodes: grid.nodes(),
+        derived: Mutex::default(),
     })
 }
 

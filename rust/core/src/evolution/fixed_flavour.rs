@@ -3,10 +3,11 @@
 //! What evolves alone: the singlet pair (gluon, quark singlet) and three kinds of non-singlet. Each carries one more
 //! row, what has flowed below `x_min`: momentum for the singlet pair, number for the non-singlets.
 
-use crate::convolution::{Convolved, KernelSet};
+use crate::convolution::{Convolved, Derived, KernelSet};
 use crate::kernels::splitting::Channel;
 use crate::numerics::blocks::Matrix;
 use crate::theory::Theory;
+use std::sync::Arc;
 
 /// Combinations of densities that evolve alone.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -37,10 +38,8 @@ pub struct FurtherKernel {
 /// The equations of one nf.
 pub struct FixedFlavour {
     beta: Vec<f64>,
-    singlet: Vec<Matrix>,
-    ns_plus: Vec<Matrix>,
-    ns_minus: Vec<Matrix>,
-    valence: Vec<Matrix>,
+    /// For the singlet, plus, minus and valence sectors one matrix a power of a.
+    terms: Arc<Derived>,
     offsets: Vec<usize>,
     minus_is_plus: bool,
     valence_is_minus: bool,
@@ -49,44 +48,21 @@ pub struct FixedFlavour {
 impl FixedFlavour {
     /// The equations of a theory for nf flavours; `offsets` are those of the grid's panels.
     pub fn new(theory: &Theory, kernels: &KernelSet, further: &[FurtherKernel], nf: usize, offsets: &[usize]) -> Self {
-        let orders = further.iter().map(|kernel| kernel.order).fold(theory.order(), usize::max) + 1;
-        let known = theory.order() + 1;
         let beta = theory.beta(nf);
-        let channel = |channel: Channel| {
-            let mut terms: Vec<Convolved> = (0..orders)
-                .map(|order| {
-                    if order < known {
-                        kernels.splitting(order, channel, nf as f64)
-                    } else {
-                        Convolved::zeros(offsets[offsets.len() - 1])
-                    }
-                })
-                .collect();
-            for own in further.iter().filter(|own| own.nf == nf && own.channel == channel) {
-                terms[own.order].add_scaled(1.0, &own.kernel);
-            }
-            at_renormalisation_scale(&mut terms, &beta, theory.evolution_mu2_ratio().ln());
-            terms
-        };
-        let [plus, minus, sea, pure, qg, gq, gg] = Channel::ALL.map(channel);
-        let sum = |a: &[Convolved], b: &[Convolved]| -> Vec<Convolved> {
-            let mut sum = a.to_vec();
-            sum.iter_mut().zip(b).for_each(|(to, from)| to.add_scaled(1.0, from));
-            sum
+        let log = theory.evolution_mu2_ratio().ln();
+        let make = || terms(theory.order(), kernels, further, nf, offsets, (&beta, log));
+        // Without anything that only this theory has, the matrices serve others too.
+        let terms = if further.is_empty() && log == 0.0 {
+            kernels.derived((theory.order(), nf), make)
+        } else {
+            Arc::new(make())
         };
         let differs = |channels: [Channel; 2], from: usize| {
-            (from..known).any(|order| channels.iter().any(|c| !kernels.splitting_is_zero(order, *c)))
+            (from..=theory.order()).any(|order| channels.iter().any(|c| !kernels.splitting_is_zero(order, *c)))
                 || further.iter().any(|own| channels.contains(&own.channel))
         };
-        let (quark, valence) = (sum(&plus, &pure), sum(&minus, &sea));
-        // The last row is the number below `x_min`.
-        let one =
-            |terms: &[Convolved]| terms.iter().map(|term| term.matrix.with_last_row(&term.number_below)).collect();
         Self {
-            singlet: (0..orders).map(|k| pair(&gg[k], &gq[k], &qg[k], &quark[k], offsets)).collect(),
-            ns_plus: one(&plus),
-            ns_minus: one(&minus),
-            valence: one(&valence),
+            terms,
             offsets: offsets.to_vec(),
             // At LO the kernels of q + qbar and q - qbar are the same.
             minus_is_plus: !differs([Channel::NsPlus, Channel::NsMinus], 1),
@@ -109,16 +85,23 @@ impl FixedFlavour {
         let a = s.exp();
         let beta = self.beta.iter().rev().fold(0.0, |sum, beta| sum * a + beta);
         let terms = match sector {
-            Sector::Singlet => &self.singlet,
-            Sector::NsPlus => &self.ns_plus,
-            Sector::NsMinus => &self.ns_minus,
-            Sector::Valence => &self.valence,
+            Sector::Singlet => &self.terms[0],
+            Sector::NsPlus => &self.terms[1],
+            Sector::NsMinus => &self.terms[2],
+            Sector::Valence => &self.terms[3],
         };
         let mut sum = Matrix::zeros(terms[0].rows(), terms[0].cols());
-        let mut factor = -1.0 / beta;
-        for term in terms {
-            sum.add_scaled(factor, term);
-            factor *= a;
+        let panels = self.panels(sector);
+        for rows in panels.windows(2) {
+            for i in rows[0]..rows[1] {
+                // Nothing lies beyond the own panel.
+                let target = &mut sum.row_mut(i)[..rows[1]];
+                let mut factor = -1.0 / beta;
+                for term in terms {
+                    target.iter_mut().zip(term.row(i)).for_each(|(value, add)| *value += factor * add);
+                    factor *= a;
+                }
+            }
         }
         sum
     }
@@ -136,6 +119,45 @@ impl FixedFlavour {
         panels.push(panels[panels.len() - 1] + 1);
         panels
     }
+}
+
+/// The matrices of one nf: a list for each of singlet, plus, minus and valence, in it one a power of a; `running` holds
+/// the beta function and the logarithm of the ratio of scales.
+fn terms(
+    order: usize,
+    kernels: &KernelSet,
+    further: &[FurtherKernel],
+    nf: usize,
+    offsets: &[usize],
+    running: (&[f64], f64),
+) -> Derived {
+    let orders = further.iter().map(|kernel| kernel.order).fold(order, usize::max) + 1;
+    let channel = |channel: Channel| {
+        let known = |power: usize| {
+            if power <= order {
+                kernels.splitting(power, channel, nf as f64)
+            } else {
+                Convolved::zeros(offsets[offsets.len() - 1])
+            }
+        };
+        let mut terms: Vec<Convolved> = (0..orders).map(known).collect();
+        for own in further.iter().filter(|own| own.nf == nf && own.channel == channel) {
+            terms[own.order].add_scaled(1.0, &own.kernel);
+        }
+        at_renormalisation_scale(&mut terms, running.0, running.1);
+        terms
+    };
+    let [plus, minus, sea, pure, qg, gq, gg] = Channel::ALL.map(channel);
+    let sum = |a: &[Convolved], b: &[Convolved]| -> Vec<Convolved> {
+        let mut sum = a.to_vec();
+        sum.iter_mut().zip(b).for_each(|(to, from)| to.add_scaled(1.0, from));
+        sum
+    };
+    let (quark, valence) = (sum(&plus, &pure), sum(&minus, &sea));
+    let singlet = (0..orders).map(|k| pair(&gg[k], &gq[k], &qg[k], &quark[k], offsets)).collect();
+    // The last row is the number below `x_min`.
+    let one = |terms: &[Convolved]| terms.iter().map(|term| term.matrix.with_last_row(&term.number_below)).collect();
+    vec![singlet, one(&plus), one(&minus), one(&valence)]
 }
 
 /// Re-expands `sum_k a(mu_f^2)^(k+1) P_k` in `a(mu_r^2)`, to the orders at hand; `log = ln(mu_r^2/mu_f^2)`.

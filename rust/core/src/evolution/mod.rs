@@ -5,5 +5,5 @@ mod flavours;
 mod stretch;
 
 pub use fixed_flavour::{FixedFlavour, FurtherKernel, Sector, place};
-pub use flavours::{CHARM, GLUON, HEAVY_NAMES};
-pub use stretch::{Plan, Stretch, StretchSolution};
+pub use flavours::{CHARM, GLUON, HEAVY_NAMES, check_flavour};
+pub use stretch::{Division, Plan, Stretch, StretchSolution};

@@ -75,6 +75,18 @@ impl Matrix {
         Self::from_values(rows, cols, self.data)
     }
 
+    /// Rows and columns exchanged.
+    #[must_use]
+    pub fn transposed(&self) -> Self {
+        let mut other = Self::zeros(self.cols, self.rows);
+        for i in 0..self.rows {
+            for (j, value) in self.row(i).iter().enumerate() {
+                other.row_mut(j)[i] = *value;
+            }
+        }
+        other
+    }
+
     /// The same with one more row and column: `last` as the row, zeros as the column.
     #[must_use]
     pub fn with_last_row(&self, last: &[f64]) -> Self {
@@ -123,11 +135,53 @@ impl Matrix {
     }
 }
 
+/// Values in row-major order as a matrix.
+pub fn view(values: &[f64], rows: usize, cols: usize) -> View<'_> {
+    View::from_row_major_slice(values, rows, cols)
+}
+
+/// Values in row-major order as a matrix to write to.
+pub fn view_mut(values: &mut [f64], rows: usize, cols: usize) -> ViewMut<'_> {
+    ViewMut::from_row_major_slice_mut(values, rows, cols)
+}
+
+/// `target = factor * left * right`, on this thread.
+pub fn multiply(mut target: ViewMut<'_>, factor: f64, left: View<'_>, right: View<'_>) {
+    if left.ncols() == 0 {
+        target.fill(0.0);
+    } else if right.ncols() > 0 {
+        faer::linalg::matmul::matmul(target, Accum::Replace, left, right, factor, Par::Seq);
+    }
+}
+
 /// `target += factor * left * right`, on this thread.
 pub fn multiply_add(target: ViewMut<'_>, factor: f64, left: View<'_>, right: View<'_>) {
     if left.ncols() > 0 && right.ncols() > 0 {
         faer::linalg::matmul::matmul(target, Accum::Add, left, right, factor, Par::Seq);
     }
+}
+
+/// A complex number: real and imaginary part.
+pub type Complex = (f64, f64);
+
+/// Eigenvalues of a small matrix and, for each, the real part of its vector.
+///
+/// # Panics
+/// Where the QR iteration gives up, after 30 sweeps an eigenvalue: of small matrices of finite numbers none needs as
+/// many.
+pub fn eigenvectors(matrix: &Matrix) -> Vec<(Complex, Vec<f64>)> {
+    let found = matrix.part(0..matrix.rows, 0..matrix.cols).eigen().expect("a small matrix of finite numbers");
+    let (values, vectors) = (found.S(), found.U());
+    let vector = |k: usize| (0..matrix.rows).map(|i| vectors[(i, k)].re).collect();
+    (0..matrix.rows).map(|k| ((values[k].re, values[k].im), vector(k))).collect()
+}
+
+/// The inverse of a square matrix.
+pub fn inverse(matrix: &Matrix) -> Matrix {
+    let n = matrix.rows;
+    let mut inverse = Matrix::identity(n);
+    Factors::of(matrix).solve(inverse.part_mut(0..n, 0..n));
+    inverse
 }
 
 /// A factored square matrix (LU with partial pivoting).

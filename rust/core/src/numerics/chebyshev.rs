@@ -3,6 +3,7 @@
 //! Which one when: [`Nodes::cardinals`] to evaluate anywhere, [`coefficients`] to judge how well a function
 //! is resolved, [`integration_matrix`] to solve an integral equation by collocation.
 
+use super::blocks::{Matrix, multiply, view_mut};
 use std::f64::consts::PI;
 
 /// Chebyshev points of the second kind on `[from, to]`, in growing order, with barycentric weights.
@@ -44,7 +45,18 @@ impl Nodes {
         self.barycentric(|point| at - point, out);
     }
 
-    /// The same a distance `t` to the left of node `j`, without the rounding of a subtraction near that node.
+    /// What polynomials with the values `(node, quantity)` are at several places, to `out`: `(place, quantity)`.
+    pub fn interpolate(&self, places: &[f64], values: &Matrix, out: &mut [f64]) {
+        let (count, size) = (self.points.len(), values.cols());
+        let mut weights = Matrix::zeros(places.len(), count);
+        for (row, &place) in places.iter().enumerate() {
+            self.cardinals(place, weights.row_mut(row));
+        }
+        let weights = weights.part(0..places.len(), 0..count);
+        multiply(view_mut(out, places.len(), size), 1.0, weights, values.part(0..count, 0..size));
+    }
+
+    /// The same as [`Self::cardinals`] a distance `t` to the left of node `j`, without the rounding of a subtraction near that node.
     pub fn cardinals_left_of(&self, j: usize, t: f64, out: &mut [f64]) {
         let node = self.points[j];
         self.barycentric(|point| (node - point) - t, out);

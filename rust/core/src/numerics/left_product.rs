@@ -3,8 +3,8 @@
 //! Which way when: many rows at few `s` want the solution evaluated there; rows that all have an `s` of their own are
 //! cheaper multiplied by the solution at every node, since that is one product of matrices for all of them.
 
-use super::blocks::{Matrix, View, multiply_add};
-use super::matrix_ode::Dense;
+use super::blocks::{Matrix, View, multiply_add, view};
+use super::chebyshev::Nodes;
 use std::ops::Range;
 
 /// Values of `s` at which the solution is evaluated together: each pass over its nodes serves as many.
@@ -34,34 +34,40 @@ pub struct Rows<'a> {
     pub way: Way,
 }
 
-/// `target += row * solution`, for a solution that does not change. Its rows before `first` are zero.
-pub fn multiply_left(solution: &Matrix, rows: &Rows, first: usize, target: &mut Matrix) {
-    let view = solution.part(0..solution.rows(), 0..solution.cols());
-    multiply(view, 0, rows, 0..rows.s.len(), first, target);
+/// A solution by its values at nodes in s.
+pub struct Sampled<'a> {
+    /// The nodes.
+    pub nodes: &'a Nodes,
+    /// `(node, (row - first) * column)`.
+    pub values: &'a Matrix,
+    /// Its first row that is not zero.
+    pub first: usize,
+    /// Number of columns.
+    pub cols: usize,
 }
 
-impl Dense {
-    /// `target += row * solution(s)`, one row of `target` for each. Rows of the solution before `first` are zero.
-    pub fn multiply_left(&self, rows: &Rows, first: usize, target: &mut Matrix) {
+impl Sampled<'_> {
+    /// `target += row * solution(s)`, one row of `target` for each; it may hold fewer columns than the solution.
+    pub fn multiply_left(&self, rows: &Rows, target: &mut Matrix) {
         let mut weights = Matrix::zeros(rows.s.len(), self.nodes.points().len());
         for (row, &s) in rows.s.iter().enumerate() {
             self.nodes.cardinals(s, weights.row_mut(row));
         }
         match rows.way {
-            Way::Evaluated => self.evaluated(rows, &weights, first, target),
-            Way::AtNodes => self.at_nodes(rows, &weights, first, target),
+            Way::Evaluated => self.evaluated(rows, &weights, target),
+            Way::AtNodes => self.at_nodes(rows, &weights, target),
         }
     }
 
-    fn evaluated(&self, rows: &Rows, weights: &Matrix, first: usize, target: &mut Matrix) {
+    fn evaluated(&self, rows: &Rows, weights: &Matrix, target: &mut Matrix) {
         let places: Vec<Range<usize>> = runs(rows.s).collect();
         for together in places.chunks(TOGETHER) {
             let some = together[0].start..together[together.len() - 1].end;
             let end = rows.ends[some].iter().copied().max().unwrap_or(0);
-            if end <= first {
+            if end <= self.first {
                 continue;
             }
-            let (count, nodes, size) = (together.len(), weights.cols(), (end - first) * self.cols);
+            let (count, nodes, size) = (together.len(), weights.cols(), (end - self.first) * self.cols);
             let of_places = together.iter().flat_map(|run| weights.row(run.start)).copied().collect();
             let of_places = Matrix::from_values(count, nodes, of_places);
             let mut solutions = Matrix::zeros(count, size);
@@ -69,30 +75,31 @@ impl Dense {
                 solutions.part_mut(0..count, 0..size),
                 1.0,
                 of_places.part(0..count, 0..nodes),
-                self.values.part(0..nodes, first * self.cols..end * self.cols),
+                self.values.part(0..nodes, 0..size),
             );
             for (run, solution) in together.iter().zip(0..) {
-                let view = View::from_row_major_slice(solutions.row(solution), end - first, self.cols);
-                multiply(view, first, rows, run.clone(), first, target);
+                let solution = view(solutions.row(solution), end - self.first, self.cols);
+                multiply(solution, self.first, rows, run.clone(), target);
             }
         }
     }
 
-    fn at_nodes(&self, rows: &Rows, weights: &Matrix, first: usize, target: &mut Matrix) {
+    fn at_nodes(&self, rows: &Rows, weights: &Matrix, target: &mut Matrix) {
+        let (held, cols) = (self.values.cols() / self.cols, target.cols());
         for (group, end) in groups(rows.ends) {
-            if end <= first {
+            if end <= self.first {
                 continue;
             }
-            let (count, width, cols) = (group.len(), end - first, self.cols);
+            let (count, width) = (group.len(), end - self.first);
             let mut product = Matrix::zeros(count, cols);
             for node in 0..weights.cols() {
                 product.values_mut().fill(0.0);
-                let at_node = View::from_row_major_slice(self.values.row(node), self.rows, cols);
+                let at_node = view(self.values.row(node), held, self.cols);
                 multiply_add(
                     product.part_mut(0..count, 0..cols),
                     1.0,
-                    rows.values.part(group.clone(), first..end),
-                    at_node.submatrix(first, 0, width, cols),
+                    rows.values.part(group.clone(), self.first..end),
+                    at_node.submatrix(0, 0, width, cols),
                 );
                 for (i, row) in group.clone().enumerate() {
                     let weight = weights.row(row)[node];
@@ -104,16 +111,22 @@ impl Dense {
     }
 }
 
-/// Multiplies some rows by a solution of which the first row held is number `held_from`.
-fn multiply(solution: View, held_from: usize, rows: &Rows, some: Range<usize>, first: usize, target: &mut Matrix) {
+/// `target += row * solution` for a solution that does not change, from its first row on that is not zero.
+pub fn multiply_left(solution: View, first: usize, rows: &Rows, target: &mut Matrix) {
+    multiply(solution, first, rows, 0..rows.s.len(), target);
+}
+
+/// Multiplies some rows by a solution of which row `first` is the first that is held.
+fn multiply(solution: View, first: usize, rows: &Rows, some: Range<usize>, target: &mut Matrix) {
+    let cols = target.cols();
     for (group, end) in groups(&rows.ends[some.clone()]) {
         let group = some.start + group.start..some.start + group.end;
         if end > first {
             multiply_add(
-                target.part_mut(group.clone(), 0..solution.ncols()),
+                target.part_mut(group.clone(), 0..cols),
                 1.0,
                 rows.values.part(group, first..end),
-                solution.submatrix(first - held_from, 0, end - first, solution.ncols()),
+                solution.submatrix(0, 0, end - first, cols),
             );
         }
     }

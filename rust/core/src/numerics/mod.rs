@@ -2,6 +2,8 @@
 
 pub mod blocks;
 pub mod chebyshev;
+mod collocation;
+mod dense;
 pub mod endpoint;
 pub mod gauss_legendre;
 pub mod left_product;

@@ -4,15 +4,15 @@
 //! families of their own. Each matrix has one row a node and a last row: what has flowed below `x_min` (all of the
 //! momentum in that of the gluon, each flavour's own number elsewhere).
 
-use crate::evolution::{CHARM, Sector, Stretch, StretchSolution, place};
+use crate::evolution::{CHARM, Sector, place};
 use crate::numerics::blocks::Matrix;
 
 /// Gluon, light sum, charm, bottom, top.
-const CHANNELS: usize = 5;
+pub const CHANNELS: usize = 5;
 /// Their places.
-const GLUON_PLACE: usize = 0;
-const LIGHT_PLACE: usize = 1;
-const CHARM_PLACE: usize = 2;
+pub const GLUON_PLACE: usize = 0;
+pub const LIGHT_PLACE: usize = 1;
+pub const CHARM_PLACE: usize = 2;
 
 /// What kind of combination the columns belong to.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -27,17 +27,18 @@ pub enum Family {
     NsMinus,
 }
 
-/// A heavy flavour, how its difference from a share of the light sum evolves, and that difference.
-type Difference = (usize, Sector, Matrix);
-
 /// Values of some columns at one scale.
 #[derive(Debug, Clone)]
 pub struct Columns {
     /// Their family.
     pub family: Family,
-    light: usize,
-    channels: [Option<Matrix>; CHANNELS],
+    pub light: usize,
+    pub channels: [Option<Matrix>; CHANNELS],
 }
+
+/// What evolves alone, each with its equations: the part that holds all flavours, and side by side each active heavy
+/// flavour less its share of the light sum.
+pub type Combinations = ((Sector, Matrix), Option<(Sector, Matrix)>);
 
 impl Columns {
     /// Columns with nothing in them: `rows` with the last one for what flows below `x_min`.
@@ -50,15 +51,15 @@ impl Columns {
         Self { family, light, channels }
     }
 
-    /// The gluon. Only the plus family has one; to others their light sum stands in, and nobody asks.
+    /// The gluon, for the plus family alone.
     pub fn gluon(&self) -> &Matrix {
-        self.channels[GLUON_PLACE].as_ref().unwrap_or(self.light_sum())
+        // Set by the constructors of the plus family and never removed; others have none and are not asked.
+        self.channels[GLUON_PLACE].as_ref().expect("the plus family holds a gluon")
     }
 
-    /// The gluon. Only the plus family has one; to others their light sum stands in, and nobody asks.
+    /// The gluon, for the plus family alone.
     pub fn gluon_mut(&mut self) -> &mut Matrix {
-        let place = if self.family == Family::Plus { GLUON_PLACE } else { LIGHT_PLACE };
-        self.channel_mut(place)
+        self.channel_mut(GLUON_PLACE)
     }
 
     /// The sum of the light flavours; for a non-singlet family the only content.
@@ -108,23 +109,14 @@ impl Columns {
         sum
     }
 
-    /// Adds `factor` times columns of the same kind; a channel that only they hold is taken over.
-    pub fn add_scaled(&mut self, factor: f64, other: &Self) {
-        for (own, other) in self.channels.iter_mut().zip(&other.channels) {
-            if let Some(other) = other {
-                own.get_or_insert_with(|| Matrix::zeros(other.rows(), other.cols())).add_scaled(factor, other);
-            }
-        }
+    /// Heavy flavours that are active at nf; none in families of differences.
+    pub fn active(&self, nf: usize) -> Vec<usize> {
+        let held_alone = matches!(self.family, Family::Plus | Family::Minus);
+        (self.lightest_heavy()..=nf).filter(|_| held_alone).collect()
     }
 
-    /// Zeros in every channel of these.
-    pub fn nothing(&self) -> Self {
-        Self { channels: self.channels.each_ref().map(|own| own.as_ref().map(|_| self.empty())), ..*self }
-    }
-
-    /// What evolves alone at nf: the part that holds all flavours, and each heavy flavour less its share of the light
-    /// sum.
-    fn combinations(&self, nf: usize, offsets: &[usize]) -> ((Sector, Matrix), Vec<Difference>) {
+    /// What evolves alone at nf.
+    pub fn combinations(&self, nf: usize, offsets: &[usize]) -> Combinations {
         let (sum, difference) = match self.family {
             Family::Plus => (Sector::Singlet, Sector::NsPlus),
             Family::Minus => (Sector::Valence, Sector::NsMinus),
@@ -137,15 +129,28 @@ impl Columns {
             Family::NsPlus | Family::NsMinus => self.light_sum().clone(),
         };
         let share = -1.0 / self.light as f64;
-        let differences = (self.lightest_heavy()..=nf)
-            .filter(|_| matches!(self.family, Family::Plus | Family::Minus))
-            .map(|flavour| {
-                let mut deviation = self.heavy(flavour).cloned().unwrap_or_else(|| self.empty());
-                deviation.add_scaled(share, self.light_sum());
-                (flavour, difference, deviation)
-            })
-            .collect();
-        ((sum, whole), differences)
+        let deviation = |flavour| {
+            let mut deviation = self.heavy(flavour).cloned().unwrap_or_else(|| self.empty());
+            deviation.add_scaled(share, self.light_sum());
+            deviation
+        };
+        let differences: Vec<Matrix> = self.active(nf).into_iter().map(deviation).collect();
+        ((sum, whole), (!differences.is_empty()).then(|| (difference, side_by_side(&differences))))
+    }
+
+    /// Adds `factor` times columns of the same kind; a channel that only they hold is taken over.
+    pub fn add_scaled(&mut self, factor: f64, other: &Self) {
+        for (own, other) in self.channels.iter_mut().zip(&other.channels) {
+            if let Some(other) = other {
+                own.get_or_insert_with(|| Matrix::zeros(other.rows(), other.cols())).add_scaled(factor, other);
+            }
+        }
+    }
+
+    /// Zeros in every channel of these.
+    pub fn nothing(&self) -> Self {
+        let zeros = |own: &Option<Matrix>| own.as_ref().map(|own| Matrix::zeros(own.rows(), own.cols()));
+        Self { channels: self.channels.each_ref().map(zeros), ..*self }
     }
 
     /// Moves all momentum below `x_min` to the gluon's last row.
@@ -162,154 +167,20 @@ impl Columns {
         gluon.row_mut(last).copy_from_slice(&total);
     }
 
-    fn channel_mut(&mut self, channel: usize) -> &mut Matrix {
-        // Asked for the light channel, or the gluon of the plus family: set by the constructors and never removed.
-        self.channels[channel].as_mut().expect("every family holds the light channel, plus the gluon")
-    }
-}
-
-/// Columns along one leg, at any scale of it.
-pub struct LegColumns {
-    pub(super) start: Columns,
-    nf: usize,
-    pub(super) offsets: Vec<usize>,
-    /// The part that holds all flavours: singlet pair, valence, or the only content.
-    pub(super) sum: StretchSolution,
-    /// Each heavy flavour less its share of the light sum.
-    pub(super) differences: Vec<(usize, StretchSolution)>,
-}
-
-impl LegColumns {
-    /// Carries columns along a stretch of nf flavours. Rows of panels before `first` are zero.
-    pub fn new(start: Columns, stretch: &Stretch, nf: usize, offsets: &[usize], first: usize) -> Self {
-        let ((sector, whole), differences) = start.combinations(nf, offsets);
-        let differences = differences
-            .into_iter()
-            .map(|(flavour, sector, deviation)| (flavour, stretch.solve(sector, deviation, first)))
-            .collect();
-        let sum = stretch.solve(sector, whole, first);
-        Self { start, nf, offsets: offsets.to_vec(), sum, differences }
-    }
-
-    /// The columns where the leg is entered.
-    pub fn at_start(&self) -> &Columns {
-        &self.start
-    }
-
-    /// Another function of s: `map(sector, s, C)` of each combination that evolves alone, nothing of what does not
-    /// evolve.
-    #[must_use]
-    pub fn mapped(&self, map: impl Fn(Sector, f64, &Matrix) -> Matrix) -> Self {
-        let start = self.start.nothing();
-        let ((sector, _), differences) = start.combinations(self.nf, &self.offsets);
-        let differences = differences
-            .iter()
-            .zip(&self.differences)
-            .map(|((flavour, sector, _), of)| (*flavour, of.1.mapped(|s, columns| map(*sector, s, columns))))
-            .collect();
-        let sum = self.sum.mapped(|s, columns| map(sector, s, columns));
-        Self { start, nf: self.nf, offsets: self.offsets.clone(), sum, differences }
-    }
-
-    /// How these columns move with a parameter.
-    ///
-    /// `entered` is how those at the start of the leg do there, at a fixed scale; `moving(sector, s, C)` is
-    /// `A(s) C ds/dp`. What the start moves away from under the columns is carried on with what enters; `stretch` and
-    /// `first` as for [`LegColumns::new`].
-    pub fn derivative(
-        &self,
-        entered: Columns,
-        stretch: &Stretch,
-        first: usize,
-        moving: impl Fn(Sector, f64, &Matrix) -> Matrix,
-    ) -> Self {
-        let carry = |sector: Sector, mut entered: Matrix, of: &StretchSolution| {
-            let (s, start) = of.start();
-            entered.add_scaled(-1.0, &moving(sector, s, start));
-            let mut moved = stretch.solve(sector, entered, first);
-            moved.add(&of.mapped(|s, columns| moving(sector, s, columns)));
-            moved
-        };
-        let ((sector, whole), entering) = entered.combinations(self.nf, &self.offsets);
-        let sum = carry(sector, whole, &self.sum);
-        let differences = entering
-            .into_iter()
-            .zip(&self.differences)
-            .map(|((flavour, sector, deviation), (_, of))| (flavour, carry(sector, deviation, of)))
-            .collect();
-        Self { start: entered, nf: self.nf, offsets: self.offsets.clone(), sum, differences }
-    }
-
-    /// The columns at `s = ln a`.
-    pub fn at(&self, s: f64) -> Columns {
-        // One scale gives one set of columns.
-        self.at_many(&[s]).swap_remove(0)
-    }
-
-    /// The columns at several scales.
-    pub fn at_many(&self, s: &[f64]) -> Vec<Columns> {
-        let mut deviations: Vec<_> = self
-            .differences
-            .iter()
-            .map(|(flavour, solution)| solution.at_many(s).into_iter().map(move |values| (*flavour, values)))
-            .collect();
-        let sums = self.sum.at_many(s);
-        sums.into_iter()
-            .map(|sum| self.by_flavour(sum, deviations.iter_mut().filter_map(Iterator::next).collect()))
-            .collect()
-    }
-
-    /// Flavours from their sum and what each heavy one differs from its share of the light sum.
-    ///
-    /// With `d_h = h - L/light` and `Sigma = L + sum_h h`: `L = (light/nf) (Sigma - sum_h d_h)`.
-    fn by_flavour(&self, sum: Matrix, deviations: Vec<(usize, Matrix)>) -> Columns {
-        let mut columns = self.inactive();
-        if matches!(columns.family, Family::NsPlus | Family::NsMinus) {
-            columns.channels[LIGHT_PLACE] = Some(sum);
-            return columns;
-        }
-        let mut average = sum;
-        if columns.family == Family::Plus {
-            let (gluon, quarks) = unpack(&average, &self.offsets);
-            columns.channels[GLUON_PLACE] = Some(gluon);
-            average = quarks;
-        }
-        for (_, deviation) in &deviations {
-            average.add_scaled(-1.0, deviation);
-        }
-        average.scale(1.0 / self.nf as f64);
-        for (flavour, mut heavy) in deviations {
-            heavy.add_scaled(1.0, &average);
-            columns.set_heavy(flavour, heavy);
-        }
-        average.scale(columns.light as f64);
-        columns.channels[LIGHT_PLACE] = Some(average);
-        if columns.family == Family::Plus {
-            columns.gather_momentum();
-        }
-        columns
-    }
-
-    /// What does not evolve on this leg: heavy flavours that are not active.
-    fn inactive(&self) -> Columns {
+    /// Heavy flavours that are not active at nf.
+    pub fn inactive(&self, nf: usize) -> Self {
         let mut channels = [const { None }; CHANNELS];
-        for (place, channel) in self.start.channels.iter().enumerate().skip(CHARM_PLACE) {
-            if place - CHARM_PLACE + CHARM > self.nf {
+        for (place, channel) in self.channels.iter().enumerate().skip(CHARM_PLACE) {
+            if place - CHARM_PLACE + CHARM > nf {
                 channels[place].clone_from(channel);
             }
         }
-        Columns { family: self.start.family, light: self.start.light, channels }
+        Self { family: self.family, light: self.light, channels }
     }
 
-    /// Estimated error relative to each value at the nodes named, over the whole leg.
-    pub fn error(&self, nodes: &[usize]) -> f64 {
-        let sum = if self.start.family == Family::Plus {
-            let rows = |component| nodes.iter().map(move |&i| place(&self.offsets, component, i));
-            self.sum.error(&rows(0).chain(rows(1)).collect::<Vec<_>>())
-        } else {
-            self.sum.error(nodes)
-        };
-        self.differences.iter().map(|(_, solution)| solution.error(nodes)).fold(sum, f64::max)
+    fn channel_mut(&mut self, channel: usize) -> &mut Matrix {
+        // Asked for the light channel, or the gluon of the plus family: set by the constructors and never removed.
+        self.channels[channel].as_mut().expect("every family holds the light channel, plus the gluon")
     }
 }
 
@@ -326,15 +197,9 @@ fn pack(gluon: &Matrix, singlet: &Matrix, offsets: &[usize]) -> Matrix {
     pair
 }
 
-fn unpack(pair: &Matrix, offsets: &[usize]) -> (Matrix, Matrix) {
-    let n = offsets[offsets.len() - 1];
-    let mut parts = [Matrix::zeros(n + 1, pair.cols()), Matrix::zeros(n + 1, pair.cols())];
-    for (component, part) in parts.iter_mut().enumerate() {
-        for i in 0..n {
-            part.row_mut(i).copy_from_slice(pair.row(place(offsets, component, i)));
-        }
-    }
-    parts[0].row_mut(n).copy_from_slice(pair.row(2 * n));
-    let [gluon, singlet] = parts;
-    (gluon, singlet)
+/// Matrices of equal height beside each other.
+fn side_by_side(parts: &[Matrix]) -> Matrix {
+    let rows = parts.first().map_or(0, Matrix::rows);
+    let values = (0..rows).flat_map(|i| parts.iter().flat_map(move |part| part.row(i))).copied().collect();
+    Matrix::from_values(rows, parts.iter().map(Matrix::cols).sum(), values)
 }

@@ -14,6 +14,7 @@ use crate::error::Result;
 use crate::kernels::matching::{Element, HeavyGluonForm};
 use crate::numerics::blocks::{Factors, Matrix, multiply_add};
 use crate::theory::Theory;
+use std::sync::OnceLock;
 
 /// The matching at one threshold.
 pub struct Crossing {
@@ -21,7 +22,7 @@ pub struct Crossing {
     pub(super) nf: usize,
     /// `A` of each element, without unity, and its last row: what goes below `x_min`.
     pub(super) quark: Both,
-    pub(super) gluon_gluon: Matrix,
+    pub(super) gluon_gluon: Invertible,
     pub(super) gluon_quark: Matrix,
     pub(super) gluon_heavy: Matrix,
     pub(super) heavy_gluon: Matrix,
@@ -31,8 +32,14 @@ pub struct Crossing {
 
 /// An element that acts on sums (momentum is counted below `x_min`) and on differences (number is).
 pub(super) struct Both {
-    pub(super) momentum: Matrix,
-    pub(super) number: Matrix,
+    pub(super) momentum: Invertible,
+    pub(super) number: Invertible,
+}
+
+/// An element `A`; `1 + A` is factored when its inverse is first asked for.
+pub(super) struct Invertible {
+    pub(super) matrix: Matrix,
+    factors: OnceLock<Factors>,
 }
 
 impl Crossing {
@@ -62,12 +69,12 @@ impl Crossing {
         let one = |name: Element| momentum(&element(name));
         let both = |name: Element| {
             let kernel = element(name);
-            Both { momentum: momentum(&kernel), number: number(&kernel) }
+            Both { momentum: Invertible::new(momentum(&kernel)), number: Invertible::new(number(&kernel)) }
         };
         Self {
             nf,
             quark: both(Element::LightQuark),
-            gluon_gluon: one(Element::GluonGluon),
+            gluon_gluon: Invertible::new(one(Element::GluonGluon)),
             gluon_quark: one(Element::GluonQuark),
             gluon_heavy: one(Element::GluonHeavy),
             heavy_gluon: one(Element::HeavyGluon),
@@ -84,28 +91,28 @@ impl Crossing {
                 let singlet = columns.singlet(self.nf);
                 let (gluon, intrinsic) = (columns.gluon().clone(), columns.heavy(heavy).cloned());
                 let mut target = gluon.clone();
-                add(&mut target, 1.0, &self.gluon_gluon, &gluon);
+                add(&mut target, 1.0, &self.gluon_gluon.matrix, &gluon);
                 add(&mut target, 1.0, &self.gluon_quark, &singlet);
                 let mut made = Matrix::zeros(gluon.rows(), gluon.cols());
                 add(&mut made, 1.0, &self.heavy_gluon, &gluon);
                 add(&mut made, 1.0, &self.heavy_quark, &singlet);
                 if let Some(intrinsic) = &intrinsic {
                     add(&mut target, 1.0, &self.gluon_heavy, intrinsic);
-                    add(&mut made, 1.0, &self.heavy_heavy.momentum, intrinsic);
+                    add(&mut made, 1.0, &self.heavy_heavy.momentum.matrix, intrinsic);
                     made.add_scaled(1.0, intrinsic);
                 }
                 *columns.gluon_mut() = target;
                 columns.set_heavy(heavy, made);
-                self.quarks(columns, |matrix| grow(matrix, &self.quark.momentum));
+                self.quarks(columns, |matrix| grow(matrix, &self.quark.momentum.matrix));
                 columns.gather_momentum();
             }
             Family::Minus => {
                 let mut made = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
-                grow(&mut made, &self.heavy_heavy.number);
+                grow(&mut made, &self.heavy_heavy.number.matrix);
                 columns.set_heavy(heavy, made);
-                self.quarks(columns, |matrix| grow(matrix, &self.quark.number));
+                self.quarks(columns, |matrix| grow(matrix, &self.quark.number.matrix));
             }
-            Family::NsPlus | Family::NsMinus => grow(columns.light_mut(), &self.quark.number),
+            Family::NsPlus | Family::NsMinus => grow(columns.light_mut(), &self.quark.number.matrix),
         }
     }
 
@@ -114,27 +121,27 @@ impl Crossing {
         let heavy = self.nf + 1;
         match columns.family {
             Family::Plus => {
-                self.quarks(columns, |matrix| shrink(matrix, &self.quark.momentum));
+                self.quarks(columns, |matrix| self.quark.momentum.shrink(matrix));
                 let singlet = columns.singlet(self.nf);
                 let mut gluon = columns.gluon().clone();
                 add(&mut gluon, -1.0, &self.gluon_quark, &singlet);
-                shrink(&mut gluon, &self.gluon_gluon);
+                self.gluon_gluon.shrink(&mut gluon);
                 let mut left = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
                 add(&mut left, -1.0, &self.heavy_quark, &singlet);
                 add(&mut left, -1.0, &self.heavy_gluon, &gluon);
                 add(&mut gluon, -1.0, &self.gluon_heavy, &left);
-                without_own_matching(&mut left, &self.heavy_heavy.momentum);
+                without_own_matching(&mut left, &self.heavy_heavy.momentum.matrix);
                 *columns.gluon_mut() = gluon;
                 columns.set_heavy(heavy, left);
                 columns.gather_momentum();
             }
             Family::Minus => {
                 let mut left = columns.heavy(heavy).cloned().unwrap_or_else(|| columns.empty());
-                without_own_matching(&mut left, &self.heavy_heavy.number);
+                without_own_matching(&mut left, &self.heavy_heavy.number.matrix);
                 columns.set_heavy(heavy, left);
-                self.quarks(columns, |matrix| shrink(matrix, &self.quark.number));
+                self.quarks(columns, |matrix| self.quark.number.shrink(matrix));
             }
-            Family::NsPlus | Family::NsMinus => shrink(columns.light_mut(), &self.quark.number),
+            Family::NsPlus | Family::NsMinus => self.quark.number.shrink(columns.light_mut()),
         }
     }
 
@@ -177,10 +184,19 @@ fn without_own_matching(left: &mut Matrix, element: &Matrix) {
     add(left, -1.0, element, &before);
 }
 
-/// `target <- (1 + element)^-1 target`.
-pub(super) fn shrink(target: &mut Matrix, element: &Matrix) {
-    let mut sum = Matrix::identity(element.rows());
-    sum.add_scaled(1.0, element);
-    let (rows, cols) = (target.rows(), target.cols());
-    Factors::of(&sum).solve(target.part_mut(0..rows, 0..cols));
+impl Invertible {
+    fn new(matrix: Matrix) -> Self {
+        Self { matrix, factors: OnceLock::new() }
+    }
+
+    /// `target <- (1 + A)^-1 target`.
+    pub(super) fn shrink(&self, target: &mut Matrix) {
+        let factors = self.factors.get_or_init(|| {
+            let mut sum = Matrix::identity(self.matrix.rows());
+            sum.add_scaled(1.0, &self.matrix);
+            Factors::of(&sum)
+        });
+        let (rows, cols) = (target.rows(), target.cols());
+        factors.solve(target.part_mut(0..rows, 0..cols));
+    }
 }

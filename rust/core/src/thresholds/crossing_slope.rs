@@ -1,7 +1,7 @@
 //! How the matching at a threshold moves with a parameter: derivatives of what [`Crossing`] does, by the product rule.
 
 use super::columns::{Columns, Family};
-use super::crossing::{Crossing, add, heavy_gluon_form, shrink};
+use super::crossing::{Crossing, Invertible, add, heavy_gluon_form};
 use crate::convolution::{Convolved, KernelSet};
 use crate::coupling::sensitivity::Parameter;
 use crate::error::Result;
@@ -81,7 +81,7 @@ impl<'a> CrossingSlope<'a> {
                 self.subtract(|one| &one.gluon_heavy, (&left, &left_moved), (&mut gluon, &mut gluon_moved));
                 let intrinsic = (left.clone(), left_moved.clone());
                 let own = (&intrinsic.0, &intrinsic.1);
-                self.subtract(|one| &one.heavy_heavy.momentum, own, (&mut left, &mut left_moved));
+                self.subtract(|one| &one.heavy_heavy.momentum.matrix, own, (&mut left, &mut left_moved));
                 *moved.gluon_mut() = gluon_moved;
                 moved.set_heavy(heavy, left_moved);
                 moved.gather_momentum();
@@ -89,7 +89,7 @@ impl<'a> CrossingSlope<'a> {
             Family::Minus => {
                 let intrinsic = (left.clone(), left_moved.clone());
                 let own = (&intrinsic.0, &intrinsic.1);
-                self.subtract(|one| &one.heavy_heavy.number, own, (&mut left, &mut left_moved));
+                self.subtract(|one| &one.heavy_heavy.number.matrix, own, (&mut left, &mut left_moved));
                 moved.set_heavy(heavy, left_moved);
                 self.quarks_down(&mut before, &mut moved, |one| &one.quark.number);
             }
@@ -101,7 +101,7 @@ impl<'a> CrossingSlope<'a> {
     }
 
     /// Divides the light sum and the heavy flavours that are active below by `1 + element`.
-    fn quarks_down(&self, before: &mut Columns, moved: &mut Columns, element: fn(&Crossing) -> &Matrix) {
+    fn quarks_down(&self, before: &mut Columns, moved: &mut Columns, element: fn(&Crossing) -> &Invertible) {
         self.divide(element, (before.light_mut(), moved.light_mut()));
         for active in before.lightest_heavy()..=self.at.nf {
             if let (Some(value), Some(slope)) = (before.heavy_mut(active), moved.heavy_mut(active)) {
@@ -111,10 +111,10 @@ impl<'a> CrossingSlope<'a> {
     }
 
     /// `target <- (1 + element)^-1 target`, and the same for its derivative.
-    fn divide(&self, element: fn(&Crossing) -> &Matrix, target: (&mut Matrix, &mut Matrix)) {
-        shrink(target.0, element(self.at));
-        add(target.1, -1.0, element(&self.slope), target.0);
-        shrink(target.1, element(self.at));
+    fn divide(&self, element: fn(&Crossing) -> &Invertible, target: (&mut Matrix, &mut Matrix)) {
+        element(self.at).shrink(target.0);
+        add(target.1, -1.0, &element(&self.slope).matrix, target.0);
+        element(self.at).shrink(target.1);
     }
 
     /// `target -= element source`, and the same for its derivative; each a pair of values and derivative.

@@ -1,10 +1,12 @@
 //! What the input of a route consists of: which families and channels there are, and what they are called.
 
 use super::columns::{Columns, Family};
+use super::probes;
 use super::route::Route;
 use crate::evolution::{CHARM, HEAVY_NAMES, Sector};
 use crate::grid::Grid;
 use crate::numerics::blocks::Matrix;
+use std::ops::Range;
 
 /// A density that is asked for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -136,29 +138,28 @@ impl Inputs {
             .collect()
     }
 
-    /// Unit columns of the nodes that a panel owns, one set for each input channel.
-    pub fn start(&self, family: Family, grid: &Grid, panel: usize) -> (Vec<(usize, usize)>, Columns) {
+    /// Unit columns of the nodes that a panel owns, one set for each input channel; those of the first panel, on which
+    /// all others act, are followed by probes.
+    pub fn start(&self, family: Family, grid: &Grid, panel: usize) -> (Columns, usize) {
         let owned = grid.owned(panel);
         let count = self.channels(family).len();
-        let columns: Vec<(usize, usize)> =
-            (0..count).flat_map(|channel| owned.clone().map(move |node| (channel, node))).collect();
-        let mut start = Columns::new(family, self.light, grid.nodes() + 1, columns.len());
+        let probes = if panel == 0 { probes::COUNT } else { 0 };
+        let mut start = Columns::new(family, self.light, grid.nodes() + 1, count * owned.len() + probes);
         for (index, flavour) in self.heavy.iter().enumerate() {
             if matches!(family, Family::Plus | Family::Minus) {
                 let mut unit = start.empty();
-                let channel = index + count - self.heavy.len();
-                set_units(&mut unit, &columns, channel);
+                set_units(&mut unit, owned.clone(), index + count - self.heavy.len());
                 start.set_heavy(*flavour, unit);
             }
         }
-        match family {
-            Family::Plus => {
-                set_units(start.gluon_mut(), &columns, 0);
-                set_units(start.light_mut(), &columns, 1);
-            }
-            _ => set_units(start.light_mut(), &columns, 0),
+        if family == Family::Plus {
+            set_units(start.gluon_mut(), owned.clone(), 0);
         }
-        (columns, start)
+        set_units(start.light_mut(), owned, usize::from(family == Family::Plus));
+        if probes > 0 {
+            probes::fill(&mut start, grid);
+        }
+        (start, probes)
     }
 }
 
@@ -171,10 +172,10 @@ fn output_name(output: Output, family: Family) -> String {
     }
 }
 
-fn set_units(matrix: &mut Matrix, columns: &[(usize, usize)], channel: usize) {
-    for (column, (from, node)) in columns.iter().enumerate() {
-        if *from == channel {
-            matrix.row_mut(*node)[column] = 1.0;
-        }
+/// Sets the columns of an input channel.
+fn set_units(matrix: &mut Matrix, owned: Range<usize>, channel: usize) {
+    let first = channel * owned.len();
+    for (column, node) in (first..).zip(owned) {
+        matrix.row_mut(node)[column] = 1.0;
     }
 }

@@ -1,9 +1,12 @@
 //! What is to be built, and what of it is allowed.
 
 use crate::coupling::{FEWEST, MOST};
-use crate::error::{Error, Result};
+use crate::error::{Error, Result, require};
 use crate::evolution::{CHARM, FurtherKernel};
 use crate::grid::Grid;
+
+/// Highest order of a kernel of the user; each order up to it takes matrices of its own.
+const HIGHEST_ORDER: usize = 8;
 
 /// What is to be built.
 #[derive(Debug, Clone)]
@@ -27,13 +30,17 @@ impl BuildOptions {
     pub(super) fn check(&self, grid: &Grid) -> Result<()> {
         for &(q2, nf) in std::iter::once(&(self.start_q2, self.start_nf)).chain(&self.asked) {
             require("nf", &nf, (FEWEST..=MOST).contains(&nf), "it must be 3, 4, 5 or 6")?;
-            require("q2", &q2, q2.is_finite() && q2 > 0.0, "it must be finite and above 0 GeV^2")?;
+            require("q2", &format_args!("{q2:?}"), q2.is_finite() && q2 > 0.0, "it must be finite and above 0 GeV^2")?;
         }
         for flavour in &self.intrinsic {
             require("intrinsic", flavour, (CHARM..=MOST).contains(flavour), "it must be 4, 5 or 6")?;
         }
         let tolerance = self.tolerance;
-        require("tolerance", &tolerance, tolerance.is_finite() && tolerance > 0.0, "it must be finite and above 0")?;
+        let shown = format!("{tolerance:?}");
+        require("tolerance", &shown, tolerance.is_finite() && tolerance > 0.0, "it must be finite and above 0")?;
+        for own in &self.further {
+            require("order", &own.order, own.order <= HIGHEST_ORDER, "kernels of your own go to a^9 at most")?;
+        }
         let expected = [grid.nodes(); 2];
         let shapes = self.further.iter().map(|own| [own.kernel.matrix.rows(), own.kernel.matrix.cols()]);
         match shapes.into_iter().find(|shape| *shape != expected) {
@@ -41,11 +48,4 @@ impl BuildOptions {
             None => Ok(()),
         }
     }
-}
-
-fn require(name: &'static str, value: &impl std::fmt::Debug, holds: bool, allowed: &str) -> Result<()> {
-    if holds {
-        return Ok(());
-    }
-    Err(Error::Argument { name, value: format!("{value:?}"), allowed: allowed.into() })
 }

@@ -1,16 +1,17 @@
 //! Rows at the scales of points carried back to the input: operators applied from the left, and never made.
 //!
 //! A row acts on the gluon, on `q + qbar` and on `q - qbar` of six quarks. On a leg the columns of operators are held as
-//! the sum of all active flavours and what the heavy ones differ from their share of it; so is a row: with
-//! `L = (light/nf) (Sigma - sum_h d_h)` and `h = d_h + L/light`, what acts on Sigma is the mean over active flavours,
-//! and on `d_h` what the row on h differs from that mean.
+//! the gluon, the sum L of the light flavours and each heavy one, and as what each light flavour differs from its share
+//! of L; so is a row: what acts on L is the mean over light flavours, and on a difference what the row differs from it.
 
-use super::columns::{Family, LegColumns};
+use super::columns::Family;
+use super::inputs::Output;
 use super::operators::{Chunk, Evolution};
 use super::prepared::scale;
 use crate::error::Result;
 use crate::numerics::blocks::Matrix;
-use crate::numerics::left_product::{Rows, Way, multiply_left};
+use crate::numerics::left_product::{Rows, Way};
+use std::ops::Range;
 
 /// Quarks in a row: first the gluon, then so many sums, then so many differences.
 pub const QUARKS: usize = 6;
@@ -57,7 +58,7 @@ impl Evolution {
     pub fn place(&self, q2: f64, nf: usize) -> Result<Place> {
         let leg = self.route.leg_of(q2, nf)?;
         let s = scale(&self.theory, q2, nf)?;
-        let step = self.chunks.first().map_or(0, |chunk| chunk.legs[leg].sum.step_of(s));
+        let step = self.chunks.first().map_or(0, |chunk| chunk.legs[leg].step_of(s));
         Ok(Place { leg, step, s })
     }
 
@@ -68,15 +69,14 @@ impl Evolution {
 
     /// Where the nodes of each panel begin, and their number.
     pub fn offsets(&self) -> &[usize] {
-        self.chunks.first().map_or(&[], |chunk| &chunk.legs[0].offsets)
+        self.grid.offsets()
     }
 
     /// Rows on the input from rows at scales within one step.
     pub fn pull_back(&self, leg: usize, step: usize, points: &[RowAt], way: Way) -> InputRows {
-        let (light, nf, offsets) = (self.light(), self.route.legs[leg].nf, self.offsets());
+        let (light, offsets) = (self.light(), self.offsets());
         let has = |family| self.chunks.iter().any(|chunk| chunk.family == family);
-        let plus = Side::new(points, Some(offsets), light, nf, offsets);
-        let minus = Side::new(points, None, light, if has(Family::Minus) { nf } else { light }, offsets);
+        let (plus, minus) = (Side::new(points, true, light, offsets), Side::new(points, false, light, offsets));
         let (count, nodes) = (points.len(), offsets[offsets.len() - 1]);
         let empty = |rows| Matrix::zeros(rows, nodes);
         let mut made = InputRows {
@@ -86,26 +86,18 @@ impl Evolution {
             minus_differences: empty(count * (light - 1)),
         };
         for chunk in &self.chunks {
-            let carry = Carry { chunk, columns: &chunk.legs[leg], step, way };
+            let carry = Carry { chunk, leg, owned: self.grid.owned(chunk.panel), step, way };
             match chunk.family {
-                Family::Plus => {
-                    carry.sum(plus.sum.as_ref(), &mut made.plus);
-                    carry.heavy(&plus.heavy, &mut made.plus);
-                }
-                Family::Minus => {
-                    carry.sum(minus.sum.as_ref(), &mut made.minus);
-                    carry.heavy(&minus.heavy, &mut made.minus);
-                }
-                Family::NsPlus => {
-                    carry.sum(plus.differences.as_ref(), std::slice::from_mut(&mut made.plus_differences));
-                }
+                Family::Plus => carry.densities(&plus, &mut made.plus),
+                Family::Minus => carry.densities(&minus, &mut made.minus),
+                Family::NsPlus => carry.differences(&plus, &mut made.plus_differences),
                 Family::NsMinus => {}
             }
             // Families that evolve like another are not held apart.
             if chunk.family == Family::NsMinus || chunk.family == Family::NsPlus && !has(Family::NsMinus) {
-                carry.sum(minus.differences.as_ref(), std::slice::from_mut(&mut made.minus_differences));
+                carry.differences(&minus, &mut made.minus_differences);
                 if !has(Family::Minus) {
-                    carry.sum(minus.sum.as_ref(), &mut made.minus);
+                    carry.densities(&minus, &mut made.minus);
                 }
             }
         }
@@ -122,141 +114,100 @@ struct Stacked {
 
 /// The rows on sums `q + qbar` (with the gluon) or on differences `q - qbar`, as a leg holds what they act on.
 struct Side {
-    /// On the sum of the active flavours, or on the pair of it and the gluon; none where all vanish.
-    sum: Option<Stacked>,
-    /// On what an active heavy flavour differs, or on a heavy flavour that does not evolve.
-    heavy: Vec<(usize, Stacked)>,
-    /// On what each light flavour but the last differs from the mean.
+    /// On densities, as far as they do not vanish.
+    densities: Vec<(Output, Stacked)>,
+    /// On what each light flavour but the last differs from the mean; none where all vanish.
     differences: Option<Stacked>,
 }
 
 impl Side {
-    /// `pair`: the panels where gluon and sum are interleaved, for sums `q + qbar`.
-    fn new(points: &[RowAt], pair: Option<&[usize]>, light: usize, nf: usize, offsets: &[usize]) -> Self {
+    fn new(points: &[RowAt], plus: bool, light: usize, offsets: &[usize]) -> Self {
         let n = offsets[offsets.len() - 1];
-        let base = if pair.is_some() { 1 } else { 1 + QUARKS };
-        let ends: Vec<usize> = points.iter().map(|point| offsets[point.panels]).collect();
-        let quark = |i: usize, q: usize| &points[i].values[(base + q) * n..][..ends[i]];
-        let mean = |count: usize| {
-            let mut values = Matrix::zeros(points.len(), n);
-            for i in 0..points.len() {
-                for q in 0..count {
-                    add_scaled(values.row_mut(i), 1.0 / count as f64, quark(i, q));
-                }
-            }
-            values
+        let quark = |i: usize, q: usize| {
+            let channel = if plus { q } else { QUARKS + q };
+            &points[i].values[channel * n..][..offsets[points[i].panels]]
         };
-        let s: Vec<f64> = points.iter().map(|point| point.s).collect();
-        let (all, lightest) = (mean(nf), mean(light));
-        let mut heavy = Vec::new();
+        let sums =
+            |row: &mut [f64], i: usize| (1..=light).for_each(|q| add_scaled(row, 1.0 / light as f64, quark(i, q)));
+        let mean = Stacked::new(points, 1, offsets, |row, i, _| sums(row, i));
+        let mut densities = vec![(Output::Light, mean)];
+        if plus {
+            densities
+                .push((Output::Gluon, Stacked::new(points, 1, offsets, |row, i, _| add_scaled(row, 1.0, quark(i, 0)))));
+        }
         for flavour in light + 1..=QUARKS {
-            let mut values = Matrix::zeros(points.len(), n);
-            for i in 0..points.len() {
-                add_scaled(values.row_mut(i), 1.0, quark(i, flavour - 1));
-                if flavour <= nf {
-                    add_scaled(values.row_mut(i), -1.0, all.row(i));
-                }
-            }
-            heavy.extend(Stacked::new(s.clone(), ends.clone(), values).map(|rows| (flavour, rows)));
+            let rows = Stacked::new(points, 1, offsets, |row, i, _| add_scaled(row, 1.0, quark(i, flavour)));
+            densities.push((Output::Heavy(flavour), rows));
         }
-        let each = light - 1;
-        let mut differences = Matrix::zeros(points.len() * each, n);
-        for i in 0..points.len() {
-            for q in 0..each {
-                add_scaled(differences.row_mut(i * each + q), 1.0, quark(i, q));
-                add_scaled(differences.row_mut(i * each + q), -1.0, lightest.row(i));
-            }
+        let mut means = Matrix::zeros(points.len(), n);
+        (0..points.len()).for_each(|i| sums(means.row_mut(i), i));
+        let differences = Stacked::new(points, light - 1, offsets, |row, i, q| {
+            add_scaled(row, 1.0, quark(i, q + 1));
+            add_scaled(row, -1.0, means.row(i));
+        });
+        let held = |(output, rows): (Output, Stacked)| (!rows.vanish()).then_some((output, rows));
+        Self {
+            densities: densities.into_iter().filter_map(held).collect(),
+            differences: (!differences.vanish()).then_some(differences),
         }
-        let repeated = |i: usize| std::iter::repeat_n(i, each);
-        let (more_s, more_ends) =
-            (0..points.len()).flat_map(repeated).map(|i| (s[i], ends[i])).unzip::<f64, usize, Vec<_>, Vec<_>>();
-        let sum = match pair {
-            None => Stacked::new(s, ends, all),
-            Some(offsets) => {
-                Stacked::new(s, ends.iter().map(|end| 2 * end).collect(), with_gluon(points, &all, offsets))
-            }
-        };
-        Self { sum, heavy, differences: Stacked::new(more_s, more_ends, differences) }
     }
 }
 
 impl Stacked {
-    fn new(s: Vec<f64>, ends: Vec<usize>, values: Matrix) -> Option<Self> {
-        values.values().iter().any(|value| *value != 0.0).then_some(Self { s, ends, values })
-    }
-}
-
-/// Rows on gluon and sum, panel by panel as the singlet pair is ordered.
-fn with_gluon(points: &[RowAt], sum: &Matrix, offsets: &[usize]) -> Matrix {
-    let n = sum.cols();
-    let mut pair = Matrix::zeros(points.len(), 2 * n);
-    for (i, point) in points.iter().enumerate() {
-        let row = pair.row_mut(i);
-        for panel in offsets[..=point.panels].windows(2) {
-            let (start, end) = (panel[0], panel[1]);
-            row[2 * start..start + end].copy_from_slice(&point.values[start..end]);
-            row[start + end..2 * end].copy_from_slice(&sum.row(i)[start..end]);
+    /// So many rows for each point; `fill(row, point, index)` writes one.
+    fn new(points: &[RowAt], each: usize, offsets: &[usize], fill: impl Fn(&mut [f64], usize, usize)) -> Self {
+        let repeated = |i: usize| std::iter::repeat_n(i, each);
+        let of: Vec<usize> = (0..points.len()).flat_map(repeated).collect();
+        let mut values = Matrix::zeros(of.len(), offsets[offsets.len() - 1]);
+        for (row, &i) in of.iter().enumerate() {
+            fill(values.row_mut(row), i, row % each);
         }
+        let s = of.iter().map(|&i| points[i].s).collect();
+        let ends = of.iter().map(|&i| offsets[points[i].panels]).collect();
+        Self { s, ends, values }
     }
-    pair
+
+    fn vanish(&self) -> bool {
+        self.values.values().iter().all(|value| *value == 0.0)
+    }
 }
 
 /// The columns of one input panel on one leg, ready to be multiplied from the left.
 struct Carry<'a> {
     chunk: &'a Chunk,
-    columns: &'a LegColumns,
+    leg: usize,
+    /// Nodes of the panel.
+    owned: Range<usize>,
     step: usize,
     way: Way,
 }
 
 impl Carry<'_> {
-    /// Adds what rows on the sum (or on the only content) give.
-    fn sum(&self, rows: Option<&Stacked>, made: &mut [Matrix]) {
-        let Some(rows) = rows else { return };
-        let pairs = if self.chunk.family == Family::Plus { 2 } else { 1 };
-        let mut target = self.target(rows);
-        self.columns.sum.multiply_left(self.step, &self.rows(rows), pairs * self.first(), &mut target);
-        self.add(&target, made);
-    }
-
-    /// Adds what rows on heavy flavours give.
-    fn heavy(&self, rows: &[(usize, Stacked)], made: &mut [Matrix]) {
-        for (flavour, rows) in rows {
-            let mut target = self.target(rows);
-            let difference = self.columns.differences.iter().find(|(own, _)| own == flavour);
-            if let Some((_, solution)) = difference {
-                solution.multiply_left(self.step, &self.rows(rows), self.first(), &mut target);
-            } else if let Some(constant) = self.columns.start.heavy(*flavour) {
-                multiply_left(constant, &self.rows(rows), self.first(), &mut target);
-            }
-            self.add(&target, made);
+    /// Adds what rows on densities give.
+    fn densities(&self, side: &Side, made: &mut [Matrix]) {
+        for (output, rows) in &side.densities {
+            self.add(*output, rows, made);
         }
     }
 
-    /// The first node of the panel to which the columns belong.
-    fn first(&self) -> usize {
-        self.chunk.columns.first().map_or(0, |&(_, node)| node)
+    /// Adds what rows on differences give.
+    fn differences(&self, side: &Side, made: &mut Matrix) {
+        if let Some(rows) = &side.differences {
+            self.add(Output::Light, rows, std::slice::from_mut(made));
+        }
     }
 
-    fn rows<'r>(&self, rows: &'r Stacked) -> Rows<'r> {
-        Rows { s: &rows.s, ends: &rows.ends, values: &rows.values, way: self.way }
-    }
-
-    fn target(&self, rows: &Stacked) -> Matrix {
-        Matrix::zeros(rows.s.len(), self.chunk.columns.len())
-    }
-
-    /// Adds columns to their channels; those of a channel are neighbours, as their nodes are.
-    fn add(&self, target: &Matrix, made: &mut [Matrix]) {
-        let channels = self.chunk.columns.chunk_by(|one, next| one.0 == next.0);
-        let mut start = 0;
-        for columns in channels {
-            let (channel, node) = columns[0];
+    /// Adds to every input channel what rows on one density give.
+    fn add(&self, output: Output, rows: &Stacked, made: &mut [Matrix]) {
+        let count = self.owned.len();
+        let mut target = Matrix::zeros(rows.s.len(), made.len() * count);
+        let acting = Rows { s: &rows.s, ends: &rows.ends, values: &rows.values, way: self.way };
+        self.chunk.legs[self.leg].multiply_left(output, self.step, &acting, &mut target);
+        for (channel, made) in made.iter_mut().enumerate() {
             for row in 0..target.rows() {
-                let values = &target.row(row)[start..start + columns.len()];
-                add_scaled(&mut made[channel].row_mut(row)[node..], 1.0, values);
+                let own = &target.row(row)[channel * count..(channel + 1) * count];
+                add_scaled(&mut made.row_mut(row)[self.owned.clone()], 1.0, own);
             }
-            start += columns.len();
         }
     }
 }

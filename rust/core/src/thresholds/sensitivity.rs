@@ -5,20 +5,20 @@
 //!
 //! `dC/dp = A(s) C(s) ds/dp + U(s, s_0) [dC_0/dp - A(s_0) C_0 ds_0/dp]`;
 //!
-//! across a threshold `C' = M C` gives `dC' = dM C + M dC`. The bracket is carried over the same factored steps as the
-//! columns themselves. Since `da/dp = beta(a) shift` with one shift a number of flavours
+//! across a threshold `C' = M C` gives `dC' = dM C + M dC`. The bracket is carried over the same steps as the columns
+//! themselves. Since `da/dp = beta(a) shift` with one shift a number of flavours
 //! ([`crate::coupling::sensitivity`]), `A ds/dp` is `shift` times the splitting functions `P = A d ln a/d ln mu^2`.
 
-use super::columns::LegColumns;
 use super::crossing_slope::CrossingSlope;
+use super::leg_columns::LegColumns;
 use super::operators::{Chunk, Evolution};
-use super::prepared::{Prepared, prepare, scale};
+use super::prepared::{Prepared, scale};
 use super::route::Entry;
 use crate::convolution::{KernelSet, kernels_on};
 use crate::coupling::sensitivity::Parameter;
 use crate::error::{Error, Result};
-use crate::evolution::{FixedFlavour, Sector};
-use crate::numerics::blocks::{Matrix, multiply_add};
+use crate::evolution::FixedFlavour;
+use crate::numerics::blocks::{Matrix, multiply};
 use crate::watch::Watch;
 use rayon::prelude::*;
 use std::collections::BTreeMap;
@@ -46,7 +46,7 @@ impl Evolution {
     /// # Errors
     /// [`Error::Argument`] where this is a derivative itself; otherwise as [`super::build`].
     pub fn derivative(&self, direction: Direction, watch: &dyn Watch) -> Result<Self> {
-        let options = self.options.as_ref().ok_or_else(|| Error::Argument {
+        let (options, plan) = self.made.as_ref().ok_or_else(|| Error::Argument {
             name: "direction",
             value: format!("{direction:?}"),
             allowed: "a derivative has none of its own".into(),
@@ -64,7 +64,7 @@ impl Evolution {
         let Direction::Parameter(parameter) = direction else {
             return Ok(self.with_legs(self.chunks.par_iter().map(|chunk| moves.along(chunk)).collect()));
         };
-        let (prepared, _, _) = prepare(&self.theory, &self.grid, options, watch)?;
+        let prepared = Prepared::new(&self.theory, &self.grid, &kernels, options, plan, watch)?;
         let crossings = moves.crossings(&prepared, &kernels, parameter)?;
         let legs = self.chunks.par_iter().map(|chunk| {
             watch.check()?;
@@ -89,8 +89,7 @@ impl Moves<'_> {
 
     /// Derivatives of the columns of a chunk with respect to the scale, on every leg.
     fn along(&self, chunk: &Chunk) -> Vec<LegColumns> {
-        let legs = chunk.legs.iter().enumerate();
-        legs.map(|(leg, columns)| columns.mapped(|sector, s, columns| self.moving(leg, sector, s, columns))).collect()
+        (0..chunk.legs.len()).map(|leg| self.moving(chunk, leg)).collect()
     }
 
     /// Derivatives of the columns of a chunk with respect to a parameter, on every leg.
@@ -102,7 +101,6 @@ impl Moves<'_> {
     ) -> Result<Vec<LegColumns>> {
         let mut legs: Vec<LegColumns> = Vec::new();
         for (index, leg) in self.set.route.legs.iter().enumerate() {
-            let columns = &chunk.legs[index];
             let entered = match (leg.entry, &crossings[index]) {
                 (Entry::Crossing { from_leg }, Some(crossing)) => {
                     let from_nf = self.set.route.legs[from_leg].nf;
@@ -110,26 +108,28 @@ impl Moves<'_> {
                     let (before, moved) = (chunk.legs[from_leg].at(s), legs[from_leg].at(s));
                     if leg.nf > from_nf { crossing.up(&before, moved) } else { crossing.down(before, moved) }
                 }
-                _ => columns.at_start().nothing(),
+                _ => chunk.legs[index].at_start().nothing(),
             };
-            let moving = |sector, s, columns: &Matrix| self.moving(index, sector, s, columns);
-            legs.push(columns.derivative(entered, &prepared.stretches[index], chunk.panel, moving));
+            let (stretch, offsets) = (&prepared.stretches[index], self.set.grid.offsets());
+            legs.push(LegColumns::derivative(entered, self.moving(chunk, index), stretch, offsets, chunk.panel));
         }
         Ok(legs)
     }
 
     /// `A(s) C(s) ds/dp` on a leg.
-    fn moving(&self, leg: usize, sector: Sector, s: f64, columns: &Matrix) -> Matrix {
+    fn moving(&self, chunk: &Chunk, leg: usize) -> LegColumns {
         let equations = &self.equations[&self.set.route.legs[leg].nf];
-        let generator = equations.generator(equations.representative(sector), s);
-        let (rows, cols) = (columns.rows(), columns.cols());
-        let mut product = Matrix::zeros(rows, cols);
-        multiply_add(
-            product.part_mut(0..rows, 0..cols),
-            self.shifts[leg] * equations.slope(s),
-            generator.part(0..rows, 0..rows),
-            columns.part(0..rows, 0..cols),
-        );
-        product
+        chunk.legs[leg].mapped(self.set.grid.offsets(), |sector, s, columns| {
+            let generator = equations.generator(equations.representative(sector), s);
+            let (rows, cols) = (columns.rows(), columns.cols());
+            let mut product = Matrix::zeros(rows, cols);
+            multiply(
+                product.part_mut(0..rows, 0..cols),
+                self.shifts[leg] * equations.slope(s),
+                generator.part(0..rows, 0..rows),
+                columns.part(0..rows, 0..cols),
+            );
+            product
+        })
     }
 }

@@ -1,14 +1,18 @@
 //! Some densities to a few scales without building operators.
 
-use super::columns::{Columns, Family, LegColumns};
+use super::columns::{Columns, Family};
 use super::inputs::Inputs;
+use super::leg_columns::LegColumns;
 use super::options::BuildOptions;
-use super::prepared::{prepare, scale};
+use super::prepared::{Prepared, carried, scale};
+use super::probes;
+use crate::coupling::MOST;
 use crate::error::Result;
-use crate::evolution::GLUON;
+use crate::evolution::{GLUON, check_flavour};
 use crate::grid::Grid;
 use crate::numerics::blocks::Matrix;
 use crate::theory::Theory;
+use crate::threads::costly_first;
 use crate::watch::Watch;
 use rayon::prelude::*;
 
@@ -16,6 +20,8 @@ use rayon::prelude::*;
 const PIECE: usize = 32;
 /// Every family.
 const FAMILIES: [Family; 4] = [Family::Plus, Family::Minus, Family::NsPlus, Family::NsMinus];
+/// Scales written by one task.
+const TOGETHER: usize = 8;
 
 /// Densities by flavour (PDG numbers).
 pub struct Vectors<'a> {
@@ -27,52 +33,155 @@ pub struct Vectors<'a> {
     pub out_flavours: &'a [i64],
 }
 
-/// Carries densities to every asked scale: `(scale, replica, flavour, node)`.
+/// Densities at several scales.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Evolved {
+    /// `(scale, replica, flavour, node)`.
+    pub values: Vec<f64>,
+    /// Momentum that has gone below `x_min`: `(scale, replica)`.
+    pub momentum: Vec<f64>,
+    /// Number of `q - qbar` that has gone below `x_min`: `(scale, replica, quark)`, quarks 1 to 6.
+    pub number: Vec<f64>,
+}
+
+/// Carries densities to every asked scale.
 ///
 /// # Errors
-/// As [`super::build`].
+/// As [`super::build`], and [`Error::Argument`] for a number that is none of a flavour.
+///
+/// [`Error::Argument`]: crate::error::Error::Argument
 pub fn evolve(
     theory: &Theory,
     grid: &Grid,
     options: &BuildOptions,
     vectors: &Vectors,
     watch: &dyn Watch,
-) -> Result<Vec<f64>> {
-    let (prepared, inputs, _) = prepare(theory, grid, options, watch)?;
-    let nodes = grid.nodes();
-    let (row_in, row_out) = (vectors.in_flavours.len() * nodes, vectors.out_flavours.len() * nodes);
-    let replicas = vectors.values.len() / row_in.max(1);
-    let pieces: Vec<Vec<f64>> = vectors
-        .values
-        .par_chunks((PIECE * row_in).max(1))
-        .map(|values| {
+) -> Result<Evolved> {
+    vectors.in_flavours.iter().chain(vectors.out_flavours).try_for_each(|&flavour| check_flavour(flavour))?;
+    let row_in = vectors.in_flavours.len() * grid.nodes();
+    let judged = probes::nodes(grid);
+    let made = carried(theory, grid, options, watch, |prepared, inputs| {
+        let pieces = vectors.values.chunks((PIECE * row_in).max(1)).enumerate();
+        let pieces: Vec<Piece> =
+            pieces.map(|(index, values)| Piece { inputs, vectors, values, grid, probed: index == 0 }).collect();
+        let tasks: Vec<(&Piece, Family)> =
+            pieces.iter().flat_map(|piece| FAMILIES.map(|family| (piece, family))).collect();
+        let cost = |task: &(&Piece, Family)| if task.1 == Family::Plus { 6 } else { 1 };
+        let legs = costly_first(&tasks, cost, |&(piece, family)| {
             watch.check()?;
-            let piece = Piece { inputs: &inputs, vectors, values, nodes };
-            let families = FAMILIES
-                .par_iter()
-                .map(|&family| prepared.carry(theory, &piece.start(family), 0))
-                .collect::<Result<Vec<_>>>()?;
-            let mut out = Vec::new();
-            for &(q2, nf) in &options.asked {
-                let (leg, s) = (prepared.route.leg_of(q2, nf)?, scale(theory, q2, nf)?);
-                out.extend(piece.finish(&families, leg, s));
-            }
-            Ok(out)
-        })
-        .collect::<Result<_>>()?;
-    Ok(in_order_of_scales(&pieces, options.asked.len(), replicas * row_out))
+            prepared.carry(theory, &piece.start(family), 0, piece.probes())
+        })?;
+        let errors = |legs: &Vec<LegColumns>| legs.iter().map(|leg| leg.error(&judged)).collect();
+        let errors = legs.iter().map(errors).collect();
+        Ok((legs, errors))
+    })?;
+    let replicas = vectors.values.len() / row_in.max(1);
+    let output = Output { prepared: &made.prepared, legs: &made.columns, light: made.inputs.light, vectors, replicas };
+    output.all(theory, &options.asked, grid.nodes())
 }
 
-/// `(piece, scale, ...)` as `(scale, piece, ...)`.
-fn in_order_of_scales(pieces: &[Vec<f64>], scales: usize, per_scale: usize) -> Vec<f64> {
-    let mut all = Vec::with_capacity(scales * per_scale);
-    for index in 0..scales {
-        for piece in pieces {
-            let length = piece.len() / scales;
-            all.extend_from_slice(&piece[index * length..(index + 1) * length]);
+/// What was carried, to be written flavour by flavour.
+struct Output<'a> {
+    prepared: &'a Prepared,
+    /// For each piece of replicas and each family the legs.
+    legs: &'a [Vec<LegColumns>],
+    light: usize,
+    vectors: &'a Vectors<'a>,
+    replicas: usize,
+}
+
+impl Output<'_> {
+    fn all(&self, theory: &Theory, asked: &[(f64, usize)], nodes: usize) -> Result<Evolved> {
+        let row = self.vectors.out_flavours.len() * nodes;
+        let mut evolved = Evolved {
+            values: vec![0.0; asked.len() * self.replicas * row],
+            momentum: vec![0.0; asked.len() * self.replicas],
+            number: vec![0.0; asked.len() * self.replicas * MOST],
+        };
+        let part = |per_replica: usize| (TOGETHER * self.replicas * per_replica).max(1);
+        evolved
+            .values
+            .par_chunks_mut(part(row))
+            .zip(evolved.momentum.par_chunks_mut(part(1)))
+            .zip(evolved.number.par_chunks_mut(part(MOST)))
+            .zip(asked.par_chunks(TOGETHER))
+            .with_max_len(1)
+            .try_for_each(|(((values, momentum), number), asked)| {
+                for leg in 0..self.prepared.route.legs.len() {
+                    let mut here = Vec::new();
+                    for (index, &(q2, nf)) in asked.iter().enumerate() {
+                        if self.prepared.route.leg_of(q2, nf)? == leg {
+                            here.push((index, scale(theory, q2, nf)?));
+                        }
+                    }
+                    self.write(leg, &here, nodes, (&mut *values, &mut *momentum, &mut *number));
+                }
+                Ok(())
+            })?;
+        Ok(evolved)
+    }
+
+    /// Writes some scales of one leg: `(index of the scale, ln a)`.
+    fn write(&self, leg: usize, here: &[(usize, f64)], nodes: usize, out: (&mut [f64], &mut [f64], &mut [f64])) {
+        let (values, momentum, number) = out;
+        let s: Vec<f64> = here.iter().map(|(_, s)| *s).collect();
+        let row = self.vectors.out_flavours.len() * nodes;
+        for (piece, legs) in self.legs.chunks(FAMILIES.len()).enumerate() {
+            let families: Vec<Vec<Columns>> = legs.iter().map(|legs| legs[leg].at_many(&s)).collect();
+            let count = PIECE.min(self.replicas - piece * PIECE);
+            for (place, &(index, _)) in here.iter().enumerate() {
+                let at = AtScale { families: &families, place, light: self.light, replicas: count };
+                for replica in 0..count {
+                    let own = index * self.replicas + piece * PIECE + replica;
+                    momentum[own] = at.gluon(nodes, replica);
+                    for quark in 1..=MOST {
+                        number[own * MOST + quark - 1] = at.quark(quark, nodes, replica, false);
+                    }
+                    let flavours = self.vectors.out_flavours.iter();
+                    for (target, flavour) in values[own * row..(own + 1) * row].chunks_mut(nodes).zip(flavours) {
+                        for (i, value) in target.iter_mut().enumerate() {
+                            *value = at.flavour(*flavour, i, replica);
+                        }
+                    }
+                }
+            }
         }
     }
-    all
+}
+
+/// The families at one scale.
+struct AtScale<'a> {
+    families: &'a [Vec<Columns>],
+    /// Place of the scale.
+    place: usize,
+    light: usize,
+    replicas: usize,
+}
+
+impl AtScale<'_> {
+    fn gluon(&self, i: usize, replica: usize) -> f64 {
+        self.families[0][self.place].gluon().row(i)[replica]
+    }
+
+    /// `q + qbar` or `q - qbar`.
+    fn quark(&self, flavour: usize, i: usize, replica: usize, plus: bool) -> f64 {
+        let kind = usize::from(!plus);
+        let (sum, difference) = (&self.families[kind][self.place], &self.families[2 + kind][self.place]);
+        if flavour > self.light {
+            return sum.heavy(flavour).map_or(0.0, |heavy| heavy.row(i)[replica]);
+        }
+        let own = difference.light_sum().row(i)[(flavour - 1) * self.replicas + replica];
+        own + sum.light_sum().row(i)[replica] / self.light as f64
+    }
+
+    fn flavour(&self, flavour: i64, i: usize, replica: usize) -> f64 {
+        if flavour == GLUON {
+            return self.gluon(i, replica);
+        }
+        let number = flavour.unsigned_abs() as usize;
+        let (both, difference) = (self.quark(number, i, replica, true), self.quark(number, i, replica, false));
+        0.5 * (both + flavour.signum() as f64 * difference)
+    }
 }
 
 /// A few replicas.
@@ -80,20 +189,35 @@ struct Piece<'a> {
     inputs: &'a Inputs,
     vectors: &'a Vectors<'a>,
     values: &'a [f64],
-    nodes: usize,
+    grid: &'a Grid,
+    /// Whether probes go along.
+    probed: bool,
 }
 
 impl Piece<'_> {
     fn replicas(&self) -> usize {
-        self.values.len() / (self.vectors.in_flavours.len() * self.nodes)
+        self.values.len() / (self.vectors.in_flavours.len() * self.grid.nodes())
     }
 
-    /// The combinations of a family: one column a replica, for differences one for each light flavour and replica.
+    fn probes(&self) -> usize {
+        if self.probed { probes::COUNT } else { 0 }
+    }
+
+    /// The combinations of a family, and the probes after them.
     fn start(&self, family: Family) -> Columns {
+        let mut start = self.combinations(family);
+        if self.probed {
+            probes::fill(&mut start, self.grid);
+        }
+        start
+    }
+
+    /// One column a replica, for differences one for each light flavour and replica; then room for the probes.
+    fn combinations(&self, family: Family) -> Columns {
         let (light, replicas) = (self.inputs.light, self.replicas());
         let plus = matches!(family, Family::Plus | Family::NsPlus);
         if matches!(family, Family::NsPlus | Family::NsMinus) {
-            let mut start = Columns::new(family, light, self.nodes + 1, replicas * light);
+            let mut start = Columns::new(family, light, self.grid.nodes() + 1, replicas * light + self.probes());
             for flavour in 1..=light {
                 for other in 1..=light {
                     let weight = f64::from(flavour == other) - 1.0 / light as f64;
@@ -102,7 +226,7 @@ impl Piece<'_> {
             }
             return start;
         }
-        let mut start = Columns::new(family, light, self.nodes + 1, replicas);
+        let mut start = Columns::new(family, light, self.grid.nodes() + 1, replicas + self.probes());
         for flavour in 1..=light {
             self.add(start.light_mut(), flavour, plus, 1.0, 0);
         }
@@ -119,7 +243,8 @@ impl Piece<'_> {
 
     /// Adds `weight` times `q +- qbar` (0: the gluon) to columns from `first` on.
     fn add(&self, target: &mut Matrix, quark: usize, plus: bool, weight: f64, first: usize) {
-        let row_in = self.vectors.in_flavours.len() * self.nodes;
+        let nodes = self.grid.nodes();
+        let row_in = self.vectors.in_flavours.len() * nodes;
         for (index, &flavour) in self.vectors.in_flavours.iter().enumerate() {
             let held = if flavour == GLUON { 0 } else { flavour.unsigned_abs() as usize };
             if held != quark {
@@ -127,38 +252,10 @@ impl Piece<'_> {
             }
             let weight = if flavour < 0 && !plus { -weight } else { weight };
             for (replica, values) in self.values.chunks_exact(row_in).enumerate() {
-                for (i, value) in values[index * self.nodes..(index + 1) * self.nodes].iter().enumerate() {
+                for (i, value) in values[index * nodes..(index + 1) * nodes].iter().enumerate() {
                     target.row_mut(i)[first + replica] += weight * value;
                 }
             }
         }
-    }
-
-    /// `(replica, flavour, node)` at one scale.
-    fn finish(&self, families: &[Vec<LegColumns>], leg: usize, s: f64) -> Vec<f64> {
-        let [plus, minus, ns_plus, ns_minus] = [0, 1, 2, 3].map(|family: usize| families[family][leg].at(s));
-        let (light, replicas) = (self.inputs.light, self.replicas());
-        let quark = |sum: &Columns, difference: &Columns, flavour: usize, replica: usize, i: usize| -> f64 {
-            if flavour > light {
-                return sum.heavy(flavour).map_or(0.0, |heavy| heavy.row(i)[replica]);
-            }
-            let own = difference.light_sum().row(i)[(flavour - 1) * replicas + replica];
-            own + sum.light_sum().row(i)[replica] / light as f64
-        };
-        let mut out = Vec::with_capacity(replicas * self.vectors.out_flavours.len() * self.nodes);
-        for replica in 0..replicas {
-            for &flavour in self.vectors.out_flavours {
-                let number = flavour.unsigned_abs() as usize;
-                out.extend((0..self.nodes).map(|i| {
-                    if flavour == GLUON {
-                        return plus.gluon().row(i)[replica];
-                    }
-                    let both = quark(&plus, &ns_plus, number, replica, i);
-                    let difference = quark(&minus, &ns_minus, number, replica, i);
-                    0.5 * (both + flavour.signum() as f64 * difference)
-                }));
-            }
-        }
-        out
     }
 }
