@@ -16,7 +16,7 @@ from ..densities import Densities
 from ..errors import InputError, RangeError, ScalewrightError
 from ..fitting.chi_square import ChiSquare
 from ..fitting.ensemble import Ensemble
-from ..fitting.least_squares import FitResult, fit
+from ..fitting.least_squares import FitResult, NotSettledError, fit
 from ..fitting.maps import KnownMap, Maps, theory_at
 from ..fitting.reference import settle_reference
 from ..fitting.replicas import fit_replicas
@@ -100,9 +100,23 @@ def _fit_once(
         line.say("...")
     try:
         return _fit_on(job, maps, chi_square, last, line)
+    except NotSettledError as error:
+        said = "; ".join(error.result.status)
+        raise InputError(f"{error.reason}; the last fit{_kept(job, error.result)}: {said}") from error
     finally:
         if line is not None:
             line.clear()
+
+
+def _kept(job: FitJob, result: FitResult) -> str:
+    """Write a fit that did not settle, if there is a file for it; say where it is."""
+    if "result" not in job.files:
+        return ""
+    try:
+        result.save(job.files["result"])
+    except InputError:  # with a coupling on its bound at 0 there is no theory to write
+        return ""
+    return f", which is in {job.files['result']}"
 
 
 def _fit_on(

@@ -158,6 +158,8 @@ class _Search:
             try:
                 problem = self._again(dict(zip(problem.reference, found.tolist(), strict=True)))
             except InputError as error:
+                # a map that cannot be built is not asked for second derivatives, either
+                last = FitResult(problem, solution, self._delta_chi2, self.rebuilt, None)
                 raise NotSettledError(str(error), last) from error
             solution = solve(problem, begin, **self._options)
             self.rebuilt += 1
