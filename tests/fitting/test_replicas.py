@@ -63,6 +63,19 @@ def test_replicas_of_a_linear_fit_spread_as_the_hessian_says(spread):
         assert (abs(spread.value - result.error_of(x, flavour)) < 4 * spread.error).all()
 
 
+def test_correlations_of_parameters_with_data_are_those_of_the_hessian(spread):
+    result, ensemble = spread
+    found = ensemble.correlation_matrix(ensemble.parameters, result.predict(ensemble.parameters))
+    # a linear fit: differences of predictions are their derivatives
+    along = result.predict(result.parameters + np.diag(result.errors)) - result.prediction
+    with_data = result.covariance @ (along / result.errors[:, None])
+    size = np.sqrt(np.einsum("pi,pi->i", along / result.errors[:, None], with_data))
+    expected = with_data / result.errors[:, None] / size
+    # 192 of them, not independent: 4 sampling errors are passed by chance once in a hundred runs, at most
+    assert (abs(found.value - expected) < 4.0 * found.error).all()
+    assert np.median(found.error) < 1.2 / np.sqrt(ensemble.replicas)  # (1 - r^2) over the root, at most 1
+
+
 def test_priors_are_drawn_like_data():
     shape = linear_shape()
     chi2, name = sw.ChiSquare(measured(truth(shape), seed=3)), shape.names[0]
