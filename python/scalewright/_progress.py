@@ -18,7 +18,7 @@ _EVERY_S = 0.1
 
 
 class Line:
-    """A line on standard error that is drawn again as the work goes on.
+    """A line on standard error that is drawn again as the work goes on; below a cell in a notebook.
 
     Parameters
     ----------
@@ -33,24 +33,45 @@ class Line:
         self._stream = stream if stream is not None else sys.stderr
         self._start = time.monotonic()
         self._drawn = 0.0
-        self._shown = on_terminal(self._stream)
+        self._width = 0
+        self._erase = "\x1b[K" if on_terminal(self._stream) else ""
+        self._shown = bool(self._erase) or in_notebook(self._stream)
 
     def __call__(self, done: int, total: int) -> None:
         """Draw the line, if it is time to; clear it at the end."""
-        now = time.monotonic()
-        if not self._shown or (done < total and now - self._drawn < _EVERY_S):
-            return
-        self._drawn = now
         if done >= total:  # said more than once by a build that ends in several steps
-            self._stream.write("\r\x1b[K")
-            self._stream.flush()
+            self.clear()
             return
         share = done / total if total else 1.0
         bar = ("=" * int(_WIDTH * share)).ljust(_WIDTH, ".")
-        left = (now - self._start) * (1.0 / share - 1.0) if share > 0.0 else 0.0
-        text = f"{self._label} [{bar}] {done} of {total}, {left:.0f} s left"
-        self._stream.write(f"\r\x1b[K{text}")
+        seconds = time.monotonic() - self._start
+        left = f", {seconds * (1.0 / share - 1.0):.0f} s left" if share > 0.0 else ""
+        self.say(f"[{bar}] {done} of {total}{left}")
+
+    def say(self, words: str) -> None:
+        """Draw the label and some words, if it is time to: for work whose end is not known."""
+        now = time.monotonic()
+        if self._shown and now - self._drawn >= _EVERY_S:
+            self._drawn = now
+            self._draw(f"{self._label} {words}")
+
+    def clear(self) -> None:
+        """Take the line away."""
+        if self._shown:
+            self._draw("")
+
+    def _draw(self, text: str) -> None:
+        """Write over what stands there; a notebook knows no code that erases, but blanks."""
+        before, self._width = self._width, len(text)
+        blank = "" if self._erase else text.ljust(before)[len(text) :]
+        ending = "\r" if blank and not text else ""
+        self._stream.write(f"\r{self._erase}{text}{blank}{ending}")
         self._stream.flush()
+
+
+def in_notebook(stream: TextIO | None) -> bool:
+    """Say whether a stream goes below a cell of a notebook, whose kernel puts one of its own in place."""
+    return type(stream).__module__.partition(".")[0] == "ipykernel"
 
 
 def on_terminal(stream: TextIO | None) -> bool:

@@ -21,6 +21,7 @@ from ._check import Floats
 from ._progress import Progress, watcher
 from .densities import Densities
 from .errors import ScalewrightError
+from .fitting._starts import around
 from .fitting.chi_square import ChiSquare
 from .fitting.functionals import Functional
 from .fitting.least_squares import FitResult, fit
@@ -33,8 +34,6 @@ __all__ = ["Closure", "Coverage", "Starts", "closure_test"]
 
 #: The interval of one standard deviation of a normal distribution.
 _ONE_SIGMA = 0.682689
-#: Starts lie so many uncertainties around the best fit.
-_SPREAD = 2.0
 
 
 @dataclass(frozen=True)
@@ -322,14 +321,4 @@ class _Test:
     def _around(self, result: FitResult, count: int) -> list[Floats]:
         """Return starts a few uncertainties around a fit, inside the bounds."""
         rng = np.random.default_rng(np.random.SeedSequence(self._seed, spawn_key=(0, 2)))
-        low, high = self._shape.bounds
-        theory = np.zeros(len(self._theory))  # couplings and masses are positive
-        low, high = np.concatenate([low, theory]), np.concatenate([high, theory + np.inf])
-        size = np.nan_to_num(result.errors)
-        found = []
-        for _ in range(count):
-            moved = result.parameters + _SPREAD * size * rng.normal(size=size.size)
-            # not on a bound, where a search would have to leave it first
-            inside = np.clip(moved, low + 0.01 * size, high - 0.01 * size)
-            found.append(np.clip(inside, low, high))
-        return found
+        return around(result, count, rng)

@@ -341,6 +341,11 @@ def plot_convergence(
         ax.plot(count, mean + sign * spread, color="black", linestyle="--", linewidth=0.9, label=said)
     ax.set_xscale("log")
     ax.set_xlim(2, array.size)
+    ticks = [
+        step * 10**power for power in range(8) for step in (1, 2, 5) if 2 <= step * 10**power <= array.size
+    ]
+    ax.set_xticks(ticks, [str(tick) for tick in ticks])  # powers of ten alone leave small numbers without
+    ax.set_xticks([], minor=True)
     ax.set_xlabel("number of replicas n")
     ax.set_ylabel(name)
     ax.legend(frameon=False, fontsize=8)

@@ -119,3 +119,17 @@ def test_a_folder_that_cannot_be_made_is_named(run, tmp_path):
     (tmp_path / "file").write_text("")
     done = run("demo", "--out", "file/demo", status=1)
     assert "--out = file/demo: the folder cannot be made: not a directory" in done.stderr
+
+
+def test_a_job_that_was_changed_is_not_written_over(tmp_path, capsys):
+    from scalewright.cli.demo import _refuse_changed, job_text
+    from scalewright.cli.main import main
+
+    place = tmp_path / "fit.toml"
+    place.write_text(job_text(17).replace("campaign.toml", "elsewhere.toml"))
+    _refuse_changed(str(place))  # its own, of another number and from another place
+    mine = job_text(17).replace("fall = 5.0", "fall = 4.0")
+    place.write_text(mine)
+    assert main(["demo", "--out", str(tmp_path)]) == 2
+    assert "fit.toml: is there already, and not as the demo writes it" in capsys.readouterr().err
+    assert place.read_text() == mine and [path.name for path in tmp_path.iterdir()] == ["fit.toml"]

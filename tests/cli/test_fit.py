@@ -133,6 +133,11 @@ def test_parameters_are_listed_with_what_the_sum_rules_determine(finished):
     }
     assert float(listed["alpha_s"]["uncertainty"]) == result.error("alpha_s")
     assert float(listed["alpha_s"]["replica mean"]) == ensemble.parameter("alpha_s").mean()
+    mean, low = ensemble.mean("alpha_s"), ensemble.interval("alpha_s")[0]
+    # sums over one parameter or over all: the same to rounding
+    np.testing.assert_allclose(float(listed["alpha_s"]["sampling error of mean"]), mean.error, rtol=1e-9)
+    np.testing.assert_allclose(float(listed["alpha_s"]["68 per cent from"]), low.value, rtol=1e-9)
+    assert listed["alpha_s"]["95 per cent to"] == ""  # six replicas know nothing of it
 
 
 def test_each_replica_is_evolved_by_its_own_coupling(finished):
@@ -417,6 +422,55 @@ def test_a_fit_that_does_not_converge_ends_with_status_1(run, tmp_path, write):
     done = run("fit", "job.toml", status=1)
     assert "not converged: stopped after" in done.stderr and "what was found is written" in done.stderr
     assert not FitResult.load(tmp_path / "fit.h5").converged
+
+
+def test_a_fit_that_does_not_settle_is_written(run, tmp_path, write, monkeypatch):
+    from scalewright.cli import fitted
+    from scalewright.fitting.least_squares import NotSettledError, fit
+
+    def restless(*arguments, **options):
+        found = fit(*arguments, **options)
+        raise NotSettledError("rebuild: alpha_s has not settled after 10 maps", found)
+
+    monkeypatch.setattr(fitted, "fit", restless)
+    write()
+    said = run("fit", "job.toml", status=2).stderr
+    assert "has not settled after 10 maps; the last fit, which is in " in said
+    assert "attribute" not in said and "converged: " in said
+    assert FitResult.load(tmp_path / "fit.h5").names[-1] == "alpha_s"
+
+
+def test_a_mass_that_runs_away_is_said_to(run, tmp_path, write):
+    # data of three light quarks alone, described with charm: it would be pushed beyond bottom
+    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
+    heavy = 'heavy_quarks = "massive"\nmasses = { charm = 1.3, bottom = 4.18, top = 162.5, kind = "pole" }'
+    write(
+        (text, ""), ('ensemble = "replicas.h5"', ""), ('"LO"', '"NLO"'),
+        ("flavours = 3", f"flavours = 3\n{heavy}"), ('["alpha_s"]', '["alpha_s", "charm"]'),
+    )  # fmt: skip
+    said = run("fit", "job.toml", status=2).stderr
+    assert "rebuild" in said and "; the last fit" in said and "this is a study" in said
+    assert "attribute" not in said and said.count("\n") == 1
+    assert not (tmp_path / "fit.h5").exists()  # charm above bottom is no theory that could be written
+
+
+def test_a_coupling_that_ends_at_zero_is_named(run, tmp_path, write):
+    write()
+    lines = (tmp_path / "run1.csv").read_text().splitlines()
+    cells = [line.split(",") for line in lines[1:]]
+    large = [",".join([x, q2, repr(100.0 * float(value)), stat]) for x, q2, value, stat in cells]
+    (tmp_path / "run1.csv").write_text("\n".join([lines[0], *large]) + "\n")
+    said = run("fit", "job.toml", status=2).stderr
+    assert "alpha_s = 0: alpha_s must lie in (0, 1]" in said and said.count("\n") == 1
+
+
+def test_more_starts_are_told(run, tmp_path, write):
+    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
+    data = '[chi_square]\nreference = "data"\n[fit]\nstarts = 3'
+    write((text, ""), ('ensemble = "replicas.h5"', ""), ("[fit]", data))
+    said = run("fit", "job.toml").stdout
+    assert "  from 3 starts: 3 end at this minimum\n" in said
+    assert "from 3 starts: 3 end at this minimum" in FitResult.load(tmp_path / "fit.h5").status
 
 
 def test_the_example_of_the_help_is_a_job_that_is_understood(run, tmp_path, write):

@@ -75,6 +75,7 @@ def test_progress_is_drawn_on_a_terminal_and_taken_away(on_terminal, tmp_path):
     text = (tmp_path / "job.toml").read_text().replace('report = "fit.html"', "")
     (tmp_path / "job.toml").write_text(text)
     drawn = on_terminal("fit", "job.toml")
+    assert "fit to the data step " in drawn
     assert "replicas [" in drawn and "evolving replicas [" in drawn
     assert drawn.endswith("\r\x1b[K")
     assert "\n" not in drawn

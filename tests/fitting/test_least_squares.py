@@ -69,6 +69,19 @@ def test_predictions_are_those_of_the_densities(bent):
     np.testing.assert_allclose(result.densities.momentum(), 1.0, atol=1e-4)  # quadrature of a coarse grid
 
 
+def test_other_parameters_predict_what_their_densities_do(bent):
+    _, _, result = bent
+    many = result.parameters + np.outer([0.0, 0.5, -0.5], result.errors)
+    order = [result.densities.flavours.index(f) for f in fmap().flavours]
+    shape = bent_shape()
+    expected = [np.tensordot(fmap().matrix, shape(row)[order], axes=2) for row in many]
+    np.testing.assert_allclose(result.predict(many), expected, rtol=1e-13)
+    np.testing.assert_array_equal(result.predict(many[1]), result.predict(many)[1])
+    np.testing.assert_array_equal(result.predict(result.parameters), result.prediction)
+    with pytest.raises(InputError, match="the last axis must have 7"):
+        result.predict([1.0])
+
+
 def test_a_fit_to_its_own_law_finds_it():
     shape = bent_shape()
     chi2 = chi_square(truth(shape), size=0.002, common=0.001)

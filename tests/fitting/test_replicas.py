@@ -22,10 +22,12 @@ from fitting.problems import (
     measured,
     quick_shape,
     truth,
+    twin_shape,
 )
 from fitting.runs import assert_same_bits, bent_problem, replicas_of
 from scalewright import InputError, ScalewrightError
 from scalewright.fitting import _parcel, _pool
+from scalewright.fitting._central import of_data
 from scalewright.fitting._parcel import Parcel
 from scalewright.fitting._problem import Problem
 from scalewright.fitting._solve import solve
@@ -59,6 +61,19 @@ def test_replicas_of_a_linear_fit_spread_as_the_hessian_says(spread):
     for flavour in ("g", "u_v", "sea"):
         spread = ensemble.std(ensemble.at(x, flavour))
         assert (abs(spread.value - result.error_of(x, flavour)) < 4 * spread.error).all()
+
+
+def test_correlations_of_parameters_with_data_are_those_of_the_hessian(spread):
+    result, ensemble = spread
+    found = ensemble.correlation_matrix(ensemble.parameters, result.predict(ensemble.parameters))
+    # a linear fit: differences of predictions are their derivatives
+    along = result.predict(result.parameters + np.diag(result.errors)) - result.prediction
+    with_data = result.covariance @ (along / result.errors[:, None])
+    size = np.sqrt(np.einsum("pi,pi->i", along / result.errors[:, None], with_data))
+    expected = with_data / result.errors[:, None] / size
+    # 192 of them, not independent: 4 sampling errors are passed by chance once in a hundred runs, at most
+    assert (abs(found.value - expected) < 4.0 * found.error).all()
+    assert np.median(found.error) < 1.2 / np.sqrt(ensemble.replicas)  # (1 - r^2) over the root, at most 1
 
 
 def test_priors_are_drawn_like_data():
@@ -267,6 +282,36 @@ def test_a_fit_that_does_not_converge_is_a_failed_one():
         replicas_of((the_map, chi2, shape), replicas=3, workers=1, start=shape.start + 0.3, evaluations=1)
 
 
+def test_an_ensemble_says_what_the_data_do_not_see_and_that_they_have_no_best_fit():
+    assert replicas_of(bent_problem(), replicas=2, workers=1).notes == ()
+    twins = twin_shape()
+    twin_run = (fmap(), sw.ChiSquare(measured(truth(twins), seed=1)), twins)
+    blind = replicas_of(twin_run, replicas=4, workers=1)
+    assert len(blind.notes) == 1
+    assert all(word in blind.notes[0] for word in ("do not see", "d+.c0", "s+.c0"))
+    assert blind.notes[0] in str(blind)
+    the_map, chi2, shape = bent_problem()
+    problem = Problem(the_map, chi2, shape)
+    begin = shape.start + 0.3
+    notes = of_data(problem, solve(problem, begin, evaluations=1))
+    assert len(notes) == 1
+    assert "the fit to the data themselves has not converged: stopped after" in notes[0]
+
+
+def test_a_shape_that_fails_on_the_data_themselves_is_told_where_a_start_is_given(monkeypatch):
+    monkeypatch.setenv("SCALEWRIGHT_TEST_LIMIT", "1e9")
+    problem = function_problem(children.moody)
+    many = replicas_of(problem, replicas=12, workers=1)
+    values = np.sort(many.parameter("norm"))
+    # the start is allowed, the best fit to the data is not, some replicas are
+    monkeypatch.setenv("SCALEWRIGHT_TEST_LIMIT", str(values[3]))
+    start = many.parameters[np.argsort(many.parameter("norm"))[0]]
+    (note,) = replicas_of(problem, replicas=12, workers=1, start=start).notes
+    assert note.startswith("WARNING: the fit to the data themselves: ") and "too many gluons" in note
+    with pytest.raises(InputError, match="too many gluons"):
+        replicas_of(problem, replicas=12, workers=1)
+
+
 def flexible():
     powers = {"g": (-0.1, 5), "u_v": (0.7, 3), "d_v": (0.7, 4), "ubar": (-0.1, 7), "dbar": (-0.1, 7)}
     shape = Network(GRID, powers, nf=3, hidden=[6], relations=["s = 0.5*dbar", "sbar = s"], momentum="g",
@@ -290,6 +335,14 @@ def test_a_flexible_shape_is_stopped_before_it_learns_the_noise():
         ensemble,
         replicas_of((the_map, chi2, shape), replicas=8, workers=1, validation=0.3, evaluations=60, chunk=3),
     )
+
+
+def test_a_search_that_its_evaluations_cut_off_is_no_good_fit():
+    problem = flexible()
+    with pytest.raises(
+        ScalewrightError, match=r"all 2 replicas failed; .*the validation might still improve"
+    ):
+        replicas_of(problem, replicas=2, workers=1, validation=0.3, evaluations=3)
 
 
 def order(shape):

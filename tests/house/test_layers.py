@@ -222,6 +222,7 @@ def test_formats_and_commands_do_not_know_their_siblings(module: str) -> None:
             "jobs",
             "report",
             "results",
+            "scale_job",
             "shape_job",
             "written",
         },

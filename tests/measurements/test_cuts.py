@@ -33,6 +33,25 @@ def test_the_covariance_of_what_is_left_is_a_part_of_the_whole(make):
     np.testing.assert_array_equal(kept.covariance(), table.covariance()[np.ix_([0, 2], [0, 2])])
 
 
+@pytest.mark.parametrize("repair", ["clip", "nearest"])
+@pytest.mark.parametrize("kind", ["correlation", "covariance"])
+def test_what_a_repair_did_before_a_cut_stays_done(make, repair, kind, tmp_path):
+    # without the third datum the matrix as printed would need no repair
+    broken = np.array([[1.0, 0.9, -0.9], [0.9, 1.0, 0.9], [-0.9, 0.9, 1.0]])
+    part = {"kind": kind, "repair": repair}
+    part |= {"of": "stat"} if kind == "correlation" else {"given_in": "percent", "scales_with": "value"}
+    table = make(None, [broken], covariance=[part])
+    kept = table.cut(keep=[True, True, False])
+    expected = table.covariance()[:2, :2]
+    np.testing.assert_allclose(kept.covariance(), expected, rtol=1e-14)  # a root, and its square again
+    said = [line for line in table.describe().splitlines() if "repaired" in line]
+    assert said and said == [line for line in kept.describe().splitlines() if "repaired" in line]
+    again = kept.with_values([3.0, 5.0])
+    assert "repaired" in again.describe()
+    kept.write(tmp_path / "kept.toml")
+    assert Measurements.read(tmp_path / "kept.toml") == kept
+
+
 def test_a_cut_that_removes_nothing_still_counts(make):
     kept = make().cut(x=(None, 1.0))
     assert kept == make() and [cut.removed for cut in kept.cuts] == [0]

@@ -20,6 +20,7 @@ OPTIONS = {
     "notes": {"electroweak inputs": "effective"},
     "job": "[theory]\norder = <LO>",
 }
+BLIND = "WARNING: the data do not see <this>"
 OUTSIDE = {"script", "link", "iframe", "object", "embed", "base", "form"}
 
 
@@ -64,7 +65,7 @@ def fitted(tmp_path_factory):
     kept = {
         name: getattr(ensemble, name) for name in ("parameters", "names", "chi2", "chi2_data", "data", "seed")
     }
-    return result, chi2, sw.Ensemble(ensemble.densities, failed=lost, **kept)
+    return result, chi2, sw.Ensemble(ensemble.densities, failed=lost, notes=[BLIND], **kept)
 
 
 @pytest.fixture(scope="module")
@@ -137,6 +138,8 @@ def test_the_numbers_are_those_of_the_fit(read, fitted):
 def test_failed_fits_are_listed_and_warned_of(read):
     text = "\n".join(read.words)
     assert "1 fits to pseudo-data failed, more than 1 per cent" in text
+    start, end = (read.words.index(title, 20) for title in ("In short", "What was assumed"))
+    assert BLIND.removeprefix("WARNING: ") in read.words[start:end]  # what must not be overlooked comes first
     assert "not converged: <stopped> & lost" in text  # escaped in the file, read back whole
     assert "order = <LO>" in text
 

@@ -33,7 +33,7 @@ def revalued(table: Table, values: Floats) -> Table:
     matrices = []
     for part, matrix in zip(description.get("covariance", []), table.matrices, strict=True):
         matrices.append(_rescaled(part, matrix, printed))
-    return Table(description, table.cells.replaced(columns), matrices, table.file)
+    return Table(description, table.cells.replaced(columns), matrices, table.file, table._moved)
 
 
 def _rename(part: dict[str, Any], meant: Uncertainty, column: str, given_in: str) -> None:

@@ -42,13 +42,16 @@ class Table:
         One for each ``[[covariance]]``, as in its file.
     file : str
         Where the description is from, for messages.
+    moved : sequence of float
+        What a repair has done to each matrix already, before this table was cut out of a larger one.
     """
 
     def __init__(
-        self, description: Mapping[str, Any], cells: Cells, matrices: Sequence[Floats], file: str
-    ) -> None:
+        self, description: Mapping[str, Any], cells: Cells, matrices: Sequence[Floats], file: str,
+        moved: Sequence[float] = (),
+    ) -> None:  # fmt: skip
         self.description, self.cells, self.file = copy.deepcopy(dict(description)), cells, file
-        self.matrices = tuple(matrices)
+        self.matrices, self._moved = tuple(matrices), tuple(moved) or (0.0,) * len(matrices)
         section = Section(self.description, file).only(*KEYS)
         self.title = str(section.text("title"))
         self.unit = str(section.text("unit", "1"))
@@ -115,8 +118,19 @@ class Table:
             left -= {self.cells.words(label)[line] for line in blank}
             description["datum"] = [part for part in description["datum"] if part["label"] in left]
         cells = self.cells.replaced({self.columns["value"]: value}).select(lines)
-        matrices = [matrix[np.ix_(keep, keep)] for matrix in self.matrices]
-        return Table(description, cells, matrices, self.file)
+        matrices = [matrix[np.ix_(keep, keep)] for matrix in self._mended()]
+        return Table(description, cells, matrices, self.file, [part.moved for part in self.correlated])
+
+    def _mended(self) -> list[Floats]:
+        """Return the matrices, those that were repaired as the repair left them.
+
+        Repaired anew, what is left after a cut would have other correlations than it had before.
+        """
+        result = []
+        for matrix, part in zip(self.matrices, self.correlated, strict=True):
+            size = np.sqrt(np.diagonal(matrix))
+            result.append(size[:, None] * part.matrix * size if part.moved else matrix)
+        return result
 
     def _column(self, name: str) -> list[str]:
         place = self.cells.index(name)
@@ -139,15 +153,17 @@ class Table:
         if len(parts) != len(self.matrices):
             raise InputError(f"{self.file}: {len(parts)} [[covariance]] for {len(self.matrices)} matrices")
         correlated = []
-        for part, matrix in zip(parts, self.matrices, strict=True):
+        for part, matrix, before in zip(parts, self.matrices, self._moved, strict=True):
             part.only(*_COVARIANCE)
             if matrix.shape != (len(self), len(self)):
                 shape = " x ".join(map(str, matrix.shape))
                 raise InputError(f"{part.where('file')}: {shape} numbers for {len(self)} data")
-            correlated.append(self._matrix(part, matrix, found, printed))
+            correlated.append(self._matrix(part, matrix, before, found, printed))
         return tuple(found), tuple(correlated)
 
-    def _matrix(self, part: Section, matrix: Floats, found: list[Uncertainty], printed: Floats) -> Correlated:
+    def _matrix(
+        self, part: Section, matrix: Floats, before: float, found: list[Uncertainty], printed: Floats
+    ) -> Correlated:
         """Return what one matrix says; the uncertainty that it correlates is taken out of `found`."""
         name = str(part.text("name", None) or part.text("file"))
         kind = choice(part, "kind", ("covariance", "correlation"))
@@ -177,7 +193,7 @@ class Table:
                     raise InputError(f"{self.place(row)}: {name} scales with the value, which is 0")
                 size = size / np.where(printed == 0.0, 1.0, printed)
         mended, moved = _correlated.repaired(correlations, repair, name)
-        return Correlated(name, size, mended, multiplicative, moved)
+        return Correlated(name, size, mended, multiplicative, max(moved, before))
 
     def _taken(self, part: Section, found: list[Uncertainty]) -> Uncertainty:
         """Take the uncertainty that a correlation matrix is of out of the list."""

@@ -111,6 +111,9 @@ def read_closure_job(path: str) -> ClosureJob:
         If the job or a file that it names cannot be read.
     """
     fit = read_fit_job(path, more=("closure",), writes=False)
+    if fit.variations is not None:
+        where = fit.place.section("chi_square").where("scale_variations")
+        raise InputError(f"{where}: the theory of a closure test is that of the law: leave it out")
     section = fit.place.section("closure").only("sets", "seed", "levels", "starts", "law", "functionals")
     output = fit.place.section("output", {}).only("sets")
     file = None if output.get("sets", None) is None else result_file(path, output, "sets", ".csv")

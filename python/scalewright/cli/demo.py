@@ -8,8 +8,8 @@ import time
 from importlib import resources
 
 from .. import _check
-from ..errors import StoreError
-from ..files.whole import reason, write_whole
+from ..errors import InputError, StoreError
+from ..files.whole import read_whole, reason, write_whole
 from ..fitting.functionals import default_functionals
 from ..grid import ChebyshevGrid
 from . import benchmark, campaign
@@ -38,6 +38,7 @@ def run(options: argparse.Namespace) -> None:
     report = Report(options.quiet)
     count = _count(options.replicas)
     _make_folder(options.out)
+    _refuse_changed(os.path.join(options.out, "fit.toml"))
     _benchmark(ChebyshevGrid(x_min=1e-7), report)
     report.say()
     _campaign(options.out, count, report)
@@ -55,6 +56,22 @@ def _make_folder(folder: str) -> None:
         os.makedirs(folder, exist_ok=True)
     except OSError as error:
         raise StoreError(f"--out = {folder}: the folder cannot be made: {reason(error)}") from error
+
+
+def _refuse_changed(place: str) -> None:
+    """Refuse to write over a job that somebody has written or changed."""
+    if not os.path.exists(place):
+        return
+    found = read_whole(place).decode("utf-8", "replace")
+    if _fixed(found) != _fixed(job_text(2)):
+        raise InputError(
+            f"{place}: is there already, and not as the demo writes it: move it, or name a folder with --out"
+        )
+
+
+def _fixed(text: str) -> list[str]:
+    """Return the lines of a job of the demo that are the same for all folders and numbers of replicas."""
+    return [line for line in text.splitlines() if not line.startswith(("file = ", "number = "))]
 
 
 def _benchmark(grid: ChebyshevGrid, report: Report) -> None:

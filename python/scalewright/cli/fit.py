@@ -33,6 +33,13 @@ with job.toml:
   [chi_square]
   reference = "prediction"            # "data": what multiplicative errors multiply
 
+  [chi_square.scale_variations]       # none by default; arXiv:1906.10698: adds a covariance of the theory
+  points = "9"                        # "7", "5", "5bar", "3"
+  factor = 4                          # of squared scales
+  common = "hard_muf2_ratio"          # varies for all data at once
+  own = "hard_mur2_ratio"             # for each process by itself; also "evolution_mu2_ratio"
+  processes = { "Run 1, positrons" = "neutral current" }  # of each table; without, all data are one process
+
   [shape]
   kind = "power law"                  # "network": then hidden = [8], seed = 0
   start_q2 = 1.5                      # GeV^2
@@ -61,6 +68,7 @@ with job.toml:
 
   [fit]
   theory = ["alpha_s"]                # also "charm", "bottom"
+  starts = 1                          # more searches, and the lowest minimum: there may be several
 
   [replicas]
   number = 100

@@ -22,6 +22,7 @@ from ..measurements import Measurements
 from ..theory import Theory
 from .correction_job import read_corrections
 from .jobs import read_electroweak, read_measured, refuse_no_folder, result_file, yes_or_no
+from .scale_job import ScaleVariations, read_variations
 from .shape_job import Start, read_parameters, read_shape, read_start
 
 SECTIONS = (
@@ -80,6 +81,8 @@ class FitJob:
         As for `forward_map`.
     form, reference
         Of chi-square; `reference` is "data" or "prediction".
+    variations
+        Of scales, for a covariance of the theory in chi-square, or None.
     start
         Scale and number of flavours at which the shape stands.
     shape
@@ -90,7 +93,7 @@ class FitJob:
         Of those.
     corrections
         Higher twist, deuteron and nuclear factors; their free parameters are fitted too.
-    delta_chi2, evaluations
+    delta_chi2, evaluations, starts
         As for `fit`.
     replicas
         Fits to pseudo-data, or None.
@@ -111,6 +114,7 @@ class FitJob:
     subtraction: str
     form: str
     reference: str
+    variations: ScaleVariations | None
     start: Start
     shape: Shape
     free: tuple[str, ...]
@@ -118,6 +122,7 @@ class FitJob:
     corrections: list[Correction]
     delta_chi2: float
     evaluations: int | None
+    starts: int
     replicas: ReplicaJob | None
     files: dict[str, str]
     pictures: str | None
@@ -156,20 +161,22 @@ def read_fit_job(path: PathLike, more: tuple[str, ...] = (), *, writes: bool = T
     data = top.section("data").only("file", "cut")
     target_mass, subtraction = read_prediction(top)
     form, reference = _chi_square(top)
-    free, delta_chi2, evaluations = _fit(top)
+    free, delta_chi2, evaluations, starts = _fit(top)
     replicas = _replicas(path, top)
     electroweak = read_electroweak(top.section("electroweak", {}))
     shape_section, grid = top.section("shape"), _grid(top)
     start = read_start(shape_section, theory)
     bare = read_shape(shape_section, grid, start.nf)
     shape, priors = read_parameters(top.section("parameters", {}), bare, free)
+    measured = read_measured(path, data)
+    variations = read_variations(top.section("chi_square", {}), measured)
     files, pictures, q2, x = _nothing()
     if writes:
         files, pictures, q2, x = _output(path, top, start, grid, replicas is not None)
     return FitJob(
-        top, theory, electroweak, grid, read_measured(path, data), target_mass, subtraction, form, reference,
-        start, shape, free, priors, read_corrections(path, top), delta_chi2, evaluations, replicas,
-        files, pictures, q2, x,
+        top, theory, electroweak, grid, measured, target_mass, subtraction, form, reference,
+        variations, start, shape, free, priors, read_corrections(path, top), delta_chi2, evaluations,
+        starts, replicas, files, pictures, q2, x,
     )  # fmt: skip
 
 
@@ -183,15 +190,15 @@ def read_prediction(top: Section) -> tuple[bool, str]:
 
 
 def _chi_square(top: Section) -> tuple[str, str]:
-    section = top.section("chi_square", {}).only("form", "reference")
+    section = top.section("chi_square", {}).only("form", "reference", "scale_variations")
     with section.blame():
         form = _check.choice("form", section.get("form", "covariance"), ("covariance", "nuisance"))
         held = section.get("reference", "prediction")
         return form, _check.choice("reference", held, ("prediction", "data"))
 
 
-def _fit(top: Section) -> tuple[tuple[str, ...], float, int | None]:
-    section = top.section("fit", {}).only("theory", "delta_chi2", "evaluations")
+def _fit(top: Section) -> tuple[tuple[str, ...], float, int | None, int]:
+    section = top.section("fit", {}).only("theory", "delta_chi2", "evaluations", "starts")
     given = section.get("theory", [])
     if not isinstance(given, list):
         known = ", ".join(f'"{name}"' for name in THEORY)
@@ -204,7 +211,8 @@ def _fit(top: Section) -> tuple[tuple[str, ...], float, int | None]:
         delta = _check.real("delta_chi2", section.get("delta_chi2", 1.0), above=0.0)
         most = section.get("evaluations", None)
         evaluations = None if most is None else _check.whole("evaluations", most, least=1)
-    return tuple(given), delta, evaluations
+        starts = _check.whole("starts", section.get("starts", 1), least=1, most=10**6)
+    return tuple(given), delta, evaluations, starts
 
 
 def _replicas(path: PathLike, top: Section) -> ReplicaJob | None:

@@ -10,15 +10,17 @@ from typing import Any
 import numpy as np
 
 from .._check import Floats
+from .._progress import Line
 from ..build import build_operators
 from ..densities import Densities
 from ..errors import InputError, RangeError, ScalewrightError
 from ..fitting.chi_square import ChiSquare
 from ..fitting.ensemble import Ensemble
-from ..fitting.least_squares import FitResult, fit
+from ..fitting.least_squares import FitResult, NotSettledError, fit
 from ..fitting.maps import KnownMap, Maps, theory_at
 from ..fitting.reference import settle_reference
 from ..fitting.replicas import fit_replicas
+from ..fitting.theory_covariance import ScaleCovariance
 from ..measurements import Measurements
 from .fit_job import FitJob
 from .report import Report
@@ -38,15 +40,18 @@ class Fitted:
         The map it ended with.
     history
         Chi-squares while the reference settled.
+    scales
+        The covariance of the theory in chi-square, or None.
     """
 
     chi_square: ChiSquare
     result: FitResult
     fmap: KnownMap
     history: tuple[float, ...]
+    scales: ScaleCovariance | None = None
 
 
-def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
+def fit_data(job: FitJob, maps: Maps, measured: Measurements, report: Report | None = None) -> Fitted:
     """Fit a job's shape to measurements, the reference of multiplicative errors settled.
 
     Parameters
@@ -56,6 +61,8 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
         Those of the job; what they built last is used again.
     measured : Measurements
         The data of the job, or others at the same points.
+    report : Report, optional
+        Where progress is drawn.
 
     Raises
     ------
@@ -63,26 +70,69 @@ def fit_data(job: FitJob, maps: Maps, measured: Measurements) -> Fitted:
         If the parts do not fit each other, or the reference does not settle.
     """
     first = ChiSquare(measured, job.form)
+    line = None if report is None else report.progress("fit to the data")
     # it takes the map as it comes; fits after it follow theory parameters
-    found = [_fit_once(job, maps, first, None)]
+    found = [_fit_once(job, maps, first, None, line)]
+    scales = None
+    if job.variations is not None:  # around a fit that knows nothing of them
+        scales = job.variations.covariance(maps, found[-1], first, job.corrections)
+        first = ChiSquare(measured, job.form, theory=scales.matrix)
+        found.append(_fit_once(job, maps, first, found[-1], line))
 
     def once(chi_square: ChiSquare) -> Floats:
         if chi_square is not first:
-            found.append(_fit_once(job, maps, chi_square, found[-1]))
+            found.append(_fit_once(job, maps, chi_square, found[-1], line))
         return found[-1].prediction
 
     if job.reference == "data":
         if job.free:
-            found.append(_fit_once(job, maps, first, found[-1]))
-        return Fitted(first, found[-1], _map_of(maps, found[-1]), (found[-1].chi2,))
+            found.append(_fit_once(job, maps, first, found[-1], line))
+        return Fitted(first, found[-1], _map_of(maps, found[-1]), (found[-1].chi2,), scales)
     settled = settle_reference(first, once)
-    return Fitted(settled.chi_square, found[-1], _map_of(maps, found[-1]), settled.history)
+    return Fitted(settled.chi_square, found[-1], _map_of(maps, found[-1]), settled.history, scales)
 
 
-def _fit_once(job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None) -> FitResult:
+def _fit_once(
+    job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None, line: Line | None
+) -> FitResult:
     """Fit with one reference; from the second time on the map follows theory parameters."""
+    if line is not None:
+        line.say("...")
+    try:
+        return _fit_on(job, maps, chi_square, last, line)
+    except NotSettledError as error:
+        said = "; ".join(error.result.status)
+        raise InputError(f"{error.reason}; the last fit{_kept(job, error.result)}: {said}") from error
+    finally:
+        if line is not None:
+            line.clear()
+
+
+def _kept(job: FitJob, result: FitResult) -> str:
+    """Write a fit that did not settle, if there is a file for it; say where it is."""
+    if "result" not in job.files:
+        return ""
+    try:
+        result.save(job.files["result"])
+    except InputError:  # with a coupling on its bound at 0 there is no theory to write
+        return ""
+    return f", which is in {job.files['result']}"
+
+
+def _fit_on(
+    job: FitJob, maps: Maps, chi_square: ChiSquare, last: FitResult | None, line: Line | None
+) -> FitResult:
+    def step(number: int, chi2: float, _: Floats) -> None:
+        if line is not None:
+            line.say(f"step {number}, chi-square {chi2:.6g}")
+
     options: dict[str, Any] = {"priors": job.priors, "delta_chi2": job.delta_chi2, "theory": job.free}
-    options |= {"evaluations": job.evaluations, "corrections": job.corrections}
+    options |= {
+        "evaluations": job.evaluations,
+        "corrections": job.corrections,
+        "starts": job.starts,
+        "callback": step,
+    }
     if last is None:
         return fit(maps(), chi_square, job.shape, **options)
     rebuild = maps if job.free else None
@@ -120,8 +170,7 @@ def replicas_of(job: FitJob, fitted: Fitted, report: Report, label: str = "repli
 
 def spread_of(fitted: Fitted, ensemble: Ensemble) -> Floats:
     """Return the standard deviation of predictions over replicas, (datum,), each with all its parameters."""
-    predictions = [fitted.result._problem.prediction(row) for row in ensemble.parameters]
-    return np.asarray(np.std(predictions, axis=0, ddof=1))
+    return np.asarray(np.std(fitted.result.predict(ensemble.parameters), axis=0, ddof=1))
 
 
 def numerical_error(job: FitJob, fitted: Fitted) -> Floats:

@@ -61,7 +61,7 @@ def done(job: FitJob, report: Report, text: str, truth: Mapping[str, float] | No
     """
     _make_folder(job)
     with job.place.blame():
-        fitted = fit_data(job, job.maps(), job.measured)
+        fitted = fit_data(job, job.maps(), job.measured, report)
     try:
         with job.place.blame():
             ensemble = replicas_of(job, fitted, report)
@@ -134,6 +134,8 @@ def _report(job: FitJob, results: Results, carried: Densities | None) -> None:
         "shape": repr(job.shape),
         "corrections": ", ".join(map(repr, job.corrections)) or "none",
     }
+    if fitted.scales is not None:
+        notes["covariance of the theory"] = "; ".join(_scales(job, fitted))
     if job.theory.heavy_quarks == "matched":
         notes["what is beyond the massive part"] = job.subtraction
     if job.free:
@@ -143,6 +145,16 @@ def _report(job: FitJob, results: Results, carried: Densities | None) -> None:
         job.files["report"], fitted.result, fitted.chi_square, ensemble=results.ensemble, evolved=carried,
         truth=results.truth, history=fitted.history, notes=notes, job=results.text,
     )  # fmt: skip
+
+
+def _scales(job: FitJob, fitted: Fitted) -> tuple[str, str]:
+    """Say which scales vary, by how much, and what that is beside the errors of the data."""
+    assert fitted.scales is not None and job.variations is not None
+    of_data = np.diagonal(fitted.chi_square.covariance) - np.diagonal(fitted.scales.matrix)
+    ratio = np.sqrt(np.diagonal(fitted.scales.matrix) / of_data)
+    size = f"{np.median(ratio):.2g} of those of the data (median; the largest {ratio.max():.2g})"
+    by = f"ratios times and over {job.variations.factor:g} make errors of {size}"
+    return fitted.scales.describe(), by
 
 
 def _make_folder(job: FitJob) -> None:
@@ -199,6 +211,9 @@ def fit_summary(job: FitJob, results: Results, report: Report) -> None:
         report.say(f"  {line}")
     for cut in job.measured.cuts:
         report.say(f"  cut {cut}")
+    if fitted.scales is not None:
+        for line in _scales(job, fitted):
+            report.say(f"  {line}")
     chi_square_summary(fitted.chi_square, result.prediction, report)
     if ensemble is not None:
         replica_lines(ensemble, report)
@@ -252,3 +267,5 @@ def replica_lines(ensemble: Ensemble, report: Report) -> None:
         report.say(f"  {len(ensemble.failed)} failed, the first of them {index}: {said}{many}")
     if ensemble.negative:
         report.say(f"  {ensemble.negative} pseudo-data were negative, and kept")
+    for note in ensemble.notes:
+        report.say(f"  {note}")

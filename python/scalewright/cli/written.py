@@ -75,13 +75,28 @@ def write_parameters(file: str, result: FitResult, ensemble: Ensemble | None) ->
         "uncertainty": numbers(result.errors),
     }
     if ensemble is not None:
-        columns["replica mean"] = numbers(ensemble.parameters.mean(axis=0))
-        columns["replica deviation"] = numbers(ensemble.parameters.std(axis=0, ddof=1))
+        columns |= _of_replicas(ensemble)
     solved = result.solved
     rest = [""] * len(solved)
     added = {"name": list(solved), "state": ["sum rule"] * len(solved)}
     added["value"] = numbers(np.array(list(solved.values())))
     write_columns(file, {key: [*column, *added.get(key, rest)] for key, column in columns.items()})
+
+
+def _of_replicas(ensemble: Ensemble) -> dict[str, Sequence[str]]:
+    """Return mean and deviation with sampling errors, and intervals where replicas are enough for them."""
+    mean, spread = ensemble.mean(ensemble.parameters), ensemble.std(ensemble.parameters)
+    columns: dict[str, Sequence[str]] = {
+        "replica mean": numbers(ensemble.parameters.mean(axis=0)),
+        "replica deviation": numbers(ensemble.parameters.std(axis=0, ddof=1)),
+        "sampling error of mean": numbers(mean.error),
+        "sampling error of deviation": numbers(spread.error),
+    }
+    for words, level in (("68", 0.6827), ("95", 0.95)):
+        for side, end in zip(("from", "to"), ensemble.interval(ensemble.parameters, level), strict=True):
+            known = np.where(np.isnan(end.error), np.nan, end.value)
+            columns[f"{words} per cent {side}"] = numbers(known)
+    return columns
 
 
 def write_table(densities: Densities, file: str, x: Floats | None) -> None:

@@ -91,6 +91,32 @@ class FitResult:
         """The data predicted, (datum,)."""
         return self._problem.prediction(self.parameters)
 
+    def predict(self, parameters: ArrayLike) -> Floats:
+        """Return the data predicted from other parameters of the same fit, such as those of replicas.
+
+        Parameters
+        ----------
+        parameters : array_like, (parameter,) or (replica, parameter)
+            In the order of `names`; those of the theory move the map to first order.
+
+        Returns
+        -------
+        ndarray, (datum,) or (replica, datum)
+            For correlations with data: ``ensemble.correlation_matrix("alpha_s",
+            result.predict(ensemble.parameters))``.
+
+        Raises
+        ------
+        InputError
+            If the shape is wrong, or the fit was read from a file.
+        """
+        given = _check.real_array("parameters", parameters)
+        if given.ndim not in (1, 2) or given.shape[-1] != len(self.names):
+            _check.refuse("parameters", given, f"the last axis must have {len(self.names)} parameters")
+        if given.ndim == 1:
+            return self._problem.prediction(given)
+        return np.array([self._problem.prediction(row) for row in given]).reshape(len(given), -1)
+
     @property
     def theory(self) -> Theory | None:
         """What was assumed, theory parameters at their fitted values; None where the map did not say."""

@@ -71,14 +71,17 @@ class Stopping:
             watched.best, watched.parameters = float(last @ last), found.parameters
         if watched.parameters is None:
             return begin, found.jacobian_calls, "chi-square is not finite"
-        return watched.parameters, found.jacobian_calls, ""
+        # cut off by the evaluations it was allowed, not by its patience: the validation might still improve
+        cut_off = bool(found.stopped) and not watched.ended and not found.converged
+        reason = f"not converged: {found.stopped}, the validation might still improve" if cut_off else ""
+        return watched.parameters, found.jacobian_calls, reason
 
 
 class _Watched:
     """The best validation so far, and for how long it has been the best."""
 
     def __init__(self, patience: int) -> None:
-        self._patience, self._since = patience, 0
+        self._patience, self._since, self.ended = patience, 0, False
         self.best: float = np.inf
         self.parameters: Floats | None = None
 
@@ -89,6 +92,7 @@ class _Watched:
             return
         self._since += 1
         if self._since >= self._patience:
+            self.ended = True
             raise StopIteration
 
 

@@ -57,8 +57,18 @@ def _theory(result: FitResult, problem: Problem) -> list[str]:
         where = f"the map is exact at {name} = {show(reference)} and of first order around it"
         lines.append(f"{where}; the fit is {moved:+.2g} away")
     if {"charm", "bottom"} & set(problem.reference):
-        lines.append("a mass is free: with massive coefficients of order a this is a study")
+        lines.append(_study(problem))
     return lines
+
+
+def _study(problem: Problem) -> str:
+    """Warn of a mass that is fitted: what would measure it is known to order a only, or not there."""
+    assumed = problem.theory
+    if assumed is not None and assumed.heavy_quarks == "massless":
+        return (
+            "WARNING: a mass is free, but heavy quarks are massless: only matching at thresholds knows of it"
+        )
+    return "WARNING: a mass is free: with massive coefficients of order a this is a study, no measurement"
 
 
 def screen(result: FitResult) -> str:

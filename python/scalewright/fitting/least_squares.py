@@ -17,6 +17,7 @@ from ._result import BlindDirection, FitResult, Profile
 from ._settling import NotSettledError, Settling
 from ._shape import Shape
 from ._solve import Callback, Solution, solve
+from ._starts import lowest, said, searched
 
 __all__ = ["BlindDirection", "FitResult", "NotSettledError", "Profile", "fit"]
 
@@ -38,6 +39,7 @@ def fit(
     delta_chi2: float = 1.0,
     evaluations: int | None = None,
     callback: Callback | None = None,
+    starts: int = 1,
 ) -> FitResult:
     """Fit a shape to data by least squares with exact derivatives.
 
@@ -69,6 +71,9 @@ def fit(
         Of residuals at most, in each repetition; by default 100 a parameter.
     callback : callable, optional
         ``f(step, chi2, parameters)`` at each step; StopIteration ends the search with the best so far.
+    starts : int
+        Searches: the others begin around where the first has ended, and the lowest minimum is returned; where
+        they ended is said in `status`. Chi-square may have several minima where data leave much open.
 
     Returns
     -------
@@ -115,26 +120,50 @@ def fit(
     for name, function in (("rebuild", rebuild), ("callback", callback)):
         if function is not None:
             _check.function(name, function)
+    starts = _check.whole("starts", starts, least=1, most=10**6)
     problem = Problem(fmap, chi2, shape, theory, priors, corrections=corrections)
     problem.check_enough()
     begin = starting(problem, start)
     again = None if rebuild is None else _Rebuilder(rebuild, chi2, shape, priors, corrections)
-    solution = solve(problem, begin, evaluations=evaluations, callback=callback)
-    rebuilt, settling = 0, Settling()
-    while again is not None and _is_far(problem, solution):
-        last = FitResult(problem, solution, delta_chi2, rebuilt, again)
-        if rebuilt == _REBUILDS:
-            moved = _check.show_all(problem.reference)
-            raise NotSettledError(f"rebuild: {moved} has not settled after {rebuilt} maps", last)
-        begin = np.array(solution.parameters)
-        found = begin[problem.first_theory :] = settling.next(*_moves(problem, solution))
-        try:
-            problem = again(dict(zip(problem.reference, found.tolist(), strict=True)))
-        except InputError as error:
-            raise NotSettledError(str(error), last) from error
-        solution = solve(problem, begin, evaluations=evaluations, callback=callback)
-        rebuilt += 1
-    return FitResult(problem, solution, delta_chi2, rebuilt, again)
+    search = _Search(again, delta_chi2, evaluations, callback)
+    problem, solution = first = search.settled(problem, begin)
+    if starts > 1:
+        found = searched(first, starts, search.settled)
+        problem, solution = lowest(found)
+        problem.notes = (*problem.notes, said(found))
+    return FitResult(problem, solution, delta_chi2, search.rebuilt, again)
+
+
+class _Search:
+    """The search for a minimum, with maps built anew until theory parameters settle."""
+
+    def __init__(
+        self, again: _Rebuilder | None, delta_chi2: float, evaluations: int | None, callback: Callback | None
+    ) -> None:
+        self._again, self._delta_chi2 = again, delta_chi2
+        self._options: Any = {"evaluations": evaluations, "callback": callback}
+        self.rebuilt = 0
+
+    def settled(self, problem: Problem, begin: Floats) -> tuple[Problem, Solution]:
+        """Return the last problem, and its minimum."""
+        solution = solve(problem, begin, **self._options)
+        most, settling = self.rebuilt + _REBUILDS, Settling()
+        while self._again is not None and _is_far(problem, solution):
+            last = FitResult(problem, solution, self._delta_chi2, self.rebuilt, self._again)
+            if self.rebuilt == most:
+                moved = _check.show_all(problem.reference)
+                raise NotSettledError(f"rebuild: {moved} has not settled after {_REBUILDS} maps", last)
+            begin = np.array(solution.parameters)
+            found = begin[problem.first_theory :] = settling.next(*_moves(problem, solution))
+            try:
+                problem = self._again(dict(zip(problem.reference, found.tolist(), strict=True)))
+            except InputError as error:
+                # a map that cannot be built is not asked for second derivatives, either
+                last = FitResult(problem, solution, self._delta_chi2, self.rebuilt, None)
+                raise NotSettledError(str(error), last) from error
+            solution = solve(problem, begin, **self._options)
+            self.rebuilt += 1
+        return problem, solution
 
 
 class _Rebuilder:

@@ -128,6 +128,19 @@ class Maps:
         self.built = 0
         self._last: KnownMap | None = None
 
+    def with_theory(self, theory: Theory) -> Maps:
+        """Return maps of the same points for another theory.
+
+        Parameters
+        ----------
+        theory : Theory
+
+        Returns
+        -------
+        Maps
+        """
+        return Maps(theory, self.grid, **self._options)
+
     def __call__(self, at: Mapping[str, float] | None = None) -> KnownMap:
         """Return the map.
 

@@ -19,6 +19,7 @@ from .._corrected.bound import Correction
 from .._progress import Progress, watcher
 from ..errors import InputError, ScalewrightError
 from ..files.whole import PathLike
+from ._central import of_data
 from ._dask import Client, as_executor, threads
 from ._journal import Journal, Outcome
 from ._neglected import notes as neglected
@@ -77,7 +78,9 @@ def fit_replicas(
         Replica i draws from ``numpy.random.SeedSequence(seed, spawn_key=(i,))``.
     start, theory, priors, corrections, evaluations
         As for `fit`. By default each replica starts from the best fit to the data; with `validation` from the
-        start of the shape. The values of priors are drawn, like data.
+        start of the shape. The values of priors are drawn, like data. Without `validation` the data
+        themselves are fitted too, and `Ensemble.notes` says if that fit has not converged, or which
+        directions the data do not see: the spread of replicas along these is no uncertainty.
     rebuild : callable, optional
         As for `fit`: the data are fitted first with maps built anew until theory parameters settle, and all
         replicas start there, with the last map. It moves to first order in each of them; `Ensemble.notes`
@@ -158,7 +161,8 @@ def fit_replicas(
                       corrections=corrections, evaluations=evaluations)  # fmt: skip
         if not central.converged:
             raise ScalewrightError(f"rebuild: the fit to the data has {central.status[0]}")
-        problem, begin, notes = central._problem, central.parameters, neglected(central, chi2)
+        problem, begin = central._problem, central.parameters
+        notes = (*of_data(problem, central._solution), *neglected(central, chi2))
     else:
         problem = Problem(
             fmap, chi2, shape, theory, priors, corrections=corrections, compressed=stopping is None
@@ -166,9 +170,8 @@ def fit_replicas(
         if stopping is None:
             problem.check_enough()
         begin = starting(problem, start)
-        if start is None and stopping is None:
-            first = solve(problem, begin, evaluations=evaluations)
-            begin = first.parameters if first.converged else begin
+        if stopping is None:
+            begin, notes = _central(problem, begin, evaluations, start is not None)
     work = _Work(problem, chi2, _check.whole("seed", seed, least=0), begin, evaluations, stopping)
     engine: Engine = as_executor(executor)
     size = _workers(engine, workers)
@@ -185,6 +188,19 @@ def fit_replicas(
             work.begin = np.array(book.fit["start"])
             outcomes = _all(work, count, book.outcomes, book, report, options)
     return _gathered(problem, [outcomes[index] for index in range(count)], work.seed, notes)
+
+
+def _central(
+    problem: Problem, begin: Floats, evaluations: int | None, is_given: bool
+) -> tuple[Floats, tuple[str, ...]]:
+    """Fit the data themselves; return where replicas begin, and what is to be known of them."""
+    try:
+        first = solve(problem, begin, evaluations=evaluations)
+    except Exception as error:  # a shape may raise anything
+        if not is_given:
+            raise
+        return begin, (f"WARNING: the fit to the data themselves: {type(error).__name__}: {error}",)
+    return first.parameters if first.converged and not is_given else begin, of_data(problem, first)
 
 
 class _Work:

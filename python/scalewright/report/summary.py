@@ -11,6 +11,8 @@ from .page import Page
 from .told import Told
 
 _MANY_FAILED = 0.01
+#: What a fit or an ensemble says first of what must not be overlooked.
+_WARNING = "WARNING: "
 
 
 def overview(page: Page, told: Told) -> None:
@@ -23,6 +25,10 @@ def overview(page: Page, told: Told) -> None:
         ensemble.replicas + len(ensemble.failed)
     ):
         page.warn(f"{len(ensemble.failed)} fits to pseudo-data failed, more than 1 per cent: see Replicas")
+    said = [*result.status, *(() if ensemble is None else ensemble.notes)]
+    for line in said:
+        if line.startswith(_WARNING):
+            page.warn(line.removeprefix(_WARNING))
     if not told.pictures:
         page.warn("No pictures: matplotlib was not installed (pip install 'scalewright[plot]').")
     free = len(result.names) - len(result.at_bounds)

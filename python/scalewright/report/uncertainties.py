@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import numpy as np
 
+from ..fitting.ensemble import Ensemble
 from ..fitting.functionals import Functional
 from . import figures
 from .page import Page
 from .told import Told
 
+_OF_REPLICAS = ["mean of replicas", "deviation", "68 per cent", "95 per cent"]
 _UNITS = {"charm": " (GeV)", "bottom": " (GeV)"}
 
 
@@ -16,7 +18,7 @@ def parameters(page: Page, told: Told) -> None:
     """List parameters with uncertainties."""
     result, ensemble = told.result, told.ensemble
     page.section("Parameters")
-    head = ["parameter", "best fit", "uncertainty"] + (["mean of replicas", "deviation"] if ensemble else [])
+    head = ["parameter", "best fit", "uncertainty"] + (_OF_REPLICAS if ensemble else [])
     rows = []
     for name in result.names:
         bound, error = result.at_bounds.get(name), result.error(name)
@@ -25,10 +27,18 @@ def parameters(page: Page, told: Told) -> None:
         if ensemble is not None:
             values = ensemble.parameter(name)
             row += [f"{values.mean():.5g}", f"{values.std(ddof=1):.3g}"]
+            row += [_interval(ensemble, name, level) for level in (0.6827, 0.95)]
         rows.append(row)
-    rest = ["", ""] if ensemble is not None else []
+    rest = [""] * len(_OF_REPLICAS) if ensemble is not None else []
     rows += [[name, f"{value:.5g}", "by its sum rule", *rest] for name, value in result.solved.items()]
     page.table(head, rows)
+
+
+def _interval(ensemble: Ensemble, name: str, level: float) -> str:
+    """Return the ends of an interval, or that replicas are too few for it."""
+    low, high = ensemble.interval(name, level)
+    known = np.isfinite(low.error) and np.isfinite(high.error)
+    return f"{low.value:.5g} to {high.value:.5g}" if known else "too few replicas"
 
 
 def correlations(page: Page, told: Told) -> None:
