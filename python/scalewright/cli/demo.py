@@ -7,6 +7,8 @@ import os
 import time
 from importlib import resources
 
+import numpy as np
+
 from .. import _check
 from ..errors import InputError, StoreError
 from ..files.whole import read_whole, reason, write_whole
@@ -134,6 +136,21 @@ def _summary(results: Results, report: Report) -> None:
     result = results.fitted.result
     report.say(f"  {result.status[0]}")
     chi_square_summary(results.fitted.chi_square, result.prediction, report)
+    _predictions(results, report)
     if results.ensemble is not None:
         replica_lines(results.ensemble, report)
     truth_table(results, report)
+
+
+def _predictions(results: Results, report: Report) -> None:
+    """Print what is predicted for the middle datum of each table."""
+    chi_square, prediction = results.fitted.chi_square, results.fitted.result.prediction
+    measured = chi_square.measurements
+    sigma, pulls = np.sqrt(np.diagonal(chi_square.covariance)), chi_square.pulls(prediction, shifted=True)
+    rows = []
+    for number, title in enumerate(measured.tables):
+        own = np.flatnonzero(measured.table_of == number)
+        at = own[own.size // 2]
+        numbers = (measured.x[at], measured.q2[at], measured.value[at], sigma[at], prediction[at])
+        rows.append([title, *(f"{number:.4g}" for number in numbers), f"{pulls[at]:+.2f}"])
+    report.table(["one of each", "x", "Q^2", "measured", "+-", "predicted", "pull"], rows)
