@@ -4,9 +4,11 @@ import os
 import pty
 import subprocess
 import sys
+from types import SimpleNamespace
 
 import pytest
 import scalewright as sw
+from cli.fit_case import write_case
 
 COMMAND = [sys.executable, "-c", "import sys; from scalewright.cli.main import main; sys.exit(main())"]
 
@@ -72,3 +74,33 @@ def start(tmp_path):
     densities.to_csv(tmp_path / "start.csv")
     densities.save(tmp_path / "start.h5")
     return densities
+
+
+@pytest.fixture
+def write_fit(tmp_path):
+    """Write the case with a job changed as a test asks, and nothing drawn."""
+
+    def written(*changes):
+        write_case(tmp_path)
+        for old, new in (*changes, ('report = "fit.html"', "")):
+            for name in ("job.toml", "run1.toml", "run1.csv"):
+                text = (tmp_path / name).read_text()
+                (tmp_path / name).write_text(text.replace(old, new))
+
+    return written
+
+
+@pytest.fixture
+def run_here(tmp_path, capsys, monkeypatch):
+    """Run in this process, which has loaded everything already, in the folder of the job."""
+    from scalewright.cli.main import main
+
+    monkeypatch.chdir(tmp_path)
+
+    def runner(*arguments, status=0):
+        found = main(list(arguments))
+        out, said = capsys.readouterr()
+        assert found == status, (found, out, said)
+        return SimpleNamespace(stdout=out, stderr=said)
+
+    return runner

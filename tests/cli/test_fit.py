@@ -1,11 +1,9 @@
-"""`scalewright fit`: a job gives what Python gives, everything asked for is written, mistakes are named."""
+"""`scalewright fit`: a job gives what Python gives, and everything asked for is written."""
 
 import csv
-import os
 import signal
 import subprocess
 import time
-from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -27,36 +25,6 @@ def finished(tmp_path_factory):
     )
     assert done.returncode == 0, done.stderr
     return folder, done
-
-
-@pytest.fixture
-def write(tmp_path):
-    """Write the case with a job changed as a test asks, and nothing drawn."""
-
-    def written(*changes):
-        write_case(tmp_path)
-        for old, new in (*changes, ('report = "fit.html"', "")):
-            for name in ("job.toml", "run1.toml", "run1.csv"):
-                text = (tmp_path / name).read_text()
-                (tmp_path / name).write_text(text.replace(old, new))
-
-    return written
-
-
-@pytest.fixture
-def run(tmp_path, capsys, monkeypatch):
-    """Run in this process, which has loaded everything already, in the folder of the job."""
-    from scalewright.cli.main import main
-
-    monkeypatch.chdir(tmp_path)
-
-    def runner(*arguments, status=0):
-        found = main(list(arguments))
-        out, said = capsys.readouterr()
-        assert found == status, (found, out, said)
-        return SimpleNamespace(stdout=out, stderr=said)
-
-    return runner
 
 
 def rows(path):
@@ -165,18 +133,18 @@ def test_each_replica_is_evolved_by_its_own_coupling(finished):
         np.testing.assert_allclose([found[0.01], found[0.1], found[0.5]], expected, rtol=1e-12)
 
 
-def test_a_finished_run_goes_on_from_its_journal(run, tmp_path, write):
-    write(("number = 6", "number = 3"))
-    run("fit", "job.toml")
+def test_a_finished_run_goes_on_from_its_journal(run_here, tmp_path, write_fit):
+    write_fit(("number = 6", "number = 3"))
+    run_here("fit", "job.toml")
     size = (tmp_path / "fit.journal").stat().st_size
     few = sw.Ensemble.load(tmp_path / "replicas.h5")
-    write()
-    run("fit", "job.toml")
+    write_fit()
+    run_here("fit", "job.toml")
     many = sw.Ensemble.load(tmp_path / "replicas.h5")
     assert (tmp_path / "fit.journal").stat().st_size > size
     np.testing.assert_array_equal(many.parameters[:3], few.parameters)
-    write(("percent", "value"))
-    done = run("fit", "job.toml", status=1)
+    write_fit(("percent", "value"))
+    done = run_here("fit", "job.toml", status=1)
     assert "this journal is of another fit: its " in done.stderr
     assert "the same command goes on" not in done.stderr
 
@@ -203,19 +171,19 @@ def test_an_interrupt_keeps_what_was_computed(tmp_path):
     assert not (tmp_path / "fit.h5").exists()
 
 
-def test_a_fit_to_the_data_alone_needs_no_replicas(run, tmp_path, write):
+def test_a_fit_to_the_data_alone_needs_no_replicas(run_here, tmp_path, write_fit):
     text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
-    write((text, ""), ('ensemble = "replicas.h5"', ""), ('theory = ["alpha_s"]', ""))
-    done = run("fit", "job.toml")
+    write_fit((text, ""), ('ensemble = "replicas.h5"', ""), ('theory = ["alpha_s"]', ""))
+    done = run_here("fit", "job.toml")
     assert FitResult.load(tmp_path / "fit.h5").names[-1] == "ubar.c0"
     assert "replicas" not in done.stdout
     assert len(rows(tmp_path / "densities.csv")) == 2 * 3 * 7
 
 
-def test_higher_twist_is_fitted_where_the_job_asks_for_it(run, tmp_path, write):
+def test_higher_twist_is_fitted_where_the_job_asks_for_it(run_here, tmp_path, write_fit):
     twist = '[[correction]]\nkind = "higher twist"\ntarget = "proton"\npolynomial = { degree = 0 }\n[output]'
-    write(("[output]", twist), ("number = 6", "number = 2"))
-    run("fit", "job.toml")
+    write_fit(("[output]", twist), ("number = 6", "number = 2"))
+    run_here("fit", "job.toml")
     result = FitResult.load(tmp_path / "fit.h5")
     assert result.names[-2:] == ("h_proton.c0", "alpha_s")
     # the law has none; four standard deviations
@@ -227,9 +195,9 @@ def test_higher_twist_is_fitted_where_the_job_asks_for_it(run, tmp_path, write):
     assert all(float(row["spread"]) > 0.0 < float(row["numerical error"]) for row in written)
 
 
-def test_a_network_is_fitted_with_validation(run, tmp_path, write):
+def test_a_network_is_fitted_with_validation(run_here, tmp_path, write_fit):
     text = (tmp_path / "job.toml").read_text() if (tmp_path / "job.toml").exists() else ""
-    write()
+    write_fit()
     text = (tmp_path / "job.toml").read_text()
     head, rest = text.split("[shape]")
     _, tail = rest.split("[fit]")
@@ -253,231 +221,25 @@ evaluations = 30
         "seed = 3", "seed = 3\nvalidation = 0.3\npatience = 2"
     )
     (tmp_path / "job.toml").write_text(head + shaped + tail)
-    done = run("fit", "job.toml")
+    done = run_here("fit", "job.toml")
     assert sw.Ensemble.load(tmp_path / "replicas.h5").names[0].startswith("weight[")
     assert "replicas of 6" in done.stdout
 
 
-WRONG = {
-    "no shape": ([("[shape]", "[shap]")], 'job.toml: shap: unknown key; did you mean "shape"?'),
-    "unknown kind": (
-        [("start_q2 = 2.0", 'start_q2 = 2.0\nkind = "spline"')],
-        "[shape]: kind = 'spline': kind must be",
-    ),
-    "no start": ([("start_q2 = 2.0", "")], "job.toml: [shape] start_q2: missing"),
-    "negative start": ([("start_q2 = 2.0", "start_q2 = -2.0")], "job.toml: [shape]: start_q2 = -2"),
-    "a network's key": ([("start_q2 = 2.0", "start_q2 = 2.0\nhidden = [3]")], "[shape] hidden: unknown key"),
-    "unknown flavour": ([("u_v = { power", "u_w = { power")], "job.toml: [shape]"),
-    "a term without power": (
-        [("g = { power = 0.1, fall = 5 }", "g = { fall = 5 }")],
-        "[shape.terms.g] power: missing",
-    ),
-    "a word for a power": (
-        [("g = { power = 0.1, fall", 'g = { power = "low", fall')],
-        "job.toml: [shape.terms.g]: power = 'low'",
-    ),
-    "a flavour undetermined": (
-        [('"dbar = ubar", ', "")],
-        "job.toml: [shape]: terms: 7 flavours need as many",
-    ),
-    "an impossible sum rule": (
-        [("numbers = { u_v = 2", "numbers = { g = 2")],
-        "job.toml: [shape]: numbers = 'g': only differences",
-    ),
-    "momentum of no term": (
-        [('momentum = "g"', 'momentum = "q"')],
-        "job.toml: [shape]: momentum = 'q': must be a term",
-    ),
-    "relations that are text": (
-        [('["dbar = ubar", "s = sbar", "s = 0.5*ubar"]', '"s = sbar"')],
-        "[shape] relations = 's = sbar': must be a list",
-    ),
-    "unknown parameter": (
-        [("d_v.fall = { fixed", "d_v.fal = { fixed")],
-        "job.toml: [parameters]: fixed = 'd_v.fal': no parameter of this name",
-    ),
-    "unknown restriction": (
-        [("{ start = 3.4, bounds", "{ begin = 3.4, bounds")],
-        "job.toml: [parameters.u_v.fall] begin: unknown key",
-    ),
-    "bounds that cross": (
-        [("bounds = [1, 10]", "bounds = [10, 1]")],
-        "job.toml: [parameters]: bounds[u_v.fall]",
-    ),
-    "start outside": (
-        [("bounds = [1, 10]", "bounds = [4, 10]")],
-        "job.toml: [parameters]: start[u_v.fall] = 3.4",
-    ),
-    "bounds of one": (
-        [("bounds = [1, 10]", "bounds = 10")],
-        "[parameters.u_v.fall] bounds = 10: must be two numbers",
-    ),
-    "a prior of no width": (
-        [("prior = [0.1, 0.05]", "prior = [0.1, 0]")],
-        "job.toml: [parameters]: priors[ubar.power]",
-    ),
-    "tied to nothing": (
-        [('tied = "u_v.power"', 'tied = "u_v.pow"')],
-        "job.toml: [parameters]: tied = 'u_v.pow'",
-    ),
-    "fixed = false": (
-        [("d_v.fall = { fixed = true", "d_v.fall = { fixed = false")],
-        "[parameters.d_v.fall] fixed = false",
-    ),
-    "a coupling that is not free": (
-        [('theory = ["alpha_s"]', ""), ("[fit]", "alpha_s = { prior = [0.3, 0.1] }\n[fit]")],
-        "[parameters.alpha_s]: alpha_s is not free: name it in [fit] theory",
-    ),
-    "bounds of a coupling": (
-        [("[fit]", "alpha_s = { bounds = [0.3, 0.4] }\n[fit]")],
-        "[parameters.alpha_s] bounds: unknown key",
-    ),
-    "unknown theory parameter": (
-        [('["alpha_s"]', '["alphas"]')],
-        "[fit]: theory = 'alphas': theory must be one of",
-    ),
-    "theory as text": ([('["alpha_s"]', '"alpha_s"')], "[fit] theory = 'alpha_s': must be a list of"),
-    "theory twice": (
-        [('["alpha_s"]', '["alpha_s", "alpha_s"]')],
-        "[fit]: theory = 'alpha_s': stands there twice",
-    ),
-    "one replica": (
-        [("number = 6", "number = 1")],
-        "job.toml: [replicas]: number = 1: number must be from 2",
-    ),
-    "no seed": ([("seed = 3", "")], "job.toml: [replicas] seed: missing"),
-    "workers": ([("workers = 1", "workers = 0")], "[replicas]: workers = 0: workers must be from 1"),
-    "nothing to write": (
-        [
-            (JOB_OUT, "")
-            for JOB_OUT in (
-                'result = "fit.h5"',
-                'ensemble = "replicas.h5"',
-                'densities = "densities.csv"',
-                "q2 = [10.0, 50.0]",
-                "x = [0.01, 0.1, 0.5]",
-                'parameters = "parameters.csv"',
-                'predictions = "predictions.csv"',
-            )
-        ],
-        "job.toml: [output]: nothing to write: name one of result, ensemble",
-    ),
-    "one file twice": ([('"predictions.csv"', '"parameters.csv"')], "[output] predictions = "),
-    "a wrong ending": ([('"fit.h5"', '"fit.csv"')], "job.toml: [output]: result = "),
-    "ensemble of no replicas": (
-        [('[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n', "")],
-        "[output] ensemble: there are no replicas: add a table [replicas]",
-    ),
-    "x below the grid": ([("x = [0.01, 0.1", "x = [0.001, 0.1")], "job.toml: [output]: x = 0.001 at index 0"),
-    "scales of no densities": (
-        [('densities = "densities.csv"', "")],
-        "[output] q2: only for the file of densities",
-    ),
-    "chi-square": (
-        [("[shape]", '[chi_square]\nreference = "truth"\n[shape]')],
-        "[chi_square]: reference = 'truth': reference must be one of",
-    ),
-    "more parameters than data": (
-        [("[shape]", "[data.cut]\nx = [0.5, 1]\nq2 = [90, inf]\n[shape]")],
-        "job.toml: shape: 6 parameters for 1 data and 1 priors",
-    ),
-    "nothing left": (
-        [("[shape]", "[data.cut]\nx = [0.9, 1]\n[shape]")],
-        "[data.cut]: nothing left after cuts",
-    ),
-    "a nan cell": ([("0.02,4,", "0.02,nan,")], "run1.csv: line 2"),
-}
-
-
-@pytest.mark.parametrize("case", WRONG)
-def test_what_is_asked_wrongly_is_named(tmp_path, write, capsys, case):
-    from scalewright.cli.main import main
-
-    changes, says = WRONG[case]
-    write(*changes)
-    assert main(["fit", str(tmp_path / "job.toml")]) == 2
-    out, said = capsys.readouterr()
-    assert says in said.replace(str(tmp_path) + os.sep, ""), said
-    assert said.startswith("scalewright: ") and said.count("\n") == 1 and out == ""
-    assert not list(tmp_path.glob("*.h5"))
-
-
-def test_what_cannot_be_done_is_named(run, tmp_path, write):
-    write(('"fit.h5"', '"none/fit.h5"'))
-    assert (
-        "[output] result = 'none/fit.h5': the folder does not exist"
-        in run("fit", "job.toml", status=1).stderr
-    )
-    write(("[output]", "[output]\npictures = 'run1.toml'"))
-    assert (
-        "[output] pictures = 'run1.toml': the folder cannot be made"
-        in run("fit", "job.toml", status=1).stderr
-    )
-
-
-def test_a_fit_that_does_not_converge_ends_with_status_1(run, tmp_path, write):
-    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
-    data = '[chi_square]\nreference = "data"\n[fit]\nevaluations = 1'
-    write((text, ""), ('ensemble = "replicas.h5"', ""), ("[fit]", data))
-    done = run("fit", "job.toml", status=1)
-    assert "not converged: stopped after" in done.stderr and "what was found is written" in done.stderr
-    assert not FitResult.load(tmp_path / "fit.h5").converged
-
-
-def test_a_fit_that_does_not_settle_is_written(run, tmp_path, write, monkeypatch):
-    from scalewright.cli import fitted
-    from scalewright.fitting.least_squares import NotSettledError, fit
-
-    def restless(*arguments, **options):
-        found = fit(*arguments, **options)
-        raise NotSettledError("rebuild: alpha_s has not settled after 10 maps", found)
-
-    monkeypatch.setattr(fitted, "fit", restless)
-    write()
-    said = run("fit", "job.toml", status=2).stderr
-    assert "has not settled after 10 maps; the last fit, which is in " in said
-    assert "attribute" not in said and "converged: " in said
-    assert FitResult.load(tmp_path / "fit.h5").names[-1] == "alpha_s"
-
-
-def test_a_mass_that_runs_away_is_said_to(run, tmp_path, write):
-    # data of three light quarks alone, described with charm: it would be pushed beyond bottom
-    text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
-    heavy = 'heavy_quarks = "massive"\nmasses = { charm = 1.3, bottom = 4.18, top = 162.5, kind = "pole" }'
-    write(
-        (text, ""), ('ensemble = "replicas.h5"', ""), ('"LO"', '"NLO"'),
-        ("flavours = 3", f"flavours = 3\n{heavy}"), ('["alpha_s"]', '["alpha_s", "charm"]'),
-    )  # fmt: skip
-    said = run("fit", "job.toml", status=2).stderr
-    assert "rebuild" in said and "; the last fit" in said and "this is a study" in said
-    assert "attribute" not in said and said.count("\n") == 1
-    assert not (tmp_path / "fit.h5").exists()  # charm above bottom is no theory that could be written
-
-
-def test_a_coupling_that_ends_at_zero_is_named(run, tmp_path, write):
-    write()
-    lines = (tmp_path / "run1.csv").read_text().splitlines()
-    cells = [line.split(",") for line in lines[1:]]
-    large = [",".join([x, q2, repr(100.0 * float(value)), stat]) for x, q2, value, stat in cells]
-    (tmp_path / "run1.csv").write_text("\n".join([lines[0], *large]) + "\n")
-    said = run("fit", "job.toml", status=2).stderr
-    assert "alpha_s = 0: alpha_s must lie in (0, 1]" in said and said.count("\n") == 1
-
-
-def test_more_starts_are_told(run, tmp_path, write):
+def test_more_starts_are_told(run_here, tmp_path, write_fit):
     text = '[replicas]\nnumber = 6\nseed = 3\nworkers = 1\njournal = "fit.journal"\n'
     data = '[chi_square]\nreference = "data"\n[fit]\nstarts = 3'
-    write((text, ""), ('ensemble = "replicas.h5"', ""), ("[fit]", data))
-    said = run("fit", "job.toml").stdout
+    write_fit((text, ""), ('ensemble = "replicas.h5"', ""), ("[fit]", data))
+    said = run_here("fit", "job.toml").stdout
     assert "  from 3 starts: 3 end at this minimum\n" in said
     assert "from 3 starts: 3 end at this minimum" in FitResult.load(tmp_path / "fit.h5").status
 
 
-def test_the_example_of_the_help_is_a_job_that_is_understood(run, tmp_path, write):
+def test_the_example_of_the_help_is_a_job_that_is_understood(run_here, tmp_path, write_fit):
     from scalewright.cli.fit_job import read_fit_job
 
-    text = run("fit", "--help").stdout.split("with job.toml:\n")[1]
-    write()
+    text = run_here("fit", "--help").stdout.split("with job.toml:\n")[1]
+    write_fit()
     (tmp_path / "job.toml").write_text("\n".join(line.strip() for line in text.splitlines()))
     job = read_fit_job(tmp_path / "job.toml")
     assert job.free == ("alpha_s",) and job.replicas.number == 100
