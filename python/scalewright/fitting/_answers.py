@@ -1,4 +1,4 @@
-"""What a fit can say besides numbers: blind directions, profiles; what follows from its covariance."""
+"""What a fit can say besides numbers: blind directions; what follows from its covariance."""
 
 from __future__ import annotations
 
@@ -13,11 +13,12 @@ from .. import _check
 from .._check import Floats, show
 from ..densities import Densities
 from ..flavours import combination
+from ._solve import BLIND, scaled
 
 if TYPE_CHECKING:
     from ._problem import Problem
 
-__all__ = ["BlindDirection", "Profile", "ends", "propagated", "weights_of"]
+__all__ = ["BlindDirection", "blind_directions", "ends", "propagated", "weights_of"]
 
 #: Parts of a direction that are shown.
 _SHOWN = 0.1
@@ -59,26 +60,6 @@ class BlindDirection:
         return f"{' '.join(parts)} (singular value {self.singular_value:.1e})"
 
 
-@dataclass(frozen=True, eq=False)
-class Profile:
-    """Chi-square against one parameter, all others fitted again.
-
-    Parameters
-    ----------
-    name : str
-    values, chi2 : ndarray, (point,)
-        Chi-square of data and priors.
-    parameters : ndarray, (point, parameter)
-    converged : ndarray of bool, (point,)
-    """
-
-    name: str
-    values: Floats
-    chi2: Floats
-    parameters: Floats
-    converged: Any
-
-
 def weights_of(problem: Problem, flavour: int | str) -> dict[int, float]:
     """Return the weights of a combination in the flavours of the shape, or refuse it."""
     shape = problem.shape
@@ -101,6 +82,23 @@ def propagated(best: Densities, along: Floats, function: Callable[[Densities], A
     up, down = (np.asarray(_check.raised("function", function, side), dtype=np.float64) for side in sides)
     result: Floats = np.linalg.norm(0.5 * (up - down), axis=0)[()]
     return result
+
+
+def blind_directions(
+    problem: Problem, parameters: Floats, free: Any, jacobian: Floats
+) -> tuple[BlindDirection, ...]:
+    """Return directions of the free parameters along which residuals do not change, the blindest first."""
+    if not free.size:
+        return ()
+    part = jacobian[:, free]
+    part = np.concatenate([part, np.zeros((max(0, free.size - len(part)), free.size))])
+    _, values, right, size = scaled(part)
+    top = values[0] if values[0] > 0.0 else 1.0
+    found = [
+        BlindDirection.of(problem, parameters, free, right[j] / size, float(values[j] / top))
+        for j in np.flatnonzero(values <= BLIND * top)
+    ]
+    return tuple(found[::-1])
 
 
 def ends(problem: Problem, parameters: Floats, root: Floats) -> Densities:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import html
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from functools import cached_property
 from typing import Any
 
@@ -11,21 +11,20 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from .. import _check
-from .._check import Floats, show
+from .._check import Floats
 from ..densities import Densities
 from ..errors import InputError
 from ..files.whole import PathLike
 from ..theory import Theory
-from ._answers import BlindDirection, Profile, ends, propagated, weights_of
+from ._answers import BlindDirection, blind_directions, ends, propagated, weights_of
 from ._bend import map_curvature
 from ._curvature import curvature
 from ._problem import Problem
+from ._profile import Profile, Rebuild, profiled
 from ._result_files import load, save
-from ._solve import BLIND, Solution, scaled, solve
+from ._solve import Solution, scaled
 
 __all__ = ["BlindDirection", "FitResult", "Profile"]
-
-Rebuild = Callable[[Mapping[str, float]], Problem]
 
 
 class FitResult:
@@ -69,8 +68,6 @@ class FitResult:
         sides = (("lower", solution.at_low), ("upper", solution.at_high))
         self.at_bounds = {self.names[place]: side for side, at in sides for place in np.flatnonzero(at)}
         self.parameters.flags.writeable = False
-
-    # ---- values ----------------------------------------------------------------------------------------
 
     def value(self, name: str) -> float:
         """Return the value of a parameter."""
@@ -135,8 +132,6 @@ class FitResult:
     def map_at(self) -> dict[str, float]:
         """Theory parameters that were fitted -> where the map of the fit is exact."""
         return dict(self._problem.reference)
-
-    # ---- uncertainties ---------------------------------------------------------------------------------
 
     @property
     def gradient(self) -> Floats:
@@ -313,24 +308,7 @@ class FitResult:
         InputError
             If the name is unknown or a value lies outside the bounds.
         """
-        place, points = self._place(name), _check.real_array("values", values, ndim=1)
-        low, high = self._problem.low[place], self._problem.high[place]
-        limits = f"{name} must lie in [{show(float(low))}, {show(float(high))}]"
-        _check.refuse_where("values", points, (points < low) | (points > high), limits)
-        found = [self._held(place, float(point)) for point in points]
-        return Profile(
-            name, points, np.array([one.total for one in found]),
-            np.array([one.parameters for one in found]), np.array([one.converged for one in found]),
-        )  # fmt: skip
-
-    def _held(self, place: int, value: float) -> Solution:
-        """Fit with one parameter held."""
-        problem = self._problem
-        if self._rebuild is not None and place >= problem.first_theory:
-            at = dict(zip(problem.reference, self.parameters[problem.first_theory :], strict=True))
-            at[self.names[place]] = value
-            problem = self._rebuild({key: float(number) for key, number in at.items()})
-        return solve(problem, self.parameters, held={place: value})
+        return profiled(self._problem, self._rebuild, self.parameters, self._place(name), values)
 
     @cached_property
     def _root(self) -> Floats:
@@ -346,18 +324,7 @@ class FitResult:
 
     def _unseen(self, jacobian: Floats) -> tuple[BlindDirection, ...]:
         """Return directions of the free parameters along which residuals do not change."""
-        free = self._solution.free
-        if not free.size:
-            return ()
-        part = jacobian[:, free]
-        part = np.concatenate([part, np.zeros((max(0, free.size - len(part)), free.size))])
-        _, values, right, size = scaled(part)
-        top = values[0] if values[0] > 0.0 else 1.0
-        found = [
-            BlindDirection.of(self._problem, self.parameters, free, right[j] / size, float(values[j] / top))
-            for j in np.flatnonzero(values <= BLIND * top)
-        ]
-        return tuple(found[::-1])
+        return blind_directions(self._problem, self.parameters, self._solution.free, jacobian)
 
     def _of_shape(self, parameters: Floats) -> Floats:
         return parameters[: len(self._problem.shape.names)]
@@ -367,8 +334,6 @@ class FitResult:
             known = f"there are {_check.show_all(self.names)}{_check.nearest(name, self.names)}"
             _check.refuse("name", name, f"no parameter of this name; {known}")
         return self.names.index(name)
-
-    # ---- files -----------------------------------------------------------------------------------------
 
     def save(self, path: PathLike) -> None:
         """Store what was found, whole or not at all.
@@ -408,8 +373,6 @@ class FitResult:
         result = cls(rebuild=None, **arguments)
         result.__dict__.update(known)
         return result
-
-    # ---- in words --------------------------------------------------------------------------------------
 
     @property
     def status(self) -> tuple[str, ...]:
