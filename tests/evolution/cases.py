@@ -167,12 +167,14 @@ def _exact(case: Case, x: tuple[float, ...], q2: float, names: tuple[str, ...], 
     return case.exact(np.array(x), q2, names, nf=nf)
 
 
-def errors(case: Case, evolved: sw.Densities, x: Real, names: Sequence[str] = QUANTITIES) -> dict[str, Real]:
+def errors(
+    case: Case, evolved: sw.Densities, x: Real, names: Sequence[str] = QUANTITIES, *, floored: bool = True
+) -> dict[str, Real]:
     """Return errors of quantities at one scale against the Mellin-space solution.
 
     Relative to the value, or to that at LO where this is larger: beyond LO what is made from gluons or from
     other quarks alone (heavy quarks, a sea under a harder one) changes sign near x = 0.9, and relative to
-    zero nothing has an accuracy. What storing flavours as floats may cost a difference of them is taken off.
+    zero nothing has an accuracy; not `floored`: to the value alone. What storing flavours as floats may cost a difference of them is taken off.
     """
     asked = tuple(active(names, int(evolved.nf)))
     given = tuple(x.tolist()), float(evolved.q2), asked, int(evolved.nf)
@@ -181,7 +183,7 @@ def errors(case: Case, evolved: sw.Densities, x: Real, names: Sequence[str] = QU
     for name in asked:
         parts = [abs(weight * evolved.at(None, x, f)[0]) for f, weight in combination(name).items()]
         difference = np.abs(evolved.at(None, x, name)[0] - exact[name])
-        size = np.maximum(np.abs(exact[name]), np.abs(leading[name]))
+        size = np.maximum(np.abs(exact[name]), np.abs(leading[name]) if floored else 0.0)
         result[name] = np.maximum(difference - STORED * np.sum(parts, axis=0), 0.0) / size
     return result
 

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import argparse
 import time
-from importlib.util import find_spec
 
 from ..files.whole import read_whole
 from .fit_job import read_fit_job
 from .fitted import refuse_unconverged
+from .jobs import refuse_without_matplotlib
 from .report import Report
 from .results import done, fit_summary
 
@@ -97,9 +97,8 @@ def run(options: argparse.Namespace) -> None:
     """Read the job, fit, write the results, print what was found."""
     report = Report(options.quiet)
     job = read_fit_job(options.job)
-    if job.pictures is not None and find_spec("matplotlib") is None:
-        where = job.place.section("output").where("pictures")
-        raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
+    if job.pictures is not None:
+        refuse_without_matplotlib(job.place, "pictures")
     start = time.perf_counter()
     results = done(job, report, read_whole(options.job).decode("utf-8", "replace"))
     report.say(f"{options.job}: {job.measured!r}, fitted in {time.perf_counter() - start:.1f} s")

@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from importlib.util import find_spec
 from typing import Any
 
 import numpy as np
@@ -195,6 +196,13 @@ def read_predict_job(path: PathLike) -> PredictJob:
         top, theory, electroweak, given, measured, target_mass, subtraction, corrections, boundaries, form,
         reference, file, picture,
     )  # fmt: skip
+
+
+def refuse_without_matplotlib(top: Section, key: str) -> None:
+    """End a job that asks for pictures where they cannot be drawn, before any work is done."""
+    if find_spec("matplotlib") is None:
+        where = top.section("output").where(key)
+        raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
 
 
 def result_file(path: PathLike, output: Section, key: str, ending: str) -> str:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import argparse
 import time
-from importlib.util import find_spec
 
 import numpy as np
 
@@ -13,7 +12,7 @@ from ..corrections import covariance
 from ..densities import Densities
 from ..fitting.chi_square import ChiSquare
 from ..forward import ForwardMap, forward_map
-from .jobs import PredictJob, read_predict_job
+from .jobs import PredictJob, read_predict_job, refuse_without_matplotlib
 from .report import Report, chi_square_summary
 from .written import write_predictions
 
@@ -65,9 +64,8 @@ def run(options: argparse.Namespace) -> None:
     """Read the job, predict, write the result, print what was found."""
     report = Report(options.quiet)
     job = read_predict_job(options.job)
-    if job.picture is not None and find_spec("matplotlib") is None:
-        where = job.place.section("output").where("picture")
-        raise ImportError(f"{where}: matplotlib is not installed (pip install 'scalewright[plot]')")
+    if job.picture is not None:
+        refuse_without_matplotlib(job.place, "picture")
     start = time.perf_counter()
     with job.place.blame():
         fmap, mean = _mapped(job)
