@@ -174,7 +174,8 @@ def errors(
 
     Relative to the value, or to that at LO where this is larger: beyond LO what is made from gluons or from
     other quarks alone (heavy quarks, a sea under a harder one) changes sign near x = 0.9, and relative to
-    zero nothing has an accuracy; not `floored`: to the value alone. What storing flavours as floats may cost a difference of them is taken off.
+    zero nothing has an accuracy. Not `floored`: to the value alone. What storing flavours as floats may cost
+    a difference of them is taken off.
     """
     asked = tuple(active(names, int(evolved.nf)))
     given = tuple(x.tolist()), float(evolved.q2), asked, int(evolved.nf)
